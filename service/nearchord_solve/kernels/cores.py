@@ -213,7 +213,7 @@ def count_states(
         states += 1 + bag_ptr[b + 1] - bag_ptr[b]
         states += count_cliques(rows, slots.shape[0], edges, most - states, cells)
         if states > most:
-            return states, table
+            return most + 1, table
         if kind[b] & ADHESION_FILL:
             lead = 0
             while lead < slots.shape[0] and slots[lead] <= bag_rank[bag_ptr[b] + adhesion[b] - 1]:
@@ -239,7 +239,7 @@ def count_parts(above: I32, kind: U8) -> tuple[int, int]:
 def judge(
     real: U64, full: U64, anchors: int, most: int, cells: I64
 ) -> tuple[int, int, I32]:
-    """States (counted up to ``most``) and fill of a triangulation, and its elimination order."""
+    """States (at most ``most`` + 1) and fill of a triangulation, and its elimination order."""
     order = np.empty(real.shape[0], np.int32)
     number_from(full, anchors, order)
     later_ptr, later, fill_ptr, fill_rank = dense_lists(real, full, anchors, order)
