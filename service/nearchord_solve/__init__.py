@@ -1,0 +1,1 @@
+"""The pure solver: arrays in, answers out."""
