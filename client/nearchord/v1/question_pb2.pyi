@@ -1,0 +1,53 @@
+from google.protobuf.internal import containers as _containers
+from google.protobuf.internal import enum_type_wrapper as _enum_type_wrapper
+from google.protobuf import descriptor as _descriptor
+from google.protobuf import message as _message
+from collections.abc import Iterable as _Iterable, Mapping as _Mapping
+from typing import ClassVar as _ClassVar, Optional as _Optional, Union as _Union
+
+DESCRIPTOR: _descriptor.FileDescriptor
+
+class WhenOver(int, metaclass=_enum_type_wrapper.EnumTypeWrapper):
+    __slots__ = ()
+    WHEN_OVER_UNSPECIFIED: _ClassVar[WhenOver]
+    WHEN_OVER_BOUND: _ClassVar[WhenOver]
+    WHEN_OVER_STOP: _ClassVar[WhenOver]
+WHEN_OVER_UNSPECIFIED: WhenOver
+WHEN_OVER_BOUND: WhenOver
+WHEN_OVER_STOP: WhenOver
+
+class IndependentSet(_message.Message):
+    __slots__ = ("must", "never")
+    MUST_FIELD_NUMBER: _ClassVar[int]
+    NEVER_FIELD_NUMBER: _ClassVar[int]
+    must: _containers.RepeatedScalarFieldContainer[int]
+    never: _containers.RepeatedScalarFieldContainer[int]
+    def __init__(self, must: _Optional[_Iterable[int]] = ..., never: _Optional[_Iterable[int]] = ...) -> None: ...
+
+class VertexCover(_message.Message):
+    __slots__ = ("must", "never")
+    MUST_FIELD_NUMBER: _ClassVar[int]
+    NEVER_FIELD_NUMBER: _ClassVar[int]
+    must: _containers.RepeatedScalarFieldContainer[int]
+    never: _containers.RepeatedScalarFieldContainer[int]
+    def __init__(self, must: _Optional[_Iterable[int]] = ..., never: _Optional[_Iterable[int]] = ...) -> None: ...
+
+class Question(_message.Message):
+    __slots__ = ("independent_set", "vertex_cover")
+    INDEPENDENT_SET_FIELD_NUMBER: _ClassVar[int]
+    VERTEX_COVER_FIELD_NUMBER: _ClassVar[int]
+    independent_set: IndependentSet
+    vertex_cover: VertexCover
+    def __init__(self, independent_set: _Optional[_Union[IndependentSet, _Mapping]] = ..., vertex_cover: _Optional[_Union[VertexCover, _Mapping]] = ...) -> None: ...
+
+class Budget(_message.Message):
+    __slots__ = ("fill", "states", "seconds", "memory_bytes")
+    FILL_FIELD_NUMBER: _ClassVar[int]
+    STATES_FIELD_NUMBER: _ClassVar[int]
+    SECONDS_FIELD_NUMBER: _ClassVar[int]
+    MEMORY_BYTES_FIELD_NUMBER: _ClassVar[int]
+    fill: int
+    states: int
+    seconds: float
+    memory_bytes: int
+    def __init__(self, fill: _Optional[int] = ..., states: _Optional[int] = ..., seconds: _Optional[float] = ..., memory_bytes: _Optional[int] = ...) -> None: ...

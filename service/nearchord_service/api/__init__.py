@@ -1,0 +1,1 @@
+"""The wire: servicers, conversion between protobuf and the model, limits. The only room that knows gRPC."""

@@ -1,0 +1,1 @@
+"""From the queue to the workers and back: leases, expiry, retention."""

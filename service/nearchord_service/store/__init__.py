@@ -1,0 +1,1 @@
+"""Durable state: jobs, events, answers and content behind one port."""
