@@ -55,9 +55,7 @@ def triangulate(
     ``most_states`` caps the counting of states in each core.  With ``least_fill`` the candidate with the least
     fill is taken, otherwise the one with the fewest states.
     """
-    nb = numbering
     done, forest = core_kernels.build_forest(
-        cores.ptr, cores.place, nb.low_ptr, nb.low, nb.fill_end, nb.fill,
-        DENSE_LIMIT, most_states, least_fill, monitor.cells,
-    )  # fmt: skip
+        numbering, cores.ptr, cores.place, DENSE_LIMIT, most_states, least_fill, monitor.cells
+    )
     return forest if done else Unfinished.STOPPED

@@ -62,7 +62,7 @@ def touched(bag_slot: I32, begin: int, end: int, fill_ptr: I64, fill: I32, where
 @kernel
 def depth_limit(count: int, edges: int) -> int:
     """Most vertices of a clique in a graph of ``count`` vertices and ``edges`` edges: s(s-1)/2 <= edges."""
-    size = np.int64((1.0 + np.sqrt(1.0 + 8.0 * edges)) / 2.0) + 1
+    size = int((1.0 + np.sqrt(1.0 + 8.0 * edges)) / 2.0) + 1
     return min(count, size) + 1
 
 

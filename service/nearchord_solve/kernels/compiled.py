@@ -41,8 +41,8 @@ def _lowest(_context: Any, _word: Any) -> Any:
     return types.int64(types.uint64), generate
 
 
-ones: Callable[[Any], int] = intrinsic(_ones)
+ones: Callable[[Any], int] = cast(Any, intrinsic(_ones))
 """Number of set bits of a uint64 word."""
 
-lowest: Callable[[Any], int] = intrinsic(_lowest)
+lowest: Callable[[Any], int] = cast(Any, intrinsic(_lowest))
 """Index of the lowest set bit of a uint64 word that is not zero."""

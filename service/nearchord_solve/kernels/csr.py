@@ -30,7 +30,7 @@ def check_rows(n: int, row_ptr: I64, targets: U32, degree: I64) -> tuple[int, in
             return BAD_POINTER, u, 0
         last = u
         for e in range(begin, end):
-            v = np.int64(targets[e])
+            v = int(targets[e])
             if v >= n:
                 return BAD_RANGE, u, e
             if v <= last:

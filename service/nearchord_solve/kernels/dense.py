@@ -30,7 +30,7 @@ def drop_pair(rows: U64, i: int, j: int) -> None:
 @kernel
 def holds(rows: U64, i: int, j: int) -> bool:
     """Whether bit j of row i is set."""
-    return (rows[i, j >> 6] >> np.uint64(j & 63)) & ONE != 0
+    return bool((rows[i, j >> 6] >> np.uint64(j & 63)) & ONE)
 
 
 @kernel
@@ -84,7 +84,7 @@ def thin(full: U64, pairs: I32, cells: I64) -> int:
     Lueker, SIAM J. Comput. 5 (1976) 266-283).  ``full`` is changed in place; ``pairs`` int32[f, 2] is
     overwritten, its first (result) rows are the fill that stays.  A stop leaves a valid triangulation.
     """
-    count = pairs.shape[0]
+    count = int(pairs.shape[0])
     changed = True
     while changed and cells[STOP] == 0:
         changed = False

@@ -122,7 +122,7 @@ def fill_table(
     current = np.full(children, -1, np.int64)
     undo = np.empty(meet_node.shape[0] + 1, np.int64)
     undone = 0
-    empty = np.int64(spare)
+    empty = spare
     for w in range(words):
         stack[0, w] = 0
     for j in range(count):
@@ -238,7 +238,7 @@ def best_state(
         _, undone = extend(j, slots[j], meet_ptr, meet_node, meet_child, label, close, delta, current, undo, undone)
         for w in range(words):
             stack[0, w] &= rows[j, w]
-    most = np.int64(spare)
+    most = spare
     length = -1 if spare > 0 else 0
     value[0] = 0
     chosen[0] = -1
