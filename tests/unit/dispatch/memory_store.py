@@ -49,7 +49,7 @@ def job(name, budget=None):
 
 
 class MemoryStore:
-    """Jobs wait in a queue, are leased, and end in `finished`. `unavailable` counts calls that fail before one works."""
+    """Jobs wait in `queue`, are leased, end in `finished`. `unavailable` counts calls that fail before one works."""
 
     def __init__(self):
         self.changed = threading.Condition()
