@@ -51,8 +51,7 @@ def test_the_solver_gets_what_the_job_says(name):
 
     one = task(Script.ANSWER, weights=[1, 2, 3, 4], question=Question(name, must=(1,), never=(0, 3)))
     run(one, solver_with(solve))
-    kinds = {QuestionName.INDEPENDENT_SET: "IndependentSet", QuestionName.VERTEX_COVER: "VertexCover"}
-    assert type(seen["question"]) is getattr(scripted_solver, kinds[name])
+    assert type(seen["question"]) is scripted_solver.QUESTIONS[name]
     assert (seen["question"].must, seen["question"].never) == ((1,), (0, 3))
     assert (seen["budget"].fill, seen["budget"].states, seen["budget"].memory) == (None, 1, 2**30)
     assert seen["weights"].tolist() == [1, 2, 3, 4]
