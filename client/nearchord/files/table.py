@@ -14,6 +14,8 @@ from numpy.typing import NDArray
 BLANKS = b" \t\r\v\f"
 LONGEST = 10
 """Digits of the largest number that can be a vertex."""
+BLOCK_LINES = 1 << 16
+"""Lines read at a time: few enough for the caches, many enough that Python does not count."""
 
 
 @dataclass(frozen=True)
@@ -64,43 +66,47 @@ def two_columns(lines: Lines, chosen: NDArray[np.int64]) -> NDArray[np.int64] | 
     None unless every chosen line is its one-byte kind, a blank, and two blank-separated numbers of at most LONGEST
     plain digits.
     """
-    begin, end = lines.begin[chosen], lines.end[chosen]
-    buffer = _only(lines, chosen)
-    digit = (buffer - np.uint8(48)) < 10
-    if not bool((digit | (buffer == 32) | (buffer == 10)).all()):
-        return None
-    change = np.flatnonzero(digit[1:] != digit[:-1]) + 1  # no digit is first, so changes alternate: begin, end
+    pairs = np.zeros((len(chosen), 2), np.int64)
+    for start in range(0, len(chosen), BLOCK_LINES):
+        block = slice(start, start + BLOCK_LINES)
+        if not _read_block(lines, chosen[block], pairs[block]):
+            return None
+    return pairs
+
+
+def _read_block(lines: Lines, chosen: NDArray[np.int64], pairs: NDArray[np.int64]) -> bool:
+    """Overwrites `pairs` with the numbers of neighbouring chosen lines; False when they are not plain."""
+    window, origin = _window(lines, chosen)
+    digit = (window - np.uint8(48)) < 10
+    if not bool((digit | (window == 32) | (window == 10)).all()):
+        return False
+    change = np.flatnonzero(digit[1:] != digit[:-1]) + 1  # the window begins without a digit: begin, end, begin, ...
     first, last = change[0::2], change[1::2]
     if len(last) < len(first):
-        last = np.append(last, len(buffer))
-    if len(first) != 2 * len(chosen) or not _two_each(first, begin, end):
-        return None
+        last = np.append(last, len(window))
+    if len(first) != pairs.size or not _two_each(first, lines.begin[chosen] - origin, lines.end[chosen] - origin):
+        return False
     width = last - first
-    if len(width) and int(width.max()) > LONGEST:
-        return None
-    return _values(buffer, last, width).reshape(-1, 2)
+    if int(width.max()) > LONGEST:
+        return False
+    pairs.reshape(-1)[:] = _values(window, last, width)
+    return True
 
 
-def _only(lines: Lines, chosen: NDArray[np.int64]) -> NDArray[np.uint8]:
-    """A copy of the bytes from the first to the last chosen line (the rest blank) without the kinds."""
-    buffer = lines.buffer.copy()
+def _window(lines: Lines, chosen: NDArray[np.int64]) -> tuple[NDArray[np.uint8], int]:
+    """A copy of the bytes from the first to the last chosen line and where it begins.
+
+    Lines between that are not chosen, the kinds of those that are, and all blanks but line feeds are spaces in it.
+    """
+    origin = int(lines.begin[chosen[0]])
+    window = lines.buffer[origin : int(lines.end[chosen[-1]])].copy()
     for blank in BLANKS[1:]:
-        buffer[buffer == blank] = 32
-    others = np.ones(len(lines.begin), np.bool_)
-    others[chosen] = False
-    for begin, end in _runs(lines, others):
-        buffer[begin:end] = 32
-    buffer[lines.begin[chosen]] = 32
-    return buffer
-
-
-def _runs(lines: Lines, member: NDArray[np.bool_]) -> list[tuple[int, int]]:
-    """Byte ranges of maximal runs of neighbouring lines that are members."""
-    padded = np.zeros(len(member) + 2, np.int8)
-    padded[1:-1] = member
-    step = np.diff(padded)
-    first, last = np.flatnonzero(step == 1), np.flatnonzero(step == -1) - 1
-    return list(zip(lines.begin[first].tolist(), lines.end[last].tolist(), strict=True))
+        window[window == blank] = 32
+    gap = np.flatnonzero(np.diff(chosen) > 1)
+    for begin, end in zip(lines.end[chosen[gap]].tolist(), lines.begin[chosen[gap + 1]].tolist(), strict=True):
+        window[begin - origin : end - origin] = 32
+    window[lines.begin[chosen] - origin] = 32
+    return window, origin
 
 
 def _two_each(first: NDArray[np.int64], begin: NDArray[np.int64], end: NDArray[np.int64]) -> bool:
@@ -109,11 +115,10 @@ def _two_each(first: NDArray[np.int64], begin: NDArray[np.int64], end: NDArray[n
     return apart and bool((first[1::2] < end).all())
 
 
-def _values(buffer: NDArray[np.uint8], last: NDArray[np.int64], width: NDArray[np.int64]) -> NDArray[np.int64]:
-    """Numbers whose `width` digits end before `last`."""
-    values = np.zeros(len(last), np.int64)
-    for place in range(int(width.max(initial=0))):
-        there = width > place
-        digits = buffer[np.where(there, last - 1 - place, 0)].astype(np.int64) - 48
-        values += np.where(there, digits, 0) * 10**place
+def _values(window: NDArray[np.uint8], last: NDArray[np.int64], width: NDArray[np.int64]) -> NDArray[np.int64]:
+    """Numbers whose `width` digits, at least one, end before `last`."""
+    values = window[last - 1].astype(np.int64) - 48
+    for place in range(1, int(width.max())):
+        there = np.flatnonzero(width > place)
+        values[there] += (window[last[there] - 1 - place].astype(np.int64) - 48) * 10**place
     return values
