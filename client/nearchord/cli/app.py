@@ -29,7 +29,8 @@ def commands() -> None:
 
     Commands that need a service take it from --server or NEARCHORD_SERVER. Without one, `solve`, `batch` and `demo`
     start a private service for themselves; the others look for one at 127.0.0.1:7411. A service that asks for a token
-    gets it from NEARCHORD_TOKEN, or from the file that NEARCHORD_TOKEN_FILE names.
+    gets it from NEARCHORD_TOKEN, or from the file that NEARCHORD_TOKEN_FILE names; NEARCHORD_TLS encrypts the calls
+    (`system`, or a PEM file of root certificates).
 
     Exit codes: 0 answered (PROVEN or BOUNDED), 1 another verdict or not confirmed, 2 usage or bad input, 3 cancelled,
     4 unreachable.

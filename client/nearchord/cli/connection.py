@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from collections.abc import Iterator
+from contextlib import AbstractContextManager, contextmanager
 from pathlib import Path
 
 import nearchord
@@ -25,14 +25,20 @@ def token() -> str | None:
         raise usage(f"NEARCHORD_TOKEN_FILE: {file} cannot be read ({error})", "name a readable text file") from None
 
 
-def remote(server: str | None) -> nearchord.Service:
+def tls() -> str | bool | None:
+    """Whether calls are encrypted, by NEARCHORD_TLS: `system` root certificates, or a PEM file of others."""
+    chosen = os.environ.get("NEARCHORD_TLS") or None
+    return True if chosen == "system" else chosen
+
+
+def remote(server: str | None) -> AbstractContextManager[nearchord.Service]:
     """A connection to the named service, or to the standard address on this machine."""
-    return nearchord.connect(server or STANDARD_SERVER, token=token())
+    return nearchord.connect(server or STANDARD_SERVER, token=token(), tls=tls())
 
 
-def remote_or_private(server: str | None, on_line: Callable[[str], None] | None = None) -> nearchord.Service:
+def remote_or_private(server: str | None) -> AbstractContextManager[nearchord.Service]:
     """A connection to the named service, or a private one of this command's own."""
-    return remote(server) if server else nearchord.embedded(on_line=on_line)
+    return remote(server) if server else nearchord.embedded()
 
 
 @contextmanager
