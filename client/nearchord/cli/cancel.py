@@ -24,14 +24,10 @@ def cancel(identity: str, is_batch: bool, server: str | None) -> int:
     """
     with remote(server) as service:
         if is_batch:
-            batch = service.batch(identity)
-            batch.cancel()
-            info = batch.info()
+            info = service.batch(identity).cancel()
             sys.stdout.write(f"batch {identity}: cancel recorded; {info.done:,} of {info.jobs:,} jobs are DONE\n")
         else:
-            job = service.job(identity)
-            job.cancel()
-            sys.stdout.write(f"job {identity}: {_standing(job.info())}\n")
+            sys.stdout.write(f"job {identity}: {_standing(service.job(identity).cancel())}\n")
     return Exit.ANSWERED
 
 

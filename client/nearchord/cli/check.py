@@ -26,5 +26,6 @@ def check(graph_file: str, answer_file: str, source: Source) -> int:
     """
     graph = read(graph_file, source)
     confirmed = nearchord.check(graph, load(answer_file, graph))
-    sys.stdout.write(f"{confirmed}\n")
-    return Exit.ANSWERED if confirmed.bound else Exit.OTHER
+    sys.stdout.writelines(f"confirmed: {what}\n" for what in confirmed.what)
+    sys.stdout.writelines(f"not confirmed: {what}\n" for what in confirmed.not_confirmed)
+    return Exit.OTHER if confirmed.not_confirmed else Exit.ANSWERED

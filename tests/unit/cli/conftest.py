@@ -88,8 +88,9 @@ class FakeJob:
     def done(self) -> bool:
         return self.service.ended
 
-    def cancel(self) -> None:
+    def cancel(self) -> nearchord.JobInfo:
         self.service.cancelled.append(self.id)
+        return self.info()
 
     def info(self) -> nearchord.JobInfo:
         return self.service.info(0)
@@ -114,8 +115,9 @@ class FakeBatch:
                 raise KeyboardInterrupt
             yield replace(answer, batch_index=index)
 
-    def cancel(self) -> None:
+    def cancel(self) -> nearchord.BatchInfo:
         self.service.cancelled.append(self.id)
+        return self.info()
 
     def info(self) -> nearchord.BatchInfo:
         done = len(self.service.answers) if self.service.ended else 0
