@@ -23,7 +23,7 @@ from nearchord.cli.watch import watch
 
 
 @click.group(context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
-@click.version_option(nearchord.__version__, prog_name="nearchord")
+@click.version_option(package_name="nearchord")
 def commands() -> None:
     """Exact answers about nearly chordal conflict graphs, from a service that works within budgets.
 

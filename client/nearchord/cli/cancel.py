@@ -7,7 +7,6 @@ import sys
 import click
 
 import nearchord
-
 from nearchord.cli import options
 from nearchord.cli.connection import remote
 from nearchord.cli.exits import Exit

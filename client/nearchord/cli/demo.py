@@ -52,7 +52,9 @@ def demo(folder: str | None, seconds: float, server: str | None) -> int:
 
 def _folder(folder: str | None) -> str:
     if folder is None and not CHECKOUT_GRAPHS.is_dir():
-        raise usage("the demo's graphs come with a checkout, not with an installed package", "name a folder: --graphs DIR")
+        raise usage(
+            "the demo's graphs come with a checkout, not with an installed package", "name a folder: --graphs DIR"
+        )
     return folder or str(CHECKOUT_GRAPHS)
 
 
@@ -65,12 +67,12 @@ def _report(graphs: list[nearchord.Graph], answers: list[nearchord.Answer]) -> i
         if fault:
             faults.append(f"{answer.label}: {fault}")
         elif answer.verdict is nearchord.Verdict.BOUNDED:
-            open_ends.append(f"{answer.label}: the best choice is worth at most {number(answer.bound)} ({answer.reason})")
+            open_ends.append(f"{answer.label}: nothing is worth more than {number(answer.bound)} ({answer.reason})")
     print_table(HEADINGS, rows, NUMBERS)
     confirmed = len(answers) - len(faults)
     sys.stdout.write(
-        f"\n{confirmed} of {len(graphs)} answers confirmed from the definition: no two chosen requests conflict, and the "
-        "values of the chosen add up.\n"
+        f"\n{confirmed} of {len(graphs)} answers confirmed from the definition: no two chosen requests "
+        "conflict, and the values of the chosen add up.\n"
     )
     sys.stdout.writelines(f"{line}\n" for line in [*open_ends, *faults])
     return Exit.ANSWERED if confirmed == len(graphs) else Exit.OTHER

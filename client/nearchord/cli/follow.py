@@ -18,7 +18,9 @@ def follow(service: nearchord.Service, job: nearchord.Job, display: JobDisplay) 
     return job.answer()
 
 
-def follow_batch(service: nearchord.Service, batch: nearchord.Batch, display: BatchDisplay) -> Iterator[nearchord.Answer]:
+def follow_batch(
+    service: nearchord.Service, batch: nearchord.Batch, display: BatchDisplay
+) -> Iterator[nearchord.Answer]:
     """Show how the batch goes on while yielding its answers by position, each as soon as those before it are there."""
 
     def count() -> None:

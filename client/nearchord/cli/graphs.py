@@ -13,6 +13,9 @@ import nearchord
 from nearchord.cli.exits import usage
 from nearchord.cli.options import Source
 
+SUFFIXES = (".col", ".dimacs", ".csv", ".graphml", ".json")
+"""Endings of graph files, before `.gz`, that a folder is searched for."""
+
 SHOWN = 20
 """Bad files that an error lists by name."""
 
@@ -37,7 +40,7 @@ def _files(place: str) -> Iterator[str]:
     if path.is_dir():
         found = sorted(str(file) for file in path.iterdir() if file.is_file() and _is_graph(file.name))
         if not found:
-            raise usage(f"{place}: no graph file in this folder", f"graph files end in {', '.join(nearchord.SUFFIXES)}")
+            raise usage(f"{place}: no graph file in this folder", f"graph files end in {', '.join(SUFFIXES)}")
         yield from found
     elif path.exists() or not glob.has_magic(place):
         yield place
@@ -49,7 +52,7 @@ def _files(place: str) -> Iterator[str]:
 
 
 def _is_graph(name: str) -> bool:
-    return name.lower().removesuffix(".gz").endswith(tuple(nearchord.SUFFIXES))
+    return name.lower().removesuffix(".gz").endswith(tuple(SUFFIXES))
 
 
 def read_all(files: Sequence[str], source: Source) -> list[nearchord.Graph]:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from functools import wraps
 from typing import Any
@@ -12,7 +12,7 @@ from typing import Any
 import click
 
 import nearchord
-from nearchord.cli.exits import usage
+from nearchord.files import FORMATS
 
 Command = Callable[..., int]
 
@@ -64,7 +64,7 @@ class Source:
     weights: str | None
 
 
-class NameList(click.ParamType):
+class NameList(click.ParamType[tuple[str, ...]]):
     """Vertex names separated by commas."""
 
     name = "V,.."
@@ -74,7 +74,7 @@ class NameList(click.ParamType):
         return tuple(part for part in (piece.strip() for piece in str(value).split(",")) if part)
 
 
-class Size(click.ParamType):
+class Size(click.ParamType[int]):
     """Bytes, plain or with KiB, MiB or GiB."""
 
     name = "BYTES"
@@ -87,7 +87,7 @@ class Size(click.ParamType):
         return int(match[1]) * _UNITS[match[2].upper()]
 
 
-class Moment(click.ParamType):
+class Moment(click.ParamType[dt.datetime]):
     """A point in time: ISO 8601 (UTC unless it says otherwise), or +SECONDS from now."""
 
     name = "TIME"
@@ -134,13 +134,13 @@ _QUEUE = [
     click.option("--label", default="", help="Free text that `jobs` shows."),
 ]
 _SOURCE = [
-    click.option("--format", type=click.Choice(list(nearchord.FORMATS)), help="Format.  [default: by the file's name]"),
+    click.option("--format", type=click.Choice(list(FORMATS)), help="Format.  [default: by the file's name]"),
     click.option("--scale", type=int, metavar="K", help="Multiply weights by K, for files with decimals."),
     click.option("--weights", metavar="FILE", help="CSV of vertex,weight that replaces the weights in the graph."),
 ]
 
 
-def _with(options: list[Callable[[Command], Command]], command: Command) -> Command:
+def _with(options: Sequence[Callable[[Command], Command]], command: Command) -> Command:
     for option in reversed(options):
         command = option(command)
     return command

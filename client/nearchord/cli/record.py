@@ -41,13 +41,13 @@ def record(answer: nearchord.Answer, names: Names) -> dict[str, Any]:
     }
 
 
-def called(vertices: Iterable[nearchord.Pin], names: Names) -> list[str | int]:
+def called(vertices: Iterable[int | str], names: Names) -> list[str | int]:
     """What vertices are called in the file: numbers where every name of the graph is one, as in DIMACS files."""
     numbers = [int(vertex) for vertex in vertices]
     if names is None:
         return list(numbers)
     picked = [names[number] for number in numbers]
-    return [int(name) for name in picked] if all(map(_is_number, names)) else list(picked)
+    return [int(name) for name in picked] if all(map(_is_decimal, names)) else list(picked)
 
 
 def lines(answer: nearchord.Answer, names: Names) -> Iterator[tuple[str, str]]:
@@ -90,7 +90,7 @@ def number(value: int | Fraction | None) -> str:
     return "unknown" if value is None else f"{value:,}" if isinstance(value, int) else str(value)
 
 
-def _isnumber(name: str) -> bool:
+def _is_decimal(name: str) -> bool:
     return name.isdecimal() and str(int(name)) == name
 
 

@@ -76,10 +76,10 @@ class _Reader:
         )
 
     def _word(self, key: str, allowed: Iterable[str]) -> str:
-        value = self._found.get(key)
-        if value not in allowed:
+        value = str(self._found.get(key))
+        if value not in set(allowed):
             raise self._problem(key, f"is {value!r}", f"it has to be one of {', '.join(allowed)}")
-        return str(value)
+        return value
 
     def _exact(self, key: str) -> int | Fraction | None:
         value = self._found.get(key)

@@ -31,4 +31,4 @@ def serve(data: str, listen: str, metrics: str, workers: int | None, more: tuple
     if workers is not None:
         command += ["--workers", str(workers)]
     sys.stdout.flush()
-    os.execv(command[0], [*command, *more])  # noqa: S606 - our own interpreter, no shell
+    os.execv(command[0], [*command, *more])

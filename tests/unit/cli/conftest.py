@@ -8,10 +8,9 @@ from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
+import nearchord
 import numpy as np
 import pytest
-
-import nearchord
 from nearchord.cli import connection
 from nearchord.cli.app import run
 from nearchord.stages import Phase

@@ -7,10 +7,9 @@ from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
+import nearchord
 import pytest
 from unit.cli.conftest import FakeService, make_answer
-
-import nearchord
 
 ASK = ("--question", "independent-set")
 

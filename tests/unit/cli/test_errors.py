@@ -5,11 +5,10 @@ from __future__ import annotations
 from pathlib import Path
 from typing import Any
 
-import pytest
-from unit.cli.conftest import FakeService
-
 import nearchord
+import pytest
 from nearchord.cli import connection
+from unit.cli.conftest import FakeService
 
 ASK = ("--question", "independent-set")
 

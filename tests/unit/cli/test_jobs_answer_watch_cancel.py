@@ -6,9 +6,8 @@ import json
 from dataclasses import replace
 from typing import Any
 
-from unit.cli.conftest import FakeService, make_answer
-
 import nearchord
+from unit.cli.conftest import FakeService, make_answer
 
 JOB = "1" * 32
 

@@ -8,10 +8,9 @@ import sys
 from pathlib import Path
 from typing import Any
 
+import nearchord
 import pytest
 from unit.cli.conftest import FakeService, make_answer
-
-import nearchord
 
 ASK = ("--question", "independent-set")
 
@@ -43,7 +42,15 @@ def test_people_get_the_same_without_json(service: FakeService, nearchord_comman
 
 @pytest.mark.parametrize(
     ("verdict", "code"),
-    [("PROVEN", 0), ("BOUNDED", 0), ("OVER_FILL", 1), ("INFEASIBLE", 1), ("EXPIRED", 1), ("BROKEN", 1), ("CANCELLED", 3)],
+    [
+        ("PROVEN", 0),
+        ("BOUNDED", 0),
+        ("OVER_FILL", 1),
+        ("INFEASIBLE", 1),
+        ("EXPIRED", 1),
+        ("BROKEN", 1),
+        ("CANCELLED", 3),
+    ],
 )
 def test_exit_code_follows_the_verdict(
     service: FakeService, nearchord_command: Any, square: Path, verdict: str, code: int
@@ -77,7 +84,7 @@ def test_stdin_is_read_for_a_dash(
     assert service.submitted[0][0].n == 4
 
 
-def test_what_the_reader_dropped_is_said_on_stderr(service: FakeService, nearchord_command: Any, tmp_path: Path) -> None:
+def test_notices_of_the_reader_go_to_stderr(service: FakeService, nearchord_command: Any, tmp_path: Path) -> None:
     """Self-loops and repeated edges in a file are dropped with a counted notice."""
     file = tmp_path / "loops.col"
     file.write_text("p edge 3 4\ne 1 1\ne 1 2\ne 2 1\ne 2 3\n", encoding="utf-8")
@@ -103,7 +110,7 @@ def test_interrupt_on_a_server_says_how_to_resume(service: FakeService, nearchor
     assert service.cancelled == []
 
 
-def test_interrupt_of_a_private_service_ends_the_job(service: FakeService, nearchord_command: Any, square: Path) -> None:
+def test_interrupt_of_a_private_service_says_so(service: FakeService, nearchord_command: Any, square: Path) -> None:
     """There is nothing to resume: the service was this command's own."""
     service.interrupt = True
     ran = nearchord_command("solve", str(square), *ASK)
