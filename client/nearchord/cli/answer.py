@@ -16,7 +16,7 @@ from nearchord.cli.progress import BatchDisplay, JobDisplay
 from nearchord.cli.record import Names, exact, record, show
 
 
-@click.command()
+@click.command(short_help="Print the answer of a job or a batch.")
 @click.argument("identity", metavar="JOB")
 @options.whole_batch
 @click.option("--no-wait", is_flag=True, help="Fail, with exit code 1, when the job has not ended.")

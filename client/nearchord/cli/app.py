@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import importlib.metadata
 import os
 import sys
 from collections.abc import Sequence
@@ -22,8 +23,15 @@ from nearchord.cli.submit import submit
 from nearchord.cli.watch import watch
 
 
+def _version() -> str:
+    try:
+        return importlib.metadata.version("nearchord")
+    except importlib.metadata.PackageNotFoundError:
+        return "(not installed, run from its source)"
+
+
 @click.group(context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
-@click.version_option(package_name="nearchord")
+@click.version_option(_version(), message="nearchord %(version)s")
 def commands() -> None:
     """Exact answers about nearly chordal conflict graphs, from a service that works within budgets.
 
@@ -67,7 +75,7 @@ def _usage_error(error: click.ClickException) -> int:
     if isinstance(error, click.exceptions.NoArgsIsHelpError):
         return _say(error.format_message(), Exit.USAGE)
     hint = f" (see {context.command_path} --help)" if context is not None else ""
-    return _say(f"error: {error.format_message()}{hint}", Exit.USAGE)
+    return _say(f"error: {error.format_message().rstrip('.')}{hint}", Exit.USAGE)
 
 
 def _say(message: str, code: Exit) -> int:

@@ -23,7 +23,7 @@ from nearchord.cli.progress import BatchDisplay
 from nearchord.cli.record import record
 
 
-@click.command()
+@click.command(short_help="Answer a question about many graphs.")
 @click.argument("places", metavar="PATH...", nargs=-1, required=True)
 @options.asks
 @options.reads

@@ -12,7 +12,7 @@ from nearchord.cli.connection import remote
 from nearchord.cli.exits import Exit
 
 
-@click.command()
+@click.command(short_help="Withdraw a job or a batch.")
 @click.argument("identity", metavar="JOB")
 @options.whole_batch
 @options.server

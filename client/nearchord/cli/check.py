@@ -14,7 +14,7 @@ from nearchord.cli.options import Source
 from nearchord.cli.recorded import load
 
 
-@click.command()
+@click.command(short_help="Confirm an answer from its graph alone.")
 @click.argument("graph_file", metavar="GRAPH")
 @click.argument("answer_file", metavar="ANSWER.json")
 @options.reads

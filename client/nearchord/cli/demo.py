@@ -24,7 +24,7 @@ NUMBERS = frozenset({"vertices", "edges", "fill", "value", "seconds"})
 PLAIN = Source(format=None, scale=None, weights=None)
 
 
-@click.command()
+@click.command(short_help="Solve the demo's graphs and check every answer.")
 @click.option("--graphs", "folder", metavar="DIR", help="Solve these graphs.  [default: deploy/demo/graphs]")
 @click.option("--seconds", type=float, default=10.0, show_default=True, help="Running time for each graph.")
 @options.server

@@ -15,22 +15,22 @@ from nearchord.cli.exits import Exit
 from nearchord.cli.layout import print_json, print_table
 
 
-@click.command()
+@click.command(short_help="List jobs.")
 @click.option("--batch", metavar="BATCH", help="Only jobs of this batch.")
 @click.option("--label", help="Only jobs with exactly this label.")
 @click.option("--stage", type=click.Choice([str(stage) for stage in nearchord.Stage]), help="Only jobs in this stage.")
-@click.option("--last", type=click.IntRange(min=1), metavar="N", help="Only the first N of the list.")
+@click.option("--first", type=click.IntRange(min=1), metavar="N", help="Only the first N of the list.")
 @options.server
 @options.as_json
 def jobs(
-    batch: str | None, label: str | None, stage: str | None, last: int | None, server: str | None, as_json: bool
+    batch: str | None, label: str | None, stage: str | None, first: int | None, server: str | None, as_json: bool
 ) -> int:
     """List jobs, latest first, or by position within a batch.
 
     With --json one object a line: job, question, stage, verdict, label and more.
     """
     with remote(server) as service:
-        listed = islice(service.jobs(batch=batch, label=label, stage=nearchord.Stage(stage) if stage else None), last)
+        listed = islice(service.jobs(batch=batch, label=label, stage=nearchord.Stage(stage) if stage else None), first)
         if as_json:
             for info in listed:
                 print_json(_record(info))

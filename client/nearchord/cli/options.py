@@ -136,7 +136,7 @@ _QUEUE = [
 _SOURCE = [
     click.option("--format", type=click.Choice(list(FORMATS)), help="Format.  [default: by the file's name]"),
     click.option("--scale", type=int, metavar="K", help="Multiply weights by K, for files with decimals."),
-    click.option("--weights", metavar="FILE", help="CSV of vertex,weight that replaces the weights in the graph."),
+    click.option("--weights", metavar="FILE", help="Weights from another file: one a line, or CSV name,weight."),
 ]
 
 

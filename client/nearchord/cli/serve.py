@@ -11,7 +11,7 @@ import click
 from nearchord.cli.exits import usage
 
 
-@click.command(context_settings={"ignore_unknown_options": True})
+@click.command(short_help="Run the service.", context_settings={"ignore_unknown_options": True})
 @click.option("--data", required=True, metavar="DIR", help="Folder that holds everything the service keeps.")
 @click.option("--listen", default="127.0.0.1:7411", show_default=True, metavar="HOST:PORT", help="Where to take calls.")
 @click.option(

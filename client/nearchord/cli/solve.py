@@ -15,7 +15,7 @@ from nearchord.cli.progress import JobDisplay
 from nearchord.cli.record import record, show
 
 
-@click.command()
+@click.command(short_help="Answer a question about one graph.")
 @options.graph_argument
 @options.asks
 @options.reads

@@ -13,7 +13,7 @@ from nearchord.cli.graphs import read
 from nearchord.cli.options import Ask, Source
 
 
-@click.command()
+@click.command(short_help="Hand over a job and print its id.")
 @options.graph_argument
 @options.asks
 @options.reads

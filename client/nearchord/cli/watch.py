@@ -17,7 +17,7 @@ from nearchord.cli.layout import print_json
 from nearchord.cli.progress import BatchDisplay, Display, JobDisplay, follow_load
 
 
-@click.command()
+@click.command(short_help="Follow a job or a batch until it ends.")
 @click.argument("identity", metavar="JOB")
 @options.whole_batch
 @click.option("--after", type=click.IntRange(min=0), default=0, metavar="N", help="Only events numbered above N.")
