@@ -34,6 +34,6 @@ install_into() {
     "$python" -m venv "$folder"
   fi
   echo "installing nearchord[$extras] into $folder (the first time takes a minute or two) ..." >&2
-  "$folder/bin/python" -m pip install --quiet --disable-pip-version-check --editable ".[$extras]"
+  "$folder/bin/python" -m pip install -qq --disable-pip-version-check --editable ".[$extras]"
   echo "$state" >"$folder/.nearchord-$extras"
 }

@@ -67,6 +67,13 @@ def run(arguments: Sequence[str]) -> int:
         return Exit.OTHER
     except OSError as error:
         return _say(f"error: {error.filename or 'system'}: {error.strerror or error}", Exit.USAGE)
+    except Exception as defect:
+        if os.environ.get("NEARCHORD_TRACEBACK"):
+            raise
+        what = f"{type(defect).__name__}: {defect}".rstrip(": ")
+        return _say(
+            f"error: a defect in nearchord ({what}); NEARCHORD_TRACEBACK=1 shows where, to report it", Exit.OTHER
+        )
     return int(code or 0)
 
 

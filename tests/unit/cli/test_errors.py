@@ -108,3 +108,21 @@ def test_commands_without_a_server_look_at_the_standard_address(
     """`submit` outlives its command, so it never starts a private service."""
     nearchord_command("submit", str(square), *ASK)
     assert service.connected == [(connection.STANDARD_SERVER, None)]
+
+
+def test_defects_are_one_message_too(
+    service: FakeService, nearchord_command: Any, square: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A traceback only for those who ask for one."""
+
+    def fail(*_: object, **__: object) -> None:
+        raise ZeroDivisionError("by nothing")
+
+    monkeypatch.setattr(service, "submit", fail)
+    ran = nearchord_command("solve", str(square), *ASK)
+    assert ran.code == 1
+    assert "ZeroDivisionError: by nothing" in ran.err
+    assert ran.err.count("\n") == 1
+    monkeypatch.setenv("NEARCHORD_TRACEBACK", "1")
+    with pytest.raises(ZeroDivisionError):
+        nearchord_command("solve", str(square), *ASK)
