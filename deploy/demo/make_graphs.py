@@ -149,7 +149,7 @@ def main() -> None:
         ("routes-region.col.gz", routes(4_000, 40, rng), packed(as_dimacs)),
         ("sites-valley.graphml", sites(50, 3.5, rng), as_graphml),
         ("sites-plain.json.gz", sites(300, 3.5, rng), packed(as_node_link)),
-        ("sites-province.col", sites(1_200, 4.0, rng), as_dimacs),
+        ("sites-province.col", sites(1_500, 7.5, rng), as_dimacs),
     ]
     for name, conflicts, write in files:
         (folder / name).write_bytes(write(conflicts))

@@ -12,9 +12,7 @@ import click
 import nearchord
 from nearchord.cli.exits import usage
 from nearchord.cli.options import Source
-
-SUFFIXES = (".col", ".dimacs", ".csv", ".graphml", ".json")
-"""Endings of graph files, before `.gz`, that a folder is searched for."""
+from nearchord.files.detect import SUFFIXES
 
 SHOWN = 20
 """Bad files that an error lists by name."""
