@@ -1,7 +1,7 @@
 """From two columns of endpoints to the canonical form of a graph, in numpy only.
 
-An edge {u, v} with u < v becomes the key u * 2^32 + v. Keys that ascend strictly are canonical already, which one linear
-pass finds out; otherwise they are sorted. Time O(n + m) or O(n + m log m), memory 24 bytes an edge.
+An edge {u, v} with u < v becomes the key u * 2^32 + v. Keys that ascend strictly are canonical already, which one
+linear pass finds out; otherwise they are sorted. Time O(n + m) or O(n + m log m), memory 24 bytes an edge.
 """
 
 from __future__ import annotations
@@ -171,3 +171,9 @@ def _name_twice(words: tuple[str, ...]) -> None:
                 f"name {place} ({word!r}) is the name of vertex {seen[word]} too", "give every vertex its own"
             )
         seen[word] = place
+
+
+def little_endian(array: NDArray[Any]) -> memoryview:
+    """The bytes of a one-dimensional array in little-endian order, without a copy where the machine has that order."""
+    ordered: NDArray[Any] = np.ascontiguousarray(array, array.dtype.newbyteorder("<"))
+    return ordered.view(np.uint8).data

@@ -124,16 +124,13 @@ class Graph:
 
     def edges(self) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
         """Both ends of every edge as int64[m] arrays, the smaller end first, in canonical order."""
-        degrees = np.diff(self.row_ptr.view(np.int64))
-        return np.repeat(np.arange(self.n, dtype=np.int64), degrees), self.targets.astype(np.int64)
+        begin = self.row_ptr.view(np.int64)
+        return np.repeat(np.arange(self.n, dtype=np.int64), begin[1:] - begin[:-1]), self.targets.astype(np.int64)
 
     def canonical(self) -> list[memoryview]:
         """The canonical form in pieces, to be sent one after the other: header, row pointers, targets."""
-        arrays = (self.row_ptr.astype("<u8", copy=False), self.targets.astype("<u4", copy=False))
-        return [
-            memoryview(HEADER.pack(self.n, self.m)),
-            *(memoryview(a).cast("B") if a.size else memoryview(b"") for a in arrays),
-        ]
+        header = memoryview(HEADER.pack(self.n, self.m))
+        return [header, canonical.little_endian(self.row_ptr), canonical.little_endian(self.targets)]
 
     @cached_property
     def address(self) -> str:
@@ -162,8 +159,7 @@ class Graph:
             (self.n, self.m, self.names) == (other.n, other.m, other.names)
             and np.array_equal(self.row_ptr, other.row_ptr)
             and np.array_equal(self.targets, other.targets)
-            and (self.weights is None) == (other.weights is None)
-            and (self.weights is None or np.array_equal(self.weights, other.weights))
+            and _same_weights(self.weights, other.weights)
         )
 
     def __hash__(self) -> int:
@@ -172,3 +168,9 @@ class Graph:
     def __repr__(self) -> str:
         extras = [word for word, there in (("weights", self.weights), ("names", self.names)) if there is not None]
         return f"<Graph n={self.n} m={self.m}{' with ' + ' and '.join(extras) if extras else ''}>"
+
+
+def _same_weights(one: NDArray[np.int64] | None, other: NDArray[np.int64] | None) -> bool:
+    if one is None or other is None:
+        return one is other
+    return np.array_equal(one, other)

@@ -207,7 +207,7 @@ class AsyncJob:
         """Its events after a number, until it has ended; resumed where they were when the connection breaks."""
         return self._carrier.iterate(flows_watch.watch_job(self._caller, self.id, after))
 
-    async def answer(self, timeout: float | None = None) -> Answer:
+    async def answer(self, timeout: float | None = None) -> Answer:  # noqa: ASYNC109 (the shape of the sync twin)
         """Its answer, waited for; TimeoutExceeded after `timeout` seconds, and the job goes on."""
         return await self._carrier.run(flows_watch.answer(self._caller, self.id, timeout))
 

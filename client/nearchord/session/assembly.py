@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -11,7 +13,10 @@ from nearchord.session import replies
 from nearchord.stages import Verdict
 from nearchord.v1 import answer_pb2
 
-DTYPES = {answer_pb2.ELEMENT_TYPE_UINT32: np.dtype("<u4"), answer_pb2.ELEMENT_TYPE_INT64: np.dtype("<i8")}
+DTYPES: dict[answer_pb2.ElementType, np.dtype[Any]] = {
+    answer_pb2.ELEMENT_TYPE_UINT32: np.dtype("<u4"),
+    answer_pb2.ELEMENT_TYPE_INT64: np.dtype("<i8"),
+}
 
 
 class AnswerAssembly:
@@ -47,15 +52,16 @@ class AnswerAssembly:
             )
         column += chunk.data
 
-    def _column(self, head: answer_pb2.AnswerHead, info: answer_pb2.ColumnInfo) -> NDArray[np.generic]:
+    def _column(self, head: answer_pb2.AnswerHead, info: answer_pb2.ColumnInfo) -> NDArray[Any]:
         data = self._columns[info.name]
         if len(data) != info.length * DTYPES[info.type].itemsize:
             raise ServerFault(f"the column {info.name!r} of job {head.job_id} came incomplete; try again")
         column = np.frombuffer(bytes(data), DTYPES[info.type])
-        return column.astype(column.dtype.newbyteorder("="), copy=False)
+        native: NDArray[Any] = column.astype(column.dtype.newbyteorder("="), copy=False)
+        return native
 
 
-def answer(head: answer_pb2.AnswerHead, columns: dict[str, NDArray[np.generic]]) -> Answer:
+def answer(head: answer_pb2.AnswerHead, columns: dict[str, NDArray[Any]]) -> Answer:
     """An answer from its head and whole columns."""
     return Answer(
         job_id=head.job_id,
@@ -81,7 +87,7 @@ FIGURES = ("fill", "fill_lower_bound", "states", "bags", "largest_bag", "parts",
 
 
 def _known(head: answer_pb2.AnswerHead, field: str) -> int | None:
-    return int(getattr(head, field)) if head.HasField(field) else None  # type: ignore[arg-type]
+    return int(getattr(head, field)) if head.HasField(field) else None
 
 
 def _verdict(head: answer_pb2.AnswerHead) -> Verdict:
@@ -91,7 +97,7 @@ def _verdict(head: answer_pb2.AnswerHead) -> Verdict:
     return verdict
 
 
-def _chosen(columns: dict[str, NDArray[np.generic]]) -> NDArray[np.uint32]:
+def _chosen(columns: dict[str, NDArray[Any]]) -> NDArray[np.uint32]:
     chosen = columns.get("chosen", np.zeros(0, np.uint32)).astype(np.uint32, copy=False)
     chosen.flags.writeable = False
     return chosen

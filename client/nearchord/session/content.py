@@ -7,6 +7,7 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 
+from nearchord.canonical import little_endian
 from nearchord.errors import BadInput
 from nearchord.graph import Graph
 from nearchord.v1 import content_pb2
@@ -66,17 +67,11 @@ class InputContent:
 def content_of(graph: Graph) -> InputContent:
     """The stored form of a graph, its weights and its names."""
     weights = names = None
-    if graph.weights is not None and graph.n:
-        weights = memoryview(graph.weights.astype("<i8", copy=False)).cast("B")
-    elif graph.weights is not None:
-        weights = memoryview(b"")
+    if graph.weights is not None:
+        weights = Content(content_pb2.CONTENT_KIND_WEIGHTS, [little_endian(graph.weights)])
     if graph.names is not None:
-        names = memoryview(names_bytes(graph.names))
-    return InputContent(
-        Content(content_pb2.CONTENT_KIND_GRAPH, graph.canonical()),
-        None if weights is None else Content(content_pb2.CONTENT_KIND_WEIGHTS, [weights]),
-        None if names is None else Content(content_pb2.CONTENT_KIND_NAMES, [names]),
-    )
+        names = Content(content_pb2.CONTENT_KIND_NAMES, [memoryview(names_bytes(graph.names))])
+    return InputContent(Content(content_pb2.CONTENT_KIND_GRAPH, graph.canonical()), weights, names)
 
 
 def names_bytes(names: Sequence[str]) -> bytes:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import uuid
 from collections.abc import Iterable
 from datetime import UTC, datetime
+from typing import Any
 
 from google.protobuf.timestamp_pb2 import Timestamp
 
@@ -16,7 +17,12 @@ from nearchord.session.content import InputContent
 from nearchord.stages import Stage, WhenOver
 from nearchord.v1 import content_pb2, job_pb2, question_pb2
 
-LARGEST_LABEL = 200
+WHEN_OVER = {WhenOver.BOUND: question_pb2.WHEN_OVER_BOUND, WhenOver.STOP: question_pb2.WHEN_OVER_STOP}
+STAGES = {
+    Stage.WAITING: job_pb2.STAGE_WAITING,
+    Stage.SOLVING: job_pb2.STAGE_SOLVING,
+    Stage.DONE: job_pb2.STAGE_DONE,
+}
 
 
 def new_request_id() -> str:
@@ -46,7 +52,7 @@ def question(asked: Question, graph: Graph | Addresses) -> question_pb2.Question
     """A question with its pins as numbers."""
     must, never = (pins(field, getattr(asked, field), graph) for field in ("must", "never"))
     field = asked.name.replace("-", "_")
-    kinds = {"independent_set": question_pb2.IndependentSet, "vertex_cover": question_pb2.VertexCover}
+    kinds: dict[str, Any] = {"independent_set": question_pb2.IndependentSet, "vertex_cover": question_pb2.VertexCover}
     if field not in kinds:
         raise BadInput(f"{asked!r} is no question", "ask IndependentSet() or VertexCover()")
     return question_pb2.Question(**{field: kinds[field](must=must, never=never)})
@@ -85,7 +91,7 @@ def budget(spent: Budget) -> question_pb2.Budget:
 def when_over(word: WhenOver | str) -> question_pb2.WhenOver:
     """`bound` or `stop`."""
     try:
-        return question_pb2.WhenOver.Value(f"WHEN_OVER_{WhenOver(word).name}")
+        return WHEN_OVER[WhenOver(word)]
     except ValueError:
         raise BadInput(f"when_over is {word!r}", "say 'bound' or 'stop'") from None
 
@@ -95,7 +101,7 @@ def stage(word: Stage | str | None) -> job_pb2.Stage:
     if word is None:
         return job_pb2.STAGE_UNSPECIFIED
     try:
-        return job_pb2.Stage.Value(f"STAGE_{Stage(word).name}")
+        return STAGES[Stage(word)]
     except ValueError:
         raise BadInput(f"stage is {word!r}", "say WAITING, SOLVING or DONE") from None
 

@@ -1,7 +1,7 @@
 """What a flow may ask its shell to do. Each step's docstring says what the flow gets back from its `yield`.
 
-A failed step raises a NearchordError inside the flow (see `status.decode`). A shell ends every stream it opened when the
-flow ends, however it ends.
+A failed step raises a NearchordError inside the flow (see `status.decode`). A shell ends every stream it opened when
+the flow ends, however it ends.
 """
 
 from __future__ import annotations
