@@ -79,4 +79,4 @@ def _show_all(answers: Iterable[nearchord.Answer]) -> None:
         (each.label or each.job_id, str(each.verdict), str(exact(each.value) or ""), str(exact(each.bound) or ""))
         for each in answers
     ]
-    print_table(("job", "verdict", "value", "bound"), rows, frozenset({"value", "bound"}))
+    print_table(("job", "verdict", "value", "bound"), rows, flexible="job", numbers=frozenset({"value", "bound"}))

@@ -40,7 +40,7 @@ def batch(places: tuple[str, ...], ask: Ask, source: Source, out: str | None, se
     graphs = read_all(files, source)
     requests = [ask.request(graph, Path(file).name[:200]) for file, graph in zip(files, graphs, strict=True)]
     verdicts: list[nearchord.Verdict] = []
-    with _lines(out) as lines, BatchDisplay(len(files)) as display, remote_or_private(server) as service:
+    with _lines(out) as lines, BatchDisplay(len(files)) as display, remote_or_private(server, display) as service:
         submitted = service.submit_batch(requests, label=ask.label)
         with detaching("batch", submitted.id, server):
             for answer in follow_batch(service, submitted, display):

@@ -9,6 +9,7 @@ from pathlib import Path
 
 import nearchord
 from nearchord.cli.exits import Interrupted, usage
+from nearchord.cli.progress import Display
 
 STANDARD_SERVER = "127.0.0.1:7411"
 
@@ -36,9 +37,12 @@ def remote(server: str | None) -> AbstractContextManager[nearchord.Service]:
     return nearchord.connect(server or STANDARD_SERVER, token=token(), tls=tls())
 
 
-def remote_or_private(server: str | None) -> AbstractContextManager[nearchord.Service]:
+def remote_or_private(server: str | None, display: Display) -> AbstractContextManager[nearchord.Service]:
     """A connection to the named service, or a private one of this command's own."""
-    return remote(server) if server else nearchord.embedded()
+    if server:
+        return remote(server)
+    display.say("starting a private service")
+    return nearchord.embedded()
 
 
 @contextmanager

@@ -13,7 +13,7 @@ from nearchord.cli.connection import detaching, remote_or_private
 from nearchord.cli.exits import Exit, usage
 from nearchord.cli.follow import follow_batch
 from nearchord.cli.graphs import collect, read_all
-from nearchord.cli.layout import print_table
+from nearchord.cli.layout import print_table, print_text
 from nearchord.cli.options import Source
 from nearchord.cli.progress import BatchDisplay
 from nearchord.cli.record import number
@@ -41,9 +41,8 @@ def demo(folder: str | None, seconds: float, server: str | None) -> int:
         nearchord.JobRequest(graph, nearchord.IndependentSet(), budget=budget, label=Path(file).name)
         for file, graph in zip(files, graphs, strict=True)
     ]
-    sys.stdout.write(f"{len(files)} conflict graphs: which requests can be granted together, and are worth most?\n\n")
-    sys.stdout.flush()
-    with BatchDisplay(len(files)) as display, remote_or_private(server) as service:
+    _tell(Path(files[0]).parent / "scenario.txt")
+    with BatchDisplay(len(files)) as display, remote_or_private(server, display) as service:
         batch = service.submit_batch(requests, label="demo")
         with detaching("batch", batch.id, server):
             answers = list(follow_batch(service, batch, display))
@@ -58,6 +57,14 @@ def _folder(folder: str | None) -> str:
     return folder or str(CHECKOUT_GRAPHS)
 
 
+def _tell(scenario: Path) -> None:
+    if scenario.is_file():
+        for line in scenario.read_text(encoding="utf-8").splitlines():
+            print_text(line)
+        sys.stdout.write("\n")
+        sys.stdout.flush()
+
+
 def _report(graphs: list[nearchord.Graph], answers: list[nearchord.Answer]) -> int:
     rows, faults, open_ends = [], [], []
     for answer in answers:
@@ -68,13 +75,16 @@ def _report(graphs: list[nearchord.Graph], answers: list[nearchord.Answer]) -> i
             faults.append(f"{answer.label}: {fault}")
         elif answer.verdict is nearchord.Verdict.BOUNDED:
             open_ends.append(f"{answer.label}: nothing is worth more than {number(answer.bound)} ({answer.reason})")
-    print_table(HEADINGS, rows, NUMBERS)
+    print_table(HEADINGS, rows, flexible="graph", numbers=NUMBERS)
     confirmed = len(answers) - len(faults)
-    sys.stdout.write(
-        f"\n{confirmed} of {len(graphs)} answers confirmed from the definition: no two chosen requests "
-        "conflict, and the values of the chosen add up.\n"
+    sys.stdout.write("\n")
+    for line in [*open_ends, *faults]:
+        print_text(line)
+    print_text("PROVEN: nothing is worth more. fill: pairs missing to a chordal graph. seconds: worker time.")
+    print_text(
+        f"{confirmed} of {len(graphs)} answers confirmed from the definition: no two chosen requests exclude "
+        "each other, and their values add up."
     )
-    sys.stdout.writelines(f"{line}\n" for line in [*open_ends, *faults])
     return Exit.ANSWERED if confirmed == len(graphs) else Exit.OTHER
 
 

@@ -15,6 +15,9 @@ from nearchord.cli.exits import Exit
 from nearchord.cli.layout import print_json, print_table
 
 
+HEADINGS = ("job", "question", "stage", "verdict", "label")
+
+
 @click.command(short_help="List jobs.")
 @click.option("--batch", metavar="BATCH", help="Only jobs of this batch.")
 @click.option("--label", help="Only jobs with exactly this label.")
@@ -35,7 +38,9 @@ def jobs(
             for info in listed:
                 print_json(_record(info))
         else:
-            print_table(("job", "question", "stage", "verdict", "label"), [_row(info) for info in listed])
+            print_table(
+                ("job", "question", "stage", "verdict", "label"), [_row(info) for info in listed], flexible="label"
+            )
     return Exit.ANSWERED
 
 

@@ -9,7 +9,6 @@ import textwrap
 from collections.abc import Sequence
 from typing import Any
 
-from rich import box
 from rich.console import Console
 from rich.table import Table
 from rich.text import Text
@@ -23,23 +22,38 @@ def print_json(value: dict[str, Any]) -> None:
     sys.stdout.flush()
 
 
-def print_table(headings: Sequence[str], rows: Sequence[Sequence[str]], numbers: frozenset[str] = frozenset()) -> None:
-    """Print rows under headings, `numbers` aligned right: fitted to a terminal, in full width anywhere else."""
-    table = Table(box=box.SIMPLE_HEAD, pad_edge=False, padding=(0, 1), show_edge=False)
-    for heading in headings:
-        if heading in numbers:
-            table.add_column(heading, justify="right", no_wrap=True)
-        else:
-            table.add_column(heading, overflow="ellipsis", no_wrap=True)
+def print_text(text: str) -> None:
+    """Print a paragraph, wrapped on a terminal under its own indentation."""
+    if sys.stdout.isatty():
+        indent = " " * (len(text) - len(text.lstrip()))
+        text = textwrap.fill(
+            text, shutil.get_terminal_size().columns, subsequent_indent=indent, replace_whitespace=False
+        )
+    sys.stdout.write(text + "\n")
+
+
+def print_table(
+    headings: Sequence[str], rows: Sequence[Sequence[str]], *, flexible: str, numbers: frozenset[str] = frozenset()
+) -> None:
+    """Print rows under headings, `numbers` aligned right. Where a terminal is too narrow only `flexible` is cut."""
+    widths = [max(map(len, column)) for column in zip(headings, *rows, strict=True)]
+    room = shutil.get_terminal_size().columns if sys.stdout.isatty() else None
+    gap = 2 if room is None or sum(widths) + 2 * len(widths) <= room else 1
+    table = Table(box=None, pad_edge=False, padding=(0, gap, 0, 0), header_style="bold")
+    for heading, width in zip(headings, widths, strict=True):
+        table.add_column(
+            heading,
+            justify="right" if heading in numbers else "left",
+            no_wrap=True,
+            overflow="ellipsis",
+            min_width=None if heading == flexible else width,
+        )
     for row in rows:
         table.add_row(*(Text(cell) for cell in row))
-    on_terminal = sys.stdout.isatty()
-    console = Console(file=sys.stdout, highlight=False, width=None if on_terminal else _full_width(headings, rows))
-    console.print(table)
-
-
-def _full_width(headings: Sequence[str], rows: Sequence[Sequence[str]]) -> int:
-    return sum(max(len(cell) for cell in column) + 3 for column in zip(headings, *rows, strict=True))
+    console = Console(file=sys.stdout, highlight=False, width=room or sum(widths) + gap * len(widths))
+    with console.capture() as capture:
+        console.print(table)
+    sys.stdout.writelines(f"{line.rstrip()}\n" for line in capture.get().splitlines())
 
 
 def listing(words: Sequence[str]) -> str:

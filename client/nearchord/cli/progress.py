@@ -30,7 +30,7 @@ class Display:
         self._console = Console(file=sys.stderr, highlight=False)
         self._live: Live | None = None
         self._began = time.monotonic()
-        self._note = "starting"
+        self._note = "submitting"
         self._fraction: float | None = None
         self.waiting = True
 
@@ -155,7 +155,7 @@ class BatchDisplay(Display):
         """Jobs being solved, and verdicts so far."""
         solving = sum(stage is nearchord.Stage.SOLVING for stage in list(self._stages.values()))
         counts = [f"{verdict} {count:,}" for verdict, count in sorted(self._verdicts.items())]
-        return "   ".join([f"solving {solving:,}", *counts]) if self._stages else ""
+        return "" if self.waiting else "   ".join([f"solving {solving:,}", *counts])
 
 
 def follow_load(service: nearchord.Service, display: Display) -> None:

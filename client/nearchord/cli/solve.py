@@ -28,7 +28,7 @@ def solve(file: str, ask: Ask, source: Source, server: str | None, as_json: bool
     how to come back to it.
     """
     graph = read(file, source)
-    with JobDisplay() as display, remote_or_private(server) as service:
+    with JobDisplay() as display, remote_or_private(server, display) as service:
         job = ask.submit(service, graph)
         with detaching("job", job.id, server):
             answer = follow(service, job, display)
