@@ -14,7 +14,6 @@ from nearchord.cli.connection import remote
 from nearchord.cli.exits import Exit
 from nearchord.cli.layout import print_json, print_table
 
-
 HEADINGS = ("job", "question", "stage", "verdict", "label")
 
 
@@ -38,9 +37,7 @@ def jobs(
             for info in listed:
                 print_json(_record(info))
         else:
-            print_table(
-                ("job", "question", "stage", "verdict", "label"), [_row(info) for info in listed], flexible="label"
-            )
+            print_table(HEADINGS, [_row(info) for info in listed], flexible="label")
     return Exit.ANSWERED
 
 

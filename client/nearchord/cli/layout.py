@@ -13,6 +13,9 @@ from rich.console import Console
 from rich.table import Table
 from rich.text import Text
 
+CAPTION = 9
+"""Columns that captions take."""
+
 LISTING_LINES = 4
 
 
@@ -56,14 +59,22 @@ def print_table(
     sys.stdout.writelines(f"{line.rstrip()}\n" for line in capture.get().splitlines())
 
 
-def listing(words: Sequence[str]) -> str:
-    """Words on one line anywhere but on a terminal, which gets a few wrapped lines and the number left out."""
-    text = " ".join(words)
+def print_entry(caption: str, text: str) -> None:
+    """Print a caption with its text, wrapped beside the caption on a terminal."""
+    sys.stdout.write(f"{caption:<{CAPTION}}" + ("\n" + " " * CAPTION).join(_beside_caption(text)) + "\n")
+
+
+def print_listing(caption: str, words: Sequence[str]) -> None:
+    """Print words like an entry; a terminal gets a few lines of them and the number left out."""
+    lines = _beside_caption(" ".join(words))
+    if len(lines) > LISTING_LINES:
+        shown = sum(len(line.split(" ")) for line in lines[:LISTING_LINES])
+        lines = [*lines[:LISTING_LINES], f"... and {len(words) - shown:,} more (--json has all)"]
+    sys.stdout.write(f"{caption:<{CAPTION}}" + ("\n" + " " * CAPTION).join(lines) + "\n")
+
+
+def _beside_caption(text: str) -> list[str]:
     if not sys.stdout.isatty():
-        return text
-    width = max(20, shutil.get_terminal_size().columns - 10)
-    wrapped = textwrap.wrap(text, width, break_long_words=False, break_on_hyphens=False)
-    if len(wrapped) > LISTING_LINES:
-        shown = sum(len(line.split(" ")) for line in wrapped[:LISTING_LINES])
-        wrapped = [*wrapped[:LISTING_LINES], f"... and {len(words) - shown:,} more (--json has all)"]
-    return ("\n" + " " * 9).join(wrapped)
+        return [text]
+    width = max(20, shutil.get_terminal_size().columns - CAPTION)
+    return textwrap.wrap(text, width, break_long_words=False, break_on_hyphens=False) or [""]

@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-import sys
 from collections.abc import Iterable, Iterator, Sequence
 from fractions import Fraction
 from typing import Any
 
 import nearchord
-from nearchord.cli.layout import listing
+from nearchord.cli.layout import print_entry, print_listing
 
 Names = Sequence[str] | None
 
@@ -50,8 +49,8 @@ def called(vertices: Iterable[int | str], names: Names) -> list[str | int]:
     return [int(name) for name in picked] if all(map(_is_decimal, names)) else list(picked)
 
 
-def lines(answer: nearchord.Answer, names: Names) -> Iterator[tuple[str, str]]:
-    """The same for people, as captions and texts; what was not reached is left out."""
+def lines(answer: nearchord.Answer) -> Iterator[tuple[str, str]]:
+    """Its figures for people, as captions and texts; what was not reached is left out."""
     yield "verdict", f"{answer.verdict}: {answer.reason}"
     if answer.value is not None:
         side = "at most" if answer.question.maximises else "at least"
@@ -68,14 +67,14 @@ def lines(answer: nearchord.Answer, names: Names) -> Iterator[tuple[str, str]]:
     yield "proof", str(answer.proof)
     yield "seconds", f"{answer.seconds:.3f}"
     yield "job", answer.job_id
-    if answer.value is not None:
-        yield "names", listing([str(name) for name in called(answer.chosen, names)])
 
 
 def show(answer: nearchord.Answer, names: Names) -> None:
     """Print an answer for people."""
-    for caption, text in lines(answer, names):
-        sys.stdout.write(f"{caption:<9}{text}\n")
+    for caption, text in lines(answer):
+        print_entry(caption, text)
+    if answer.value is not None:
+        print_listing("names", [str(name) for name in called(answer.chosen, names)])
 
 
 def exact(value: int | Fraction | None) -> int | str | None:
