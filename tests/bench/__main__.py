@@ -18,10 +18,13 @@ RESULTS = Path(__file__).resolve().parent / "results"
 
 def main() -> None:
     """Run the scenarios asked for, one after the other."""
-    arguments = _parser().parse_args()
+    parser = _parser()
+    arguments = parser.parse_args()
+    if unknown := set(arguments.scenario) - set(SCENARIOS):
+        parser.error(f"unknown scenario {', '.join(sorted(unknown))}; known: {', '.join(SCENARIOS)}")
     console = Console()
     options = Options(
-        out=arguments.out,
+        out=arguments.out / "quick" if arguments.quick else arguments.out,
         quick=arguments.quick,
         seconds=arguments.seconds,
         threads=tuple(arguments.threads or sorted({1, machine.cores()})),

@@ -17,7 +17,7 @@ from bench.problem import Problem, windows
 from bench.report import Report, Row, Target
 
 MEMORY = 2**30
-SECONDS = 180.0
+SECONDS = 90.0
 PROMISED = {"cliques": 20, "edges": 150}
 
 
