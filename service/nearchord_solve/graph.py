@@ -6,9 +6,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from .arrays import I32, I64, U32, U64
 from .errors import GraphError
 from .kernels import csr
-from .kernels.compiled import I32, I64, U32, U64
 
 MOST_VERTICES = 2**31 - 1
 

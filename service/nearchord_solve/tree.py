@@ -4,10 +4,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from .arrays import I64, U8
 from .budget import Budget
 from .fill import Cores, find_cores, triangulate
 from .graph import Graph
-from .kernels.compiled import I64, U8
 from .kernels.layout import (
     FILL_EDGES,
     FILL_LOWER,

@@ -4,9 +4,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..arrays import I32, I64
 from ..kernels import cores as core_kernels
 from ..kernels import elimination
-from ..kernels.compiled import I32, I64
 from ..kernels.layout import Forest, Numbering
 from ..monitor import Monitor
 from ..order import Unfinished
@@ -40,9 +40,7 @@ def find_cores(numbering: Numbering, monitor: Monitor) -> Cores | Unfinished:
     """
     sizes = np.zeros(4, np.int64)
     nb = numbering
-    done, _ = elimination.mark_cores(
-        nb.low_ptr, nb.low, nb.parent, nb.fill_end, nb.fill, nb.core, sizes, monitor.cells
-    )
+    done, _ = elimination.mark_cores(nb.low_ptr, nb.low, nb.parent, nb.fill_end, nb.fill, nb.core, sizes, monitor.cells)
     if not done:
         return Unfinished.STOPPED
     ptr, place = elimination.list_cores(nb.core, int(sizes[0]), int(sizes[3]))

@@ -21,7 +21,6 @@ from .layout import (
 from .packing import pack_cycles
 
 
-
 @kernel
 def grown32(array: I32, need: int) -> I32:
     """``array``, or a longer copy if it holds fewer than ``need`` entries."""
@@ -43,9 +42,7 @@ def grown64(array: I64, need: int) -> I64:
 
 
 @kernel
-def core_vertices(
-    homes: I32, low_ptr: I64, low: I32, fill_end: I64, fill: I32, local: I32
-) -> tuple[I32, int]:
+def core_vertices(homes: I32, low_ptr: I64, low: I32, fill_end: I64, fill: I32, local: I32) -> tuple[I32, int]:
     """Places of one core, ascending: its anchors L(top), then its homes.
 
     Sets ``local`` at these places to their index.  Returns (places int32[k], anchors).
@@ -89,8 +86,8 @@ def sparse_lists(
 ) -> tuple[I64, I32, I64, I32]:
     """L(r) and its fill part for the order in which the core stands: rank = index in ``places``."""
     k = places.shape[0]
-    size = np.int64(0)
-    fills = np.int64(0)
+    size = 0
+    fills = 0
     for i in range(anchors, k):
         p = places[i]
         fills += fill_end[p] - fill_end[p + 1]
@@ -157,9 +154,7 @@ def dense_lists(real: U64, full: U64, anchors: int, order: I32) -> tuple[I64, I3
 
 
 @kernel
-def _kind(
-    bag_rank: I32, begin: int, split: int, end: int, fill_ptr: I64, fill_rank: I32, mark: I32, b: int
-) -> int:
+def _kind(bag_rank: I32, begin: int, split: int, end: int, fill_ptr: I64, fill_rank: I32, mark: I32, b: int) -> int:
     """Kind of bag b, whose ranks are marked with b; its adhesion stands in begin..split-1."""
     for e in range(begin, end):
         q = bag_rank[e]
@@ -203,8 +198,8 @@ def count_states(
     Counting stops above ``most`` states.  A bag without fill needs no table: its states, the empty set and
     single vertices, are implicit.
     """
-    states = np.int64(0)
-    table = np.int64(0)
+    states = 0
+    table = 0
     where = np.full(fill_ptr.shape[0] - 1, -1, np.int32)
     for b in range(kind.shape[0]):
         if not kind[b] & BAG_FILL:
@@ -213,7 +208,7 @@ def count_states(
         states += 1 + bag_ptr[b + 1] - bag_ptr[b]
         states += count_cliques(rows, slots.shape[0], edges, most - states, cells)
         if states > most:
-            return states, table
+            return most + 1, table
         if kind[b] & ADHESION_FILL:
             lead = 0
             while lead < slots.shape[0] and slots[lead] <= bag_rank[bag_ptr[b] + adhesion[b] - 1]:
@@ -236,10 +231,8 @@ def count_parts(above: I32, kind: U8) -> tuple[int, int]:
 
 
 @kernel
-def judge(
-    real: U64, full: U64, anchors: int, most: int, cells: I64
-) -> tuple[int, int, I32]:
-    """States (counted up to ``most``) and fill of a triangulation, and its elimination order."""
+def judge(real: U64, full: U64, anchors: int, most: int, cells: I64) -> tuple[int, int, I32]:
+    """States (at most ``most`` + 1) and fill of a triangulation, and its elimination order."""
     order = np.empty(real.shape[0], np.int32)
     number_from(full, anchors, order)
     later_ptr, later, fill_ptr, fill_rank = dense_lists(real, full, anchors, order)
@@ -316,9 +309,9 @@ def build_forest(
     bag_adhesion = np.empty(1024, np.int32)
     bag_above = np.empty(1024, np.int32)
     bag_kind = np.empty(1024, np.uint8)
-    slots = np.int64(0)
-    fills = np.int64(0)
-    bags = np.int64(0)
+    slots = 0
+    fills = 0
+    bags = 0
     going = True
     for c in range(cores):
         cells[STEP] = c
@@ -328,7 +321,7 @@ def build_forest(
         homes = core_place[core_ptr[c] : core_ptr[c + 1]]
         places, anchors = core_vertices(homes, low_ptr, low, fill_end, fill, local)
         k = places.shape[0]
-        lower = np.int64(0)
+        lower = 0
         if k <= dense_limit:
             real, full = dense_rows(places, anchors, low_ptr, low, fill_end, fill, local)
             full, order = best_triangulation(real, full, anchors, 8 * k, most, least_fill, cells)
@@ -337,17 +330,11 @@ def build_forest(
             ranked = places[order]
         else:
             ranked = places
-            later_ptr, later, fill_ptr, fill_rank = sparse_lists(
-                places, anchors, low_ptr, low, fill_end, fill, local
-            )
+            later_ptr, later, fill_ptr, fill_rank = sparse_lists(places, anchors, low_ptr, low, fill_end, fill, local)
         for i in range(k):
             local[places[i]] = -1
-        own_ptr, own_rank, adhesion, above, kind = write_bags(
-            anchors, later_ptr, later, fill_ptr, fill_rank
-        )
-        states, table = count_states(
-            own_ptr, own_rank, adhesion, kind, fill_ptr, fill_rank, most, cells
-        )
+        own_ptr, own_rank, adhesion, above, kind = write_bags(anchors, later_ptr, later, fill_ptr, fill_rank)
+        states, table = count_states(own_ptr, own_rank, adhesion, kind, fill_ptr, fill_rank, most, cells)
         with_fill, without = count_parts(above, kind)
         if k <= dense_limit and cells[STOP] == 0:
             lower = max(lower, with_fill)

@@ -37,7 +37,7 @@ def holds(rows: U64, i: int, j: int) -> bool:
 def list_fill(real: U64, full: U64) -> I32:
     """The fill edges of ``full``: int32[f, 2], pairs i < j, ascending."""
     k, words = real.shape
-    total = np.int64(0)
+    total = 0
     for i in range(k):
         for w in range(words):
             total += ones(full[i, w] & ~real[i, w])
@@ -137,7 +137,7 @@ def fill_by_degree(real: U64, full: U64, cells: I64) -> bool:
             while word != 0:
                 u = (w << 6) + lowest(word)
                 word &= word - ONE
-                size = np.int64(0)
+                size = 0
                 for y in range(words):
                     full[u, y] |= full[best, y] & alive[y]
                     if y == w:
@@ -151,7 +151,7 @@ def fill_by_degree(real: U64, full: U64, cells: I64) -> bool:
 def _missing(full: U64, alive: U64, v: int) -> int:
     """Number of non-adjacent pairs among the neighbours of v that are alive."""
     words = full.shape[1]
-    lacking = np.int64(0)
+    lacking = 0
     for w in range(words):
         word = full[v, w] & alive[w]
         while word != 0:

@@ -94,12 +94,19 @@ def find_pair(s: Search, x: int) -> tuple[int, int]:
 
 @kernel
 def move(s: Search, v: int, count: int) -> int:
-    """Make the move at v that helps, if there is one; returns the new length of the journal."""
+    """Make a move at v, or in place of its only chosen neighbour, that helps; the new length of the journal."""
+    x = v
     if not s.chosen[v]:
         if s.weights[v] > s.load[v]:
-            count = force(s, v, count)
-    else:
-        u, other = find_pair(s, v)
+            return force(s, v, count)
+        x = -1
+        if s.tight[v] == 1:
+            e = s.ptr[v]
+            while not s.chosen[s.adj[e]]:
+                e += 1
+            x = s.adj[e]
+    if x >= 0:
+        u, other = find_pair(s, x)
         if u >= 0:
             count = force(s, u, count)
             count = force(s, other, count)
