@@ -196,6 +196,13 @@ def test_cancel_that_comes_while_its_job_is_being_leased(scene):
     assert scene.executor.taken == []
 
 
+def test_cancel_that_comes_while_its_task_is_handed_over(scene):
+    """Between leaving the queue of those ahead and reaching its slot a task cannot dodge a cancel."""
+    scene.executor.on_run = lambda task: scene.store.cancel(task.key.job_id)
+    scene.store.add("a")
+    scene.executor.wait(lambda: scene.executor.running and len(scene.executor.cancelled) == 2)
+
+
 def test_renewal_tells_of_cancels_whose_hint_was_lost(scene):
     """Hints may be lost; the next heartbeat brings the cancel."""
     scene.store.add("a")
