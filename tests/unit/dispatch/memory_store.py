@@ -56,6 +56,7 @@ class MemoryStore:
         self.queue = deque()
         self.held = {}
         self.finished = {}
+        self.offered = []
         self.returned = []
         self.progress = []
         self.renewals = []
@@ -129,6 +130,7 @@ class MemoryStore:
 
     def finish(self, name, attempt, answer):
         self._may_fail("finish")
+        self.offered.append(name)
         if self.broken_finish:
             raise RuntimeError("cannot be written")
         return self._settle(name, attempt, lambda: self.finished.__setitem__(name, answer))
