@@ -111,6 +111,10 @@ def test_more_than_one_is_counted():
             "g.col, line 2: the line begins with 'x'; lines begin with c, p, n or e; mark notes with c",
         ),
         (
+            "p edge 2 1\n\x00e 1 2\n",
+            "g.col, line 2: the line begins with '\\x00e'; lines begin with c, p, n or e; mark notes with c",
+        ),
+        (
             "p edge 2 2\n\ne 1 2\n",
             "g.col, line 1: 2 edges are announced, but 1 are listed (1 different ones); "
             "complete the file, or write `p edge 2 1`",
