@@ -73,6 +73,7 @@ class FakeService(
         self.seen = defaultdict(list)
         self.gate = threading.Event()
         self.gate.set()
+        self.left = threading.Event()
         self.inline_bytes = 1 << 20
 
     def _enter(self, context, method):
@@ -189,6 +190,7 @@ class FakeService(
     def _watch(self, context, method, after, response):
         limit = self._enter(context, method)
         self.seen["after"].append(after)
+        context.add_callback(self.left.set)
         for number, event in enumerate(e for e in self.events if e.sequence > after):
             if number == limit:
                 self._break(context)

@@ -208,6 +208,16 @@ def test_an_answer_with_a_lost_piece_is_refused(lost):
         read()
 
 
+def test_pieces_of_an_answer_in_the_wrong_order_are_refused():
+    """Every piece begins where the one before it ended."""
+    head, first, second = answer_parts(0, [1, 2], piece=1)
+    assembly = AnswerAssembly()
+    assembly.take(head)
+    with pytest.raises(nearchord.ServerFault, match="is missing before element 1"):
+        assembly.take(second)
+    assert assembly.take(first) is None
+
+
 def test_an_unannounced_column_is_refused():
     """A piece needs a head that names its column."""
     with pytest.raises(nearchord.ServerFault, match="without having been announced"):

@@ -130,6 +130,14 @@ def test_a_large_graph_is_stored_in_pieces_and_named_by_address(user, fake):
     assert fake.calls["GetUpload"] == 1
 
 
+def test_what_another_session_has_stored_is_not_sent_again(user, fake):
+    """The server is asked first."""
+    graph = large(20_000)
+    fake.contents[graph.address] = b"".join(graph.canonical())
+    assert user.call(user.service.upload(graph)).graph == graph.address
+    assert "StoreContent" not in fake.calls
+
+
 def test_a_broken_upload_goes_on_where_it_broke(user, fake):
     """After each break the committed offset is asked for and nothing is sent twice."""
     fake.breaks["StoreContent"] = [3, 2, None]
@@ -206,7 +214,7 @@ def test_an_abandoned_watch_ends_its_call(user, fake):
     fake.events = [transition(2, job_pb2.STAGE_WAITING)]
     fake.gate.clear()
     assert len(user.items(user.service.job("j").watch(), limit=1)) == 1
-    user.call(user.service.server())
+    assert fake.left.wait(20)
 
 
 def test_an_answer_is_waited_for_and_assembled(user, fake):
