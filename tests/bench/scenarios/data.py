@@ -1,8 +1,8 @@
 """Real graphs with reference values: every file of ../shared/data/graphs, beside the two general-purpose solvers.
 
 The heaviest independent set under the file's weights, or under ones where it has none.  The general solvers get
-the maximal cliques (edges where there are too many cliques) and all cores; the project's solver runs on one.  Vertices are
-numbered at random first: some files number them in an order that gives the structure away.
+the maximal cliques (edges where there are too many cliques) and all cores; the project's solver runs on one.
+Vertices are numbered at random first: some files number them in an order that gives the structure away.
 """
 
 import csv
@@ -46,9 +46,9 @@ def measure(options: Options) -> Report:
     threads = max(options.threads)
     report = Report("data", {"files": len(cases), "limit_seconds": limit, "threads": threads, "seed": options.seed})
     ours = fresh.run(solve_all, [case.problem for case in cases], limit).result
-    groups = [_groups(case.problem) for case in cases]
-    tasks = [(case.problem.weights, found) for case, found in zip(cases, groups, strict=True)]
-    theirs = {solver: fresh.run(run_all, solver, tasks, threads, limit).result for solver in general.NAMES}
+    tasks = [(case.problem.weights, _groups(case.problem)) for case in cases] if options.general else []
+    solvers = general.NAMES if options.general else ()
+    theirs = {solver: fresh.run(run_all, solver, tasks, threads, limit).result for solver in solvers}
     rows = [_row(case, ours[i], {solver: runs[i] for solver, runs in theirs.items()}) for i, case in enumerate(cases)]
     report.tables["heaviest independent set, real graphs"] = rows
     report.tables["summary"] = [_summary(rows)]
@@ -93,7 +93,7 @@ def _groups(problem: Problem) -> Groups:
 
 def _row(case: Case, ours: worker.Timing, theirs: dict[str, Run]) -> Row:
     outcome = ours.outcome
-    best = min(run.seconds for run in theirs.values())
+    best = min((run.seconds for run in theirs.values()), default=None)
     return {
         "file": case.name,
         "n": case.problem.n,
@@ -109,7 +109,7 @@ def _row(case: Case, ours: worker.Timing, theirs: dict[str, Run]) -> Row:
         "seconds": ours.seconds,
         **{f"{solver} s": run.seconds for solver, run in theirs.items()},
         **{f"{solver} status": run.status for solver, run in theirs.items() if not run.proven},
-        "ratio": best / ours.seconds,
+        "ratio": None if best is None else best / ours.seconds,
     }
 
 
@@ -125,6 +125,7 @@ def _agrees(case: Case, ours: worker.Timing, theirs: dict[str, Run]) -> bool:
 
 
 def _summary(rows: list[Row]) -> Row:
+    ratios = [row["ratio"] for row in rows if row["ratio"] is not None]
     solved = [row for row in rows if row["verdict"] == "PROVEN"]
     return {
         "files": len(rows),
@@ -132,6 +133,6 @@ def _summary(rows: list[Row]) -> Row:
         "disagree": sum(row["agrees"] == "NO" for row in rows),
         "slowest PROVEN s": max((row["seconds"] for row in solved), default=None),
         "largest gap %": max((row["gap %"] or 0.0 for row in rows), default=None),
-        "median ratio": median(row["ratio"] for row in rows),
-        "least ratio": min(row["ratio"] for row in rows),
+        "median ratio": median(ratios) if ratios else None,
+        "least ratio": min(ratios, default=None),
     }
