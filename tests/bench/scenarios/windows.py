@@ -30,7 +30,9 @@ def measure(options: Options) -> Report:
     report = Report("windows-100k", parameters)
     with TemporaryDirectory() as name:
         ours = _own(problem, Path(name), seconds, report)
-        rows = [_own_row(ours), *_general_rows(problem, Path(name), seconds, options.threads)]
+        rows = [_own_row(ours)]
+        if options.general:
+            rows += _general_rows(problem, Path(name), seconds, options.threads)
     for row in rows:
         row["ratio"] = row["seconds"] / ours.seconds
     report.tables["heaviest independent set"] = rows
@@ -58,6 +60,7 @@ def _own_row(timing: worker.Timing) -> Row:
         "value": outcome.value,
         "bound": outcome.bound,
         "build s": None,
+        "CPU s": timing.spent.cpu_seconds,
         "seconds": timing.seconds,
     }
 
@@ -82,6 +85,7 @@ def _general_row(solver: str, formulation: str, groups: Groups, threads: int, ru
         "value": run.value,
         "bound": run.bound,
         "build s": run.build_seconds,
+        "CPU s": run.spent.cpu_seconds,
         "seconds": run.seconds,
     }
 
@@ -97,5 +101,6 @@ def _targets(rows: list[Row]) -> list[Target]:
     targets = [Target("worker time after warm-up", "<=", 0.2, rows[0]["seconds"])]
     for formulation, promised in PROMISED.items():
         ratios = [row["ratio"] for row in rows if row["formulation"].endswith(formulation)]
-        targets.append(Target(f"best general solver given {formulation}", ">=", promised, min(ratios), "times"))
+        if ratios:
+            targets.append(Target(f"best general solver given {formulation}", ">=", promised, min(ratios), "times"))
     return targets
