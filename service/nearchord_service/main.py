@@ -9,12 +9,14 @@ import asyncio
 import logging
 import os
 import platform
+import re
 import signal
 import sys
 import threading
 from collections.abc import Callable, Sequence
 from contextlib import AsyncExitStack
 from importlib import metadata
+from importlib.util import find_spec
 from pathlib import Path
 
 from prometheus_client import CollectorRegistry
@@ -26,7 +28,6 @@ from nearchord_service.model.errors import StoreUnavailable
 from nearchord_service.settings import Address, Settings, read_settings
 from nearchord_service.store.sql import SqlStore
 from nearchord_service.work.local import LocalExecutor
-from nearchord_service.work.solver import solver_version
 
 _log = logging.getLogger(__name__)
 
@@ -102,6 +103,14 @@ def service_version() -> str:
         return metadata.version("nearchord")
     except metadata.PackageNotFoundError:
         return "0+source"
+
+
+def solver_version() -> str:
+    """Return the version of the solver without importing it: its kernels belong to the workers."""
+    found = find_spec("nearchord_solve")
+    source = Path(found.origin).read_text(encoding="utf-8") if found and found.origin else ""
+    version = re.search(r'^VERSION = "(.+)"$', source, re.MULTILINE)
+    return version[1] if version else ""
 
 
 def _announce(line: str) -> None:

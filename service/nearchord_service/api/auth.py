@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from typing import Any
+from typing import Any, TypeAlias
 
 import grpc
 
-Context = grpc.aio.ServicerContext[Any, Any]
+Context: TypeAlias = "grpc.aio.ServicerContext[Any, Any]"
 
 EVERYBODY = ""
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 import logging
 import time
 from collections.abc import Awaitable, Callable
-from typing import Any
+from typing import Any, TypeAlias
 
 import grpc
 
@@ -16,8 +16,8 @@ from nearchord_service.model.errors import ServiceError
 _log = logging.getLogger(__name__)
 _OURS = "/nearchord.v1."
 
-Handler = grpc.RpcMethodHandler[Any, Any]
-Continuation = Callable[[grpc.HandlerCallDetails], Awaitable[Handler | None]]
+Handler: TypeAlias = "grpc.RpcMethodHandler[Any, Any]"
+Continuation: TypeAlias = "Callable[[grpc.HandlerCallDetails], Awaitable[Handler | None]]"
 Behaviour = Callable[[Any, Any], Awaitable[Any]]
 
 _MAKERS: dict[tuple[bool, bool], Callable[..., Any]] = {

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import asyncio
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import grpc
@@ -80,7 +81,7 @@ class ApiServer:
         if settings.reflection:
             names = (*SERVICES, health.SERVICE_NAME, reflection.SERVICE_NAME)
             reflection.enable_server_reflection(names, self._server)
-        self._unsubscribe = lambda: None
+        self._unsubscribe: Callable[[], None] = lambda: None
         self._stopped = False
 
     async def start(self) -> int:
@@ -103,7 +104,7 @@ class ApiServer:
         if self._stopped:
             return
         self._stopped = True
-        await self._health.enter_graceful_shutdown()  # type: ignore[no-untyped-call]
+        await self._health.enter_graceful_shutdown()
         self._hub.drain()
         await self._server.stop(grace_seconds)
         self._unsubscribe()
