@@ -4,9 +4,9 @@ from collections.abc import Callable
 
 import numpy as np
 
+from .arrays import I32, I64, U8
 from .graph import Graph
 from .kernels import cover, local_search, quick
-from .kernels.compiled import I32, I64, U8
 from .monitor import Monitor, Phase
 from .order import Ranking
 

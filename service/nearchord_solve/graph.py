@@ -2,13 +2,14 @@
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
+from .arrays import I32, I64, U32, U64
 from .errors import GraphError
 from .kernels import csr
-from .kernels.compiled import I32, I64, U32, U64
 
 MOST_VERTICES = 2**31 - 1
 
@@ -70,7 +71,7 @@ class Graph:
         return cls.from_canonical(n, row_ptr, high[order].astype(np.uint32))
 
 
-def _plain(array: NDArray[np.generic], dtype: type[np.generic]) -> NDArray[np.generic]:
+def _plain(array: NDArray[Any], dtype: type[np.generic]) -> NDArray[Any]:
     """Aligned contiguous read-only view (copied only where needed), so that kernels see one array type."""
     if array.dtype != dtype:
         raise GraphError(f"expected an array of {np.dtype(dtype).name}, got {array.dtype.name}")
@@ -79,7 +80,7 @@ def _plain(array: NDArray[np.generic], dtype: type[np.generic]) -> NDArray[np.ge
     return plain
 
 
-def _row_error(n: int, code: int, row: int, at: int, rows: NDArray[np.generic], ends: U32) -> GraphError:
+def _row_error(n: int, code: int, row: int, at: int, rows: I64, ends: U32) -> GraphError:
     if code == csr.BAD_POINTER:
         text = f"row {row}: row pointers must start at 0, never fall and end at {ends.size}"
     elif code == csr.BAD_RANGE:

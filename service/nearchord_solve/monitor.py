@@ -11,8 +11,8 @@ from typing import ClassVar
 
 import numpy as np
 
+from .arrays import I64
 from .errors import SolverError
-from .kernels.compiled import I64
 
 
 class Stop(IntEnum):

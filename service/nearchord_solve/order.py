@@ -5,9 +5,9 @@ from typing import NamedTuple
 
 import numpy as np
 
+from .arrays import I32, I64
 from .graph import Graph
 from .kernels import elimination, search
-from .kernels.compiled import I32, I64
 from .kernels.layout import Numbering
 from .monitor import Monitor, Phase
 
@@ -46,9 +46,7 @@ def eliminate(ranking: Ranking, most_fill: int, monitor: Monitor) -> Numbering |
     monitor.enter(Phase.FILL, n)
     parent = np.empty(n, np.int32)
     fill_end = np.empty(n + 1, np.int64)
-    code, fill, used = elimination.eliminate(
-        ranking.low_ptr, ranking.low, most_fill, parent, fill_end, monitor.cells
-    )
+    code, fill, used = elimination.eliminate(ranking.low_ptr, ranking.low, most_fill, parent, fill_end, monitor.cells)
     if code == elimination.STOPPED:
         return Unfinished.STOPPED
     if code == elimination.TOO_LARGE:

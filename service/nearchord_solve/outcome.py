@@ -3,7 +3,7 @@
 from dataclasses import dataclass
 from enum import Enum
 
-from .kernels.compiled import U32
+from .arrays import U32
 
 
 class Verdict(Enum):

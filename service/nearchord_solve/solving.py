@@ -2,10 +2,10 @@
 
 import numpy as np
 
+from .arrays import I64
 from .budget import Budget
 from .errors import SolverError
 from .graph import Graph
-from .kernels.compiled import I64
 from .monitor import Monitor, Phase
 from .outcome import Outcome
 from .questions import IndependentSet, VertexCover

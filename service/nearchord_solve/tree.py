@@ -4,10 +4,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from .arrays import I32, I64, U8
 from .budget import Budget
 from .fill import Cores, find_cores, triangulate
 from .graph import Graph
-from .kernels.compiled import I64, U8
 from .kernels.layout import (
     FILL_EDGES,
     FILL_LOWER,
@@ -76,6 +76,14 @@ class Structure:
     def parts(self) -> int:
         """Parts: fill cores and bags without fill."""
         return self.cores.cliques + self.fill_cores + self._sum(PARTS_PLAIN)
+
+    def fill_edges(self) -> I32:
+        """The fill edges int32[fill, 2], pairs u < v, ascending."""
+        forest, order = self.forest, self.numbering.order
+        upper = np.repeat(np.arange(forest.slot_place.size), np.diff(forest.slot_fill_ptr))
+        ends = np.stack((order[forest.slot_place[upper]], order[forest.slot_place[forest.slot_fill]]), 1)
+        ends.sort(axis=1)
+        return np.asarray(ends[np.lexsort((ends[:, 1], ends[:, 0]))], np.int32)
 
     def _sum(self, figure: int) -> int:
         return int(self.forest.figures[:, figure].sum())

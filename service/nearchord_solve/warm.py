@@ -4,9 +4,9 @@ from collections.abc import Callable
 
 import numpy as np
 
+from .arrays import I64
 from .budget import Budget
 from .graph import Graph
-from .kernels.compiled import I64
 from .monitor import Monitor, Stop
 from .questions import IndependentSet, VertexCover
 from .solving import solve

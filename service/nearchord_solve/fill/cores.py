@@ -4,9 +4,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..arrays import I32, I64
 from ..kernels import cores as core_kernels
 from ..kernels import elimination
-from ..kernels.compiled import I32, I64
 from ..kernels.layout import Forest, Numbering
 from ..monitor import Monitor
 from ..order import Unfinished
@@ -40,9 +40,7 @@ def find_cores(numbering: Numbering, monitor: Monitor) -> Cores | Unfinished:
     """
     sizes = np.zeros(4, np.int64)
     nb = numbering
-    done, _ = elimination.mark_cores(
-        nb.low_ptr, nb.low, nb.parent, nb.fill_end, nb.fill, nb.core, sizes, monitor.cells
-    )
+    done, _ = elimination.mark_cores(nb.low_ptr, nb.low, nb.parent, nb.fill_end, nb.fill, nb.core, sizes, monitor.cells)
     if not done:
         return Unfinished.STOPPED
     ptr, place = elimination.list_cores(nb.core, int(sizes[0]), int(sizes[3]))
@@ -57,9 +55,7 @@ def triangulate(
     ``most_states`` caps the counting of states in each core.  With ``least_fill`` the candidate with the least
     fill is taken, otherwise the one with the fewest states.
     """
-    nb = numbering
     done, forest = core_kernels.build_forest(
-        cores.ptr, cores.place, nb.low_ptr, nb.low, nb.fill_end, nb.fill,
-        DENSE_LIMIT, most_states, least_fill, monitor.cells,
-    )  # fmt: skip
+        numbering, cores.ptr, cores.place, DENSE_LIMIT, most_states, least_fill, monitor.cells
+    )
     return forest if done else Unfinished.STOPPED

@@ -16,9 +16,7 @@ ONE = np.uint64(1)
 
 
 @kernel
-def touched(
-    bag_slot: I32, begin: int, end: int, fill_ptr: I64, fill: I32, where: I32
-) -> tuple[I32, U64, int]:
+def touched(bag_slot: I32, begin: int, end: int, fill_ptr: I64, fill: I32, where: I32) -> tuple[I32, U64, int]:
     """The fill graph of a bag, on the vertices that touch fill.
 
     The bag is ``bag_slot[begin:end]``, ascending slots; slot s has the fill edges ``fill[fill_ptr[s]:...]`` to
@@ -64,7 +62,7 @@ def touched(
 @kernel
 def depth_limit(count: int, edges: int) -> int:
     """Most vertices of a clique in a graph of ``count`` vertices and ``edges`` edges: s(s-1)/2 <= edges."""
-    size = np.int64((1.0 + np.sqrt(1.0 + 8.0 * edges)) / 2.0) + 1
+    size = int((1.0 + np.sqrt(1.0 + 8.0 * edges)) / 2.0) + 1
     return min(count, size) + 1
 
 
@@ -80,9 +78,9 @@ def count_cliques(rows: U64, first: int, edges: int, most: int, cells: I64) -> i
     inside = np.zeros(words, np.uint64)
     for i in range(first):
         inside[i >> 6] |= ONE << np.uint64(i & 63)
-    total = np.int64(0)
+    total = 0
     for i in range(first):
-        size = np.int64(0)
+        size = 0
         for w in range(words):
             stack[0, w] = rows[i, w] & inside[w]
             size += ones(stack[0, w])
@@ -99,7 +97,7 @@ def count_cliques(rows: U64, first: int, edges: int, most: int, cells: I64) -> i
                 continue
             j = (w << 6) + lowest(stack[depth, w])
             stack[depth, w] &= stack[depth, w] - ONE
-            size = np.int64(0)
+            size = 0
             for y in range(words):
                 stack[depth + 1, y] = stack[depth, y] & rows[j, y]
                 size += ones(stack[depth + 1, y])

@@ -8,18 +8,18 @@ from collections.abc import Callable
 from typing import Any, TypeVar, cast
 
 import numba
-import numpy as np
 from numba.core import types
 from numba.extending import intrinsic
 from numpy.typing import NDArray
 
 F = TypeVar("F", bound=Callable[..., Any])
 
-I32 = NDArray[np.int32]
-I64 = NDArray[np.int64]
-U32 = NDArray[np.uint32]
-U64 = NDArray[np.uint64]
-U8 = NDArray[np.uint8]
+# Inside kernels an element of any integer array is a plain integer; the names say the dtype to people.
+I32 = NDArray[Any]
+I64 = NDArray[Any]
+U8 = NDArray[Any]
+U32 = NDArray[Any]
+U64 = NDArray[Any]
 
 
 def kernel(function: F) -> F:
@@ -27,21 +27,22 @@ def kernel(function: F) -> F:
     return cast(F, numba.njit(nogil=True, cache=True)(function))
 
 
-@intrinsic
-def ones(typing_context, word):  # type: ignore[no-untyped-def]
-    """Count the set bits of a uint64 word; result int64."""
-
-    def generate(context, builder, signature, arguments):  # type: ignore[no-untyped-def]
+def _ones(_context: Any, _word: Any) -> Any:
+    def generate(_target: Any, builder: Any, _signature: Any, arguments: Any) -> Any:
         return builder.ctpop(arguments[0])
 
     return types.int64(types.uint64), generate
 
 
-@intrinsic
-def lowest(typing_context, word):  # type: ignore[no-untyped-def]
-    """Index of the lowest set bit of a non-zero uint64 word; result int64 (undefined for zero)."""
-
-    def generate(context, builder, signature, arguments):  # type: ignore[no-untyped-def]
-        return builder.cttz(arguments[0], context.get_constant(types.boolean, 1))
+def _lowest(_context: Any, _word: Any) -> Any:
+    def generate(target: Any, builder: Any, _signature: Any, arguments: Any) -> Any:
+        return builder.cttz(arguments[0], target.get_constant(types.boolean, 1))
 
     return types.int64(types.uint64), generate
+
+
+ones: Callable[[Any], int] = cast(Any, intrinsic(_ones))
+"""Number of set bits of a uint64 word."""
+
+lowest: Callable[[Any], int] = cast(Any, intrinsic(_lowest))
+"""Index of the lowest set bit of a uint64 word that is not zero."""

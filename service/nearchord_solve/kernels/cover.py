@@ -17,7 +17,7 @@ def cover_core(homes: I32, low_ptr: I64, low: I32, residual: I64, seen: I32) -> 
     residuals not preferred but higher places first.  ``seen`` int32[n] must be 0 and is so again on return.
     ``residual`` is changed.  O(sum of squared degrees) time.
     """
-    base = np.int64(0)
+    base = 0
     for h in range(homes.shape[0] - 1, -1, -1):
         i = homes[h]
         gain = residual[i]

@@ -30,7 +30,7 @@ def check_rows(n: int, row_ptr: I64, targets: U32, degree: I64) -> tuple[int, in
             return BAD_POINTER, u, 0
         last = u
         for e in range(begin, end):
-            v = np.int64(targets[e])
+            v = int(targets[e])
             if v >= n:
                 return BAD_RANGE, u, e
             if v <= last:
@@ -50,7 +50,7 @@ def mirror(n: int, row_ptr: I64, targets: U32, smaller: I64, ptr: I64, adj: I32)
     int64[n+1] and ``adj`` int32[2m] are overwritten.  Rows ascend because rows are read in ascending order:
     smaller neighbours arrive in order, larger ones follow them.  O(n + m).
     """
-    total = np.int64(0)
+    total = 0
     for v in range(n):
         ptr[v] = total
         total += smaller[v] + row_ptr[v + 1] - row_ptr[v]
@@ -74,7 +74,7 @@ def induce(ptr: I64, adj: I32, index: I32, kept: int) -> tuple[I64, I32]:
     """
     n = index.shape[0]
     sub_ptr = np.empty(kept + 1, np.int64)
-    total = np.int64(0)
+    total = 0
     for v in range(n):
         if index[v] >= 0:
             sub_ptr[index[v]] = total

@@ -30,14 +30,14 @@ def drop_pair(rows: U64, i: int, j: int) -> None:
 @kernel
 def holds(rows: U64, i: int, j: int) -> bool:
     """Whether bit j of row i is set."""
-    return (rows[i, j >> 6] >> np.uint64(j & 63)) & ONE != 0
+    return bool((rows[i, j >> 6] >> np.uint64(j & 63)) & ONE)
 
 
 @kernel
 def list_fill(real: U64, full: U64) -> I32:
     """The fill edges of ``full``: int32[f, 2], pairs i < j, ascending."""
     k, words = real.shape
-    total = np.int64(0)
+    total = 0
     for i in range(k):
         for w in range(words):
             total += ones(full[i, w] & ~real[i, w])
@@ -84,7 +84,7 @@ def thin(full: U64, pairs: I32, cells: I64) -> int:
     Lueker, SIAM J. Comput. 5 (1976) 266-283).  ``full`` is changed in place; ``pairs`` int32[f, 2] is
     overwritten, its first (result) rows are the fill that stays.  A stop leaves a valid triangulation.
     """
-    count = pairs.shape[0]
+    count = int(pairs.shape[0])
     changed = True
     while changed and cells[STOP] == 0:
         changed = False
@@ -137,7 +137,7 @@ def fill_by_degree(real: U64, full: U64, cells: I64) -> bool:
             while word != 0:
                 u = (w << 6) + lowest(word)
                 word &= word - ONE
-                size = np.int64(0)
+                size = 0
                 for y in range(words):
                     full[u, y] |= full[best, y] & alive[y]
                     if y == w:
@@ -151,7 +151,7 @@ def fill_by_degree(real: U64, full: U64, cells: I64) -> bool:
 def _missing(full: U64, alive: U64, v: int) -> int:
     """Number of non-adjacent pairs among the neighbours of v that are alive."""
     words = full.shape[1]
-    lacking = np.int64(0)
+    lacking = 0
     for w in range(words):
         word = full[v, w] & alive[w]
         while word != 0:

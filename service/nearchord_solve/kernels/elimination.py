@@ -14,9 +14,7 @@ DONE, STOPPED, TOO_LARGE = 0, 1, 2
 
 
 @kernel
-def eliminate(
-    low_ptr: I64, low: I32, most: int, parent: I32, fill_end: I64, cells: I64
-) -> tuple[int, I32, int]:
+def eliminate(low_ptr: I64, low: I32, most: int, parent: I32, fill_end: I64, cells: I64) -> tuple[int, I32, int]:
     """Play the elimination game with at most ``most`` fill edges.
 
     Overwrites ``parent`` int32[n] (-1 for roots) and ``fill_end`` int64[n+1]: the fill of place i is
@@ -28,7 +26,7 @@ def eliminate(
     child = np.full(n, -1, np.int32)
     sibling = np.full(n, -1, np.int32)
     fill = np.empty(1024, np.int32)
-    used = np.int64(0)
+    used = 0
     fill_end[n] = 0
     for i in range(n - 1, -1, -1):
         if (i & POLL) == 0:
@@ -146,7 +144,7 @@ def _holds_fill(i: int, low_ptr: I64, low: I32, fill_end: I64, fill: I32, mark: 
 @kernel
 def _count_cliques(low_ptr: I64, core: I32, covered: U8, sizes: I64) -> None:
     cliques = 0
-    largest = np.int64(0)
+    largest = 0
     for i in range(core.shape[0]):
         if core[i] < 0 and covered[i] == 0:
             cliques += 1

@@ -40,7 +40,7 @@ def draw(random: U64, most: int) -> int:
     x ^= x >> np.uint64(7)
     x ^= x << np.uint64(17)
     random[0] = x
-    return np.int64((x >> np.uint64(11)) % np.uint64(most))
+    return int((x >> np.uint64(11)) % np.uint64(most))
 
 
 @kernel
@@ -142,7 +142,7 @@ def begin_search(s: Search, candidates: I32) -> int:
     climb(s, candidates.shape[0])
     s.best[:] = s.chosen
     s.total[1] = s.total[0]
-    return s.total[1]
+    return int(s.total[1])
 
 
 @kernel
@@ -165,4 +165,4 @@ def kick_and_climb(s: Search, candidates: I32, rounds: int, cells: I64) -> int:
         elif s.total[0] > s.total[1]:
             s.total[1] = s.total[0]
             s.best[:] = s.chosen
-    return s.total[1]
+    return int(s.total[1])

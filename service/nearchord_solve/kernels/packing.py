@@ -20,7 +20,7 @@ def _shortest_path(real: U64, a: int, b: int, v: int, before: I32, queue: I32) -
 
     Returns its number of vertices, 0 if there is none.  With v it closes a chordless cycle.
     """
-    k, words = real.shape
+    words = real.shape[1]
     before[:] = -1
     before[a] = a
     queue[0] = a
@@ -81,7 +81,7 @@ def pack_cycles(real: U64, pairs: I32, cells: I64) -> int:
     queue = np.empty(k, np.int32)
     cycle = np.empty(k + 1, np.int32)
     most = 64 + STEPS // k
-    total = np.int64(0)
+    total = 0
     for longest in (4, k):
         tries = 0
         for e in range(pairs.shape[0]):

@@ -1,7 +1,5 @@
 """A feasible set and a bound in linear time, for solves that are stopped before they have anything better."""
 
-import numpy as np
-
 from .compiled import I32, I64, U8, kernel
 
 
@@ -12,7 +10,7 @@ def choose_in_order(ptr: I64, adj: I32, sequence: I64, weights: I64, chosen: U8)
     ``chosen`` uint8[n] is overwritten.  O(n + m).
     """
     chosen[:] = 0
-    total = np.int64(0)
+    total = 0
     for v in sequence:
         free = weights[v] > 0
         if free:
@@ -33,7 +31,7 @@ def split_over_edges(ptr: I64, adj: I32, residual: I64) -> int:
     Going through the edges, each takes from both its ends the lighter residual.  ``residual`` int64[n] holds
     the weights and is overwritten.  O(n + m).
     """
-    total = np.int64(0)
+    total = 0
     for v in range(residual.shape[0]):
         for e in range(ptr[v], ptr[v + 1]):
             u = adj[e]

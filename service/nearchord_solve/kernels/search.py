@@ -28,13 +28,13 @@ def cardinality_search(ptr: I64, adj: I32, order: I32, low_ptr: I64, low: I32, c
     for v in range(n):
         record[v, COUNT] = 0
         record[v, PLACE] = -1
-    longest = np.int64(0)
+    longest = 0
     for v in range(n):
         longest = max(longest, ptr[v + 1] - ptr[v])
-    head = np.full(longest + 2, -1, np.int32)
+    head: I32 = np.full(longest + 2, -1, np.int32)
     top = 0
     fresh = 0
-    write = np.int64(0)
+    write = 0
     for place in range(n):
         if (place & POLL) == 0:
             cells[STEP] = place
@@ -51,7 +51,7 @@ def cardinality_search(ptr: I64, adj: I32, order: I32, low_ptr: I64, low: I32, c
         else:
             while record[fresh, PLACE] >= 0:
                 fresh += 1
-            v = np.int32(fresh)
+            v = fresh
         record[v, PLACE] = place
         order[place] = v
         low_ptr[place] = write

@@ -11,7 +11,7 @@ import numpy as np
 
 from .cells import BAGS_DONE, POLL, STEP, STOP
 from .cliques import touched
-from .compiled import I32, I64, U8, U64, kernel
+from .compiled import I32, I64, U8, kernel
 from .cover import choose_greedily, cover_core
 from .layout import ADHESION_FILL, BAG_FILL, Forest, Numbering, Tries
 from .tables import best_state, collect_messages, fill_table, settle_message
@@ -56,7 +56,7 @@ def split_bag(bag: int, slots: I32, forest: Forest, residual: I64) -> tuple[int,
     begin = forest.bag_ptr[bag]
     split = begin + forest.bag_adhesion[bag]
     gain = np.zeros(slots.shape[0], np.int64)
-    spare = np.int64(0)
+    spare = 0
     spare_slot = -1
     lead = 0
     j = 0
@@ -78,7 +78,7 @@ def split_bag(bag: int, slots: I32, forest: Forest, residual: I64) -> tuple[int,
 def settle_plain(bag: int, forest: Forest, residual: I64) -> int:
     """Settle a bag without fill; returns what it adds to the base."""
     begin = forest.bag_ptr[bag]
-    base = np.int64(0)
+    base = 0
     for e in range(forest.bag_ptr[bag + 1] - 1, begin + forest.bag_adhesion[bag] - 1, -1):
         gain = residual[forest.slot_place[forest.bag_slot[e]]]
         if gain > 0:
@@ -137,7 +137,7 @@ def inward(
     where = np.full(forest.slot_place.shape[0], -1, np.int32)
     seen = np.zeros(n, np.int32)
     first, following = link_bags(forest.bag_above, forest.bag_kind)
-    base = np.int64(0)
+    base = 0
     used = 0
     bags = 0
     for i in range(n - 1, -1, -1):
@@ -163,9 +163,7 @@ def inward(
             if cells[STOP] != 0:
                 return False, base
             if forest.bag_kind[b] & BAG_FILL:
-                more, used = settle_bag(
-                    b, forest, senders(b, first, following), tries, used, where, residual
-                )
+                more, used = settle_bag(b, forest, senders(b, first, following), tries, used, where, residual)
                 base += more
             else:
                 base += settle_plain(b, forest, residual)
@@ -187,9 +185,7 @@ def choose_plain(bag: int, forest: Forest, residual: I64, chosen: U8) -> None:
 
 
 @kernel
-def choose_bag(
-    bag: int, forest: Forest, children: I32, tries: Tries, where: I32, residual: I64, chosen: U8
-) -> None:
+def choose_bag(bag: int, forest: Forest, children: I32, tries: Tries, where: I32, residual: I64, chosen: U8) -> None:
     """Choose in a bag with fill the best homes next to what is chosen in its adhesion."""
     begin = forest.bag_ptr[bag]
     slots, rows, edges = touched(
@@ -208,7 +204,7 @@ def choose_bag(
     if taken > picked:
         return
     if taken > 0:
-        spare = np.int64(0)
+        spare = 0
     meet_ptr, meet_node, meet_child = collect_messages(
         slots, children, tries.begin, tries.end, tries.label, tries.close
     )

@@ -73,7 +73,7 @@ def extend(
     ``current`` int64[children] holds the trie node of each message (-1: none of its vertices chosen yet) and is
     changed; ``undo`` records the nodes left.  Returns (what the messages add, new length of ``undo``).
     """
-    gain = np.int64(0)
+    gain = 0
     for e in range(meet_ptr[j], meet_ptr[j + 1]):
         q = meet_child[e]
         old = current[q]
@@ -91,9 +91,7 @@ def extend(
 
 
 @kernel
-def retract(
-    j: int, meet_ptr: I64, meet_child: I32, current: I64, undo: I64, undone: int
-) -> int:
+def retract(j: int, meet_ptr: I64, meet_child: I32, current: I64, undo: I64, undone: int) -> int:
     """Undo :func:`extend` for vertex j; returns the new length of ``undo``."""
     for e in range(meet_ptr[j + 1] - 1, meet_ptr[j] - 1, -1):
         undone -= 1
@@ -124,7 +122,7 @@ def fill_table(
     current = np.full(children, -1, np.int64)
     undo = np.empty(meet_node.shape[0] + 1, np.int64)
     undone = 0
-    empty = np.int64(spare)
+    empty = spare
     for w in range(words):
         stack[0, w] = 0
     for j in range(count):
@@ -147,9 +145,7 @@ def fill_table(
             continue
         j = (w << 6) + lowest(stack[depth, w])
         stack[depth, w] &= stack[depth, w] - ONE
-        more, undone = extend(
-            j, slots[j], meet_ptr, meet_node, meet_child, label, close, delta, current, undo, undone
-        )
+        more, undone = extend(j, slots[j], meet_ptr, meet_node, meet_child, label, close, delta, current, undo, undone)
         total = value[depth] + more
         at = node[depth]
         if j < lead:
@@ -239,12 +235,10 @@ def best_state(
     for j in range(lead, count):
         stack[0, j >> 6] |= ONE << np.uint64(j & 63)
     for j in fixed:
-        _, undone = extend(
-            j, slots[j], meet_ptr, meet_node, meet_child, label, close, delta, current, undo, undone
-        )
+        _, undone = extend(j, slots[j], meet_ptr, meet_node, meet_child, label, close, delta, current, undo, undone)
         for w in range(words):
             stack[0, w] &= rows[j, w]
-    most = np.int64(spare)
+    most = spare
     length = -1 if spare > 0 else 0
     value[0] = 0
     chosen[0] = -1
@@ -260,9 +254,7 @@ def best_state(
             continue
         j = (w << 6) + lowest(stack[depth, w])
         stack[depth, w] &= stack[depth, w] - ONE
-        more, undone = extend(
-            j, slots[j], meet_ptr, meet_node, meet_child, label, close, delta, current, undo, undone
-        )
+        more, undone = extend(j, slots[j], meet_ptr, meet_node, meet_child, label, close, delta, current, undo, undone)
         total = value[depth] + more + gain[j]
         depth += 1
         for y in range(words):

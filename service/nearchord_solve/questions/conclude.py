@@ -4,7 +4,7 @@ from collections.abc import Callable
 
 import numpy as np
 
-from ..kernels.compiled import U32
+from ..arrays import U32
 from ..outcome import Outcome, Verdict
 from ..sweep.independent import as_vertices
 from .heaviest import Found
@@ -18,9 +18,7 @@ def contradiction(pins: Contradiction, inside: str, outside: str) -> Outcome:
     else:
         reason = f"the pins contradict each other: adjacent vertices {pins.one} and {pins.other} both {inside}"
     nothing = np.empty(0, np.uint32)
-    return Outcome(
-        Verdict.INFEASIBLE, None, None, nothing, None, 0, None, 0, 0, 0, 0, "none", (), reason
-    )
+    return Outcome(Verdict.INFEASIBLE, None, None, nothing, None, 0, None, 0, 0, 0, 0, "none", (), reason)
 
 
 def outcome_of(found: Found, offset: int, sign: int, lift: Callable[[U32], U32]) -> Outcome:

@@ -5,9 +5,9 @@ from dataclasses import dataclass
 import numpy as np
 
 from .. import bounds
+from ..arrays import I32, I64, U8
 from ..budget import Budget
 from ..graph import Graph
-from ..kernels.compiled import I32, I64, U8
 from ..kernels.layout import STATES
 from ..memory import predicted_bytes
 from ..monitor import Stop
@@ -107,9 +107,7 @@ def _over_fill(task: Task, structure: Structure) -> Found | None:
     if lower > most:
         reason = f"fill budget: at least {lower} fill edges are needed, {most} are allowed"
         return Found(Verdict.OVER_FILL, None, None, None, structure, reason)
-    reason = (
-        f"fill budget: {structure.fill} fill edges were found, {most} are allowed, at least {lower} are needed"
-    )
+    reason = f"fill budget: {structure.fill} fill edges were found, {most} are allowed, at least {lower} are needed"
     chosen, bound = bounds.cover_pair(structure.ranking, task.weights)
     return _close(task, chosen, bound, structure, reason)
 
@@ -162,9 +160,7 @@ def _homes(structure: Structure, fits: U8) -> I32:
     return np.sort(structure.numbering.order[cores.place[loose]])
 
 
-def _search_on(
-    task: Task, chosen: U8, bound: int, candidates: I32, structure: Structure | None, reason: str
-) -> Found:
+def _search_on(task: Task, chosen: U8, bound: int, candidates: I32, structure: Structure | None, reason: str) -> Found:
     """Improve a pair by local search, if the job wants it."""
     task.gauge.incumbent(task.weight(chosen))
     task.gauge.bound(bound)

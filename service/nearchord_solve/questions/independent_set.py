@@ -6,9 +6,9 @@ The planner's reading: the best conflict-free choice on one channel.
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from ..arrays import I64
 from ..budget import Budget
 from ..graph import Graph
-from ..kernels.compiled import I64
 from ..monitor import Monitor
 from ..outcome import Outcome
 from .conclude import contradiction, outcome_of
@@ -24,9 +24,7 @@ class IndependentSet:
     must: Sequence[int] | I64 = ()
     never: Sequence[int] | I64 = ()
 
-    def answer(
-        self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor
-    ) -> Outcome:
+    def answer(self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor) -> Outcome:
         """Answer for checked arguments; see :func:`nearchord_solve.solve`."""
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)

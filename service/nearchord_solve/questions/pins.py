@@ -5,10 +5,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..arrays import I64, U32
 from ..errors import SolverError
 from ..graph import Graph
 from ..kernels import csr
-from ..kernels.compiled import I64, U32
 
 
 @dataclass(frozen=True)

@@ -9,9 +9,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..arrays import I64, U32
 from ..budget import Budget
 from ..graph import Graph
-from ..kernels.compiled import I64, U32
 from ..monitor import Monitor
 from ..outcome import Outcome
 from .conclude import contradiction, outcome_of
@@ -27,9 +27,7 @@ class VertexCover:
     must: Sequence[int] | I64 = ()
     never: Sequence[int] | I64 = ()
 
-    def answer(
-        self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor
-    ) -> Outcome:
+    def answer(self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor) -> Outcome:
         """Answer for checked arguments; see :func:`nearchord_solve.solve`."""
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)

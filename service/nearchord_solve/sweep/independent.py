@@ -4,8 +4,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..arrays import I64, U8, U32
 from ..kernels import sweep as kernels
-from ..kernels.compiled import I64, U8, U32
 from ..kernels.layout import TABLE, Tries
 from ..monitor import Monitor, Phase
 from ..tree import Structure
@@ -33,15 +33,11 @@ def sweep(structure: Structure, weights: I64, fits: U8, monitor: Monitor) -> Swe
     monitor.enter(Phase.SWEEP, n)
     residual = weights[numbering.order]
     tries = _empty_tries(structure, fits)
-    done, bound = kernels.inward(
-        numbering, forest, cores.ptr, cores.place, fits, tries, residual, monitor.cells
-    )
+    done, bound = kernels.inward(numbering, forest, cores.ptr, cores.place, fits, tries, residual, monitor.cells)
     if not done:
         return None
     by_place = np.empty(n, np.uint8)
-    done = kernels.outward(
-        numbering, forest, cores.ptr, cores.place, fits, tries, residual, by_place, monitor.cells
-    )
+    done = kernels.outward(numbering, forest, cores.ptr, cores.place, fits, tries, residual, by_place, monitor.cells)
     if not done:
         return Swept(int(bound), None)
     chosen = np.empty(n, np.uint8)
