@@ -13,6 +13,7 @@ import time
 from collections.abc import Callable
 
 from nearchord_service.dispatch.holdings import Held, Holdings, Standing
+from nearchord_service.dispatch.lease import LeaseKeeper
 from nearchord_service.dispatch.observer import DispatchObserver
 from nearchord_service.dispatch.outbox import Outbox
 from nearchord_service.dispatch.pace import LONG_RUN_SECONDS, Pace
@@ -56,20 +57,21 @@ class Dispatcher:
         self._executor = executor
         self._holder = holder
         self._observer = observer
-        self._lease_seconds = lease_seconds
         self._poll_seconds = poll_seconds
         self._clock = clock
         self._lock = threading.Lock()
-        self._holdings = Holdings()
+        self._holdings = Holdings(clock)
         self._pace = Pace()
         self._progress: dict[TaskKey, Progress] = {}
-        self._early_cancels: set[str] | None = None  # of jobs not in hand, while a claim is under way
         self._dry = False  # the queue was empty when last asked, and nothing was hinted since
         self._wake = threading.Event()
         self._stopping = False
         self._reclaimed = False
         self._recorder = Recorder()
         self._outbox = Outbox(store, self._recorder, observer, self._forget)
+        self._keeper = LeaseKeeper(
+            store, executor, self._outbox, observer, self._holdings, self._lock, holder=holder, seconds=lease_seconds
+        )
         self._tickers = (
             Ticker("lease renewal", heartbeat_seconds, self.renew),
             Ticker("progress", PROGRESS_SECONDS, self._write_progress),
@@ -132,18 +134,13 @@ class Dispatcher:
         self._give_back_stale()
         while not self._stopping and (wanted := self._wanted()):
             with self._lock:
-                self._dry, self._early_cancels = True, set()
-            leases = self._store.claim(self._holder, wanted, self._lease_seconds)
-            with self._lock:
-                self._dry &= len(leases) < wanted
-                held = [self._holdings.add(lease, self._clock()) for lease in leases]
-                early, self._early_cancels = self._early_cancels, None
-            for one in held:
-                if early and one.lease.job.id in early:
-                    self._cancel(one)
+                self._dry = True
+            leased = len(self._keeper.claim(wanted))
             self._feed()
-            if len(leases) < wanted:
+            if leased < wanted:
                 break
+            with self._lock:
+                self._dry = False
         with self._lock:
             return AHEAD_SECONDS if self._holdings.ahead() else self._poll_seconds
 
@@ -173,7 +170,7 @@ class Dispatcher:
         with self._lock:
             if self._stopping or not self._holdings.ahead() or not self._executor.free():
                 return None
-            return self._holdings.next(self._clock())
+            return self._holdings.next()
 
     def _give_back_stale(self) -> None:
         with self._lock:
@@ -240,63 +237,15 @@ class Dispatcher:
 
     def _hinted(self, change: Change) -> None:
         for job_id in change.cancels:
-            self._cancel_job(job_id)
+            self._keeper.cancel_job(job_id)
         if change.work:
             with self._lock:
                 self._dry = False
             self._wake.set()
 
-    def _cancel_job(self, job_id: str) -> None:
-        with self._lock:
-            found = list(self._holdings.of_job(job_id))
-            if not found and self._early_cancels is not None:
-                self._early_cancels.add(job_id)
-        for held in found:
-            self._cancel(held)
-
-    def _cancel(self, held: Held) -> None:
-        """Act on a cancel that was asked for."""
-        with self._lock:
-            held.cancelled = True
-            was = held.standing
-            if was is Standing.AHEAD:
-                self._holdings.pull(held)
-        if was is Standing.AHEAD:
-            self._outbox.give_back(held, "cancelled before a worker had begun the job", worker_lost=False)
-        elif was is Standing.RUNNING:
-            self._executor.cancel(held.key)
-
     def renew(self) -> None:
-        """Renew every lease in hand; act on those that are lost or whose cancel was asked for."""
-        with self._lock:
-            keys = self._holdings.keys()
-        if not keys:
-            return
-        renewed = self._store.renew(self._holder, keys, self._lease_seconds)
-        for (job_id, attempt), renewal in renewed.items():
-            with self._lock:
-                held = self._holdings.get(TaskKey(job_id, attempt))
-            if held is None:
-                continue
-            if not renewal.held:
-                self._lose(held)
-            elif renewal.cancel_requested:
-                self._cancel(held)
-
-    def _lose(self, held: Held) -> None:
-        """Drop a lease that is not ours any more; its result, if one comes, is worth nothing."""
-        with self._lock:
-            was = held.standing
-            if was is Standing.RECORDING or held.lost:
-                return
-            held.lost = True
-            if was is Standing.AHEAD:
-                self._holdings.pull(held)
-                self._holdings.drop(held)
-        _LOG.warning("the lease of job %s, attempt %d was lost", held.lease.job.id, held.lease.attempt)
-        if was is Standing.RUNNING:
-            self._executor.cancel(held.key)
-        self._observer.leases_lost(1)
+        """Renew every lease in hand now; the heartbeat does so at intervals."""
+        self._keeper.renew()
 
     def _write_progress(self) -> None:
         with self._lock:

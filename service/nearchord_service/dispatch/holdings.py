@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import deque
-from collections.abc import Iterator
+from collections.abc import Callable
 from dataclasses import dataclass
 from enum import StrEnum
 
@@ -53,16 +53,14 @@ class Held:
 class Holdings:
     """All leases in hand, by key; those ahead in the order of the queue."""
 
-    def __init__(self) -> None:
+    def __init__(self, clock: Callable[[], float]) -> None:
+        self._clock = clock
         self._by_key: dict[TaskKey, Held] = {}
         self._ahead: deque[Held] = deque()
 
-    def __len__(self) -> int:
-        return len(self._by_key)
-
-    def add(self, lease: Lease, now: float) -> Held:
+    def add(self, lease: Lease) -> Held:
         """Take a fresh lease, ahead of a slot."""
-        held = Held(lease, now)
+        held = Held(lease, self._clock())
         self._by_key[held.key] = held
         self._ahead.append(held)
         return held
@@ -71,9 +69,9 @@ class Holdings:
         """Return a lease in hand."""
         return self._by_key.get(key)
 
-    def of_job(self, job_id: str) -> Iterator[Held]:
+    def of_job(self, job_id: str) -> list[Held]:
         """Return the leases of a job (more than one when an older attempt of ours is not cleared away yet)."""
-        return (held for held in tuple(self._by_key.values()) if held.lease.job.id == job_id)
+        return [held for held in self._by_key.values() if held.lease.job.id == job_id]
 
     def keys(self) -> list[tuple[str, int]]:
         """Return job and attempt of each lease still ours, to renew."""
@@ -87,10 +85,10 @@ class Holdings:
         """Count tasks that have been running since `before` or longer."""
         return sum(h.standing is Standing.RUNNING and h.since <= before for h in self._by_key.values())
 
-    def next(self, now: float) -> Held:
+    def next(self) -> Held:
         """Take the first one ahead for running."""
         held = self._ahead.popleft()
-        held.standing, held.since = Standing.RUNNING, now
+        held.standing, held.since = Standing.RUNNING, self._clock()
         return held
 
     def oldest_ahead(self) -> float | None:

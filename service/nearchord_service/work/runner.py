@@ -18,7 +18,6 @@ import numpy as np
 
 from nearchord_service.model.answer import Answer, Column, ElementType, ProofKind
 from nearchord_service.model.event import Phase
-from nearchord_service.model.question import QuestionName
 from nearchord_service.model.stage import Verdict
 from nearchord_service.work import unread
 from nearchord_service.work.content import graph_rows, weight_values
@@ -87,8 +86,7 @@ def _phase(name: str) -> Phase | None:
 
 
 def _question(task: Task, solver: Any) -> Any:
-    names = {QuestionName.INDEPENDENT_SET: "IndependentSet", QuestionName.VERTEX_COVER: "VertexCover"}
-    return getattr(solver, names[task.question.name])(must=task.question.must, never=task.question.never)
+    return solver.QUESTIONS[task.question.name.value](must=task.question.must, never=task.question.never)
 
 
 def _budget(task: Task, solver: Any) -> Any:
@@ -97,7 +95,7 @@ def _budget(task: Task, solver: Any) -> Any:
 
 
 def _recorded(outcome: Any, vertices: int) -> Answer:
-    verdict = Verdict[outcome.verdict.name]
+    verdict = Verdict(outcome.verdict.value)
     chosen = None if verdict is Verdict.CANCELLED else outcome.chosen
     return Answer(
         verdict=verdict,
@@ -111,8 +109,8 @@ def _recorded(outcome: Any, vertices: int) -> Answer:
         largest_bag=_count(outcome.largest_bag),
         parts=_count(outcome.parts),
         fill_cores=_count(outcome.fill_cores),
-        proof=ProofKind[outcome.proof.name],
-        proof_kinds=tuple(ProofKind[kind.name] for kind in outcome.proof_kinds),
+        proof=ProofKind(outcome.proof),
+        proof_kinds=tuple(ProofKind(kind) for kind in outcome.proof_kinds),
         columns=() if chosen is None else (_chosen(chosen, vertices),),
     )
 

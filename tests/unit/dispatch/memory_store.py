@@ -49,9 +49,10 @@ def job(name, budget=None):
 
 
 class MemoryStore:
-    """Jobs wait in a queue, are leased, and end in `finished`. `unavailable` counts calls that fail before one works."""
+    """Jobs wait in `queue`, are leased, end in `finished`. `unavailable` counts calls that fail before one works."""
 
-    def __init__(self):
+    def __init__(self, graph=None):
+        self.graph = graph or Bytes(b"", None)
         self.changed = threading.Condition()
         self.queue = deque()
         self.held = {}
@@ -69,9 +70,9 @@ class MemoryStore:
 
     # For tests
 
-    def add(self, *names):
+    def add(self, *names, budget=None):
         with self.changed:
-            self.queue.extend(job(name) for name in names)
+            self.queue.extend(job(name, budget) for name in names)
         self.tell(Change(work=True))
 
     def tell(self, change):
@@ -86,9 +87,9 @@ class MemoryStore:
         with self.changed:
             self.held.pop(name)
 
-    def wait(self, condition):
+    def wait(self, condition, seconds=WAIT):
         with self.changed:
-            assert self.changed.wait_for(condition, WAIT), f"never came true: {self.__dict__}"
+            assert self.changed.wait_for(condition, seconds), f"never came true: {self.__dict__}"
 
     # LeaseStore
 
@@ -106,7 +107,7 @@ class MemoryStore:
                 one = replace(one, stage=Stage.SOLVING, attempt=one.attempt + 1)
                 self.held[one.id] = one
                 lost = sum(1 for name, _, worker_lost in self.returned if name == one.id and worker_lost)
-                leases.append(Lease(one, one.attempt, lost, START, Bytes(b"", None), None))
+                leases.append(Lease(one, one.attempt, lost, START, self.graph, None))
             self.changed.notify_all()
         if self.in_claim is not None:
             self.in_claim(leases)

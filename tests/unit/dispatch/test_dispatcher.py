@@ -257,7 +257,7 @@ def test_leasing_goes_on_after_a_store_that_was_not_available():
 
 
 def test_an_answer_the_store_cannot_take_returns_its_job(scene):
-    """An answer that cannot be written for another reason counts like a lost worker, so that it cannot loop for ever."""
+    """An answer that cannot be written at all counts like a lost worker, so that it cannot loop for ever."""
     scene.store.broken_finish = True
     scene.store.add("a")
     scene.running("a")
