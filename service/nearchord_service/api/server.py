@@ -89,7 +89,10 @@ class ApiServer:
         try:
             port = self._server.add_insecure_port(str(self._settings.listen))
         except RuntimeError as error:
-            raise OSError(f"cannot listen on {self._settings.listen}: {error}") from error
+            raise OSError(
+                f"cannot listen on {self._settings.listen}, which is in use or not of this machine; "
+                "choose another with --listen"
+            ) from error
         self._unsubscribe = self._store.subscribe(self._hub.heard)
         await self._server.start()
         for name in ("", *SERVICES):
