@@ -43,7 +43,7 @@ class Server:
     def __init__(self, settings: Settings) -> None:
         self._settings = settings
         self._metrics = Metrics(CollectorRegistry())
-        self._store = SqlStore(settings.data, on_write=self._metrics.database_write)
+        self._store = SqlStore(settings.data, on_write=self._metrics.database_write, on_end=self._metrics.job_ended)
         self._executor = LocalExecutor(settings.workers)
         self._dispatcher = Dispatcher(self._store, self._executor, holder=HOLDER, observer=self._metrics)
         self._upkeep = Upkeep(self._store, retention=settings.retention, observer=self._metrics)

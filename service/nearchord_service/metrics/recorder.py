@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import threading
 import time
-from collections import defaultdict
 from collections.abc import Callable
 
 from prometheus_client import CollectorRegistry
@@ -28,7 +27,7 @@ class Metrics:
         self._series = Series(registry)
         self._lock = threading.Lock()
         self._rate = Rate(clock)
-        self._runs: dict[tuple[QuestionName, Verdict], RecentRuns] = defaultdict(RecentRuns)
+        self._runs: dict[tuple[QuestionName, Verdict], RecentRuns] = {}
         self._queue: Callable[[], QueueFigures] = lambda: QueueFigures(0, 0, 0.0)
         self._slots: Callable[[], SlotFigures] = lambda: SlotFigures(0, 0, 0, 1.0)
 
@@ -45,15 +44,20 @@ class Metrics:
         """Jobs were accepted."""
         self._series.submitted.labels(question).inc(count)
 
-    def job_finished(self, job: Job, answer: Answer) -> None:
-        """A job ended with an answer."""
-        question = job.question.name
-        self._series.finished.labels(question, answer.verdict).inc()
+    def job_ended(self, question: QuestionName, verdict: Verdict) -> None:
+        """A job is DONE, in whatever way."""
+        self._series.finished.labels(question, verdict).inc()
         with self._lock:
             self._rate.add()
-            self._runs[question, answer.verdict].add(answer.seconds)
-        if job.started_at is None:
+            self._recent(question, verdict)
+
+    def job_finished(self, job: Job, answer: Answer) -> None:
+        """A worker's attempt ended its job; only one in which the solver came to an answer has figures of a run."""
+        question = job.question.name
+        if not answer.solver_version or job.started_at is None:
             return
+        with self._lock:
+            self._recent(question, answer.verdict).add(answer.seconds)
         self._series.wait.labels(question).observe((job.started_at - job.created_at).total_seconds())
         self._series.run.labels(question).observe(answer.seconds)
         for phase, seconds in answer.phase_seconds:
@@ -62,6 +66,9 @@ class Metrics:
             self._series.fill.labels(question).observe(answer.fill)
         if answer.states is not None:
             self._series.states.labels(question).observe(answer.states)
+
+    def _recent(self, question: QuestionName, verdict: Verdict) -> RecentRuns:
+        return self._runs.setdefault((question, verdict), RecentRuns())
 
     def leases_lost(self, count: int) -> None:
         """Leases ran out or were taken over."""

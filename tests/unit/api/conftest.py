@@ -9,8 +9,10 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from nearchord_service.metrics import Metrics
 from nearchord_service.store.port import Store
 from nearchord_service.store.sql import SqlStore
+from prometheus_client import CollectorRegistry
 from unit.api.serving import Serving
 
 
@@ -20,9 +22,10 @@ def serve(tmp_path: Path) -> Iterator[Callable[..., Serving]]:
     with ExitStack() as running:
         number = count()
 
-        def start(store: Callable[[Path], Store] = SqlStore, **settings: Any) -> Serving:
+        def start(store: Callable[..., Store] = SqlStore, **settings: Any) -> Serving:
             data = tmp_path / str(next(number))
-            return running.enter_context(Serving(data, store(data), **settings))
+            metrics = Metrics(CollectorRegistry())
+            return running.enter_context(Serving(data, store(data, on_end=metrics.job_ended), metrics, **settings))
 
         yield start
 

@@ -47,10 +47,10 @@ PATH = struct.pack("<IQ4Q2I", 3, 2, 0, 1, 2, 2, 1, 2)
 class Serving:
     """A running server with stubs for its services."""
 
-    def __init__(self, data: Path, store: Store | None = None, **settings: Any) -> None:
+    def __init__(self, data: Path, store: Store | None = None, metrics: Metrics | None = None, **settings: Any) -> None:
         self.settings = replace(Settings(data, listen=Address("127.0.0.1", 0), metrics=None), **settings)
-        self.store: Store = store or SqlStore(data)
-        self.metrics = Metrics(CollectorRegistry())
+        self.metrics = metrics or Metrics(CollectorRegistry())
+        self.store: Store = store or SqlStore(data, on_end=self.metrics.job_ended)
         self._loop = asyncio.new_event_loop()
         self._thread = threading.Thread(target=self._loop.run_forever, daemon=True)
 

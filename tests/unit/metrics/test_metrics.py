@@ -57,7 +57,13 @@ def job(question: QuestionName = QuestionName.INDEPENDENT_SET, waited: float | N
 
 def answer(verdict: Verdict = Verdict.PROVEN, seconds: float = 0.5) -> Answer:
     phases = ((Phase.TREE, 0.1), (Phase.SWEEP, seconds - 0.1))
-    return Answer(verdict, "because", fill=4, states=50, phase_seconds=phases, seconds=seconds)
+    return Answer(verdict, "because", fill=4, states=50, phase_seconds=phases, seconds=seconds, solver_version="1.0")
+
+
+def end(metrics: Metrics, ended: Job, came_to: Answer) -> None:
+    """Tell what a job's end tells: the store that it is DONE, the dispatcher what it came to."""
+    metrics.job_ended(ended.question.name, came_to.verdict)
+    metrics.job_finished(ended, came_to)
 
 
 class Scrape:
@@ -99,7 +105,7 @@ def scrape(exposition: Exposition) -> Scrape:
 
 def test_everything_that_was_told_is_shown(metrics: Metrics, exposition: Exposition) -> None:
     metrics.job_submitted(QuestionName.INDEPENDENT_SET, 4)
-    metrics.job_finished(job(), answer())
+    end(metrics, job(), answer())
     metrics.leases_lost(2)
     metrics.worker_lost(LossCause.MEMORY)
     metrics.database_write(0.004)
@@ -138,7 +144,7 @@ def test_gauges_are_read_when_somebody_looks(exposition: Exposition) -> None:
 def test_names_follow_the_conventions(metrics: Metrics, exposition: Exposition) -> None:
     """One prefix; counters end in _total; times are in seconds; only closed sets are labels."""
     metrics.job_submitted(QuestionName.VERTEX_COVER)
-    metrics.job_finished(job(), answer())
+    end(metrics, job(), answer())
     metrics.call_ended("m", "OK", 0.1)
     metrics.worker_lost(LossCause.DIED)
     families = scrape(exposition).families.values()
@@ -167,8 +173,8 @@ def test_a_store_that_cannot_tell_takes_only_its_own_figures_away() -> None:
 
 def test_the_load_says_what_the_page_shows(metrics: Metrics, exposition: Exposition) -> None:
     for seconds in (0.2, 0.3, 0.4):
-        metrics.job_finished(job(), answer(seconds=seconds))
-    metrics.job_finished(job(QuestionName.VERTEX_COVER), answer(Verdict.BOUNDED, 9.0))
+        end(metrics, job(), answer(seconds=seconds))
+    end(metrics, job(QuestionName.VERTEX_COVER), answer(Verdict.BOUNDED, 9.0))
     metrics.job_submitted(QuestionName.INDEPENDENT_SET, 6)
     metrics.watch_opened()
     load, found = metrics.load(), scrape(exposition)
@@ -191,11 +197,14 @@ def test_the_load_says_what_the_page_shows(metrics: Metrics, exposition: Exposit
     assert (second.verdict, second.seconds_p50) == (Verdict.BOUNDED, 9.0)
 
 
-def test_a_job_without_an_attempt_has_no_run_time(metrics: Metrics, exposition: Exposition) -> None:
-    metrics.job_finished(job(waited=None), Answer(Verdict.CANCELLED, "withdrawn"))
+def test_a_job_that_the_solver_never_answered_has_no_run_time(metrics: Metrics, exposition: Exposition) -> None:
+    metrics.job_ended(QuestionName.INDEPENDENT_SET, Verdict.CANCELLED)
+    metrics.job_finished(job(), Answer(Verdict.BROKEN, "three workers were lost"))
     found = scrape(exposition)
     assert found("nearchord_jobs_finished_total", question="independent-set", verdict="CANCELLED") == 1
     assert ("nearchord_job_run_seconds_count", frozenset({("question", "independent-set")})) not in found.samples
+    (line,) = metrics.load().questions
+    assert (line.verdict, line.finished, line.seconds_p99) == (Verdict.CANCELLED, 1, 0.0)
 
 
 def test_the_rate_forgets_after_ten_seconds() -> None:
