@@ -1,4 +1,4 @@
-"""Settings of one server: command line first, environment (`NEARCHORD_...`) second, defaults last.
+"""The options of a server: command line first, environment (`NEARCHORD_...`) second, defaults last.
 
 Every option `--some-name` can also be given as the variable `NEARCHORD_SOME_NAME`. A wrong value ends the process with
 exit code 2 and a message that names the option.
@@ -7,173 +7,26 @@ exit code 2 and a message that names the option.
 from __future__ import annotations
 
 import argparse
-import ipaddress
-import math
 import os
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, fields
 from pathlib import Path
 from typing import Any, NoReturn
 
-from nearchord_service.model.question import Budget
-from nearchord_service.store.port import Limits, Retention
+from nearchord_service.settings.reading import (
+    address,
+    address_or_none,
+    count,
+    level,
+    optional,
+    positive,
+    size,
+    span,
+    switch,
+)
+from nearchord_service.settings.values import Settings
 
 ENVIRONMENT_PREFIX = "NEARCHORD_"
-_SIZES = {"": 1, "KiB": 2**10, "MiB": 2**20, "GiB": 2**30, "TiB": 2**40}
-_SPANS = {"": 1, "s": 1, "m": 60, "h": 3_600, "d": 86_400}
-_LEVELS = ("DEBUG", "INFO", "WARNING", "ERROR")
-
-
-@dataclass(frozen=True)
-class Address:
-    """A TCP address to listen on; port 0 takes a free one."""
-
-    host: str
-    port: int
-
-    @property
-    def loopback(self) -> bool:
-        """Only this machine can reach it."""
-        if self.host == "localhost":
-            return True
-        try:
-            return ipaddress.ip_address(self.host).is_loopback
-        except ValueError:
-            return False
-
-    def __str__(self) -> str:
-        return f"[{self.host}]:{self.port}" if ":" in self.host else f"{self.host}:{self.port}"
-
-
-@dataclass(frozen=True)
-class Settings:
-    """What a server was told. Sizes in bytes, times in seconds; None in a `largest_...` or a retention is no limit."""
-
-    data: Path
-    listen: Address = Address("127.0.0.1", 7411)
-    metrics: Address | None = Address("127.0.0.1", 7412)
-    workers: int = 1
-    allow_plaintext: bool = False
-    exit_on_stdin_close: bool = False
-    reflection: bool = True
-    grace: float = 10.0
-    log_level: str = "INFO"
-    default_fill: int | None = None
-    default_states: int = 10**7
-    default_seconds: float = 60.0
-    default_memory: int = 2**30
-    largest_fill: int | None = None
-    largest_states: int | None = 10**9
-    largest_seconds: float | None = 3_600.0
-    largest_memory: int | None = None
-    inline_bytes: int = 2**20
-    content_bytes: int = 2**31
-    stored_bytes: int = 2**36
-    batch_jobs: int = 100_000
-    batch_bytes: int = 2**28
-    unfinished_jobs: int = 200_000
-    pins: int = 250_000
-    answer_age: float | None = 30 * 86_400.0
-    answer_bytes: int | None = 2**36
-    event_age: float | None = 30 * 86_400.0
-    content_age: float | None = 90 * 86_400.0
-    retained_content_bytes: int | None = None
-    upload_age: float = 86_400.0
-
-    @property
-    def default_budget(self) -> Budget:
-        """The budget of a job that names none."""
-        return Budget(self.default_fill, self.default_states, self.default_seconds, self.default_memory)
-
-    @property
-    def limits(self) -> Limits:
-        """Quotas of one owner."""
-        return Limits(self.unfinished_jobs, self.stored_bytes)
-
-    @property
-    def retention(self) -> Retention:
-        """How long ended things are kept."""
-        return Retention(
-            answer_age=self.answer_age,
-            answer_bytes=self.answer_bytes,
-            event_age=self.event_age,
-            content_age=self.content_age,
-            content_bytes=self.retained_content_bytes,
-            upload_age=self.upload_age,
-        )
-
-
-def address(text: str) -> Address:
-    """Read HOST:PORT, with brackets around an IPv6 host."""
-    host, colon, port = text.rpartition(":")
-    host = host.removeprefix("[").removesuffix("]")
-    if not colon or not host or not port.isascii() or not port.isdigit() or int(port) > 65_535:
-        raise argparse.ArgumentTypeError(f"{text!r} is not HOST:PORT with a port from 0 to 65535")
-    return Address(host, int(port))
-
-
-def address_or_none(text: str) -> Address | None:
-    """Read HOST:PORT, or `none`."""
-    return None if text == "none" else address(text)
-
-
-def _scaled(text: str, units: Mapping[str, int], what: str) -> float:
-    number = text.rstrip("".join(units))
-    try:
-        value = float(number) * units[text[len(number) :]]
-    except (ValueError, KeyError):
-        raise argparse.ArgumentTypeError(f"{text!r} is not {what}") from None
-    if not math.isfinite(value) or value < 0:
-        raise argparse.ArgumentTypeError(f"{text!r} is not {what}")
-    return value
-
-
-def size(text: str) -> int:
-    """Read bytes: 1048576 or 1MiB."""
-    return int(_scaled(text, _SIZES, "a number of bytes such as 1048576, 64MiB or 2GiB"))
-
-
-def span(text: str) -> float:
-    """Read seconds: 90, 90s, 15m, 12h or 30d."""
-    return _scaled(text, _SPANS, "a number of seconds such as 90, 15m, 12h or 30d")
-
-
-def count(text: str) -> int:
-    """Read a whole number that is at least 0."""
-    if not text.isascii() or not text.isdigit():
-        raise argparse.ArgumentTypeError(f"{text!r} is not a whole number that is at least 0")
-    return int(text)
-
-
-def positive(read: Callable[[str], Any]) -> Callable[[str], Any]:
-    """Refuse 0."""
-
-    def checked(text: str) -> Any:
-        value = read(text)
-        if value <= 0:
-            raise argparse.ArgumentTypeError(f"{text!r} is not above 0")
-        return value
-
-    return checked
-
-
-def optional(read: Callable[[str], Any]) -> Callable[[str], Any]:
-    """Accept `none` too."""
-    return lambda text: None if text == "none" else read(text)
-
-
-def switch(text: str) -> bool:
-    """Read yes or no."""
-    if text not in ("yes", "no"):
-        raise argparse.ArgumentTypeError(f"{text!r} is neither yes nor no")
-    return text == "yes"
-
-
-def level(text: str) -> str:
-    """Read a log level."""
-    if text.upper() not in _LEVELS:
-        raise argparse.ArgumentTypeError(f"{text!r} is none of {', '.join(_LEVELS)}")
-    return text.upper()
 
 
 @dataclass(frozen=True)
