@@ -137,7 +137,7 @@ class Intake:
 
     def _uses(self, index: int, spec: JobSpec, known: dict[str, _Held]) -> _Held:
         """Check the content of one spec; returns its graph."""
-        path = f"spec[{index}].input" if self._submission.batch else "spec.input"
+        path = f"specs[{index}].input" if self._submission.batch else "spec.input"
         graph = _Held("", 0, 0)
         for name, address, kind in _needs(spec):
             held = self._held(address, known)
