@@ -42,6 +42,9 @@ def print_table(
     widths = [max(map(len, column)) for column in zip(headings, *rows, strict=True)]
     room = shutil.get_terminal_size().columns if sys.stdout.isatty() else None
     gap = 2 if room is None or sum(widths) + 2 * len(widths) <= room else 1
+    if room is not None:
+        cut = list(headings).index(flexible)
+        widths[cut] = max(8, min(widths[cut], room - gap * (len(widths) - 1) - sum(widths) + widths[cut]))
     table = Table(box=None, pad_edge=False, padding=(0, gap, 0, 0), header_style="bold")
     for heading, width in zip(headings, widths, strict=True):
         table.add_column(
@@ -49,7 +52,7 @@ def print_table(
             justify="right" if heading in numbers else "left",
             no_wrap=True,
             overflow="ellipsis",
-            min_width=None if heading == flexible else width,
+            width=width,
         )
     for row in rows:
         table.add_row(*(Text(cell) for cell in row))
