@@ -86,7 +86,7 @@ def _highs(weights: NDArray[np.int64], groups: Groups, threads: int, seconds: fl
 
 
 def _highs_model(weights: NDArray[np.int64], groups: Groups) -> highspy.Highs:
-    highs = highspy.Highs()
+    highs = highspy.Highs()  # type: ignore[no-untyped-call]
     highs.setOptionValue("output_flag", False)
     lp = highspy.HighsLp()
     lp.num_col_, lp.num_row_ = weights.size, groups.count
