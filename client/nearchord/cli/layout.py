@@ -7,7 +7,7 @@ import shutil
 import sys
 import textwrap
 from collections.abc import Sequence
-from typing import Any
+from typing import Any, TextIO
 
 from rich.console import Console
 from rich.table import Table
@@ -21,8 +21,14 @@ LISTING_LINES = 4
 
 def print_json(value: dict[str, Any]) -> None:
     """Print one object on one line, at once."""
-    sys.stdout.write(json.dumps(value, ensure_ascii=False) + "\n")
-    sys.stdout.flush()
+    write_json(value, sys.stdout)
+
+
+def write_json(value: dict[str, Any], file: TextIO) -> None:
+    """Write one object on one line, at once; letters are escaped where the file's encoding may not have them."""
+    escaped = not (file.encoding or "").lower().startswith("utf")
+    file.write(json.dumps(value, ensure_ascii=escaped) + "\n")
+    file.flush()
 
 
 def print_text(text: str) -> None:
