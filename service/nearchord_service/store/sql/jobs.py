@@ -7,7 +7,14 @@ import datetime as dt
 from sqlalchemy import bindparam, func, select, update
 
 from nearchord_service.model.answer import Answer
-from nearchord_service.model.errors import BatchNotDone, FieldInvalid, FieldViolation, JobNotDone, JobUnknown
+from nearchord_service.model.errors import (
+    BatchNotDone,
+    FieldInvalid,
+    FieldViolation,
+    JobNotDone,
+    JobUnknown,
+    StoreUnavailable,
+)
 from nearchord_service.model.job import Batch, Job, Submission
 from nearchord_service.model.stage import Stage, Verdict
 from nearchord_service.store.port import Accepted, Limits
@@ -51,6 +58,8 @@ class Jobs(Listing):
         intake = Intake(submission, limits, self._disk)
         try:
             return self._write(lambda transaction: _accepted(transaction, intake(transaction)))
+        except StoreUnavailable:
+            raise  # a failed commit may yet come back with the log: only the next start knows whether files are needed
         except BaseException:
             intake.abandon()
             raise

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Iterable, Iterator
+from contextlib import suppress
 from dataclasses import dataclass
 from functools import partial
 from typing import Any
@@ -85,25 +86,25 @@ class Intake:
         try:
             for new in self._inline.values():
                 if len(new.data) >= SMALL_BYTES:
-                    self._files[new.address] = self._write_file(new)
+                    name = self._files[new.address] = new_file_name(new.address)
+                    self._write_file(name, new.data)
         except OSError as fault:
             self.abandon()
             raise disk_trouble(disk.content, fault) from fault
 
-    def _write_file(self, new: NewContent) -> str:
-        name = new_file_name(new.address)
+    def _write_file(self, name: str, data: bytes) -> None:
         descriptor = self._disk.open(name, keep=0)
         try:
-            self._disk.write(descriptor, new.data)
+            self._disk.write(descriptor, data)
             self._disk.sync(descriptor)
         finally:
             os.close(descriptor)
-        return name
 
     def abandon(self) -> None:
-        """Remove files of a submission that was not accepted."""
+        """Remove files of a submission that was not accepted; what cannot be removed goes at the next start."""
         for name in self._files.values():
-            self._disk.remove(name)
+            with suppress(OSError):
+                self._disk.remove(name)
 
     def __call__(self, transaction: Transaction) -> Landed:
         """Accept the submission, or find that it was accepted before."""
