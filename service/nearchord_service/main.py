@@ -14,7 +14,7 @@ import signal
 import sys
 import threading
 from collections.abc import Callable, Sequence
-from contextlib import AsyncExitStack
+from contextlib import AsyncExitStack, suppress
 from importlib import metadata
 from importlib.util import find_spec
 from pathlib import Path
@@ -35,6 +35,7 @@ HOLDER = "server"
 """Who holds the leases. A data folder belongs to one server, so whatever is leased at a start is its own."""
 
 EXIT_FAILED = 1
+_STDIN = 0
 
 
 class Server:
@@ -67,7 +68,7 @@ class Server:
             grace = self._settings.grace
             parts.push_async_callback(asyncio.to_thread, self._dispatcher.stop, grace)
             await asyncio.to_thread(self._dispatcher.start)
-            parts.callback(self._upkeep.stop)
+            parts.push_async_callback(asyncio.to_thread, self._upkeep.stop)
             self._upkeep.start()
             api = ApiServer(self._settings, self._store, self._metrics, self._versions)
             parts.push_async_callback(api.stop, grace)
@@ -141,8 +142,9 @@ def _watch_stdin(ended: asyncio.Event) -> None:
     loop = asyncio.get_running_loop()
 
     def wait_for_end() -> None:
-        while os.read(sys.stdin.fileno(), 4_096):
-            pass
+        with suppress(OSError):
+            while os.read(_STDIN, 4_096):
+                pass
         if not loop.is_closed():
             loop.call_soon_threadsafe(ended.set)
 

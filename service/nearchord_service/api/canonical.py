@@ -100,8 +100,8 @@ def _check_rows(pointers: Array, first: int, targets: Array, n: int, field: str)
 def _first_descent(pointers: Array, targets: Array) -> list[int]:
     """Return the first row (from the first pointer on) in which a target does not exceed the one before, if any."""
     begin, end = int(pointers[0]), int(pointers[-1])
-    for start in range(begin, end, 4 * _PIECE):
-        stop = min(end, start + 4 * _PIECE)
+    for start in range(begin, end, _PIECE):
+        stop = min(end, start + _PIECE)
         lead = max(begin, start - 1)
         piece = targets[lead:stop]
         rises = piece[1:] > piece[:-1]

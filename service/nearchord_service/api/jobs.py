@@ -21,6 +21,7 @@ from nearchord_service.api.limits import Caps, check_label, check_request_id, re
 from nearchord_service.api.watch import Hub, Look, follow, look_at_batch, look_at_job
 from nearchord_service.api.windows import Windows
 from nearchord_service.metrics import Metrics
+from nearchord_service.model.errors import ContentUnknown
 from nearchord_service.model.job import Submission
 from nearchord_service.store.port import Accepted, Query, Store
 
@@ -39,7 +40,13 @@ class JobServicer(job_service_pb2_grpc.JobServiceServicer):
         self._hub = hub
 
     def _reader(self, caller: str) -> SpecReader:
-        return SpecReader(self._caps, lambda address: self._store.content(caller, address).vertices)
+        def vertices_of(address: str) -> int | None:
+            try:
+                return self._store.content(caller, address).vertices
+            except ContentUnknown:
+                return None
+
+        return SpecReader(self._caps, vertices_of)
 
     async def SubmitJob(self, request: pb.SubmitJobRequest, context: Context) -> pb.SubmitJobResponse:
         """Accept one job."""

@@ -69,13 +69,19 @@ def heads(served: Serving, batch_id: str, **options: Any) -> Any:
     return (response.part.head for response in responses if response.part.HasField("head"))
 
 
+def jobs_of(served: Serving, batch_id: str) -> Any:
+    return served.jobs.ListJobs(pb.ListJobsRequest(batch_id=batch_id, page_size=1_000)).jobs
+
+
 def test_answers_of_a_batch_come_by_position(served: Serving) -> None:
-    """Without waiting, jobs that have not ended are left out; the stream can begin after any position."""
+    """Without waiting, jobs that have not ended are left out, as deleted ones are; any position can be the first."""
     batch = served.submit_batch(a_spec() for _ in range(40)).batch
     for lease in reversed(served.claim(40)):
         if lease.job.batch_index != 7:
             served.finish(lease, an_answer([lease.job.batch_index % 3]))
-    indices = [i for i in range(40) if i != 7]
+    (gone,) = [job.id for job in jobs_of(served, batch.id) if job.batch_index == 20]
+    served.jobs.DeleteJob(pb.DeleteJobRequest(job_id=gone))
+    indices = [i for i in range(40) if i not in (7, 20)]
     assert [head.batch_index for head in heads(served, batch.id)] == indices
     assert [head.batch_index for head in heads(served, batch.id, after_index=0)] == indices[1:]
     assert [head.batch_index for head in heads(served, batch.id, after_index=38)] == [39]

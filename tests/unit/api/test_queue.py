@@ -49,15 +49,15 @@ def test_a_page_fits_a_message_whatever_its_jobs_pin(serve: Callable[..., Servin
     address = served.upload(struct.pack("<IQ", n, 0) + bytes(8 * (n + 1))).address
     spec = a_spec(input=content_pb2.GraphInput(graph_address=address))
     spec.question.independent_set.must.extend(range(n))
-    served.submit_batch([spec] * 12)
+    served.submit_batch([spec] * 20)
     found, token = 0, ""
     while True:
-        page = served.jobs.ListJobs(pb.ListJobsRequest(page_size=12, page_token=token))
+        page = served.jobs.ListJobs(pb.ListJobsRequest(page_size=20, page_token=token))
         found, token = found + len(page.jobs), page.next_page_token
         assert page.ByteSize() < 4 * 2**20
         if not token:
             break
-    assert found == 12
+    assert found == 20
 
 
 def test_a_waiting_job_is_cancelled_at_once(served: Serving) -> None:

@@ -7,7 +7,7 @@ import struct
 from collections.abc import Callable
 
 import pytest
-from nearchord.v1 import content_pb2, job_pb2
+from nearchord.v1 import content_pb2, graph_service_pb2, job_pb2
 from nearchord.v1 import job_service_pb2 as pb
 from unit.api.serving import PATH, Serving, a_spec, failure
 
@@ -51,6 +51,21 @@ def test_a_repeated_request_is_the_same_job(served: Serving) -> None:
     assert again.repeated_request
     assert again.job.id == first.job.id
     assert served.metrics.load().submitted == 1
+
+
+def test_a_repeated_request_outlives_its_graph(served: Serving) -> None:
+    """The job of the first call is found although its pinned graph is gone."""
+    spec = a_spec()
+    spec.question.independent_set.must.append(2)
+    job = served.submit(spec)
+    (lease,) = served.claim()
+    served.finish(lease)
+    served.graphs.DeleteContent(graph_service_pb2.DeleteContentRequest(address=job.graph_address))
+    assert served.submit(spec).id == job.id
+    by_address = a_spec(input=content_pb2.GraphInput(graph_address=job.graph_address), question=spec.question)
+    assert served.submit(by_address).id == job.id
+    found = failure(lambda: served.submit(by_address, request_id="another"))
+    assert found.summary == ("NOT_FOUND", "CONTENT_UNKNOWN")
 
 
 def test_a_request_id_stands_for_one_request(served: Serving) -> None:

@@ -107,6 +107,26 @@ def test_a_watcher_finds_news_without_hints() -> None:
     assert run(scene, poll_seconds=0.01) == [1]
 
 
+def test_a_hint_without_news_costs_one_look() -> None:
+    """A watcher that was woken in vain sleeps again."""
+    rows = Rows()
+
+    async def scene(hub: Hub, calls: Calls) -> int:
+        async with aclosing(follow(hub, calls, "job", rows, 0)) as events:
+            following = asyncio.ensure_future(anext(events))
+            await rows.looked()
+            for _ in range(10):
+                await calls.quick(lambda: None)
+            await asyncio.to_thread(hub.heard, Change(job_ids=frozenset({"job"})))
+            for _ in range(20):
+                await calls.quick(lambda: None)
+            following.cancel()
+            await asyncio.wait((following,))
+        return rows.looks
+
+    assert run(scene) == 2
+
+
 def test_hints_about_others_wake_nobody() -> None:
     rows = Rows()
 

@@ -34,15 +34,16 @@ class _Named:
 class SpecReader:
     """Reads the specs of one request, one after the other.
 
-    `vertices_of` returns the number of vertices of a stored graph of the caller (blocking; raises ContentUnknown); it
-    is asked only about pinned graphs. Equal inline content is checked and kept once. Blocking, one thread at a time.
+    `vertices_of` returns the number of vertices of a stored graph of the caller, None for an unknown one (blocking); it
+    is asked only about pinned graphs. An unknown graph passes: the store refuses it, unless the request is a repetition
+    whose graph has been deleted since. Equal inline content is checked and kept once. Blocking, one thread at a time.
     """
 
-    def __init__(self, caps: Caps, vertices_of: Callable[[str], int]) -> None:
+    def __init__(self, caps: Caps, vertices_of: Callable[[str], int | None]) -> None:
         self._caps = caps
         self._vertices_of = vertices_of
         self._known: dict[tuple[ContentKind, str], NewContent] = {}
-        self._stored_vertices: dict[str, int] = {}
+        self._stored_vertices: dict[str, int | None] = {}
         self._digest = hashlib.sha256()
         self._specs: list[JobSpec] = []
         self._carried = 0
@@ -55,7 +56,7 @@ class SpecReader:
     def add(self, message: job_pb2.JobSpec, place: str) -> None:
         """Read one more spec, which the request holds at `place`; the message's inline content becomes addresses.
 
-        Raises FieldInvalid, ContentInvalid, ContentUnknown, QuotaExceeded.
+        Raises FieldInvalid, ContentInvalid, QuotaExceeded.
         """
         check_inline(_inline_bytes(message), self._caps, f"{place}.input")
         spec = self._spec(message, place)
@@ -145,15 +146,17 @@ class SpecReader:
     def _check_pins(self, message: job_pb2.JobSpec, question: Question, graph: _Named, place: str) -> None:
         if not question.must and not question.never:
             return
-        if graph.content is not None:
-            vertices = graph.content.vertices
-        else:
-            if graph.address not in self._stored_vertices:
-                self._stored_vertices[graph.address] = self._vertices_of(graph.address)
-            vertices = self._stored_vertices[graph.address]
+        vertices = graph.content.vertices if graph.content else self._vertices_stored(graph.address)
+        if vertices is None:
+            return
         wrong = Violations()
         check_pins(message.question, question, vertices, f"{place}.question", wrong)
         wrong.settle()
+
+    def _vertices_stored(self, address: str) -> int | None:
+        if address not in self._stored_vertices:
+            self._stored_vertices[address] = self._vertices_of(address)
+        return self._stored_vertices[address]
 
 
 def _inline_bytes(message: job_pb2.JobSpec) -> int:
