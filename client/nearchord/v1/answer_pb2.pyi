@@ -17,6 +17,8 @@ class ProofKind(int, metaclass=_enum_type_wrapper.EnumTypeWrapper):
     PROOF_KIND_UNSPECIFIED: _ClassVar[ProofKind]
     PROOF_KIND_CERTIFICATE: _ClassVar[ProofKind]
     PROOF_KIND_SEARCH: _ClassVar[ProofKind]
+    PROOF_KIND_PACKING: _ClassVar[ProofKind]
+    PROOF_KIND_BRANCH: _ClassVar[ProofKind]
 
 class ElementType(int, metaclass=_enum_type_wrapper.EnumTypeWrapper):
     __slots__ = ()
@@ -26,6 +28,8 @@ class ElementType(int, metaclass=_enum_type_wrapper.EnumTypeWrapper):
 PROOF_KIND_UNSPECIFIED: ProofKind
 PROOF_KIND_CERTIFICATE: ProofKind
 PROOF_KIND_SEARCH: ProofKind
+PROOF_KIND_PACKING: ProofKind
+PROOF_KIND_BRANCH: ProofKind
 ELEMENT_TYPE_UNSPECIFIED: ElementType
 ELEMENT_TYPE_UINT32: ElementType
 ELEMENT_TYPE_INT64: ElementType
@@ -84,8 +88,46 @@ class Provenance(_message.Message):
     finished_at: _timestamp_pb2.Timestamp
     def __init__(self, graph_address: _Optional[str] = ..., weights_address: _Optional[str] = ..., solver_version: _Optional[str] = ..., proof_format: _Optional[int] = ..., budget: _Optional[_Union[_question_pb2.Budget, _Mapping]] = ..., when_over: _Optional[_Union[_question_pb2.WhenOver, str]] = ..., attempt: _Optional[int] = ..., phases: _Optional[_Iterable[_Union[PhaseSeconds, _Mapping]]] = ..., seconds: _Optional[float] = ..., wait_seconds: _Optional[float] = ..., peak_memory_bytes: _Optional[int] = ..., finished_at: _Optional[_Union[datetime.datetime, _timestamp_pb2.Timestamp, _Mapping]] = ...) -> None: ...
 
+class Recognition(_message.Message):
+    __slots__ = ("chordal", "interval", "split", "splittance")
+    CHORDAL_FIELD_NUMBER: _ClassVar[int]
+    INTERVAL_FIELD_NUMBER: _ClassVar[int]
+    SPLIT_FIELD_NUMBER: _ClassVar[int]
+    SPLITTANCE_FIELD_NUMBER: _ClassVar[int]
+    chordal: bool
+    interval: bool
+    split: bool
+    splittance: int
+    def __init__(self, chordal: bool = ..., interval: bool = ..., split: bool = ..., splittance: _Optional[int] = ...) -> None: ...
+
+class Prediction(_message.Message):
+    __slots__ = ("question", "colours", "states", "at_least", "memory_bytes", "fits")
+    QUESTION_FIELD_NUMBER: _ClassVar[int]
+    COLOURS_FIELD_NUMBER: _ClassVar[int]
+    STATES_FIELD_NUMBER: _ClassVar[int]
+    AT_LEAST_FIELD_NUMBER: _ClassVar[int]
+    MEMORY_BYTES_FIELD_NUMBER: _ClassVar[int]
+    FITS_FIELD_NUMBER: _ClassVar[int]
+    question: str
+    colours: int
+    states: int
+    at_least: bool
+    memory_bytes: int
+    fits: bool
+    def __init__(self, question: _Optional[str] = ..., colours: _Optional[int] = ..., states: _Optional[int] = ..., at_least: bool = ..., memory_bytes: _Optional[int] = ..., fits: bool = ...) -> None: ...
+
+class StructureReport(_message.Message):
+    __slots__ = ("components", "largest_core", "predictions")
+    COMPONENTS_FIELD_NUMBER: _ClassVar[int]
+    LARGEST_CORE_FIELD_NUMBER: _ClassVar[int]
+    PREDICTIONS_FIELD_NUMBER: _ClassVar[int]
+    components: int
+    largest_core: int
+    predictions: _containers.RepeatedCompositeFieldContainer[Prediction]
+    def __init__(self, components: _Optional[int] = ..., largest_core: _Optional[int] = ..., predictions: _Optional[_Iterable[_Union[Prediction, _Mapping]]] = ...) -> None: ...
+
 class AnswerHead(_message.Message):
-    __slots__ = ("job_id", "batch_index", "label", "question", "verdict", "value", "bound", "reason", "fill", "fill_lower_bound", "states", "bags", "largest_bag", "parts", "fill_cores", "proof", "proof_kinds", "provenance", "columns", "names_address", "vertices")
+    __slots__ = ("job_id", "batch_index", "label", "question", "verdict", "value", "bound", "reason", "fill", "fill_lower_bound", "states", "bags", "largest_bag", "parts", "fill_cores", "proof", "proof_kinds", "provenance", "columns", "names_address", "vertices", "recognition", "structure")
     JOB_ID_FIELD_NUMBER: _ClassVar[int]
     BATCH_INDEX_FIELD_NUMBER: _ClassVar[int]
     LABEL_FIELD_NUMBER: _ClassVar[int]
@@ -107,6 +149,8 @@ class AnswerHead(_message.Message):
     COLUMNS_FIELD_NUMBER: _ClassVar[int]
     NAMES_ADDRESS_FIELD_NUMBER: _ClassVar[int]
     VERTICES_FIELD_NUMBER: _ClassVar[int]
+    RECOGNITION_FIELD_NUMBER: _ClassVar[int]
+    STRUCTURE_FIELD_NUMBER: _ClassVar[int]
     job_id: str
     batch_index: int
     label: str
@@ -128,7 +172,9 @@ class AnswerHead(_message.Message):
     columns: _containers.RepeatedCompositeFieldContainer[ColumnInfo]
     names_address: str
     vertices: int
-    def __init__(self, job_id: _Optional[str] = ..., batch_index: _Optional[int] = ..., label: _Optional[str] = ..., question: _Optional[_Union[_question_pb2.Question, _Mapping]] = ..., verdict: _Optional[_Union[_job_pb2.Verdict, str]] = ..., value: _Optional[_Union[Rational, _Mapping]] = ..., bound: _Optional[_Union[Rational, _Mapping]] = ..., reason: _Optional[str] = ..., fill: _Optional[int] = ..., fill_lower_bound: _Optional[int] = ..., states: _Optional[int] = ..., bags: _Optional[int] = ..., largest_bag: _Optional[int] = ..., parts: _Optional[int] = ..., fill_cores: _Optional[int] = ..., proof: _Optional[_Union[ProofKind, str]] = ..., proof_kinds: _Optional[_Iterable[_Union[ProofKind, str]]] = ..., provenance: _Optional[_Union[Provenance, _Mapping]] = ..., columns: _Optional[_Iterable[_Union[ColumnInfo, _Mapping]]] = ..., names_address: _Optional[str] = ..., vertices: _Optional[int] = ...) -> None: ...
+    recognition: Recognition
+    structure: StructureReport
+    def __init__(self, job_id: _Optional[str] = ..., batch_index: _Optional[int] = ..., label: _Optional[str] = ..., question: _Optional[_Union[_question_pb2.Question, _Mapping]] = ..., verdict: _Optional[_Union[_job_pb2.Verdict, str]] = ..., value: _Optional[_Union[Rational, _Mapping]] = ..., bound: _Optional[_Union[Rational, _Mapping]] = ..., reason: _Optional[str] = ..., fill: _Optional[int] = ..., fill_lower_bound: _Optional[int] = ..., states: _Optional[int] = ..., bags: _Optional[int] = ..., largest_bag: _Optional[int] = ..., parts: _Optional[int] = ..., fill_cores: _Optional[int] = ..., proof: _Optional[_Union[ProofKind, str]] = ..., proof_kinds: _Optional[_Iterable[_Union[ProofKind, str]]] = ..., provenance: _Optional[_Union[Provenance, _Mapping]] = ..., columns: _Optional[_Iterable[_Union[ColumnInfo, _Mapping]]] = ..., names_address: _Optional[str] = ..., vertices: _Optional[int] = ..., recognition: _Optional[_Union[Recognition, _Mapping]] = ..., structure: _Optional[_Union[StructureReport, _Mapping]] = ...) -> None: ...
 
 class ColumnChunk(_message.Message):
     __slots__ = ("name", "offset", "data")

@@ -32,13 +32,25 @@ class VertexCover(_message.Message):
     never: _containers.RepeatedScalarFieldContainer[int]
     def __init__(self, must: _Optional[_Iterable[int]] = ..., never: _Optional[_Iterable[int]] = ...) -> None: ...
 
+class Fill(_message.Message):
+    __slots__ = ()
+    def __init__(self) -> None: ...
+
+class Structure(_message.Message):
+    __slots__ = ()
+    def __init__(self) -> None: ...
+
 class Question(_message.Message):
-    __slots__ = ("independent_set", "vertex_cover")
+    __slots__ = ("independent_set", "vertex_cover", "fill", "structure")
     INDEPENDENT_SET_FIELD_NUMBER: _ClassVar[int]
     VERTEX_COVER_FIELD_NUMBER: _ClassVar[int]
+    FILL_FIELD_NUMBER: _ClassVar[int]
+    STRUCTURE_FIELD_NUMBER: _ClassVar[int]
     independent_set: IndependentSet
     vertex_cover: VertexCover
-    def __init__(self, independent_set: _Optional[_Union[IndependentSet, _Mapping]] = ..., vertex_cover: _Optional[_Union[VertexCover, _Mapping]] = ...) -> None: ...
+    fill: Fill
+    structure: Structure
+    def __init__(self, independent_set: _Optional[_Union[IndependentSet, _Mapping]] = ..., vertex_cover: _Optional[_Union[VertexCover, _Mapping]] = ..., fill: _Optional[_Union[Fill, _Mapping]] = ..., structure: _Optional[_Union[Structure, _Mapping]] = ...) -> None: ...
 
 class Budget(_message.Message):
     __slots__ = ("fill", "states", "seconds", "memory_bytes")

@@ -14,6 +14,8 @@ class ProofKind(StrEnum):
 
     CERTIFICATE = "certificate"
     SEARCH = "search"
+    PACKING = "packing"
+    BRANCH = "branch"
     NONE = "none"
 
 
@@ -36,6 +38,37 @@ class Column:
     name: str
     type: ElementType
     data: bytes
+
+
+@dataclass(frozen=True)
+class Recognition:
+    """Classes of a graph; None where it was not settled."""
+
+    chordal: bool | None = None
+    interval: bool | None = None
+    split: bool | None = None
+    splittance: int | None = None
+
+
+@dataclass(frozen=True)
+class Prediction:
+    """What an exact answer would take; `colours` is 0 where the question takes none."""
+
+    question: str
+    colours: int
+    states: int
+    at_least: bool
+    memory_bytes: int
+    fits: bool
+
+
+@dataclass(frozen=True)
+class StructureReport:
+    """How a graph falls apart."""
+
+    components: int
+    largest_core: int
+    predictions: tuple[Prediction, ...]
 
 
 @dataclass(frozen=True)
@@ -65,3 +98,5 @@ class Answer:
     seconds: float = 0.0
     peak_memory_bytes: int = 0
     columns: tuple[Column, ...] = field(default=())
+    recognition: Recognition | None = None
+    structure: StructureReport | None = None

@@ -11,6 +11,8 @@ class QuestionName(StrEnum):
 
     INDEPENDENT_SET = "independent-set"
     VERTEX_COVER = "vertex-cover"
+    FILL = "fill"
+    STRUCTURE = "structure"
 
 
 class WhenOver(StrEnum):
