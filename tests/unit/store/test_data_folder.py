@@ -5,12 +5,14 @@ from __future__ import annotations
 import logging
 import os
 import sqlite3
+import threading
 from pathlib import Path
 
 import pytest
 from contract.stores import ANN, LIMITS, Clock, begin, graph, put, spec, submit
 from nearchord_service.model.errors import StoreUnavailable
 from nearchord_service.store.sql import SqlStore
+from nearchord_service.store.sql.statement import Connection
 
 
 @pytest.fixture
@@ -103,6 +105,34 @@ def test_writer_syncs_every_commit_and_readers_cannot_write(store: SqlStore) -> 
         assert pragmas(connection)[1:] == ["wal", 1]
         with pytest.raises(sqlite3.OperationalError, match="readonly"):
             connection.cursor.execute("DELETE FROM jobs")
+
+
+def test_only_what_must_last_waits_for_the_disk(store: SqlStore) -> None:
+    """One lasting operation makes its whole group last."""
+
+    def level(transaction: Connection) -> int:
+        transaction.cursor.execute("PRAGMA synchronous")
+        return int(transaction.cursor.fetchone()[0])  # type: ignore[index]
+
+    assert [store._write(level, lasting=lasting) for lasting in (False, True, False, True)] == [1, 2, 1, 2]
+    entered, leave = threading.Event(), threading.Event()
+
+    def wait(_: Connection) -> None:
+        entered.set()
+        assert leave.wait(60)
+
+    store._enqueue(wait)
+    assert entered.wait(60)
+    group = [store._enqueue(level, lasting=lasting) for lasting in (False, True, False)]
+    leave.set()
+    assert [future.result(60) for future in group] == [2, 2, 2]
+
+
+def test_numbers_that_a_power_failure_may_take_back_are_not_given_again(store: SqlStore) -> None:
+    last = submit(store).sequence
+    store.stop()
+    store.start()
+    assert submit(store).sequence > last + 100_000
 
 
 def test_sqlite_version_is_logged(tmp_path: Path, caplog: pytest.LogCaptureFixture) -> None:

@@ -41,7 +41,7 @@ _MARK, _KEEP, _UNDO = "SAVEPOINT operation", "RELEASE operation", "ROLLBACK TO o
 class Database(Protocol):
     """What the writer needs of a database, see `engine`."""
 
-    def begin(self, connection: Connection, /) -> None: ...  # noqa: D102
+    def begin(self, connection: Connection, /, *, lasting: bool) -> None: ...  # noqa: D102
     def commit(self, connection: Connection, /) -> None: ...  # noqa: D102
     def rollback(self, connection: Connection, /) -> None: ...  # noqa: D102
     def in_transaction(self, connection: Connection, /) -> bool: ...  # noqa: D102
@@ -96,6 +96,7 @@ Operation = Callable[[Transaction], _T]
 class _Queued:
     operation: Operation[Any]
     future: Future[Any]
+    lasting: bool
 
 
 class Writer:
@@ -131,13 +132,16 @@ class Writer:
                 self._queue.put(None)
         self._thread.join()
 
-    def enqueue(self, operation: Operation[_T]) -> Future[_T]:
-        """Queue an operation; the future is resolved when it is durable or has failed."""
+    def enqueue(self, operation: Operation[_T], *, lasting: bool = True) -> Future[_T]:
+        """Queue an operation; the future is resolved when it is committed or has failed.
+
+        A lasting one then survives a power failure; any survives the end of the process.
+        """
         future: Future[_T] = Future()
         with self._gate:
             if not self._open:
                 raise StoreUnavailable("the store is closed; start the server again")
-            self._queue.put(_Queued(operation, future))
+            self._queue.put(_Queued(operation, future, lasting))
         return future
 
     def _run(self) -> None:
@@ -166,7 +170,7 @@ class Writer:
         began = time.perf_counter()
         news = News()
         try:
-            self._database.begin(self._connection)
+            self._database.begin(self._connection, lasting=any(queued.lasting for queued in group))
             outcomes = [self._attempt(queued.operation, news) for queued in group]
             self._database.commit(self._connection)
         except Exception as fault:
