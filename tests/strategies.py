@@ -42,9 +42,7 @@ def window_graphs(draw: st.DrawFn, most: int = 24) -> Edges:
     n = draw(st.integers(0, most))
     starts = [draw(st.integers(0, 40)) for _ in range(n)]
     ends = [start + draw(st.integers(0, 15)) for start in starts]
-    edges = {
-        (u, v) for v in range(n) for u in range(v) if starts[u] <= ends[v] and starts[v] <= ends[u]
-    }
+    edges = {(u, v) for v in range(n) for u in range(v) if starts[u] <= ends[v] and starts[v] <= ends[u]}
     return _renamed(draw, n, edges)
 
 

@@ -10,7 +10,7 @@ nearchord.check(graph, answer)
 
 from nearchord.answer import Answer, Provenance
 from nearchord.check import Confirmed, check
-from nearchord.embedded import embedded, embedded_async
+from nearchord.child import embedded, embedded_async
 from nearchord.errors import (
     AccessDenied,
     AlreadyExists,

@@ -16,6 +16,19 @@ from nearchord.errors import BadInput
 Ints = NDArray[np.int64]
 LARGEST_N = 2**32 - 1
 WEIGHT_LIMIT = 2**62
+PAIR_REMEDY = "give pairs of vertex numbers, such as [(0, 1), (1, 2)]"
+
+
+def pair_array(edges: Any) -> NDArray[Any]:
+    """`edges` as an array of shape (m, 2), or an empty one; BadInput when they are no pairs."""
+    try:
+        pairs = np.asarray(edges)
+    except ValueError:  # rows of different lengths
+        place = next(i for i, edge in enumerate(edges) if not hasattr(edge, "__len__") or len(edge) != 2)
+        raise BadInput(f"edge {place} ({edges[place]!r}) is no pair", PAIR_REMEDY) from None
+    if pairs.size and (pairs.ndim != 2 or pairs.shape[1] != 2):
+        raise BadInput(f"edges have the shape {pairs.shape}", PAIR_REMEDY)
+    return pairs
 
 
 def endpoint_column(column: Any, name: str) -> Ints:

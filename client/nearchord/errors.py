@@ -68,6 +68,7 @@ class FileProblem(BadInput):
         super().__init__(f"{place}: {problem}", remedy)
         self.file = file
         self.line = line
+        self.problem = problem
 
 
 class CallFailed(NearchordError):

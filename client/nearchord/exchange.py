@@ -16,9 +16,23 @@ if TYPE_CHECKING:
 def from_networkx(graph: NetworkxGraph, weight: str | None) -> Graph:
     """See `Graph.from_networkx`. Directions are ignored; repeated edges (both directions, or parallel) are BadInput."""
     number = {node: i for i, node in enumerate(graph.nodes)}
+    _check_simple(graph)
     ends = np.fromiter((number[end] for u, v in graph.edges() for end in (u, v)), np.int64)
     names = [str(node) for node in number]
     return Graph.from_arrays(len(names), ends[0::2], ends[1::2], _weights(graph, weight), names)
+
+
+def _check_simple(graph: NetworkxGraph) -> None:
+    """BadInput naming the nodes of a self-loop or of a repeated edge."""
+    seen: set[frozenset[Any]] = set()
+    may_repeat = graph.is_directed() or graph.is_multigraph()
+    for u, v in graph.edges():
+        if u == v:
+            raise BadInput(f"the edge ({u!r}, {v!r}) is a self-loop", "leave it out: no vertex excludes itself")
+        if may_repeat and frozenset((u, v)) in seen:
+            raise BadInput(f"the edge ({u!r}, {v!r}) is repeated", "convert it first: networkx.Graph(graph)")
+        if may_repeat:
+            seen.add(frozenset((u, v)))
 
 
 def _weights(graph: NetworkxGraph, weight: str | None) -> list[Any] | None:

@@ -52,11 +52,9 @@ class Graph:
 
         BadInput names the first pair that is a self-loop, a repetition or out of range.
         """
-        pairs = np.asarray(edges if isinstance(edges, np.ndarray) else list(edges))
+        pairs = canonical.pair_array(edges if isinstance(edges, np.ndarray) else list(edges))
         if pairs.size == 0:
             return cls.from_arrays(n, (), (), weights, names)
-        if pairs.ndim != 2 or pairs.shape[1] != 2:
-            raise BadInput(f"edges have shape {pairs.shape}", "give pairs of vertex numbers, such as [(0, 1), (1, 2)]")
         return cls.from_arrays(n, pairs[:, 0], pairs[:, 1], weights, names)
 
     @classmethod

@@ -105,8 +105,10 @@ def as_dimacs(conflicts: Conflicts) -> bytes:
 
 
 def as_csv(conflicts: Conflicts) -> bytes:
-    """CSV edge list with a header; it has no place for values, so every request counts 1."""
+    """CSV edge list with a header, an empty target where a request has no conflict; without values each counts 1."""
+    busy = {end for edge in conflicts.edges for end in edge}
     rows = [f"{conflicts.names[u]},{conflicts.names[v]}" for u, v in conflicts.edges]
+    rows += [f"{name}," for v, name in enumerate(conflicts.names) if v not in busy]
     return ("\n".join(["source,target", *rows]) + "\n").encode()
 
 

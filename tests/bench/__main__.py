@@ -27,6 +27,7 @@ def main() -> None:
         out=arguments.out / "quick" if arguments.quick else arguments.out,
         quick=arguments.quick,
         seconds=arguments.seconds,
+        general=not arguments.own,
         threads=tuple(arguments.threads or sorted({1, machine.cores()})),
         seed=arguments.seed,
     )
@@ -41,6 +42,7 @@ def _parser() -> argparse.ArgumentParser:
     parser.add_argument("scenario", nargs="*", help=f"all by default: {', '.join(SCENARIOS)}")
     parser.add_argument("--quick", action="store_true", help="small sizes, to see that everything runs")
     parser.add_argument("--profile", action="store_true", help="print seconds by phase of the solver too")
+    parser.add_argument("--own", action="store_true", help="leave the general-purpose solvers out")
     parser.add_argument("--seconds", type=float, help="limit of every single solver run")
     parser.add_argument("--threads", type=int, nargs="+", help="thread counts of the general solvers: 1 and all cores")
     parser.add_argument("--seed", type=int, default=1, help="seed of the generators (1)")

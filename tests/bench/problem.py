@@ -41,6 +41,16 @@ class Problem:
         ptr[1:] = np.cumsum(np.bincount(tails, minlength=self.n))
         return ptr, neighbours
 
+    def shuffled(self, seed: int) -> "Problem":
+        """The same graph with its vertices numbered at random."""
+        name = np.random.default_rng(seed).permutation(self.n)
+        one, other = name[self.low], name[self.high]
+        low, high = np.minimum(one, other), np.maximum(one, other)
+        order = np.lexsort((high, low))
+        weights = np.empty_like(self.weights)
+        weights[name] = self.weights
+        return Problem(self.n, low[order].astype(np.uint32), high[order].astype(np.uint32), weights)
+
     def save(self, folder: Path) -> Path:
         """Write the arrays into ``folder``; load() reads them."""
         for name in ("low", "high", "weights"):

@@ -1,7 +1,6 @@
 """What a scenario found: printed as tables, written as JSON."""
 
 import json
-import operator
 from collections.abc import Iterable
 from dataclasses import asdict, dataclass, field
 from pathlib import Path
@@ -28,8 +27,7 @@ class Target:
     @property
     def holds(self) -> bool:
         """Whether the measurement keeps the promise."""
-        compare = operator.le if self.sense == "<=" else operator.ge
-        return compare(self.measured, self.promised)
+        return self.measured <= self.promised if self.sense == "<=" else self.measured >= self.promised
 
 
 @dataclass

@@ -1,17 +1,14 @@
 #!/usr/bin/env bash
-# Runs the benchmark in its own environment (made on first use): bash tests/bench/run.sh [SCENARIO ...] [--quick] ...
-# NEARCHORD_BENCH_PYTHON names a Python that has the `bench` extra already; then nothing is installed.
+# Runs the benchmark: bash tests/bench/run.sh [SCENARIO ...] [--quick] [--profile] [--help]
+# Makes .venv-bench with the bench extra when needed (its solvers hold protobuf to other releases than the service
+# alone would get). NEARCHORD_BENCH_PYTHON names a Python that has the extra already; then nothing is installed.
 set -euo pipefail
-root="$(cd "$(dirname "$0")/../.." && pwd)"
-python="${NEARCHORD_BENCH_PYTHON:-}"
-if [ -z "$python" ]; then
-    environment="$root/.venv-bench"
-    if [ ! -e "$environment/ready" ] || [ "$root/pyproject.toml" -nt "$environment/ready" ]; then
-        python3 -m venv "$environment"
-        "$environment/bin/python" -m pip install --quiet --editable "$root[bench]"
-        touch "$environment/ready"
-    fi
-    python="$environment/bin/python"
+cd "$(dirname "${BASH_SOURCE[0]}")/../.."
+
+if [[ -z "${NEARCHORD_BENCH_PYTHON:-}" ]]; then
+  . deploy/install.sh
+  install_into .venv-bench bench
 fi
-export PYTHONPATH="$root/client:$root/service:$root/tests${PYTHONPATH:+:$PYTHONPATH}"
-exec "$python" -m bench "$@"
+
+export PYTHONPATH="$PWD/client:$PWD/service:$PWD/tests${PYTHONPATH:+:$PYTHONPATH}"
+exec "${NEARCHORD_BENCH_PYTHON:-.venv-bench/bin/python}" -m bench "$@"

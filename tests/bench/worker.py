@@ -9,16 +9,22 @@ from typing import Any
 import nearchord_solve as ns
 import numpy as np
 
+from bench.clock import Spent, Watch
 from bench.problem import Problem
 
 
 @dataclass(frozen=True)
 class Timing:
-    """One solve: ``seconds`` in all, from canonical arrays to the outcome, and by phase."""
+    """One solve: time spent in all, from canonical arrays to the outcome, and seconds by phase."""
 
-    seconds: float
+    spent: Spent
     phases: dict[str, float]
     outcome: Any
+
+    @property
+    def seconds(self) -> float:
+        """Seconds by the wall."""
+        return self.spent.seconds
 
 
 class Phases:
@@ -51,13 +57,13 @@ def solve(problem: Problem, budget: ns.Budget, seconds: float) -> Timing:
     timer.daemon = True
     timer.start()
     phases = Phases()
-    begun = perf_counter()
+    watch = Watch()
     graph = ns.Graph.from_canonical(problem.n, row_ptr, targets)
     monitor = ns.Monitor(cells, phases.enter)
     outcome = ns.solve(ns.IndependentSet(), graph, problem.weights, budget, "bound", monitor)
-    ended = perf_counter()
+    spent = watch.read()
     timer.cancel()
-    return Timing(ended - begun, phases.seconds, outcome)
+    return Timing(spent, phases.seconds, outcome)
 
 
 def solve_stored(folder: Path, repeats: int, memory: int, seconds: float) -> list[Timing]:

@@ -51,3 +51,18 @@ def test_rows_built_by_numpy_hold_every_neighbour_in_order() -> None:
     ptr, neighbours = problem.symmetric()
     for v in range(problem.n):
         assert neighbours[ptr[v] : ptr[v + 1]].tolist() == sorted(graph[v])
+
+
+def test_a_shuffled_problem_is_the_same_graph_under_other_numbers() -> None:
+    """Weight and neighbours' weights go with each vertex; edges come back in canonical order."""
+    problem = windows(50, 8, 3, seed=4)
+    weights = np.arange(problem.n)  # tells the vertices apart
+    before = Problem(problem.n, problem.low, problem.high, weights)
+    after = before.shuffled(seed=1)
+    old = after.weights
+    pairs = {frozenset(pair) for pair in zip(old[after.low].tolist(), old[after.high].tolist(), strict=True)}
+    assert pairs == {frozenset(pair) for pair in zip(problem.low.tolist(), problem.high.tolist(), strict=True)}
+    keys = after.low.astype(np.int64) * after.n + after.high
+    assert (after.low < after.high).all()
+    assert (np.diff(keys) > 0).all()
+    assert old.tolist() != weights.tolist()

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import importlib.metadata
+import io
 import os
 import sys
 from collections.abc import Sequence
@@ -51,6 +52,9 @@ for _command in (serve, demo, solve, submit, watch, answer, cancel, jobs, batch,
 
 def run(arguments: Sequence[str]) -> int:
     """Run one command and return its exit code; every failure is one message on stderr."""
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="backslashreplace")  # a terminal without a letter of some name is no failure
     try:
         code = commands.main(list(arguments), prog_name="nearchord", standalone_mode=False)
         sys.stdout.flush()

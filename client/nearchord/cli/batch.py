@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import json
 import sys
 from collections import Counter
 from collections.abc import Iterator
@@ -18,6 +17,7 @@ from nearchord.cli.connection import detaching, remote_or_private
 from nearchord.cli.exits import of_verdicts
 from nearchord.cli.follow import follow_batch
 from nearchord.cli.graphs import collect, read_all
+from nearchord.cli.layout import write_json
 from nearchord.cli.options import Ask, Source
 from nearchord.cli.progress import BatchDisplay
 from nearchord.cli.record import record
@@ -47,8 +47,7 @@ def batch(places: tuple[str, ...], ask: Ask, source: Source, out: str | None, se
                 verdicts.append(answer.verdict)
                 line = {"file": files[answer.batch_index], **record(answer, graphs[answer.batch_index].names)}
                 with nullcontext() if out else display.aside():
-                    lines.write(json.dumps(line, ensure_ascii=False) + "\n")
-                    lines.flush()
+                    write_json(line, lines)
     if sys.stderr.isatty():
         counts = ", ".join(f"{count:,} {verdict}" for verdict, count in Counter(verdicts).most_common())
         sys.stderr.write(f"{len(verdicts):,} answers{f' in {out}' if out else ''}: {counts}\n")

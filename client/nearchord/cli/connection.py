@@ -57,10 +57,7 @@ def detaching(kind: str, identity: str, server: str | None) -> Iterator[None]:
 def _farewell(kind: str, identity: str, server: str | None) -> str:
     if server is None:
         return f"interrupted; the private service ended, and {kind} {identity} with it"
-    what = f"{'--batch ' if kind == 'batch' else ''}{identity} --server {server}"
-    return (
-        f"detached; {kind} {identity} goes on\n"
-        f"  resume:   nearchord watch {what}\n"
-        f"  answer:   nearchord answer {what}\n"
-        f"  withdraw: nearchord cancel {what}"
-    )
+    which = f"{'--batch ' if kind == 'batch' else ''}{identity}"
+    where = "" if server == os.environ.get("NEARCHORD_SERVER", STANDARD_SERVER) else f" --server {server}"
+    again = [f"  nearchord {command} {which}{where}" for command in ("watch", "answer", "cancel")]
+    return "\n".join([f"detached; the {kind} goes on. To resume, to read its answer, or to withdraw it:", *again])

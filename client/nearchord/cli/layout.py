@@ -7,7 +7,7 @@ import shutil
 import sys
 import textwrap
 from collections.abc import Sequence
-from typing import Any
+from typing import Any, TextIO
 
 from rich.console import Console
 from rich.table import Table
@@ -21,8 +21,14 @@ LISTING_LINES = 4
 
 def print_json(value: dict[str, Any]) -> None:
     """Print one object on one line, at once."""
-    sys.stdout.write(json.dumps(value, ensure_ascii=False) + "\n")
-    sys.stdout.flush()
+    write_json(value, sys.stdout)
+
+
+def write_json(value: dict[str, Any], file: TextIO) -> None:
+    """Write one object on one line, at once; letters are escaped where the file's encoding may not have them."""
+    escaped = not (file.encoding or "").lower().startswith("utf")
+    file.write(json.dumps(value, ensure_ascii=escaped) + "\n")
+    file.flush()
 
 
 def print_text(text: str) -> None:
@@ -42,6 +48,9 @@ def print_table(
     widths = [max(map(len, column)) for column in zip(headings, *rows, strict=True)]
     room = shutil.get_terminal_size().columns if sys.stdout.isatty() else None
     gap = 2 if room is None or sum(widths) + 2 * len(widths) <= room else 1
+    if room is not None:
+        cut = list(headings).index(flexible)
+        widths[cut] = max(8, min(widths[cut], room - gap * (len(widths) - 1) - sum(widths) + widths[cut]))
     table = Table(box=None, pad_edge=False, padding=(0, gap, 0, 0), header_style="bold")
     for heading, width in zip(headings, widths, strict=True):
         table.add_column(
@@ -49,7 +58,7 @@ def print_table(
             justify="right" if heading in numbers else "left",
             no_wrap=True,
             overflow="ellipsis",
-            min_width=None if heading == flexible else width,
+            width=width,
         )
     for row in rows:
         table.add_row(*(Text(cell) for cell in row))

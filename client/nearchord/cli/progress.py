@@ -41,14 +41,20 @@ class Display:
 
     def __enter__(self) -> Self:
         self._began = time.monotonic()
-        if self.shown:
-            self._live = Live(console=self._console, get_renderable=self._render, transient=True, refresh_per_second=8)
-            self._live.start()
+        self._draw()
         return self
 
     def __exit__(
         self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
     ) -> None:
+        self._erase()
+
+    def _draw(self) -> None:
+        if self.shown:
+            self._live = Live(console=self._console, get_renderable=self._render, transient=True, refresh_per_second=8)
+            self._live.start()
+
+    def _erase(self) -> None:
         if self._live is not None:
             self._live.stop()
             self._live = None
@@ -56,14 +62,14 @@ class Display:
     @contextmanager
     def aside(self) -> Iterator[None]:
         """Out of the way while something is written to stdout, should that be the same terminal."""
-        live = self._live if sys.stdout.isatty() else None
-        if live is not None:
-            live.stop()
+        if self._live is None or not sys.stdout.isatty():
+            yield
+            return
+        self._erase()
         try:
             yield
         finally:
-            if live is not None:
-                live.start()
+            self._draw()
 
     def say(self, note: str, fraction: float | None = None) -> None:
         """Show what is going on, with how far it is (None: unknown)."""

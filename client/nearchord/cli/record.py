@@ -61,7 +61,7 @@ def lines(answer: nearchord.Answer) -> Iterator[tuple[str, str]]:
     if answer.fill is not None:
         least = f" (any triangulation needs {answer.fill_lower_bound:,})" if answer.fill_lower_bound else ""
         yield "fill", f"{answer.fill:,}{least}"
-    if answer.bags is not None:
+    if answer.bags:
         largest = f", the largest with {answer.largest_bag:,} vertices" if answer.largest_bag is not None else ""
         yield "bags", f"{answer.bags:,}{largest}"
     yield "proof", str(answer.proof)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 import json
 import sys
 from collections.abc import Iterable
@@ -60,8 +61,8 @@ class _Reader:
             vertices=self._graph.n,
             names_address="",
             provenance=nearchord.Provenance(
-                graph_address=self._address("graph_address"),
-                weights_address=self._address("weights_address"),
+                graph_address=self._address("graph_address", self._graph.address),
+                weights_address=self._address("weights_address", _weights_address(self._graph)),
                 solver_version="",
                 proof_format=0,
                 budget=nearchord.Budget(),
@@ -94,9 +95,10 @@ class _Reader:
         value = self._found.get(key)
         return value if isinstance(value, int) else None
 
-    def _address(self, key: str) -> str:
+    def _address(self, key: str, own: str) -> str:
+        """What the answer says it is about; an answer that says nothing is taken to be about the graph at hand."""
         origin = self._found.get("provenance")
-        return str(origin.get(key, "")) if isinstance(origin, dict) else ""
+        return str(origin.get(key, own)) if isinstance(origin, dict) else own
 
     def _vertices(self, key: str) -> tuple[int, ...]:
         listed = self._found.get(key) or []
@@ -112,3 +114,7 @@ class _Reader:
 
     def _problem(self, key: str, problem: str, remedy: str) -> nearchord.FileProblem:
         return nearchord.FileProblem(self._file, None, f'"{key}" {problem}', remedy)
+
+
+def _weights_address(graph: nearchord.Graph) -> str:
+    return "" if graph.weights is None else hashlib.sha256(graph.weights.astype("<i8").tobytes()).hexdigest()

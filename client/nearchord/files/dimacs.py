@@ -49,12 +49,12 @@ def read(document: Document, scale: int) -> Graph:
 
 
 def _problem(document: Document, lines: table.Lines) -> Problem:
-    unknown = np.flatnonzero(~np.isin(lines.kind, (0, COMMENT, PROBLEM, WEIGHT, EDGE)))
+    unknown = np.flatnonzero(~np.isin(lines.kind, (table.NOTHING, COMMENT, PROBLEM, WEIGHT, EDGE)))
     if unknown.size:
-        word = lines.text(int(unknown[0])).split()[0]
+        start = lines.text(int(unknown[0]))[:20].split(" ")[0]
         raise document.problem(
             int(unknown[0]) + 1,
-            f"the line begins with {word[:20]!r}",
+            f"the line begins with {start!r}",
             "lines begin with c, p, n or e; mark notes with c",
         )
     found = np.flatnonzero(lines.kind == PROBLEM)

@@ -12,6 +12,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 BLANKS = b" \t\r\v\f"
+NOTHING = 32
+"""Kind of a blank line: a byte that, being blank, begins no other."""
 LONGEST = 10
 """Digits of the largest number that can be a vertex."""
 BLOCK_LINES = 1 << 16
@@ -23,7 +25,7 @@ class Lines:
     """The lines of a file; line i is entry i - 1.
 
     `begin` is where the first byte that is not blank stands, `end` where the line ends (its line feed, or the end of
-    the file), `kind` that first byte, 0 for a blank line.
+    the file), `kind` that first byte, NOTHING for a blank line.
     """
 
     buffer: NDArray[np.uint8]
@@ -46,15 +48,15 @@ def split(data: bytes) -> Lines:
     blank = np.zeros(256, np.bool_)
     blank[list(BLANKS)] = True
     kind = _kinds(buffer, begin, end)
-    while (indented := np.flatnonzero(blank[kind])).size:
+    while (indented := np.flatnonzero(blank[kind] & (begin < end))).size:
         begin[indented] += 1
         kind[indented] = _kinds(buffer, begin[indented], end[indented])
     return Lines(buffer, begin, end, kind)
 
 
 def _kinds(buffer: NDArray[np.uint8], begin: NDArray[np.int64], end: NDArray[np.int64]) -> NDArray[np.uint8]:
-    """First bytes; 0 where a line is empty."""
-    kind = np.zeros(len(begin), np.uint8)
+    """First bytes; NOTHING where a line is empty."""
+    kind = np.full(len(begin), NOTHING, np.uint8)
     full = begin < end
     kind[full] = buffer[begin[full]]
     return kind

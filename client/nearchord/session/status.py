@@ -7,7 +7,7 @@ from typing import Protocol, TypeVar
 import grpc
 from google.protobuf.any_pb2 import Any as Packed
 from google.protobuf.message import DecodeError, Message
-from google.rpc import error_details_pb2, status_pb2  # type: ignore[import-untyped]
+from google.rpc import error_details_pb2, status_pb2
 
 from nearchord.errors import (
     AccessDenied,

@@ -4,11 +4,10 @@ Every measurement is one fresh process.  numpy gets the edges in canonical order
 """
 
 from pathlib import Path
-from statistics import median
 from tempfile import TemporaryDirectory
-from time import perf_counter
 
 from bench import fresh, plot, worker
+from bench.clock import Spent, Watch
 from bench.options import Options
 from bench.problem import Problem, windows
 from bench.report import Report, Row, Target
@@ -33,15 +32,15 @@ def measure(options: Options) -> Report:
     return report
 
 
-def build_rows(folder: Path) -> float:
-    """Seconds that numpy needs for the symmetric rows of a stored problem (median of REPEATS)."""
+def build_rows(folder: Path) -> Spent:
+    """Time that numpy needs for the symmetric rows of a stored problem (median of REPEATS)."""
     problem = Problem.load(folder)
-    seconds = []
+    runs = []
     for _ in range(REPEATS):
-        begun = perf_counter()
+        watch = Watch()
         problem.symmetric()
-        seconds.append(perf_counter() - begun)
-    return median(seconds)
+        runs.append(watch.read())
+    return sorted(runs, key=lambda spent: spent.seconds)[REPEATS // 2]
 
 
 def _row(n: int, options: Options, report: Report) -> Row:
@@ -50,7 +49,7 @@ def _row(n: int, options: Options, report: Report) -> Row:
     limit = options.seconds or SECONDS
     with TemporaryDirectory() as name:
         folder = problem.save(Path(name))
-        numpy_seconds = fresh.run(build_rows, folder).result
+        rows = fresh.run(build_rows, folder).result
         # Peak memory is that of one solve in a process that does nothing else.
         alone = fresh.run(worker.solve_stored, folder, 1, MEMORY, limit)
         idle = fresh.run(worker.solve_stored, folder, 0, MEMORY, limit)
@@ -64,8 +63,10 @@ def _row(n: int, options: Options, report: Report) -> Row:
         "fill": timing.outcome.fill,
         "first solve s": alone.result[0].seconds,
         "median solve s": timing.seconds,
-        "numpy rows s": numpy_seconds,
-        "solve / numpy": timing.seconds / numpy_seconds,
+        "solve CPU s": timing.spent.cpu_seconds,
+        "numpy rows s": rows.seconds,
+        "numpy CPU s": rows.cpu_seconds,
+        "solve / numpy": timing.seconds / rows.seconds,
         "ns / (n + m)": 1e9 * timing.seconds / (n + problem.m),
         "peak MiB": alone.peak_bytes / 2**20,
         "loaded MiB": idle.peak_bytes / 2**20,

@@ -29,10 +29,11 @@ def measure(options: Options) -> Report:
     edges = {"canonical": (problem.low, problem.high), "unsorted": small.shuffled(problem, options.seed)}
     options.out.mkdir(parents=True, exist_ok=True)
     with TemporaryDirectory(dir=options.out) as name:
-        runs = [_run(problem, edges, Path(name) / str(number)) for number in range(RUNS)]
-    report.parameters["bytes"] = sum(map(len, _pieces(small.as_graph(problem))))
-    plain = median(run["file"]["all s"] for run in runs)
-    rows = [_middle(kind, [run[kind] for run in runs], plain) for kind in ("file", *edges)]
+        plain = [*map(bytes, small.as_graph(problem).canonical()), problem.weights.tobytes()]
+        runs = [_run(problem, plain, edges, Path(name) / str(number)) for number in range(RUNS)]
+    report.parameters["bytes"] = sum(map(len, plain))
+    seconds = median(run["file"]["all s"] for run in runs)
+    rows = [_middle(kind, [run[kind] for run in runs], seconds) for kind in ("file", *edges)]
     report.tables["numpy arrays to stored"] = rows
     if not options.quick:
         ratios = {row["arrays"]: row["ratio"] for row in rows}
@@ -43,10 +44,12 @@ def measure(options: Options) -> Report:
     return report
 
 
-def _run(problem: Problem, edges: dict[str, tuple[np.ndarray, np.ndarray]], folder: Path) -> dict[str, Row]:
+def _run(
+    problem: Problem, plain: list[bytes], edges: dict[str, tuple[np.ndarray, np.ndarray]], folder: Path
+) -> dict[str, Row]:
     """One measurement of each kind, each upload to a service of its own that has never seen the graph."""
     folder.mkdir()
-    rows = {"file": _write(_pieces(small.as_graph(problem)), folder / "plain")}
+    rows = {"file": _write(plain, folder / "plain")}
     for kind, (one, other) in edges.items():
         with private.warm(folder / kind) as service:
             rows[kind] = _upload(service, problem, one, other)
@@ -60,10 +63,6 @@ def _upload(service: nearchord.Service, problem: Problem, one: np.ndarray, other
     service.upload(graph)
     ended = perf_counter()
     return {"arrays to graph s": ready - begun, "upload s": ended - ready, "all s": ended - begun}
-
-
-def _pieces(graph: nearchord.Graph) -> list[bytes]:
-    return [*map(bytes, graph.canonical()), graph.weights.tobytes()]
 
 
 def _write(pieces: list[bytes], path: Path) -> Row:

@@ -2,7 +2,8 @@
 
 All in one run, each run in a fresh process: the solver after its warm-up (median of three), HiGHS and CP-SAT
 with one constraint an edge and with all maximal cliques given (listing them is not counted), each with every
-thread count asked for.  A ratio compares with the better thread count.
+thread count asked for.  A ratio compares with the better thread count;
+promises are about wall time, the ratio of processor times tells how far other programs disturbed it.
 """
 
 from pathlib import Path
@@ -30,9 +31,12 @@ def measure(options: Options) -> Report:
     report = Report("windows-100k", parameters)
     with TemporaryDirectory() as name:
         ours = _own(problem, Path(name), seconds, report)
-        rows = [_own_row(ours), *_general_rows(problem, Path(name), seconds, options.threads)]
+        rows = [_own_row(ours)]
+        if options.general:
+            rows += _general_rows(problem, Path(name), seconds, options.threads)
     for row in rows:
         row["ratio"] = row["seconds"] / ours.seconds
+        row["CPU ratio"] = row["CPU s"] / ours.spent.cpu_seconds
     report.tables["heaviest independent set"] = rows
     _agree(rows)
     if not options.quick:
@@ -58,6 +62,7 @@ def _own_row(timing: worker.Timing) -> Row:
         "value": outcome.value,
         "bound": outcome.bound,
         "build s": None,
+        "CPU s": timing.spent.cpu_seconds,
         "seconds": timing.seconds,
     }
 
@@ -82,6 +87,7 @@ def _general_row(solver: str, formulation: str, groups: Groups, threads: int, ru
         "value": run.value,
         "bound": run.bound,
         "build s": run.build_seconds,
+        "CPU s": run.spent.cpu_seconds,
         "seconds": run.seconds,
     }
 
@@ -97,5 +103,6 @@ def _targets(rows: list[Row]) -> list[Target]:
     targets = [Target("worker time after warm-up", "<=", 0.2, rows[0]["seconds"])]
     for formulation, promised in PROMISED.items():
         ratios = [row["ratio"] for row in rows if row["formulation"].endswith(formulation)]
-        targets.append(Target(f"best general solver given {formulation}", ">=", promised, min(ratios), "times"))
+        if ratios:
+            targets.append(Target(f"best general solver given {formulation}", ">=", promised, min(ratios), "times"))
     return targets

@@ -51,6 +51,7 @@ def test_files_named_twice_are_solved_once(service: FakeService, nearchord_comma
     ran = nearchord_command("batch", str(folder / "b.csv"), str(folder), f"{folder}/*.col", *ASK)
     files = [Path(json.loads(line)["file"]).name for line in ran.out.splitlines()]
     assert files == ["b.csv", "a.col"]
+    assert len(service.batches[0]) == 2
 
 
 def test_bad_files_are_all_named_and_nothing_is_submitted(

@@ -10,6 +10,7 @@ from typing import Any
 
 import nearchord
 import pytest
+from nearchord.cli.app import run
 from unit.cli.conftest import FakeService, make_answer
 
 ASK = ("--question", "independent-set")
@@ -117,3 +118,19 @@ def test_interrupt_of_a_private_service_says_so(service: FakeService, nearchord_
     assert ran.code == 3
     assert "private service ended" in ran.err
     assert "resume" not in ran.err
+
+
+@pytest.mark.parametrize("encoding", ["utf-8", "ascii"])
+def test_names_reach_any_encoding(
+    service: FakeService, nearchord_command: Any, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, encoding: str
+) -> None:
+    """JSON escapes letters that stdout cannot write, and people get something readable."""
+    file = tmp_path / "names.csv"
+    file.write_text("source,target\nGrün,b\nb,Ödön\nÖdön,d\n", encoding="utf-8")
+    out = io.TextIOWrapper(io.BytesIO(), encoding=encoding)
+    monkeypatch.setattr(sys, "stdout", out)
+    assert run(["solve", str(file), *ASK, "--json"]) == 0
+    assert run(["solve", str(file), *ASK]) == 0
+    first, *rest = out.buffer.getvalue().decode(encoding).splitlines()
+    assert json.loads(first)["chosen"] == ["Grün", "Ödön"]
+    assert rest[-1].startswith("names    Gr")

@@ -26,6 +26,7 @@ class HandExecutor:
         self.starts = 0
         self.stops = []
         self.listener = None
+        self.on_run = None
 
     def start(self, listener):
         self.starts += 1
@@ -42,6 +43,8 @@ class HandExecutor:
             return 0 if self.stops or self.listener is None else max(0, self.slots - len(self.running))
 
     def run(self, task):
+        if self.on_run is not None:
+            self.on_run(task)
         with self.changed:
             self.running[task.key.job_id] = task.key
             self.taken.append(task)

@@ -19,7 +19,7 @@ START = dt.datetime(2030, 1, 1, tzinfo=dt.UTC)
 WAIT = 10.0
 
 
-def job(name, budget=None):
+def job(name):
     return Job(
         id=name,
         owner="team",
@@ -32,7 +32,7 @@ def job(name, budget=None):
         vertices=1,
         edges=0,
         question=Question(QuestionName.INDEPENDENT_SET),
-        budget=budget or Budget(),
+        budget=Budget(),
         when_over=WhenOver.BOUND,
         priority=0,
         not_after=None,
@@ -51,12 +51,12 @@ def job(name, budget=None):
 class MemoryStore:
     """Jobs wait in `queue`, are leased, end in `finished`. `unavailable` counts calls that fail before one works."""
 
-    def __init__(self, graph=None):
-        self.graph = graph or Bytes(b"", None)
+    def __init__(self):
         self.changed = threading.Condition()
         self.queue = deque()
         self.held = {}
         self.finished = {}
+        self.offered = []
         self.returned = []
         self.progress = []
         self.renewals = []
@@ -70,9 +70,9 @@ class MemoryStore:
 
     # For tests
 
-    def add(self, *names, budget=None):
+    def add(self, *names):
         with self.changed:
-            self.queue.extend(job(name, budget) for name in names)
+            self.queue.extend(job(name) for name in names)
         self.tell(Change(work=True))
 
     def tell(self, change):
@@ -87,9 +87,9 @@ class MemoryStore:
         with self.changed:
             self.held.pop(name)
 
-    def wait(self, condition, seconds=WAIT):
+    def wait(self, condition):
         with self.changed:
-            assert self.changed.wait_for(condition, seconds), f"never came true: {self.__dict__}"
+            assert self.changed.wait_for(condition, WAIT), f"never came true: {self.__dict__}"
 
     # LeaseStore
 
@@ -107,7 +107,7 @@ class MemoryStore:
                 one = replace(one, stage=Stage.SOLVING, attempt=one.attempt + 1)
                 self.held[one.id] = one
                 lost = sum(1 for name, _, worker_lost in self.returned if name == one.id and worker_lost)
-                leases.append(Lease(one, one.attempt, lost, START, self.graph, None))
+                leases.append(Lease(one, one.attempt, lost, START, Bytes(b"", None), None))
             self.changed.notify_all()
         if self.in_claim is not None:
             self.in_claim(leases)
@@ -130,6 +130,7 @@ class MemoryStore:
 
     def finish(self, name, attempt, answer):
         self._may_fail("finish")
+        self.offered.append(name)
         if self.broken_finish:
             raise RuntimeError("cannot be written")
         return self._settle(name, attempt, lambda: self.finished.__setitem__(name, answer))

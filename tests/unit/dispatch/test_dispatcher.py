@@ -41,7 +41,7 @@ class Clock:
 class Scene:
     """A dispatcher with everything around it. Heartbeats come only when a test calls `renew`."""
 
-    def __init__(self, **options):
+    def __init__(self, poll_seconds=0.02, **options):
         self.store = MemoryStore()
         self.executor = HandExecutor(**options)
         self.observer = Observer()
@@ -52,7 +52,7 @@ class Scene:
             holder="here",
             observer=self.observer,
             heartbeat_seconds=3600.0,
-            poll_seconds=0.02,
+            poll_seconds=poll_seconds,
             clock=self.clock,
         )
 
@@ -96,6 +96,21 @@ def test_no_more_jobs_are_leased_than_slots_are_free(scene):
     scene.ended(1)
     assert [one.id for one in scene.store.queue] == ["d"]
     assert max(scene.store.claims) <= 2
+
+
+def test_an_empty_queue_is_not_asked_again_before_a_hint():
+    """Ends of jobs cost no look into a queue that is known to be empty."""
+    scene = Scene(poll_seconds=3600.0)
+    scene.store.add("a")
+    scene.dispatcher.start()
+    scene.running("a")
+    scene.store.wait(lambda: len(scene.store.claims) == 2)
+    scene.executor.solve("a")
+    scene.ended(1)
+    scene.store.add("b")
+    scene.running("b")
+    scene.dispatcher.stop(0.0)
+    assert len(scene.store.claims) == 3
 
 
 def test_short_jobs_are_leased_ahead():
@@ -196,6 +211,13 @@ def test_cancel_that_comes_while_its_job_is_being_leased(scene):
     assert scene.executor.taken == []
 
 
+def test_cancel_that_comes_while_its_task_is_handed_over(scene):
+    """Between leaving the queue of those ahead and reaching its slot a task cannot dodge a cancel."""
+    scene.executor.on_run = lambda task: scene.store.cancel(task.key.job_id)
+    scene.store.add("a")
+    scene.executor.wait(lambda: scene.executor.running and len(scene.executor.cancelled) == 2)
+
+
 def test_renewal_tells_of_cancels_whose_hint_was_lost(scene):
     """Hints may be lost; the next heartbeat brings the cancel."""
     scene.store.add("a")
@@ -215,8 +237,12 @@ def test_a_lost_lease_stops_the_task_and_drops_its_result(scene):
     scene.executor.solve("a")
     scene.store.add("b")
     scene.running("b")
-    assert scene.store.finished == {}
+    scene.executor.solve("b")
+    scene.ended(1)
+    assert scene.store.offered == ["b"]
     assert scene.observer.lost_leases == 1
+    scene.store.add("b")
+    scene.running("b")
     scene.dispatcher.renew()
     assert scene.store.renewals[-1] == [("b", 1)]
 

@@ -138,9 +138,7 @@ def test_the_same_question_has_the_same_answer() -> None:
     graph = Graph.from_edges(60, edges)
     weights = rng.integers(0, 50, 60)
     for budget in (Budget(), Budget(states=50)):
-        one, other = (
-            solve_question(IndependentSet(), graph, weights, budget, "bound", Monitor()) for _ in range(2)
-        )
+        one, other = (solve_question(IndependentSet(), graph, weights, budget, "bound", Monitor()) for _ in range(2))
         assert one.chosen.tolist() == other.chosen.tolist()
         assert (one.value, one.bound, one.states, one.reason) == (
             other.value,

@@ -157,9 +157,7 @@ def test_bags_hold_all_edges_and_each_vertex_hangs_together(seed: int) -> None:
 
 
 @pytest.mark.parametrize("seed", range(10))
-def test_large_cores_take_the_sparse_way_and_say_the_same(
-    seed: int, monkeypatch: pytest.MonkeyPatch
-) -> None:
+def test_large_cores_take_the_sparse_way_and_say_the_same(seed: int, monkeypatch: pytest.MonkeyPatch) -> None:
     n, edges = 18, random_graph(18, 0.2, seed)
     monkeypatch.setattr(cores, "DENSE_LIMIT", 0)
     structure = structure_of(n, edges)

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import os
 
+import nearchord_solve
+import numpy as np
 import pytest
 from nearchord_service.model.event import Phase
 from nearchord_service.work.local import cells, wire
@@ -130,3 +132,23 @@ def test_meter_sees_memory_come_and_go():
     held = bytearray(64 * 2**20)
     assert meter.peak_bytes() > low + 32 * 2**20
     del held
+
+
+def test_cells_lie_where_the_solver_has_them():
+    """The server reads what the solver writes; their layouts are stated twice and must agree."""
+    monitor = nearchord_solve.Monitor
+    names = ["STOP", "PHASE", "STEP", "STEPS", "FILL", "FILL_LOWER", "BAGS_DONE", "BAGS", "STATES"]
+    names += ["HAS_INCUMBENT", "INCUMBENT", "HAS_BOUND", "BOUND"]
+    assert {name: getattr(cells, name) for name in names} == {name: getattr(monitor, name) for name in names}
+    assert cells.MONITOR_CELLS == monitor.CELLS
+    stops = nearchord_solve.Stop
+    assert (cells.STOP_SECONDS, cells.STOP_CANCEL) == (stops.SECONDS, stops.CANCEL)
+    solver_phases = [phase.name.lower() for phase in sorted(nearchord_solve.Phase)]
+    assert solver_phases == [*(phase.value for phase in Phase), "done"]
+
+
+def test_cells_are_cleared_to_what_a_fresh_monitor_shows(block):
+    """Between hand-over and the solver's first word the server sees the same as after it."""
+    block.clear(0)
+    fresh = nearchord_solve.Monitor(np.zeros(cells.MONITOR_CELLS, np.int64)).cells
+    assert block._words[: cells.MONITOR_CELLS].tolist() == fresh.tolist()

@@ -17,7 +17,7 @@ from nearchord_service.store.sql.disk import Disk
 from nearchord_service.store.sql.engine import SqliteDatabase
 from nearchord_service.store.sql.rows import micros
 from nearchord_service.store.sql.statement import Connection
-from nearchord_service.store.sql.writer import Operation, Writer
+from nearchord_service.store.sql.writer import OnEnd, Operation, Writer
 
 _log = logging.getLogger(__name__)
 _T = TypeVar("_T")
@@ -37,11 +37,17 @@ class Core:
         *,
         clock: Callable[[], dt.datetime] = utc_now,
         on_write: Callable[[float], None] | None = None,
+        on_end: OnEnd | None = None,
         disk: Disk | None = None,
     ) -> None:
-        """Take the data folder, a clock that gives aware times, and who is told the seconds of every transaction."""
+        """Take the data folder, a clock that gives aware times, and listeners.
+
+        `on_write` is told the seconds of every transaction, `on_end` the question and the verdict of every job that it
+        ended, once it is durable; both are called on the writer's thread and must return quickly.
+        """
         self._clock = clock
         self._on_write = on_write
+        self._on_end = on_end
         self._disk = disk or Disk(data)
         self._database = SqliteDatabase(data / "nearchord.db")
         self._writer: Writer | None = None
@@ -56,7 +62,9 @@ class Core:
             self._disk.prepare()
             try:
                 connection = self._database.open(self._now())
-                self._writer = Writer(self._database, connection, self._clock, self._on_write, self._announce)
+                self._writer = Writer(
+                    self._database, connection, self._clock, self._on_write, self._on_end, self._announce
+                )
                 self._opened()
             except BaseException:
                 self._writer = None

@@ -13,6 +13,7 @@ from typing import Any
 from sqlalchemy import bindparam, delete, insert, null, select, update
 
 from nearchord_service.model.stage import Stage, Verdict, transition
+from nearchord_service.store.sql.rows import question_name
 from nearchord_service.store.sql.schema import answers, batches, events, jobs, progress, usage
 from nearchord_service.store.sql.statement import Row, Statement, word
 from nearchord_service.store.sql.writer import Transaction
@@ -123,6 +124,7 @@ def end(
         (row,) = rows
         transaction.run(_INSERT_ANSWER, job=row["number"], figures=answer.figures, columns=answer.columns)
     transaction.run_many(_DROP_PROGRESS, [{"job": row["number"]} for row in rows if row["attempt"]])
+    transaction.news.ended += [(question_name(row), verdict) for row in rows]
     if rows:
         transaction.run(_USE, whose=rows[0]["owner"], jobs_more=-len(rows))
 

@@ -55,6 +55,11 @@ def terms_of(spec: JobSpec) -> str:
     )
 
 
+def question_name(row: Row) -> QuestionName:
+    """Return what a job's row asks."""
+    return QuestionName(json.loads(row["terms"])["question"]["name"])
+
+
 def _terms(text: str) -> tuple[Question, Budget, WhenOver]:
     terms = json.loads(text)
     asked = terms["question"]

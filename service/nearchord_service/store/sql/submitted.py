@@ -68,7 +68,7 @@ class SubmittedContent:
 
     def graph_of(self, index: int, spec: JobSpec) -> Held:
         """Check the content of one spec; returns its graph. Raises ContentUnknown, FieldInvalid."""
-        path = f"spec[{index}].input" if self._submission.batch else "spec.input"
+        path = f"specs[{index}].input" if self._submission.batch else "spec.input"
         graph = Held("", 0, 0)
         for name, address, kind in _needs(spec):
             held = self._held(address)

@@ -20,6 +20,8 @@ from typing import Any, Protocol, TypeVar
 from sqlalchemy import bindparam, update
 
 from nearchord_service.model.errors import StoreUnavailable
+from nearchord_service.model.question import QuestionName
+from nearchord_service.model.stage import Verdict
 from nearchord_service.store.port import Change
 from nearchord_service.store.sql.rows import micros
 from nearchord_service.store.sql.schema import counters
@@ -56,6 +58,7 @@ class News:
     job_ids: set[str] = field(default_factory=set)
     batch_ids: set[str] = field(default_factory=set)
     cancels: set[str] = field(default_factory=set)
+    ended: list[tuple[QuestionName, Verdict]] = field(default_factory=list)
     work: bool = False
     afterwards: list[Callable[[], None]] = field(default_factory=list)
 
@@ -64,6 +67,7 @@ class News:
         self.job_ids |= other.job_ids
         self.batch_ids |= other.batch_ids
         self.cancels |= other.cancels
+        self.ended += other.ended
         self.work |= other.work
         self.afterwards += other.afterwards
 
@@ -90,6 +94,7 @@ class Transaction(Connection):
 
 
 Operation = Callable[[Transaction], _T]
+OnEnd = Callable[[QuestionName, Verdict], None]
 
 
 @dataclass(frozen=True)
@@ -108,12 +113,14 @@ class Writer:
         connection: Connection,
         clock: Callable[[], dt.datetime],
         on_write: Callable[[float], None] | None,
+        on_end: OnEnd | None,
         announce: Callable[[Change], None],
     ) -> None:
         self._database = database
         self._connection = connection
         self._clock = clock
         self._on_write = on_write
+        self._on_end = on_end
         self._announce = announce
         self._queue: queue.SimpleQueue[_Queued | None] = queue.SimpleQueue()
         self._gate = threading.Lock()
@@ -178,6 +185,9 @@ class Writer:
             return
         if self._on_write is not None:
             self._on_write(time.perf_counter() - began)
+        if self._on_end is not None:
+            for question, verdict in news.ended:
+                self._on_end(question, verdict)
         self._settle(group, outcomes, news)
 
     def _attempt(self, operation: Operation[Any], news: News) -> Any:

@@ -20,7 +20,7 @@ from nearchord_service.work.local.slot import SAMPLE_SECONDS
 from nearchord_service.work.port import LossCause, SlotFigures, Task, TaskKey, TaskListener
 
 RESIDENT_LIMIT_BYTES = 512 * 2**20
-"""A worker that holds more than this after a task is replaced."""
+"""A worker that after a task holds so much more than it did when it was forked is replaced."""
 
 GRACE_SECONDS = 2.0
 """Time that a task told to stop has before its worker is killed."""

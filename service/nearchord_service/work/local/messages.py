@@ -58,10 +58,10 @@ class Exited:
 
 @dataclass(frozen=True)
 class Answered:
-    """Worker to server: the task's answer, and the worker's resident memory after it."""
+    """Worker to server: the task's answer, and by how much the worker's resident memory has grown since its fork."""
 
     answer: Answer
-    resident_bytes: int
+    grown_bytes: int
 
 
 @dataclass(frozen=True)

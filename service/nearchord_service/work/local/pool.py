@@ -194,7 +194,7 @@ class Pool:
             grown = True
         else:
             assert isinstance(message, Answered)
-            end, grown = Solved(message.answer), message.resident_bytes > self._resident_limit_bytes
+            end, grown = Solved(message.answer), message.grown_bytes > self._resident_limit_bytes
         slot.run = None
         self._tell_end(task.key, end)
         if grown:

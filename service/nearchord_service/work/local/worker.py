@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import logging
 import mmap
 import socket
@@ -26,32 +27,36 @@ _LOG = logging.getLogger(__name__)
 
 def serve(sock: socket.socket, block: mmap.mmap, slot: int, solver: Any) -> None:
     """Solve tasks until the server closes the socket or a task exceeds its memory."""
-    cells: NDArray[np.int64] = np.frombuffer(block, np.int64)[slot * STRIDE : (slot + 1) * STRIDE]
-    meter = Meter()
-    while True:
-        try:
+    worker = Worker(np.frombuffer(block, np.int64)[slot * STRIDE : (slot + 1) * STRIDE], solver)
+    with contextlib.suppress(EOFError, ConnectionError):
+        while True:
             task, _ = wire.receive(sock)
-        except (EOFError, ConnectionError):
-            return
-        assert isinstance(task, Task)
-        end = _solve(task, solver, cells, meter)
-        try:
+            assert isinstance(task, Task)
+            end = worker.solve(task)
             wire.send(sock, end)
-        except ConnectionError:
-            return
-        if isinstance(end, OutOfMemory):
-            return
+            if isinstance(end, OutOfMemory):
+                return
 
 
-def _solve(task: Task, solver: Any, cells: NDArray[np.int64], meter: Meter) -> Answered | OutOfMemory:
-    """Solve one task under its memory limit; `cells` int64[STRIDE] are this slot's."""
-    cells[STARTED] = time.monotonic_ns()
-    meter.reset_peak()
-    try:
-        with meter.limited(task.budget.memory_bytes):
-            answer = runner.answer(task, solver, cells[:MONITOR_CELLS])
-    except MemoryError:
-        _LOG.warning("job %s, attempt %d: out of memory", task.key.job_id, task.key.attempt, exc_info=True)
-        return OutOfMemory(meter.peak_bytes())
-    answer = replace(answer, peak_memory_bytes=meter.peak_bytes())
-    return Answered(answer, meter.resident_bytes())
+class Worker:
+    """Solves tasks under their memory limits; `cells` int64[STRIDE] are its slot's."""
+
+    def __init__(self, cells: NDArray[np.int64], solver: Any) -> None:
+        self._cells = cells
+        self._solver = solver
+        self._meter = Meter()
+        self._fresh_bytes = self._meter.resident_bytes()
+
+    def solve(self, task: Task) -> Answered | OutOfMemory:
+        """Solve one task."""
+        self._cells[STARTED] = time.monotonic_ns()
+        meter = self._meter
+        meter.reset_peak()
+        try:
+            with meter.limited(task.budget.memory_bytes):
+                answer = runner.answer(task, self._solver, self._cells[:MONITOR_CELLS])
+        except MemoryError:
+            _LOG.warning("job %s, attempt %d: out of memory", task.key.job_id, task.key.attempt, exc_info=True)
+            return OutOfMemory(meter.peak_bytes())
+        answer = replace(answer, peak_memory_bytes=meter.peak_bytes())
+        return Answered(answer, meter.resident_bytes() - self._fresh_bytes)
