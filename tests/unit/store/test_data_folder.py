@@ -9,8 +9,11 @@ import threading
 from pathlib import Path
 
 import pytest
-from contract.stores import ANN, LIMITS, Clock, begin, graph, put, spec, submit
+from contract.stores import ANN, LIMITS, Clock, begin, claim_one, finish, give_back, graph, put, spec, submit
 from nearchord_service.model.errors import StoreUnavailable
+from nearchord_service.model.question import QuestionName
+from nearchord_service.model.stage import Verdict
+from nearchord_service.store.port import LOST_WORKERS_ALLOWED
 from nearchord_service.store.sql import SqlStore
 from nearchord_service.store.sql.statement import Connection
 
@@ -151,6 +154,32 @@ def test_seconds_of_each_transaction_are_reported(tmp_path: Path) -> None:
     opened.stop()
     assert len(seconds) == 1
     assert seconds[0] > 0
+
+
+def test_counter_that_fails_harms_no_write(tmp_path: Path) -> None:
+    def fail(_: float) -> None:
+        raise RuntimeError("counter")
+
+    opened = SqlStore(tmp_path / "data", on_write=fail)
+    opened.start()
+    job = submit(opened)
+    assert opened.job(ANN, job.id) == job
+    opened.stop()
+
+
+def test_every_end_of_a_job_is_reported_once(tmp_path: Path) -> None:
+    ends: list[tuple[QuestionName, Verdict]] = []
+    opened = SqlStore(tmp_path / "data", clock=Clock(), on_end=lambda *end: ends.append(end))
+    opened.start()
+    withdrawn, _, _ = submit(opened), submit(opened), submit(opened)
+    opened.cancel_job(ANN, withdrawn.id)
+    opened.cancel_job(ANN, withdrawn.id)
+    lease = claim_one(opened)
+    assert (finish(opened, lease), finish(opened, lease)) == (True, False)
+    for _ in range(LOST_WORKERS_ALLOWED):
+        give_back(opened, claim_one(opened))
+    opened.stop()
+    assert ends == [(QuestionName.INDEPENDENT_SET, end) for end in (Verdict.CANCELLED, Verdict.PROVEN, Verdict.BROKEN)]
 
 
 def test_quota_tallies_equal_a_recount(store: SqlStore) -> None:

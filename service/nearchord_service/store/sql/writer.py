@@ -183,12 +183,19 @@ class Writer:
         except Exception as fault:
             self._give_up(group, fault)
             return
-        if self._on_write is not None:
-            self._on_write(time.perf_counter() - began)
-        if self._on_end is not None:
-            for question, verdict in news.ended:
-                self._on_end(question, verdict)
+        self._count(time.perf_counter() - began, news)
         self._settle(group, outcomes, news)
+
+    def _count(self, seconds: float, news: News) -> None:
+        """Tell those who count; what is committed does not depend on them."""
+        try:
+            if self._on_write is not None:
+                self._on_write(seconds)
+            if self._on_end is not None:
+                for question, verdict in news.ended:
+                    self._on_end(question, verdict)
+        except Exception:
+            _log.exception("a counter of the store's writes failed")
 
     def _attempt(self, operation: Operation[Any], news: News) -> Any:
         """Run one operation in its savepoint; returns its result or its exception."""
