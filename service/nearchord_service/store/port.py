@@ -116,7 +116,7 @@ class Upload(Protocol):
     """Bytes received so far."""
 
     def write(self, piece: bytes) -> None:
-        """Append a piece; ContentInvalid (field `part.piece`) when it exceeds the announced size."""
+        """Append a piece; ContentInvalid (field `piece`) when it exceeds the announced size."""
 
     def publish(self, check: Callable[[memoryview], tuple[int, int]]) -> Content:
         """Check size, digest and form, make the content durable and visible.
