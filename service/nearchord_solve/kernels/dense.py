@@ -60,7 +60,7 @@ def list_fill(real: U64, full: U64) -> I32:
 def spent(effort: I64, words: int, cells: I64) -> bool:
     """Take ``words`` from the effort left (int64[1]); whether it is used up, or a stop is asked for."""
     effort[0] -= words
-    return effort[0] < 0 or cells[STOP] != 0
+    return bool(effort[0] < 0 or cells[STOP] != 0)
 
 
 @kernel
