@@ -11,6 +11,14 @@ from nearchord_solve.fill.exact.packing import sides_and_chords
 F64 = NDArray[np.float64]
 
 
+class _Silent(highspy.Highs):  # type: ignore[misc]
+    """A solver that prints nothing, not even when it is made."""
+
+    def enableCallbacks(self) -> None:  # noqa: N802
+        self.silent()
+        super().enableCallbacks()
+
+
 class Relaxation:
     """A growing linear program over x in [0, 1], solved again from its last basis.
 
@@ -24,8 +32,7 @@ class Relaxation:
         self.cycles: list[Cycle] = []
         self.known: set[Cycle] = set()
         self.idle: list[int] = []
-        self._solver = highspy.Highs()
-        self._solver.silent()
+        self._solver = _Silent()
         for option, value in (("threads", 1), ("parallel", "off"), ("presolve", "off"), ("random_seed", 0)):
             self._solver.setOptionValue(option, value)
 

@@ -1,0 +1,3 @@
+"""stub"""
+def branch(core, relaxation, bounds, most, monitor):
+    print("BRANCH needed", core.n, bounds.lower, bounds.upper)
