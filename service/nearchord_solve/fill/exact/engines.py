@@ -1,6 +1,6 @@
 """Choosing the engine for an irreducible core."""
 
-from nearchord_solve.fill.exact.branch import branch
+from nearchord_solve.fill.exact.branch import CaseSearch
 from nearchord_solve.fill.exact.core import Core
 from nearchord_solve.fill.exact.greedy import portfolio
 from nearchord_solve.fill.exact.root import Bounds, cut
@@ -23,7 +23,10 @@ def search_core(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> None
         return
     relaxation = cut(core, bounds, most, monitor)
     if not bounds.closed and bounds.lower <= most:
-        branch(core, relaxation, bounds, most, monitor)
+        print("BRANCH", core.n, bounds.lower, bounds.upper,flush=True)
+        S=CaseSearch(core, relaxation, bounds, most, monitor)
+        ok=S.run(10**6)
+        print("BRANCH done",ok, len(S.tree), bounds.lower, bounds.upper, S.checkable,flush=True)
 
 
 def by_subsets(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> None:

@@ -1,5 +1,7 @@
 """The linear relaxation: least cost x on the non-edges of a core, subject to the cuts found so far."""
 
+from collections.abc import Mapping
+
 import highspy
 import numpy as np
 from numpy.typing import NDArray
@@ -9,6 +11,8 @@ from nearchord_solve.fill.exact.cycles import Cycle
 from nearchord_solve.fill.exact.packing import sides_and_chords
 
 F64 = NDArray[np.float64]
+
+FORBIDDING = 1e5
 
 
 class _Silent(highspy.Highs):  # type: ignore[misc]
@@ -32,6 +36,7 @@ class Relaxation:
         self.cycles: list[Cycle] = []
         self.known: set[Cycle] = set()
         self.idle: list[int] = []
+        self._decided: dict[Pair, int] = {}
         self._solver = _Silent()
         for option, value in (("threads", 1), ("parallel", "off"), ("presolve", "off"), ("random_seed", 0)):
             self._solver.setOptionValue(option, value)
@@ -80,12 +85,22 @@ class Relaxation:
             costs = [float(self.core.sizes[a] * self.core.sizes[b]) for a, b in self.pairs[old:]]
             self._solver.changeColsCost(count, np.arange(old, old + count, dtype=np.int32), np.array(costs))
 
-    def fix(self, columns: list[int], lower: list[float], upper: list[float]) -> None:
-        """Set bounds of some columns."""
-        if columns:
-            self._solver.changeColsBounds(
-                len(columns), np.array(columns, np.int32), np.array(lower, np.float64), np.array(upper, np.float64)
-            )
+    def decide(self, decided: Mapping[Pair, int]) -> None:
+        """Put the given pairs in (1) or out (0), and undo earlier decisions about others.
+
+        A pair that is out costs so much that it is taken only where the cuts cannot hold otherwise; then the value
+        tells.  The program stays feasible, so there are always multipliers.
+        """
+        for pair in [*self._decided, *decided]:
+            if self._decided.get(pair) == decided.get(pair):
+                continue
+            column = self._column(pair)
+            self._create_columns()
+            value = decided.get(pair)
+            self._solver.changeColBounds(column, 1.0 if value == 1 else 0.0, 1.0)
+            size = self.core.sizes[pair[0]] * self.core.sizes[pair[1]]
+            self._solver.changeColCost(column, FORBIDDING if value == 0 else float(size))
+        self._decided = dict(decided)
 
     def solve(self) -> float | None:
         """Optimal value, or None if infeasible or not solved."""
@@ -107,9 +122,18 @@ class Relaxation:
         """Multiplier of each cut, >= 0."""
         return np.maximum(np.array(self._solver.getSolution().row_dual), 0.0)
 
-    def reduced_costs(self) -> F64:
-        """Reduced cost of each column."""
-        return np.array(self._solver.getSolution().col_dual)
+    def fractional(self, tolerance: float) -> list[Pair]:
+        """Pairs with x neither 0 nor 1, the most costly and undecided ones first."""
+        values = np.array(self._solver.getSolution().col_value)
+        doubt = np.minimum(values, 1.0 - values)
+        found = np.flatnonzero(doubt > tolerance)
+        order = np.lexsort((found, -doubt[found].round(6)))
+        return [self.pairs[i] for i in found[order] if self.pairs[i] not in self._decided]
+
+    def support(self) -> list[Pair]:
+        """Pairs with x nearer to 1 than to 0."""
+        values = self._solver.getSolution().col_value
+        return [pair for pair, x in zip(self.pairs, values, strict=True) if x > 0.5]
 
     def drop_idle(self, patience: int) -> None:
         """Remove cuts whose multiplier has been zero in the last ``patience`` calls."""
