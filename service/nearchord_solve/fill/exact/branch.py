@@ -18,11 +18,11 @@ from nearchord_solve.fill.exact.root import Bounds, guided, selected
 from nearchord_solve.monitor import Monitor
 
 THRESHOLDS = (1e-6, 0.5, 0.99)
-CANDIDATES = 10
-CUTS_A_ROUND = 150
+CANDIDATES = 6
+CUTS_A_ROUND = 100
 ROUNDS_A_CASE = 15
 LEAST_PROGRESS = 0.02
-PATIENCE = 30
+PATIENCE = 6
 WHOLE = 1e-6
 
 

@@ -30,31 +30,49 @@ def rounded(multipliers: Sequence[float], scale: float = 1.0) -> list[int]:
     return [int(max(0.0, y) * scale * DENOMINATOR) for y in multipliers]
 
 
-def exact_bound(
-    core: Core, cycles: Sequence[Cycle], numerators: Sequence[int], decided: Mapping[Pair, int]
-) -> int:
-    """Fill edges of the part that any fill needs which agrees with ``decided`` (pair of classes -> 1 in, 0 out)."""
-    total = 0
+def summed(core: Core, cycles: Sequence[Cycle], numerators: Sequence[int]) -> tuple[int, dict[Pair, int]]:
+    """Constant term and load of each pair, over :data:`DENOMINATOR`."""
+    constant = 0
     load: dict[Pair, int] = {}
     for cycle, y in zip(cycles, numerators, strict=True):
         if y == 0:
             continue
         sides, chords = sides_and_chords(cycle)
         needed = (len(cycle) - 3) * y
-        total += needed
+        constant += needed
         for pair in chords:
             load[pair] = load.get(pair, 0) + y
         for pair in sides:
             if not core.adj[pair[0]] >> pair[1] & 1:
-                total -= needed
+                constant -= needed
                 load[pair] = load.get(pair, 0) - needed
-    for (a, b), amount in load.items():
-        if (a, b) not in decided:
-            total -= max(0, amount - core.sizes[a] * core.sizes[b] * DENOMINATOR)
-    for (a, b), value in decided.items():
-        if value:
-            total += core.sizes[a] * core.sizes[b] * DENOMINATOR - load.get((a, b), 0)
+    return constant, load
+
+
+def weight(core: Core, pair: Pair) -> int:
+    """What the pair costs, over :data:`DENOMINATOR`."""
+    return core.sizes[pair[0]] * core.sizes[pair[1]] * DENOMINATOR
+
+
+def exact_bound(
+    core: Core, cycles: Sequence[Cycle], numerators: Sequence[int], decided: Mapping[Pair, int]
+) -> int:
+    """Fill edges of the part that any fill needs which agrees with ``decided`` (pair of classes -> 1 in, 0 out)."""
+    total, load = summed(core, cycles, numerators)
+    total -= sum(max(0, amount - weight(core, pair)) for pair, amount in load.items() if pair not in decided)
+    total += sum(weight(core, pair) - load.get(pair, 0) for pair, value in decided.items() if value)
     return -(-total // DENOMINATOR)
+
+
+def prices(core: Core, cycles: Sequence[Cycle], numerators: Sequence[int]) -> tuple[int, dict[Pair, int]]:
+    """``base`` and prices >= 0 over :data:`DENOMINATOR`: a fill costs at least ``base`` plus the prices of its pairs.
+
+    The weight of a fill is its load plus weight - load over its pairs; the load of all of it is at least the constant
+    term.  Pairs that are not listed have their weight as price.
+    """
+    total, load = summed(core, cycles, numerators)
+    base = total - sum(max(0, amount - weight(core, pair)) for pair, amount in load.items())
+    return base, {pair: max(0, weight(core, pair) - amount) for pair, amount in load.items()}
 
 
 def packing_of(core: Core, cycles: Sequence[Cycle], numerators: Sequence[int]) -> Packing:

@@ -13,11 +13,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from nearchord_solve.fill.exact.core import Core, Mask, Pair, members
+from nearchord_solve.fill.exact.status import Status
 from nearchord_solve.kernels.compiled import I64, U64, kernel, lowest, ones
 
 MOST_FREE = 24
 MOST_VERTICES = 62
-DONE, STOPPED, NONE = 0, 1, 2
 _MOST_COST = 2**16 - 2
 
 
@@ -46,10 +46,10 @@ def free_vertices(core: Core) -> int:
     return core.n - largest_clique(core).bit_count()
 
 
-def solve_subsets(core: Core, limit: int, cells: I64) -> tuple[int, list[Pair]]:
+def solve_subsets(core: Core, limit: int, cells: I64) -> tuple[Status, list[Pair]]:
     """A minimum fill of at most ``limit`` edges.
 
-    Returns (DONE, fill), (NONE, []) if every fill costs more than ``limit``, or (STOPPED, []).  At most 62
+    Returns (FOUND, fill), (NONE, []) if every fill costs more than ``limit``, or (STOPPED, []).  At most 62
     vertices, at most 24 of them outside a largest clique.
     """
     clique = largest_clique(core)
@@ -59,8 +59,8 @@ def solve_subsets(core: Core, limit: int, cells: I64) -> tuple[int, list[Pair]]:
     adj = np.array([sum(1 << place[u] for u in members(core.adj[v])) for v in order], np.uint64)
     sizes = np.array([core.sizes[v] for v in order], np.int64)
     last = np.full(1 << free, -1, np.int8)
-    status = _sweep(adj, sizes, free, min(limit, _MOST_COST), last, cells)
-    if status != DONE:
+    status = Status(_sweep(adj, sizes, free, min(limit, _MOST_COST), last, cells))
+    if status is not Status.FOUND:
         return status, []
     gone = (1 << free) - 1
     pairs = []
@@ -78,7 +78,7 @@ def solve_subsets(core: Core, limit: int, cells: I64) -> tuple[int, list[Pair]]:
             for x in members(near & ~rows[u] & ~((2 << u) - 1)):
                 pairs.append((min(order[u], order[x]), max(order[u], order[x])))
             rows[u] |= near & ~(1 << u)
-    return DONE, pairs
+    return Status.FOUND, pairs
 
 
 @kernel
