@@ -1,0 +1,55 @@
+"""The best of a few triangulations of one core."""
+
+import numpy as np
+
+from .bags import count_states, write_bags
+from .cells import STOP
+from .compiled import I32, I64, U64, kernel
+from .core_lists import dense_lists
+from .dense import fill_by_degree, fill_by_missing, list_fill, number_from, thin
+
+
+@kernel
+def judge(real: U64, full: U64, anchors: int, most: int, cells: I64) -> tuple[int, int, I32]:
+    """States (at most ``most`` + 1) and fill of a triangulation, and its elimination order."""
+    order: I32 = np.empty(real.shape[0], np.int32)
+    number_from(full, anchors, order)
+    later_ptr, later, fill_ptr, fill_rank = dense_lists(real, full, anchors, order)
+    bag_ptr, bag_rank, adhesion, _, kind = write_bags(anchors, later_ptr, later, fill_ptr, fill_rank)
+    states, _ = count_states(bag_ptr, bag_rank, adhesion, kind, fill_ptr, fill_rank, most, cells)
+    return states, int(fill_ptr[real.shape[0]]), order
+
+
+@kernel
+def best_triangulation(
+    real: U64, full: U64, anchors: int, easy: int, most: int, least_fill: bool, cells: I64
+) -> tuple[U64, I32]:
+    """The best of up to three minimal triangulations of one core, with its elimination order.
+
+    Candidates: the given ``full`` (overwritten by its thinning), least degree, least missing pairs, each
+    thinned.  Fewest states wins (fewest fill edges if ``least_fill``), then the other of the two, then the
+    first.  If the first has at most ``easy`` states and ``least_fill`` is off, it is taken at once.
+    """
+    thin(full, list_fill(real, full), cells)
+    states, fill, order = judge(real, full, anchors, most, cells)
+    if states <= easy and not least_fill:
+        return full, order
+    for method in range(2):
+        other = np.empty_like(real)
+        if method == 0:
+            done = fill_by_degree(real, other, cells)
+        else:
+            done = fill_by_missing(real, other, cells)
+        if not done:
+            break
+        thin(other, list_fill(real, other), cells)
+        other_states, other_fill, other_order = judge(real, other, anchors, most, cells)
+        if cells[STOP] != 0:
+            break
+        if least_fill:
+            better = other_fill < fill or (other_fill == fill and other_states < states)
+        else:
+            better = other_states < states or (other_states == states and other_fill < fill)
+        if better:
+            states, fill, full, order = other_states, other_fill, other, other_order
+    return full, order

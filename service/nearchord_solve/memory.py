@@ -1,0 +1,23 @@
+"""Memory of a solve, predicted."""
+
+import numpy as np
+
+from .arrays import I64
+
+PER_EDGE = 20  # rows as read 4, symmetric rows 8, elimination lists 4, their twin while an index is taken 4
+PER_VERTEX = 120
+ALWAYS = 2**20
+
+
+def predicted_bytes(n: int, m: int) -> int:
+    """Peak of the arrays of a plain solve of n vertices and m edges, its canonical rows included.
+
+    Beyond what the process holds before; fill and tables of fill cores come on top and are predicted when they
+    are known.
+    """
+    return ALWAYS + PER_VERTEX * n + PER_EDGE * m
+
+
+def table_bytes(entries: I64) -> I64:
+    """Memory of so many table entries: label 4, end 8 and value 8 bytes."""
+    return np.asarray(entries, np.int64) * 20

@@ -1,0 +1,11 @@
+"""The questions that a solve can answer, one module each."""
+
+from .independent_set import IndependentSet
+from .vertex_cover import VertexCover
+
+QUESTIONS: dict[str, type[IndependentSet] | type[VertexCover]] = {
+    "independent-set": IndependentSet,
+    "vertex-cover": VertexCover,
+}
+
+__all__ = ["QUESTIONS", "IndependentSet", "VertexCover"]

@@ -1,0 +1,44 @@
+"""From what was found to the outcome of a question."""
+
+from collections.abc import Callable
+
+import numpy as np
+
+from ..arrays import U32
+from ..outcome import Outcome, Verdict
+from ..sweep.independent import as_vertices
+from .heaviest import Found
+from .pins import Contradiction
+
+
+def contradiction(pins: Contradiction, inside: str, outside: str) -> Outcome:
+    """INFEASIBLE, naming the vertex or the pair; vertices are 0-based."""
+    if pins.one == pins.other:
+        reason = f"the pins contradict each other: vertex {pins.one} {inside} and {outside}"
+    else:
+        reason = f"the pins contradict each other: adjacent vertices {pins.one} and {pins.other} both {inside}"
+    nothing = np.empty(0, np.uint32)
+    return Outcome(Verdict.INFEASIBLE, None, None, nothing, None, 0, None, 0, 0, 0, 0, "none", (), reason)
+
+
+def outcome_of(found: Found, offset: int, sign: int, lift: Callable[[U32], U32]) -> Outcome:
+    """Outcome in the question's terms: its value is ``offset + sign * value``, its choice ``lift`` of ours."""
+    structure = found.structure
+    proven = found.verdict is Verdict.PROVEN
+    cores = structure.fill_cores if structure else 0
+    return Outcome(
+        verdict=found.verdict,
+        value=None if found.value is None else offset + sign * found.value,
+        bound=None if found.bound is None else offset + sign * found.bound,
+        chosen=np.empty(0, np.uint32) if found.chosen is None else lift(as_vertices(found.chosen)),
+        fill=structure.fill if structure else None,
+        fill_lower_bound=structure.fill_lower_bound if structure else 0,
+        states=structure.states if structure else None,
+        bags=structure.bags if structure else 0,
+        largest_bag=structure.largest_bag if structure else 0,
+        parts=structure.parts if structure else 0,
+        fill_cores=cores,
+        proof="search" if proven else "none",
+        proof_kinds=("search" if proven else "none",) * cores,
+        reason=found.reason,
+    )

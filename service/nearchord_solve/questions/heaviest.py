@@ -1,0 +1,173 @@
+"""The heaviest independent set of a graph without pins: exact where the budgets allow, an interval where not."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from .. import bounds
+from ..arrays import I32, I64, U8
+from ..budget import Budget
+from ..graph import Graph
+from ..kernels.layout import STATES
+from ..memory import predicted_bytes
+from ..monitor import Stop
+from ..order import Unfinished
+from ..outcome import Verdict
+from ..sweep import sweep
+from ..tree import Partial, Structure, build_structure
+from .gauge import Gauge
+
+
+@dataclass(frozen=True, eq=False)
+class Found:
+    """An answer: ``chosen`` uint8[n] is None only with CANCELLED and OVER_FILL."""
+
+    verdict: Verdict
+    value: int | None
+    bound: int | None
+    chosen: U8 | None
+    structure: Structure | None
+    reason: str
+
+
+@dataclass(frozen=True, eq=False)
+class Task:
+    """One graph to settle, within one budget."""
+
+    graph: Graph
+    weights: I64
+    budget: Budget
+    when_over: str
+    gauge: Gauge
+
+    def weight(self, chosen: U8) -> int:
+        """Weight of a set."""
+        return int(self.weights[chosen != 0].sum())
+
+    @property
+    def stop(self) -> Stop:
+        """What the watcher asks for."""
+        return self.gauge.monitor.stop
+
+
+def find_heaviest(task: Task) -> Found:
+    """Settle ``task``; never fails for want of budget or time."""
+    total = int(task.weights.sum())
+    task.gauge.bound(total)
+    need = predicted_bytes(task.graph.n, task.graph.m)
+    if need > task.budget.memory:
+        chosen, bound = bounds.quick_pair(task.graph, task.weights)
+        return _close(task, chosen, bound, None, f"memory budget: {need} bytes are needed")
+    structure = build_structure(task.graph, task.budget, task.gauge.monitor)
+    if isinstance(structure, Partial):
+        return _without_structure(task, structure)
+    over = _over_fill(task, structure)
+    return over if over is not None else _with_structure(task, structure)
+
+
+def _close(task: Task, chosen: U8, bound: int, structure: Structure | None, reason: str) -> Found:
+    """End with a feasible set and a bound: PROVEN if they meet."""
+    if task.stop is Stop.CANCEL:
+        return _cancelled(structure)
+    value = task.weight(chosen)
+    task.gauge.incumbent(value)
+    task.gauge.bound(bound)
+    if value == bound:
+        text = f"{reason}; the set found meets the bound all the same"
+        return Found(Verdict.PROVEN, value, bound, chosen, structure, text)
+    return Found(Verdict.BOUNDED, value, bound, chosen, structure, reason)
+
+
+def _cancelled(structure: Structure | None) -> Found:
+    return Found(Verdict.CANCELLED, None, None, None, structure, "cancelled on request")
+
+
+def _without_structure(task: Task, partial: Partial) -> Found:
+    """Fall back on greed and cliques when there is no tree of bags."""
+    if task.stop is Stop.CANCEL:
+        return _cancelled(None)
+    if partial.ranking is None:
+        chosen, bound = bounds.quick_pair(task.graph, task.weights)
+    else:
+        chosen, bound = bounds.cover_pair(partial.ranking, task.weights)
+    if partial.why is Unfinished.STOPPED:
+        where = "ordering" if partial.ranking is None else "triangulating"
+        return _close(task, chosen, bound, None, f"seconds ran out while {where} the graph")
+    reason = "memory budget: the fill of the graph is too large to hold"
+    everything = np.arange(task.graph.n, dtype=np.int32)
+    return _search_on(task, chosen, bound, everything, None, reason)
+
+
+def _over_fill(task: Task, structure: Structure) -> Found | None:
+    """End early if the fill budget does not suffice and the job asked to stop there."""
+    most = task.budget.fill
+    if most is None or structure.fill <= most or task.when_over != "stop":
+        return None
+    lower = structure.fill_lower_bound
+    if lower > most:
+        reason = f"fill budget: at least {lower} fill edges are needed, {most} are allowed"
+        return Found(Verdict.OVER_FILL, None, None, None, structure, reason)
+    reason = f"fill budget: {structure.fill} fill edges were found, {most} are allowed, at least {lower} are needed"
+    chosen, bound = bounds.cover_pair(structure.ranking, task.weights)
+    return _close(task, chosen, bound, structure, reason)
+
+
+def _with_structure(task: Task, structure: Structure) -> Found:
+    fits = structure.fitting(task.budget)
+    swept = sweep(structure, task.weights, fits, task.gauge.monitor)
+    if task.stop is Stop.CANCEL:
+        return _cancelled(structure)
+    if swept is None or swept.chosen is None:
+        chosen, bound = bounds.cover_pair(structure.ranking, task.weights)
+        bound = bound if swept is None else min(bound, swept.bound)
+        return _close(task, chosen, bound, structure, "seconds ran out while sweeping the tree of bags")
+    if fits.all():
+        return _proven(task, structure, swept.bound, swept.chosen)
+    reason = _too_many_states(task, structure, fits)
+    return _search_on(task, swept.chosen, swept.bound, _homes(structure, fits), structure, reason)
+
+
+def _proven(task: Task, structure: Structure, value: int, chosen: U8) -> Found:
+    task.gauge.incumbent(value)
+    task.gauge.bound(value)
+    if structure.fill == 0:
+        reason = "the graph is chordal: one sweep over its cliques settles it"
+    else:
+        reason = f"all {structure.states} states of the bags that hold the {structure.fill} fill edges were tried"
+    most = task.budget.fill
+    if most is not None and structure.fill > most:
+        reason += f" (more fill than the {most} budgeted, as the states allowed it)"
+    return Found(Verdict.PROVEN, value, value, chosen, structure, reason)
+
+
+def _too_many_states(task: Task, structure: Structure, fits: U8) -> str:
+    states = structure.forest.figures[:, STATES]
+    most = int(states[fits == 0].max())
+    budget = task.budget
+    count = int((fits == 0).sum())
+    if most > budget.states or int(states.sum()) > budget.states:
+        return (
+            f"state budget: {count} of {fits.size} fill cores do not fit into {budget.states} states"
+            f" (bags of up to {structure.largest_bag} vertices)"
+        )
+    return f"memory budget: the tables of {count} of {fits.size} fill cores do not fit"
+
+
+def _homes(structure: Structure, fits: U8) -> I32:
+    """Vertices of the cores that do not fit, ascending."""
+    cores = structure.cores
+    loose = np.repeat(fits == 0, np.diff(cores.ptr))
+    return np.sort(structure.numbering.order[cores.place[loose]])
+
+
+def _search_on(task: Task, chosen: U8, bound: int, candidates: I32, structure: Structure | None, reason: str) -> Found:
+    """Improve a pair by local search, if the job wants it."""
+    task.gauge.incumbent(task.weight(chosen))
+    task.gauge.bound(bound)
+    if task.when_over == "bound" and candidates.size and not task.stop:
+        chosen = bounds.improve(
+            task.graph, task.weights, chosen, candidates, bound, task.gauge.incumbent, task.gauge.monitor
+        )
+        if task.stop is Stop.SECONDS:
+            reason += "; seconds ran out in the local search"
+    return _close(task, chosen, bound, structure, reason)

@@ -1,0 +1,36 @@
+"""Question ``independent-set``: the heaviest set of vertices with no edge inside.
+
+The planner's reading: the best conflict-free choice on one channel.
+"""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from ..arrays import I64
+from ..budget import Budget
+from ..graph import Graph
+from ..monitor import Monitor
+from ..outcome import Outcome
+from .conclude import contradiction, outcome_of
+from .gauge import Gauge
+from .heaviest import Task, find_heaviest
+from .pins import Contradiction, apply_pins, lift, pin_array
+
+
+@dataclass(frozen=True)
+class IndependentSet:
+    """``must``: vertices that have to be chosen; ``never``: vertices that may not be; both 0-based."""
+
+    must: Sequence[int] | I64 = ()
+    never: Sequence[int] | I64 = ()
+
+    def answer(self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor) -> Outcome:
+        """Answer for checked arguments; see :func:`nearchord_solve.solve`."""
+        must = pin_array("question.must", self.must, graph.n)
+        never = pin_array("question.never", self.never, graph.n)
+        rest = apply_pins(graph, weights, must, never)
+        if isinstance(rest, Contradiction):
+            return contradiction(rest, "must be chosen", "must not be chosen")
+        gauge = Gauge(monitor, rest.taken_weight, 1)
+        found = find_heaviest(Task(rest.graph, rest.weights, budget, when_over, gauge))
+        return outcome_of(found, rest.taken_weight, 1, lambda chosen: lift(rest, chosen))

@@ -1,0 +1,54 @@
+"""The one entry to all questions."""
+
+import numpy as np
+
+from .arrays import I64
+from .budget import Budget
+from .errors import SolverError
+from .graph import Graph
+from .monitor import Monitor, Phase
+from .outcome import Outcome
+from .questions import IndependentSet, VertexCover
+
+MOST_WEIGHT = 2**62  # sums of weights stay below, so that sums and differences of two fit int64
+
+
+def solve(
+    question: IndependentSet | VertexCover,
+    graph: Graph,
+    weights: I64 | None,
+    budget: Budget,
+    when_over: str,
+    monitor: Monitor,
+) -> Outcome:
+    """Answer ``question`` about ``graph`` within ``budget``.
+
+    ``weights`` int64[n], non-negative, sum below 2**62; None for all ones.  ``when_over``: "bound" to go on
+    with bounds when the fill or state budget does not suffice, "stop" to end there.  A STOP written to the
+    monitor's cells ends the solve soon: SECONDS with the best feasible choice and a valid bound, CANCEL with
+    nothing.  Same arguments, same answer, unless stopped.  Raises SolverError for bad arguments.
+    O(n + m) outside fill cores; inside, as their states.
+    """
+    if when_over not in ("bound", "stop"):
+        raise SolverError("when_over", f"must be 'bound' or 'stop', not {when_over!r}")
+    checked = check_weights(weights, graph.n)
+    monitor.enter(Phase.READ)
+    outcome = question.answer(graph, checked, budget, when_over, monitor)
+    monitor.enter(Phase.DONE)
+    return outcome
+
+
+def check_weights(weights: I64 | None, n: int) -> I64:
+    """Weights as a contiguous int64 array; SolverError names the first bad vertex."""
+    if weights is None:
+        return np.ones(n, np.int64)
+    if weights.dtype != np.int64 or weights.shape != (n,):
+        raise SolverError("weights", f"must be an int64 array of {n}, got {weights.dtype.name}{weights.shape}")
+    if n and weights.min() < 0:
+        v = int(np.argmax(weights < 0))
+        raise SolverError("weights", f"vertex {v}: weight {weights[v]} is negative")
+    if n and int(weights.max()) * n >= MOST_WEIGHT and sum(weights.tolist()) >= MOST_WEIGHT:
+        raise SolverError("weights", "must sum to less than 2**62")
+    plain = np.require(weights, requirements=["C", "A"]).view()
+    plain.flags.writeable = False
+    return plain

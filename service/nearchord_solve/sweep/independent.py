@@ -1,0 +1,63 @@
+"""The heaviest independent set of a graph of known structure."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from ..arrays import I64, U8, U32
+from ..kernels import sweep as kernels
+from ..kernels.layout import TABLE, Tries
+from ..monitor import Monitor, Phase
+from ..tree import Structure
+
+
+@dataclass(frozen=True, eq=False)
+class Swept:
+    """``bound`` is the optimum if all cores were settled exactly, else an upper bound; ``chosen`` uint8[n].
+
+    ``chosen`` is None if the sweep was stopped before the choice was complete.
+    """
+
+    bound: int
+    chosen: U8 | None
+
+
+def sweep(structure: Structure, weights: I64, fits: U8, monitor: Monitor) -> Swept | None:
+    """Collect values inwards, then choose outwards; None if stopped before a bound was known.
+
+    ``weights`` int64[n], by vertex; ``fits`` uint8[C]: cores to settle by tables.  Time O(n + m) outside
+    cores, plus states times their size inside.
+    """
+    numbering, cores, forest = structure.numbering, structure.cores, structure.forest
+    n = weights.size
+    monitor.enter(Phase.SWEEP, n)
+    residual = weights[numbering.order]
+    tries = _empty_tries(structure, fits)
+    done, bound = kernels.inward(numbering, forest, cores.ptr, cores.place, fits, tries, residual, monitor.cells)
+    if not done:
+        return None
+    by_place = np.empty(n, np.uint8)
+    done = kernels.outward(numbering, forest, cores.ptr, cores.place, fits, tries, residual, by_place, monitor.cells)
+    if not done:
+        return Swept(int(bound), None)
+    chosen = np.empty(n, np.uint8)
+    chosen[numbering.order] = by_place
+    return Swept(int(bound), chosen)
+
+
+def _empty_tries(structure: Structure, fits: U8) -> Tries:
+    bags = structure.forest.bag_kind.size
+    kept = int(structure.forest.figures[fits != 0, TABLE].sum())
+    room = kept + int(np.diff(structure.forest.bag_ptr).max(initial=0))
+    return Tries(
+        np.zeros(bags, np.int64),
+        np.zeros(bags, np.int64),
+        np.empty(room, np.int32),
+        np.empty(room, np.int64),
+        np.empty(room, np.int64),
+    )
+
+
+def as_vertices(chosen: U8) -> U32:
+    """Chosen vertices, ascending."""
+    return np.flatnonzero(chosen).astype(np.uint32)
