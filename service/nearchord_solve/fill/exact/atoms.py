@@ -17,7 +17,7 @@ def minimal_triangulation(adj: Sequence[Mask], within: Mask) -> tuple[list[int],
     of the vertices and, at each of them, its neighbours in the triangulation that come later in the order.
     O(n m) time.
     """
-    weight = {v: 0 for v in members(within)}
+    weight = dict.fromkeys(members(within), 0)
     left = within
     backwards: list[tuple[int, Mask]] = []
     later: dict[int, Mask] = dict.fromkeys(weight, 0)

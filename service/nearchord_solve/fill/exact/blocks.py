@@ -15,12 +15,13 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from nearchord_solve.arrays import I64
 from nearchord_solve.fill.exact.core import Core, Mask, Pair, around, components, members, missing
 from nearchord_solve.fill.exact.packing import DENOMINATOR
 from nearchord_solve.fill.exact.separators import connected_order, minimal_separators, potential_cliques
 from nearchord_solve.fill.exact.status import Status
 from nearchord_solve.fill.exact.words import masks_of, rows_of
-from nearchord_solve.kernels.compiled import I64
+from nearchord_solve.kernels.cells import STOP
 
 MOST_CLIQUES = 200_000
 _ENDLESS = 2**62
@@ -40,8 +41,9 @@ def solve_blocks(
 ) -> tuple[Status, list[Pair]]:
     """A minimum fill of at most ``limit`` edges.
 
-    ``base`` and ``listed`` prices as from :func:`packing.prices`; 0 and {} always hold.  Returns (FOUND, fill), (NONE, [])
-    if every fill costs more, (TOO_LARGE, []) if there are more separators or cliques than allowed, or (STOPPED, []).
+    ``base`` and ``listed`` prices as from :func:`packing.prices`; 0 and {} always hold.  Returns (FOUND, fill),
+    (NONE, []) if every fill costs more, (TOO_LARGE, []) if there are more separators or cliques than allowed, or
+    (STOPPED, []).
     """
     order = connected_order(core.adj)
     place = {v: i for i, v in enumerate(order)}
@@ -60,15 +62,13 @@ def solve_blocks(
     sets = np.frombuffer(packed, np.uint64).reshape(-1, width).copy()
     cliques = potential_cliques(rows, sets, prices, limit * DENOMINATOR - base, MOST_CLIQUES, cells)
     if cliques is None:
-        return (Status.STOPPED if cells[0] else Status.TOO_LARGE), []
+        return (Status.STOPPED if cells[STOP] else Status.TOO_LARGE), []
     cost, chosen = _best(adj, sizes, masks_of(cliques), limit, cells)
-    if cells[0]:
+    if cells[STOP]:
         return Status.STOPPED, []
     if cost > limit:
         return Status.NONE, []
-    pairs = {
-        (min(order[a], order[b]), max(order[a], order[b])) for clique in chosen for a, b in missing(adj, clique)
-    }
+    pairs = {(min(order[a], order[b]), max(order[a], order[b])) for clique in chosen for a, b in missing(adj, clique)}
     return Status.FOUND, sorted(pairs)
 
 
@@ -77,7 +77,7 @@ def _best(adj: list[Mask], sizes: list[int], cliques: list[Mask], limit: int, ce
     everything = (1 << len(adj)) - 1
     splits: dict[Mask, list[_Split]] = {}
     for clique in cliques:
-        if cells[0]:
+        if cells[STOP]:
             return _ENDLESS, []
         _record(adj, sizes, clique, everything, splits)
     cost: dict[Mask, int] = {}
@@ -101,7 +101,9 @@ def _best(adj: list[Mask], sizes: list[int], cliques: list[Mask], limit: int, ce
     return cost.get(everything, _ENDLESS), chosen
 
 
-def _record(adj: list[Mask], sizes: list[int], clique: Mask, everything: Mask, splits: dict[Mask, list[_Split]]) -> None:
+def _record(
+    adj: list[Mask], sizes: list[int], clique: Mask, everything: Mask, splits: dict[Mask, list[_Split]]
+) -> None:
     """Enter a clique at the block of each of its separators, and at the whole graph."""
     sides = [(part, around(adj, part)) for part in components(adj, everything & ~clique)]
     lacking = _lacking(adj, sizes, clique)

@@ -1,8 +1,8 @@
 """Branch and cut: decide one pair after another, with the relaxation as bound.
 
 Every case is closed by a bound worked out exactly from multipliers (module :mod:`packing`), so the tree is a
-certificate if every decided pair of classes stands for one pair of the part.  Depth first; the pair to decide is the one
-whose two cases raise the relaxation most (product of the two gains, over a few candidates).
+certificate if every decided pair of classes stands for one pair of the part.  Depth first; the pair to decide is
+the one whose two cases raise the relaxation most (product of the two gains, over a few candidates).
 """
 
 from dataclasses import dataclass

@@ -10,7 +10,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from nearchord_solve.kernels.compiled import I32, I64
+from nearchord_solve.arrays import I32, I64
 
 Pair = tuple[int, int]
 Mask = int
@@ -76,9 +76,7 @@ class Core:
 
     def lift(self, pairs: Sequence[Pair]) -> list[Pair]:
         """The pairs of the part, each with its smaller end first."""
-        return [
-            (min(u, v), max(u, v)) for a, b in pairs for u in self.classes[a] for v in self.classes[b]
-        ]
+        return [(min(u, v), max(u, v)) for a, b in pairs for u in self.classes[a] for v in self.classes[b]]
 
 
 def mask_of(vertices: Iterator[int] | Sequence[int]) -> Mask:

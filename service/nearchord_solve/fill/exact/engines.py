@@ -1,7 +1,7 @@
 """Choosing the engine for an irreducible core.
 
-Few vertices outside a largest clique: subsets.  Otherwise cutting planes; if they leave a gap, potential maximal cliques
-when minimal separators are few, then a bounded number of cases by branch and cut, then more separators, then
+Few vertices outside a largest clique: subsets.  Otherwise cutting planes; if they leave a gap, potential maximal
+cliques when minimal separators are few, then a bounded number of cases by branch and cut, then more separators, then
 cases without end.  Limits are counts, never times, so the way is the same on every machine.
 """
 

@@ -16,7 +16,8 @@ DENOMINATOR = 2**30
 def sides_and_chords(cycle: Cycle) -> tuple[list[Pair], list[Pair]]:
     """Pairs that follow each other in a cycle, and the other pairs; smaller end first."""
     c = len(cycle)
-    sides, chords = [], []
+    sides: list[Pair] = []
+    chords: list[Pair] = []
     for i in range(c):
         for j in range(i + 1, c):
             a, b = cycle[i], cycle[j]
@@ -54,9 +55,7 @@ def weight(core: Core, pair: Pair) -> int:
     return core.sizes[pair[0]] * core.sizes[pair[1]] * DENOMINATOR
 
 
-def exact_bound(
-    core: Core, cycles: Sequence[Cycle], numerators: Sequence[int], decided: Mapping[Pair, int]
-) -> int:
+def exact_bound(core: Core, cycles: Sequence[Cycle], numerators: Sequence[int], decided: Mapping[Pair, int]) -> int:
     """Fill edges of the part that any fill needs which agrees with ``decided`` (pair of classes -> 1 in, 0 out)."""
     total, load = summed(core, cycles, numerators)
     total -= sum(max(0, amount - weight(core, pair)) for pair, amount in load.items() if pair not in decided)

@@ -4,23 +4,25 @@ from collections.abc import Mapping
 
 import highspy
 import numpy as np
-from numpy.typing import NDArray
 
+from nearchord_solve.arrays import F64
 from nearchord_solve.fill.exact.core import Core, Pair
 from nearchord_solve.fill.exact.cycles import Cycle
 from nearchord_solve.fill.exact.packing import sides_and_chords
 
-F64 = NDArray[np.float64]
-
 FORBIDDING = 1e5
 
 
-class _Silent(highspy.Highs):  # type: ignore[misc]
+class _Silent(highspy.Highs):
     """A solver that prints nothing, not even when it is made."""
 
+    def __init__(self) -> None:
+        super().__init__()  # type: ignore[no-untyped-call]
+
     def enableCallbacks(self) -> None:  # noqa: N802
+        """Called on construction: silence comes first."""
         self.silent()
-        super().enableCallbacks()
+        super().enableCallbacks()  # type: ignore[no-untyped-call]
 
 
 class Relaxation:
@@ -120,7 +122,8 @@ class Relaxation:
 
     def duals(self) -> F64:
         """Multiplier of each cut, >= 0."""
-        return np.maximum(np.array(self._solver.getSolution().row_dual), 0.0)
+        found: F64 = np.array(self._solver.getSolution().row_dual)
+        return np.clip(found, 0.0, None)
 
     def fractional(self, tolerance: float) -> list[Pair]:
         """Pairs with x neither 0 nor 1, the most costly and undecided ones first."""

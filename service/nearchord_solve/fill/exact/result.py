@@ -22,8 +22,8 @@ from dataclasses import dataclass
 from enum import StrEnum
 from fractions import Fraction
 
+from nearchord_solve.arrays import I32
 from nearchord_solve.fill.exact.core import Pair
-from nearchord_solve.kernels.compiled import I32
 
 Group = tuple[int, ...]
 Ring = tuple[Group, ...]

@@ -3,16 +3,15 @@
 from dataclasses import dataclass, field
 
 import numpy as np
-from numpy.typing import NDArray
 
+from nearchord_solve.arrays import F64
 from nearchord_solve.fill.exact.core import Core, Pair
 from nearchord_solve.fill.exact.cycles import Cycle, violated
-from nearchord_solve.fill.exact.greedy import BY_FILL, completed, prices_of
+from nearchord_solve.fill.exact.greedy import completed, prices_of
+from nearchord_solve.fill.exact.kernels.greedy import BY_FILL
 from nearchord_solve.fill.exact.packing import exact_bound, rounded, sides_and_chords
 from nearchord_solve.fill.exact.relaxation import Relaxation
 from nearchord_solve.monitor import Monitor
-
-F64 = NDArray[np.float64]
 
 THRESHOLDS = (1e-6, 0.5, 0.99, 0.3, 0.7)
 MOST_ROUNDS = 400

@@ -9,15 +9,14 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from nearchord_solve.fill.exact.core import Core, Pair, joined, pair_array
+from nearchord_solve.arrays import I32, I64
+from nearchord_solve.fill.exact.core import Core, Pair, pair_array
 from nearchord_solve.fill.exact.engines import first_bounds, search_core
-from nearchord_solve.fill.exact.greedy import thin
+from nearchord_solve.fill.exact.greedy import minimal
 from nearchord_solve.fill.exact.packing import packing_of
 from nearchord_solve.fill.exact.reduce import contract_twins, decompose, reduce_core
 from nearchord_solve.fill.exact.result import FillResult, PieceProof, ProofKind
 from nearchord_solve.fill.exact.root import Bounds, cut
-from nearchord_solve.fill.exact.words import new_pairs, rows_of
-from nearchord_solve.kernels.compiled import I32, I64
 from nearchord_solve.monitor import Monitor
 
 UNLIMITED = 2**62
@@ -116,11 +115,3 @@ def proof_of(piece: Piece) -> PieceProof:
         return PieceProof(ProofKind.SEARCH, vertices, piece.lower)
     packing = packing_of(piece.core, piece.bounds.cycles, piece.bounds.numerators)
     return PieceProof(ProofKind.PACKING, vertices, piece.lower, packing)
-
-
-def minimal(core: Core, fill: list[Pair]) -> list[Pair]:
-    """A subset of a fill that is still one and has no smaller one inside."""
-    graph = rows_of(core.adj)
-    filled = rows_of(joined(core.adj, fill))
-    thin(filled, graph)
-    return new_pairs(core.adj, filled)

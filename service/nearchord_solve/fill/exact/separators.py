@@ -5,8 +5,9 @@ is a maximal clique of some minimal triangulation; equivalently, no component of
 its vertices are adjacent or seen by a common component (Bouchitté and Todinca, SIAM J. Comput. 31 (2001) 212-232).
 
 Enumeration adds one vertex a at a time (Bouchitté and Todinca, Theor. Comput. Sci. 276 (2002) 17-32): a potential
-maximal clique of G is one of G - a, or one of those with a added, or S + a, or S + (T & C), where S and T are minimal separators
-of G, C is a full component of S, and in the last case S avoids a and is no minimal separator of G - a.
+maximal clique of G is one of G - a, or one of those with a added, or S + a, or S + (T & C), where S and T are
+minimal separators of G, C is a full component of S, and in the last case S avoids a and is no minimal separator of
+G - a.
 
 *The budget keeps it complete.*  Let prices d >= 0 on pairs be such that a fill containing the pairs M costs at least
 ``base`` + d(M) (such prices come from the relaxation: weight minus load).  A wanted fill costs at most k, so
@@ -16,13 +17,11 @@ budget, so separators themselves are enumerated without one.
 """
 
 import numpy as np
-from numpy.typing import NDArray
 
+from nearchord_solve.arrays import I64, U64
 from nearchord_solve.fill.exact.core import Mask, around, components, members
-from nearchord_solve.fill.exact.words import unpack
-from nearchord_solve.kernels.compiled import I64, U64, kernel, lowest
-
-Bools = NDArray[np.bool_]
+from nearchord_solve.fill.exact.kernels.separators import accepted, affordable, full_sides, separating
+from nearchord_solve.kernels.cells import STOP
 
 
 def minimal_separators(adj: list[Mask], within: Mask, most: int) -> list[Mask] | None:
@@ -67,9 +66,7 @@ def connected_order(adj: list[Mask]) -> list[int]:
     return order
 
 
-def potential_cliques(
-    rows: U64, separators: U64, prices: I64, slack: int, most: int, cells: I64
-) -> U64 | None:
+def potential_cliques(rows: U64, separators: U64, prices: I64, slack: int, most: int, cells: I64) -> U64 | None:
     """All potential maximal cliques whose missing pairs cost at most ``slack``.
 
     ``rows`` uint64[n, W] of a graph numbered by :func:`connected_order`; ``separators`` uint64[s, W] all its minimal
@@ -80,7 +77,7 @@ def potential_cliques(
     found = np.zeros((1, rows.shape[1]), np.uint64)
     found[0, 0] = 1
     for a in range(1, n):
-        if cells[0] != 0:
+        if cells[STOP] != 0:
             return None
         now, before = levels[a], levels[a - 1]
         candidates = [found, with_vertex(found, a), with_vertex(now, a)]
@@ -90,7 +87,7 @@ def potential_cliques(
         starts = now[[not _in(row, a) and row.tobytes() not in known for row in now]]
         starts = starts[affordable(starts, prices, slack)]
         for start in starts:
-            if cells[0] != 0:
+            if cells[STOP] != 0:
                 return None
             for full in full_sides(rows, a + 1, start):
                 extended = distinct(now & full)
@@ -139,156 +136,3 @@ def without_vertex(sets: U64, a: int) -> U64:
 
 def _in(words: U64, a: int) -> bool:
     return bool(words[a >> 6] >> np.uint64(a & 63) & np.uint64(1))
-
-
-@kernel
-def affordable(sets: U64, prices: I64, slack: int) -> Bools:
-    """Which sets have missing pairs of total price at most ``slack`` (prices of edges are 0)."""
-    fine = np.zeros(sets.shape[0], np.bool_)
-    inside = np.empty(prices.shape[0], np.int64)
-    for s in range(sets.shape[0]):
-        count = unpack(sets[s], inside)
-        total = np.int64(0)
-        for i in range(count):
-            for j in range(i + 1, count):
-                total += prices[inside[i], inside[j]]
-            if total > slack:
-                break
-        fine[s] = total <= slack
-    return fine
-
-
-@kernel
-def _side(rows: U64, start: int, left: U64, part: U64, near: U64, stack: I64) -> None:
-    """The component of ``left`` that holds ``start``: moved from ``left`` to ``part``; ``near`` gets all neighbours."""
-    width = left.shape[0]
-    for w in range(width):
-        part[w] = 0
-        near[w] = 0
-    part[start >> 6] |= np.uint64(1) << np.uint64(start & 63)
-    left[start >> 6] &= ~(np.uint64(1) << np.uint64(start & 63))
-    stack[0] = start
-    height = 1
-    while height > 0:
-        height -= 1
-        v = stack[height]
-        for w in range(width):
-            near[w] |= rows[v, w]
-            fresh = rows[v, w] & left[w]
-            left[w] &= ~fresh
-            part[w] |= fresh
-            while fresh != 0:
-                stack[height] = 64 * w + lowest(fresh)
-                height += 1
-                fresh &= fresh - np.uint64(1)
-
-
-@kernel
-def _rest(count: int, chosen: U64, left: U64) -> None:
-    """Vertices 0..count-1 outside ``chosen``."""
-    for w in range(left.shape[0]):
-        left[w] = 0
-    for v in range(count):
-        left[v >> 6] |= np.uint64(1) << np.uint64(v & 63)
-    for w in range(left.shape[0]):
-        left[w] &= ~chosen[w]
-
-
-@kernel
-def separating(rows: U64, count: int, sets: U64) -> Bools:
-    """Which sets are minimal separators of the graph on vertices 0..count-1."""
-    n, width = rows.shape
-    fine = np.zeros(sets.shape[0], np.bool_)
-    left = np.empty(width, np.uint64)
-    part = np.empty(width, np.uint64)
-    near = np.empty(width, np.uint64)
-    stack = np.empty(n, np.int64)
-    for s in range(sets.shape[0]):
-        _rest(count, sets[s], left)
-        full = 0
-        empty = True
-        for w in range(width):
-            empty &= sets[s, w] == 0
-        for v in range(count):
-            if (left[v >> 6] >> np.uint64(v & 63)) & np.uint64(1) == 0:
-                continue
-            _side(rows, v, left, part, near, stack)
-            sees_all = True
-            for w in range(width):
-                sees_all &= sets[s, w] & ~near[w] == 0
-            full += sees_all
-        fine[s] = full >= 2 and not empty
-    return fine
-
-
-@kernel
-def full_sides(rows: U64, count: int, separator: U64) -> U64:
-    """Components of vertices 0..count-1 minus a separator that see all of it: uint64[sides, W]."""
-    n, width = rows.shape
-    left = np.empty(width, np.uint64)
-    part = np.empty(width, np.uint64)
-    near = np.empty(width, np.uint64)
-    stack = np.empty(n, np.int64)
-    sides = np.empty((count, width), np.uint64)
-    found = 0
-    _rest(count, separator, left)
-    for v in range(count):
-        if (left[v >> 6] >> np.uint64(v & 63)) & np.uint64(1) == 0:
-            continue
-        _side(rows, v, left, part, near, stack)
-        sees_all = True
-        for w in range(width):
-            sees_all &= separator[w] & ~near[w] == 0
-        if sees_all:
-            sides[found] = part
-            found += 1
-    return sides[:found]
-
-
-@kernel
-def accepted(rows: U64, count: int, sets: U64, prices: I64, slack: int) -> Bools:
-    """Which sets are potential maximal cliques of the graph on vertices 0..count-1 within the budget."""
-    n, width = rows.shape
-    fine = affordable(sets, prices, slack)
-    left = np.empty(width, np.uint64)
-    part = np.empty(width, np.uint64)
-    near = np.empty(width, np.uint64)
-    stack = np.empty(n, np.int64)
-    inside = np.empty(n, np.int64)
-    seen = np.empty((n, width), np.uint64)
-    for s in range(sets.shape[0]):
-        if not fine[s]:
-            continue
-        size = unpack(sets[s], inside)
-        for i in range(size):
-            for w in range(width):
-                seen[i, w] = rows[inside[i], w]
-        _rest(count, sets[s], left)
-        good = True
-        for v in range(count):
-            if (left[v >> 6] >> np.uint64(v & 63)) & np.uint64(1) == 0:
-                continue
-            _side(rows, v, left, part, near, stack)
-            full = True
-            for w in range(width):
-                near[w] &= sets[s, w]
-                full &= near[w] == sets[s, w]
-            if full:
-                good = False
-                break
-            for i in range(size):
-                x = inside[i]
-                if (near[x >> 6] >> np.uint64(x & 63)) & np.uint64(1) != 0:
-                    for w in range(width):
-                        seen[i, w] |= near[w]
-        if good:
-            for i in range(size):
-                x = inside[i]
-                for w in range(width):
-                    lacking = sets[s, w] & ~seen[i, w]
-                    if x >> 6 == w:
-                        lacking &= ~(np.uint64(1) << np.uint64(x & 63))
-                    if lacking != 0:
-                        good = False
-        fine[s] = good
-    return fine

@@ -10,11 +10,11 @@ Time O(2^k n^2) word operations and 3 * 2^k bytes for k vertices outside the cli
 """
 
 import numpy as np
-from numpy.typing import NDArray
 
-from nearchord_solve.fill.exact.core import Core, Mask, Pair, members
+from nearchord_solve.arrays import I64
+from nearchord_solve.fill.exact.core import Core, Mask, Pair, members, missing
+from nearchord_solve.fill.exact.kernels.subsets import sweep
 from nearchord_solve.fill.exact.status import Status
-from nearchord_solve.kernels.compiled import I64, U64, kernel, lowest, ones
 
 MOST_FREE = 24
 MOST_VERTICES = 62
@@ -59,11 +59,11 @@ def solve_subsets(core: Core, limit: int, cells: I64) -> tuple[Status, list[Pair
     adj = np.array([sum(1 << place[u] for u in members(core.adj[v])) for v in order], np.uint64)
     sizes = np.array([core.sizes[v] for v in order], np.int64)
     last = np.full(1 << free, -1, np.int8)
-    status = Status(_sweep(adj, sizes, free, min(limit, _MOST_COST), last, cells))
+    status = Status(sweep(adj, sizes, free, min(limit, _MOST_COST), last, cells))
     if status is not Status.FOUND:
         return status, []
     gone = (1 << free) - 1
-    pairs = []
+    pairs: list[Pair] = []
     sequence = []
     while gone:
         v = int(last[gone])
@@ -74,98 +74,8 @@ def solve_subsets(core: Core, limit: int, cells: I64) -> tuple[Status, list[Pair
     for v in reversed(sequence):
         left &= ~(1 << v)
         near = rows[v] & left
+        lacking = [(order[u], order[x]) for u, x in missing(rows, near)]
+        pairs += [(min(pair), max(pair)) for pair in lacking]
         for u in members(near):
-            for x in members(near & ~rows[u] & ~((2 << u) - 1)):
-                pairs.append((min(order[u], order[x]), max(order[u], order[x])))
             rows[u] |= near & ~(1 << u)
     return Status.FOUND, pairs
-
-
-@kernel
-def _weight(words: np.uint64, sizes: I64, plain: bool) -> int:
-    if plain:
-        return ones(words)
-    total = 0
-    left = words
-    while left != 0:
-        total += sizes[lowest(left)]
-        left &= left - np.uint64(1)
-    return total
-
-
-@kernel
-def _sweep(adj: U64, sizes: I64, free: int, limit: int, last: NDArray[np.int8], cells: I64) -> int:
-    """Visit the sets in ascending order, each after all its subsets.
-
-    ``adj`` uint64[n], ``sizes`` int64[n]; ``last`` int8[2^free] is overwritten with the vertex eliminated last, -1 for
-    sets not reached.  Costs are uint16 and stay at most ``limit`` <= 65534.
-    """
-    n = adj.shape[0]
-    one = np.uint64(1)
-    best = np.full(1 << free, 65535, np.uint16)
-    best[0] = 0
-    plain = sizes.max() == 1
-    reached = np.empty(n, np.uint64)
-    everything = (one << np.uint64(n)) - one
-    outside = np.uint64(0)
-    for gone in range(1 << free):
-        if (gone & 4095) == 0 and cells[0] != 0:
-            return 1
-        so_far = np.int64(best[gone])
-        if so_far > limit:
-            continue
-        inside = np.uint64(gone)
-        outside = everything & ~inside
-        left = outside
-        while left != 0:
-            v = lowest(left)
-            left &= left - one
-            reached[v] = adj[v]
-        rest = inside
-        while rest != 0:
-            part = rest & (~rest + one)
-            frontier = part
-            near = np.uint64(0)
-            while frontier != 0:
-                u = lowest(frontier)
-                frontier &= frontier - one
-                near |= adj[u]
-                fresh = adj[u] & inside & ~part
-                part |= fresh
-                frontier |= fresh
-            rest &= ~part
-            near &= outside
-            left = near
-            while left != 0:
-                v = lowest(left)
-                left &= left - one
-                reached[v] |= near
-        left = outside
-        while left != 0:
-            v = lowest(left)
-            left &= left - one
-            reached[v] = reached[v] & outside & ~(one << np.uint64(v))
-        only = -1
-        for v in range(free):
-            if (inside >> np.uint64(v)) & one != 0:
-                continue
-            simplicial = True
-            left = reached[v]
-            while left != 0:
-                u = lowest(left)
-                left &= left - one
-                if reached[v] & ~reached[u] & ~(one << np.uint64(u)) != 0:
-                    simplicial = False
-                    break
-            if simplicial:
-                only = v
-                break
-        for v in range(free):
-            if (inside >> np.uint64(v)) & one != 0 or (only >= 0 and v != only):
-                continue
-            cost = so_far + sizes[v] * _weight(reached[v] & ~adj[v], sizes, plain)
-            after = gone | (1 << v)
-            if cost <= limit and cost < best[after]:
-                best[after] = cost
-                last[after] = v
-    return 0 if best[(1 << free) - 1] <= limit else 2

@@ -1,11 +1,10 @@
-"""Bit rows for kernels: uint64[n, W] with W = ceil(n / 64); bit j of row i says that i and j are adjacent."""
+"""Masks to bit rows and back: uint64[n, W] with W = ceil(n / 64); bit j of row i says that i and j are adjacent."""
 
 from collections.abc import Sequence
 
 import numpy as np
 
-from nearchord_solve.kernels.compiled import I64, U64, kernel, lowest
-
+from nearchord_solve.arrays import U64
 from nearchord_solve.fill.exact.core import Mask, Pair
 
 
@@ -31,36 +30,3 @@ def new_pairs(adj: Sequence[Mask], filled: U64) -> list[Pair]:
             pairs.append((a, a + low.bit_length()))
             extra ^= low
     return pairs
-
-
-@kernel
-def has(rows: U64, i: int, j: int) -> bool:
-    """Whether i and j are adjacent."""
-    return (rows[i, j >> 6] >> np.uint64(j & 63)) & np.uint64(1) != 0
-
-
-@kernel
-def put(rows: U64, i: int, j: int) -> None:
-    """Make i and j adjacent."""
-    rows[i, j >> 6] |= np.uint64(1) << np.uint64(j & 63)
-    rows[j, i >> 6] |= np.uint64(1) << np.uint64(i & 63)
-
-
-@kernel
-def take(rows: U64, i: int, j: int) -> None:
-    """Make i and j non-adjacent."""
-    rows[i, j >> 6] &= ~(np.uint64(1) << np.uint64(j & 63))
-    rows[j, i >> 6] &= ~(np.uint64(1) << np.uint64(i & 63))
-
-
-@kernel
-def unpack(words: U64, found: I64) -> int:
-    """Write the members of one set, ascending, into ``found``; returns their number."""
-    count = 0
-    for w in range(words.shape[0]):
-        left = words[w]
-        while left != 0:
-            found[count] = 64 * w + lowest(left)
-            count += 1
-            left &= left - np.uint64(1)
-    return count
