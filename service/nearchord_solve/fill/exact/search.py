@@ -3,38 +3,62 @@
 1. Split into atoms and contract true twins (module :mod:`reduce`, rules 1, 2, 5).
 2. For each atom take a fill from a portfolio and a packing bound by cutting planes.  Where they meet, the packing is
    the proof.
-3. Elsewhere apply the safe edges (rule 3) and search what remains with the engine that fits.
+3. Where they nearly meet, try a few cases by branch and cut: the tree is the proof.
+4. Elsewhere apply the safe edges (rule 3) and search what remains with the engine that fits; there is no proof but
+   the search itself.
 """
 
 from collections.abc import Sequence
 from dataclasses import dataclass
 
 from nearchord_solve.arrays import I32, I64
+from nearchord_solve.fill.exact.branch import CaseSearch
 from nearchord_solve.fill.exact.core import Core, Pair, pair_array
 from nearchord_solve.fill.exact.engines import first_bounds, search_core
 from nearchord_solve.fill.exact.greedy import minimal
 from nearchord_solve.fill.exact.packing import packing_of
 from nearchord_solve.fill.exact.reduce import contract_twins, decompose, reduce_core
-from nearchord_solve.fill.exact.result import FillResult, PieceProof, ProofKind
+from nearchord_solve.fill.exact.relaxation import Relaxation
+from nearchord_solve.fill.exact.result import Branch, FillResult, Packing, PieceProof, ProofKind
 from nearchord_solve.fill.exact.root import Bounds, cut
 from nearchord_solve.monitor import Monitor
 
 UNLIMITED = 2**62
+PROOF_NODES = 150
 
 
 @dataclass
 class Piece:
-    """An atom without twins; its cheapest fill in vertices of the part; what is known about its fill number."""
+    """An atom without twins, and what is known about its fill number.
+
+    ``fill``: the cheapest fill found, in vertices of the part.  ``relaxation`` is kept while the bounds are apart.
+    ``lower``: the best lower bound; ``packed``: the one that the multipliers in ``bounds`` prove.
+    """
 
     core: Core
     bounds: Bounds
+    relaxation: Relaxation | None
     fill: list[Pair]
     lower: int
+    packed: int
+    tree: tuple[Branch, ...] = ()
 
     @property
     def closed(self) -> bool:
         """Whether the fill is known to be a minimum one."""
         return self.lower >= len(self.fill)
+
+    @property
+    def packing(self) -> Packing | None:
+        """The packing that proves ``lower``, if the multipliers do."""
+        if self.lower > self.packed:
+            return None
+        return packing_of(self.core, self.bounds.cycles, self.bounds.numerators)
+
+    @property
+    def narrow(self) -> bool:
+        """Whether a few cases may close the gap."""
+        return len(self.fill) - self.lower <= 2 + self.lower // 25
 
 
 def minimum_fill(ptr: I64, adj: I32, limit: int | None, monitor: Monitor) -> FillResult:
@@ -72,13 +96,34 @@ def bounded(atom: Core, monitor: Monitor) -> Piece:
     """Portfolio and packing bound of an atom."""
     core = contract_twins(atom)
     bounds = first_bounds(core)
-    if not monitor.stop:
-        cut(core, bounds, UNLIMITED, monitor)
-    return Piece(core, bounds, core.lift(bounds.best), bounds.lower)
+    relaxation = None if monitor.stop else cut(core, bounds, UNLIMITED, monitor)
+    return Piece(core, bounds, None if bounds.closed else relaxation, core.lift(bounds.best), bounds.lower, bounds.lower)
 
 
 def search_piece(piece: Piece, most: int, monitor: Monitor) -> None:
     """Close the gap of an atom, or show that it needs more than ``most`` edges."""
+    if not (piece.narrow and by_cases(piece, most, monitor)):
+        by_engines(piece, most, monitor)
+    piece.relaxation = None
+
+
+def by_cases(piece: Piece, most: int, monitor: Monitor) -> bool:
+    """Try a few cases; whether they settled it.  They are a proof if no case is about several pairs at once."""
+    assert piece.relaxation is not None
+    cases = CaseSearch(piece.core, piece.relaxation, piece.bounds, most, monitor)
+    settled = cases.run(PROOF_NODES)
+    found = piece.core.lift(piece.bounds.best)
+    if len(found) < len(piece.fill):
+        piece.fill = found
+    if settled:
+        piece.lower = piece.bounds.lower
+        if cases.checkable:
+            piece.tree = tuple(cases.tree)
+    return settled
+
+
+def by_engines(piece: Piece, most: int, monitor: Monitor) -> None:
+    """Reduce the atom further and search each of its cores."""
     reduced = reduce_core(piece.core)
     states = [first_bounds(core) for core in reduced.cores]
     lower = len(reduced.added)
@@ -111,7 +156,9 @@ def summed(core: Core, pieces: list[Piece], over: bool) -> FillResult:
 def proof_of(piece: Piece) -> PieceProof:
     """What backs the lower bound of an atom."""
     vertices = tuple(sorted(v for group in piece.core.classes for v in group))
-    if piece.lower > piece.bounds.lower:
+    if len(piece.tree) > 1:
+        return PieceProof(ProofKind.BRANCH, vertices, piece.lower, None, piece.tree)
+    packing = piece.tree[0].packing if piece.tree else piece.packing
+    if packing is None:
         return PieceProof(ProofKind.SEARCH, vertices, piece.lower)
-    packing = packing_of(piece.core, piece.bounds.cycles, piece.bounds.numerators)
     return PieceProof(ProofKind.PACKING, vertices, piece.lower, packing)
