@@ -1,0 +1,14 @@
+"""Recognition of chordal, interval and split graphs, each with what confirms it."""
+
+from nearchord_solve.recognise.chordal import Chordal, recognise_chordal
+from nearchord_solve.recognise.interval import Interval, recognise_interval
+from nearchord_solve.recognise.split import Split, recognise_split
+
+__all__ = [
+    "Chordal",
+    "Interval",
+    "Split",
+    "recognise_chordal",
+    "recognise_interval",
+    "recognise_split",
+]
