@@ -74,9 +74,9 @@ def confirm_tree(graph: nx.Graph, piece: PieceProof, tree: tuple[Branch, ...]) -
 def packing_value(graph: nx.Graph, piece: PieceProof, packing: Packing, decided: dict[Pair, int]) -> Fraction:
     """What the packing proves: the inequality of each ring times its multiplier, summed.
 
-    A fill is a 0/1 vector x.  For a choice of one vertex from each group of a ring with c groups, x over the chords minus
-    (c - 3) times x over the open sides is at least (c - 3)(1 - open sides); the ring stands for the mean over all choices.
-    The sum over the rings bounds load * x from below, and load * x <= x + max(0, load - 1).
+    A fill is a 0/1 vector x.  For a choice of one vertex from each group of a ring with c groups, x over the chords
+    minus (c - 3) times x over the open sides is at least (c - 3)(1 - open sides); the ring stands for the mean over
+    all choices.  The sum over the rings bounds load * x from below, and load * x <= x + max(0, load - 1).
     """
     assert packing.denominator > 0
     constant = Fraction(0)

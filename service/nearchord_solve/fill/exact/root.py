@@ -56,7 +56,7 @@ class Bounds:
 
 def cut(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> Relaxation:
     """Improve ``bounds`` by rounds of cuts until closed, over ``most``, out of cuts or of progress, or stopped."""
-    relaxation = Relaxation(core)
+    relaxation = Relaxation(core, monitor)
     values: list[float] = []
     relaxation.add(selected(violated(core, np.zeros((core.n, core.n)), THRESHOLDS, 3 * CUTS_A_ROUND), CUTS_A_ROUND))
     for turn in range(MOST_ROUNDS):
