@@ -34,12 +34,10 @@ NAMED = {
     "Clebsch": (nx.Graph([(a, a ^ d) for a in range(16) for d in (1, 2, 4, 8, 15)]), 40),
     "Shrikhande": (
         nx.Graph(
-            [
-                ((a, b), ((a + x) % 4, (b + y) % 4))
-                for a in range(4)
-                for b in range(4)
-                for x, y in ((1, 0), (0, 1), (1, 1))
-            ]
+            ((a, b), ((a + x) % 4, (b + y) % 4))
+            for a in range(4)
+            for b in range(4)
+            for x, y in ((1, 0), (0, 1), (1, 1))
         ),
         38,
     ),

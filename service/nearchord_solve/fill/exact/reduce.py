@@ -25,6 +25,7 @@ from dataclasses import dataclass
 
 from nearchord_solve.fill.exact.atoms import atoms
 from nearchord_solve.fill.exact.core import Core, Mask, Pair, around, components, is_clique, members
+from nearchord_solve.monitor import Monitor
 
 
 @dataclass(frozen=True)
@@ -35,7 +36,7 @@ class Reduced:
     added: list[Pair]
 
 
-def decompose(core: Core) -> list[Core]:
+def decompose(core: Core, monitor: Monitor) -> list[Core]:
     """Atoms without universal and simplicial vertices: rules 1 and 2 only.  Their fill numbers add up."""
     waiting = [core.everything]
     found = []
@@ -44,7 +45,7 @@ def decompose(core: Core) -> list[Core]:
         inside = stripped(core.adj, kept)
         if not inside:
             continue
-        pieces = atoms(core.adj, inside)
+        pieces = atoms(core.adj, inside, monitor.cells)
         if len(pieces) == 1:
             found.append(core.induced(pieces[0]))
         else:
@@ -52,18 +53,18 @@ def decompose(core: Core) -> list[Core]:
     return found
 
 
-def reduce_core(core: Core) -> Reduced:
+def reduce_core(core: Core, monitor: Monitor) -> Reduced:
     """Apply all rules until nothing changes.  Cores come in a fixed order."""
     waiting = [core]
     found: list[Core] = []
     added: list[Pair] = []
     while waiting:
         current = waiting.pop()
-        pieces = decompose(current)
+        pieces = decompose(current, monitor)
         if len(pieces) != 1 or pieces[0].n < current.n:
             waiting.extend(reversed(pieces))
             continue
-        safe = safe_edges(current)
+        safe = [] if monitor.stop else safe_edges(current)
         if safe:
             added += current.lift(safe)
             waiting.append(current.with_edges(safe))

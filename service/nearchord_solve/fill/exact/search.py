@@ -94,7 +94,7 @@ def fill_of_parts(parts: Sequence[tuple[I64, I32]], limit: int | None, monitor: 
 
 def bounded_parts(cores: Sequence[Core], monitor: Monitor) -> list[list[Piece]]:
     """The atoms of each part, bounded: small ones first, so that a stop finds most of them done."""
-    atoms = [(number, atom) for number, core in enumerate(cores) for atom in decompose(core)]
+    atoms = [(number, atom) for number, core in enumerate(cores) for atom in decompose(core, monitor)]
     pieces: list[list[Piece]] = [[] for _ in cores]
     monitor.enter(Phase.FILL, len(atoms))
     for step, (number, atom) in enumerate(sorted(atoms, key=lambda item: item[1].n)):
@@ -106,7 +106,7 @@ def bounded_parts(cores: Sequence[Core], monitor: Monitor) -> list[list[Piece]]:
 def bounded(atom: Core, monitor: Monitor) -> Piece:
     """Portfolio and packing bound of an atom."""
     core = contract_twins(atom)
-    bounds = first_bounds(core)
+    bounds = first_bounds(core, monitor)
     relaxation = None if monitor.stop else cut(core, bounds, UNLIMITED, monitor)
     kept = None if bounds.closed else relaxation
     return Piece(core, bounds, kept, core.lift(bounds.best), bounds.lower, bounds.lower)
@@ -136,8 +136,8 @@ def by_cases(piece: Piece, most: int, monitor: Monitor) -> bool:
 
 def by_engines(piece: Piece, most: int, monitor: Monitor) -> None:
     """Reduce the atom further and search each of its cores."""
-    reduced = reduce_core(piece.core)
-    states = [first_bounds(core) for core in reduced.cores]
+    reduced = reduce_core(piece.core, monitor)
+    states = [first_bounds(core, monitor) for core in reduced.cores]
     lower = len(reduced.added)
     for core, state in zip(reduced.cores, states, strict=True):
         if monitor.stop:

@@ -55,7 +55,7 @@ def sized_cores(draw: st.DrawFn) -> Core:
 @given(arbitrary_graphs(most=9))
 def test_reductions_keep_the_fill_number(edges: Edges) -> None:
     """Edges added for good plus the fill of what remains."""
-    reduced = reduce_core(core_of(edges))
+    reduced = reduce_core(core_of(edges), Monitor())
     rest = sum(least_fill(*spread(core)) for core in reduced.cores)
     assert len(reduced.added) + rest == least_fill(*edges)
 
@@ -64,10 +64,10 @@ def test_reductions_keep_the_fill_number(edges: Edges) -> None:
 @given(near_chordal_graphs(most=12))
 def test_atoms_add_up(edges: Edges) -> None:
     """Without any added edge, and each atom keeps a hole or nothing."""
-    pieces = decompose(core_of(edges))
+    pieces = decompose(core_of(edges), Monitor())
     assert sum(least_fill(*spread(piece)) for piece in pieces) == least_fill(*edges)
     for piece in pieces:
-        assert len(decompose(piece)) == 1
+        assert len(decompose(piece, Monitor())) == 1
 
 
 @settings(deadline=None, max_examples=300)
@@ -121,7 +121,7 @@ def test_blocks_find_a_least_fill_or_show_that_there_is_none(core: Core) -> None
     if not connected(core):
         return
     least = least_fill(*spread(core))
-    bounds = first_bounds(core)
+    bounds = first_bounds(core, Monitor())
     cut(core, bounds, PLENTY, Monitor())
     for base, listed in ((0, {}), prices(core, bounds.cycles, bounds.numerators)):
         status, pairs = solve_blocks(core, least, listed, base, PLENTY, Monitor().cells)
@@ -137,7 +137,7 @@ def test_cases_close_every_gap(core: Core) -> None:
     """Branch and cut ends with the fill number below and above, and honours a limit."""
     least = least_fill(*spread(core))
     for most in (PLENTY, least - 1):
-        bounds = first_bounds(core)
+        bounds = first_bounds(core, Monitor())
         relaxation = cut(core, bounds, most, Monitor())
         if not bounds.closed and bounds.lower <= most:
             assert CaseSearch(core, relaxation, bounds, most, Monitor()).run(PLENTY)
@@ -155,7 +155,7 @@ def test_separators_and_potential_cliques_are_all_there(edges: Edges) -> None:
     order = connected_order(core.adj)
     place = {v: i for i, v in enumerate(order)}
     adj = [mask_of(place[u] for u in members(core.adj[v])) for v in order]
-    separators = minimal_separators(adj, core.everything, PLENTY)
+    separators = minimal_separators(adj, core.everything, PLENTY, Monitor().cells)
     assert separators is not None
     assert set(separators) == {s for s in range(1, 1 << core.n) if full_count(adj, s) >= 2}
     rows = rows_of(adj)
