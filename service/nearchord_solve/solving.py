@@ -39,9 +39,9 @@ def solve(
 
 
 def check_weights(weights: I64 | None, n: int) -> I64:
-    """Weights as a contiguous int64 array; SolverError names the first bad vertex."""
+    """Weights as a contiguous read-only int64 array; SolverError names the first bad vertex."""
     if weights is None:
-        return np.ones(n, np.int64)
+        weights = np.ones(n, np.int64)
     if weights.dtype != np.int64 or weights.shape != (n,):
         raise SolverError("weights", f"must be an int64 array of {n}, got {weights.dtype.name}{weights.shape}")
     if n and weights.min() < 0:

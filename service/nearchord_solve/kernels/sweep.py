@@ -138,7 +138,7 @@ def inward(
     seen = np.zeros(n, np.int32)
     first, following = link_bags(forest.bag_above, forest.bag_kind)
     base = 0
-    used = 0
+    used = int(np.int64(0))  # a literal 0 would compile what it is passed to twice
     bags = 0
     for i in range(n - 1, -1, -1):
         if (i & POLL) == 0:
