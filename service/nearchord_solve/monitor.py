@@ -12,8 +12,8 @@ from typing import ClassVar
 
 import numpy as np
 
-from .arrays import I64
-from .errors import SolverError
+from nearchord_solve.arrays import I64
+from nearchord_solve.errors import SolverError
 
 
 class Stop(IntEnum):

@@ -10,15 +10,15 @@ from dataclasses import dataclass, field, replace
 
 import numpy as np
 
-from ..arrays import I64, U8
-from ..budget import Budget
-from ..graph import Graph
-from ..kernels.layout import STATES
-from ..monitor import Monitor, Phase
-from ..sweep import sweep
-from ..tree import Partial, Structure, build_structure
-from .gauge import Gauge
-from .pins import Contradiction, Rest, apply_pins
+from nearchord_solve.arrays import I64, U8
+from nearchord_solve.budget import Budget
+from nearchord_solve.graph import Graph
+from nearchord_solve.kernels.layout import STATES
+from nearchord_solve.monitor import Monitor, Phase
+from nearchord_solve.questions.gauge import Gauge
+from nearchord_solve.questions.pins import Contradiction, Rest, apply_pins
+from nearchord_solve.sweep import sweep
+from nearchord_solve.tree import Partial, Structure, build_structure
 
 SHARE = 64  # a node may use this part of the state budget
 WORK = 32  # all nodes together may use this many state budgets

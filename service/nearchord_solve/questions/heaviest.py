@@ -4,19 +4,19 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .. import bounds
-from ..arrays import I32, I64, U8
-from ..budget import Budget
-from ..graph import Graph
-from ..kernels.layout import STATES
-from ..memory import predicted_bytes
-from ..monitor import Stop
-from ..order import Unfinished
-from ..outcome import Verdict
-from ..sweep import sweep
-from ..tree import Partial, Structure, build_structure
-from .branching import Branching
-from .gauge import Gauge
+from nearchord_solve import bounds
+from nearchord_solve.arrays import I32, I64, U8
+from nearchord_solve.budget import Budget
+from nearchord_solve.graph import Graph
+from nearchord_solve.kernels.layout import STATES
+from nearchord_solve.memory import predicted_bytes
+from nearchord_solve.monitor import Stop
+from nearchord_solve.order import Unfinished
+from nearchord_solve.outcome import Verdict
+from nearchord_solve.questions.branching import Branching
+from nearchord_solve.questions.gauge import Gauge
+from nearchord_solve.sweep import sweep
+from nearchord_solve.tree import Partial, Structure, build_structure
 
 
 @dataclass(frozen=True, eq=False)
