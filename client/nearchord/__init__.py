@@ -1,0 +1,92 @@
+"""Client of the nearchord service: exact answers to optimisation questions about nearly chordal conflict graphs.
+
+import nearchord
+
+graph = nearchord.Graph.from_edges(4, [(0, 1), (1, 2), (2, 3), (3, 0)], weights=[3, 1, 4, 1])
+with nearchord.connect("127.0.0.1:7411") as service:
+    answer = service.submit(graph, nearchord.IndependentSet()).answer()
+nearchord.check(graph, answer)
+"""
+
+from nearchord.answer import Answer, Provenance
+from nearchord.check import Confirmed, check
+from nearchord.child import embedded, embedded_async
+from nearchord.errors import (
+    AccessDenied,
+    AlreadyExists,
+    BadInput,
+    CallFailed,
+    CheckFailed,
+    EmbeddedFailed,
+    FileProblem,
+    NearchordError,
+    NotFound,
+    NotReady,
+    QuotaExceeded,
+    Rejected,
+    ServerFault,
+    TimeoutExceeded,
+    Unreachable,
+    Violation,
+)
+from nearchord.graph import Graph
+from nearchord.jobs import Addresses, BatchInfo, Event, JobInfo, JobRequest, Progress
+from nearchord.load import Load, QuestionLoad, ServerInfo, Slots
+from nearchord.question import QUESTIONS, Budget, IndependentSet, Question, VertexCover
+from nearchord.session.aio import AsyncBatch, AsyncJob, AsyncService, connect_async
+from nearchord.session.sync import Batch, Job, Service, connect
+from nearchord.stages import Phase, ProofKind, Stage, Verdict, WhenOver
+
+__all__ = [
+    "QUESTIONS",
+    "AccessDenied",
+    "Addresses",
+    "AlreadyExists",
+    "Answer",
+    "AsyncBatch",
+    "AsyncJob",
+    "AsyncService",
+    "BadInput",
+    "Batch",
+    "BatchInfo",
+    "Budget",
+    "CallFailed",
+    "CheckFailed",
+    "Confirmed",
+    "EmbeddedFailed",
+    "Event",
+    "FileProblem",
+    "Graph",
+    "IndependentSet",
+    "Job",
+    "JobInfo",
+    "JobRequest",
+    "Load",
+    "NearchordError",
+    "NotFound",
+    "NotReady",
+    "Phase",
+    "Progress",
+    "ProofKind",
+    "Provenance",
+    "Question",
+    "QuestionLoad",
+    "QuotaExceeded",
+    "Rejected",
+    "ServerFault",
+    "ServerInfo",
+    "Service",
+    "Slots",
+    "Stage",
+    "TimeoutExceeded",
+    "Unreachable",
+    "Verdict",
+    "VertexCover",
+    "Violation",
+    "WhenOver",
+    "check",
+    "connect",
+    "connect_async",
+    "embedded",
+    "embedded_async",
+]

@@ -1,0 +1,192 @@
+"""From two columns of endpoints to the canonical form of a graph, in numpy only.
+
+An edge {u, v} with u < v becomes the key u * 2^32 + v. Keys that ascend strictly are canonical already, which one
+linear pass finds out; otherwise they are sorted. Time O(n + m) or O(n + m log m), memory 24 bytes an edge.
+"""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from nearchord.errors import BadInput
+
+Ints = NDArray[np.int64]
+LARGEST_N = 2**32 - 1
+WEIGHT_LIMIT = 2**62
+PAIR_REMEDY = "give pairs of vertex numbers, such as [(0, 1), (1, 2)]"
+
+
+def pair_array(edges: Any) -> NDArray[Any]:
+    """`edges` as an array of shape (m, 2), or an empty one; BadInput when they are no pairs."""
+    try:
+        pairs = np.asarray(edges)
+    except ValueError:  # rows of different lengths
+        place = next(i for i, edge in enumerate(edges) if not hasattr(edge, "__len__") or len(edge) != 2)
+        raise BadInput(f"edge {place} ({edges[place]!r}) is no pair", PAIR_REMEDY) from None
+    if pairs.size and (pairs.ndim != 2 or pairs.shape[1] != 2):
+        raise BadInput(f"edges have the shape {pairs.shape}", PAIR_REMEDY)
+    return pairs
+
+
+def endpoint_column(column: Any, name: str) -> Ints:
+    """`column` as int64[m]; BadInput when it is not one-dimensional or not of whole numbers below 2^63."""
+    array = np.asarray(column)
+    if array.size == 0:
+        return np.zeros(0, np.int64)
+    if array.ndim != 1 or array.dtype.kind not in "iu":
+        raise BadInput(
+            f"{name} is not a one-dimensional array of whole numbers (dtype {array.dtype}, {array.ndim} dimensions)",
+            "give vertex numbers from 0; for named vertices use from_networkx, or map the names to numbers first",
+        )
+    return _as_int64(array, name)
+
+
+def _as_int64(array: NDArray[Any], name: str) -> Ints:
+    if array.dtype == np.uint64 and int(array.max()) >= 2**63:
+        place = int(array.argmax())
+        raise BadInput(
+            f"{name}[{place}] is {array[place]}, which is out of range", "give vertex numbers from 0 to n - 1"
+        )
+    return array.astype(np.int64, copy=False)
+
+
+def vertex_count(n: Any) -> int:
+    """`n` as an int that the canonical form can hold; BadInput otherwise."""
+    if isinstance(n, bool) or not isinstance(n, int | np.integer) or not 0 <= n <= LARGEST_N:
+        raise BadInput(f"n = {n!r} is not a number of vertices", f"give a whole number from 0 to {LARGEST_N}")
+    return int(n)
+
+
+def edge_keys(n: int, u: Ints, v: Ints) -> NDArray[np.uint64]:
+    """Keys of the edges in the order given; BadInput naming the first edge that leaves the range or is a loop."""
+    low, high = np.minimum(u, v), np.maximum(u, v)
+    if len(low) and (int(low.min()) < 0 or int(high.max()) >= n):
+        place = int(np.flatnonzero((low < 0) | (high >= n))[0])
+        raise BadInput(f"edge {place} ({u[place]}, {v[place]}) leaves the range", _range_remedy(n))
+    keys = low.view(np.uint64) << np.uint64(32)
+    keys |= high.view(np.uint64)
+    loops = low == high
+    if loops.any():
+        place = int(loops.argmax())
+        raise BadInput(
+            f"edge {place} ({u[place]}, {v[place]}) is a self-loop", "leave it out: no vertex excludes itself"
+        )
+    return keys
+
+
+def _range_remedy(n: int) -> str:
+    return (
+        f"the graph has vertices 0 to {n - 1}: correct the edge or raise n"
+        if n
+        else "the graph has no vertices: raise n"
+    )
+
+
+def sorted_keys(keys: NDArray[np.uint64]) -> NDArray[np.uint64]:
+    """`keys` ascending (the same array when they ascend already); BadInput naming the first repeated edge."""
+    if bool((keys[1:] > keys[:-1]).all()):
+        return keys
+    ordered = np.sort(keys)
+    if bool((ordered[1:] == ordered[:-1]).any()):
+        _name_repeated(keys)
+    return ordered
+
+
+def _name_repeated(keys: NDArray[np.uint64]) -> None:
+    """Raise BadInput for the earliest edge that stood there before."""
+    order = np.argsort(keys, kind="stable")
+    again = order[1:][keys[order[1:]] == keys[order[:-1]]]
+    place = int(again.min())
+    first = int(np.flatnonzero(keys == keys[place])[0])
+    u, v = int(keys[place]) >> 32, int(keys[place]) & 0xFFFFFFFF
+    raise BadInput(f"edge {place} ({u}, {v}) repeats edge {first}", "give each edge once, in either direction")
+
+
+def rows(n: int, keys: NDArray[np.uint64]) -> tuple[NDArray[np.uint64], NDArray[np.uint32]]:
+    """Row pointers uint64[n + 1] and targets uint32[m] of ascending keys, both read-only."""
+    counts = np.bincount((keys >> np.uint64(32)).view(np.int64), minlength=n)
+    row_ptr = np.zeros(n + 1, np.uint64)
+    np.cumsum(counts, out=row_ptr[1:], dtype=np.uint64)
+    targets = keys.astype(np.uint32)  # keeps the lower half
+    row_ptr.flags.writeable = False
+    targets.flags.writeable = False
+    return row_ptr, targets
+
+
+def weight_vector(n: int, weights: Any) -> NDArray[np.int64]:
+    """`weights` as read-only int64[n]; BadInput when one is negative or broken, or their sum reaches 2^62."""
+    array = np.asarray(weights)
+    if array.shape != (n,):
+        raise BadInput(f"weights have shape {array.shape}, but the graph has {n} vertices", f"give {n} weights")
+    whole = _whole_weights(array)
+    if n and int(whole.min()) < 0:
+        place = int((whole < 0).argmax())
+        raise BadInput(f"weight {place} is {whole[place]}, which is negative", "give weights of at least 0")
+    if weight_sum(whole) >= WEIGHT_LIMIT:
+        raise BadInput("the weights add up to 2^62 or more", "count in a larger unit: divide all weights")
+    result = np.array(whole, np.int64)
+    result.flags.writeable = False
+    return result
+
+
+def _whole_weights(array: NDArray[Any]) -> NDArray[np.int64]:
+    if array.size == 0:
+        return np.zeros(0, np.int64)
+    if array.dtype.kind == "i":
+        return array.astype(np.int64, copy=False)
+    if array.dtype.kind not in "uOf":
+        raise BadInput(f"weights have dtype {array.dtype}", "give whole numbers")
+    return np.fromiter((_whole_weight(place, w) for place, w in enumerate(array.tolist())), np.int64, array.size)
+
+
+def _whole_weight(place: int, weight: Any) -> int:
+    if isinstance(weight, float) and weight.is_integer():
+        weight = int(weight)
+    if isinstance(weight, bool) or not isinstance(weight, int | np.integer):
+        raise BadInput(
+            f"weight {place} is {weight!r}, which is not a whole number",
+            "multiply all weights by a power of ten that makes them whole",
+        )
+    if weight >= WEIGHT_LIMIT:
+        raise BadInput(
+            f"weight {place} is {weight}, which is 2^62 or more", "count in a larger unit: divide all weights"
+        )
+    return max(int(weight), -(2**62))
+
+
+def weight_sum(weights: NDArray[np.int64]) -> int:
+    """Exact sum of int64 weights, whose own sum in int64 might overflow."""
+    upper, lower = weights >> np.int64(31), weights & np.int64(2**31 - 1)
+    return (int(upper.sum()) << 31) + int(lower.sum())
+
+
+def name_tuple(n: int, names: Any) -> tuple[str, ...]:
+    """`names` as n different, non-empty words without control characters; BadInput otherwise."""
+    words = tuple(names)
+    if len(words) != n:
+        raise BadInput(f"{len(words)} names were given for {n} vertices", f"give {n} names")
+    for place, word in enumerate(words):
+        if not isinstance(word, str) or not word or not word.isprintable():
+            raise BadInput(f"name {place} is {word!r}", "give non-empty text without control characters")
+    if len(set(words)) < n:
+        _name_twice(words)
+    return words
+
+
+def _name_twice(words: tuple[str, ...]) -> None:
+    seen: dict[str, int] = {}
+    for place, word in enumerate(words):
+        if word in seen:
+            raise BadInput(
+                f"name {place} ({word!r}) is the name of vertex {seen[word]} too", "give every vertex its own"
+            )
+        seen[word] = place
+
+
+def little_endian(array: NDArray[Any]) -> memoryview:
+    """The bytes of a one-dimensional array in little-endian order, without a copy where the machine has that order."""
+    ordered: NDArray[Any] = np.ascontiguousarray(array, array.dtype.newbyteorder("<"))
+    return ordered.view(np.uint8).data

@@ -1,0 +1,120 @@
+"""From the JSON object of `--json` back to an answer that can be checked."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+import sys
+from collections.abc import Iterable
+from fractions import Fraction
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+
+import nearchord
+
+
+def load(file: str, graph: nearchord.Graph) -> nearchord.Answer:
+    """Read the object in `file` (- for stdin) as an answer about `graph`; FileProblem says what does not fit."""
+    try:
+        text = sys.stdin.read() if file == "-" else Path(file).read_text(encoding="utf-8")
+        found = json.loads(text)
+    except (UnicodeDecodeError, json.JSONDecodeError) as error:
+        raise nearchord.FileProblem(file, None, f"this is not JSON ({error})", "give what `--json` printed") from None
+    if not isinstance(found, dict):
+        raise nearchord.FileProblem(file, None, "this is not a JSON object", "give one object, as `--json` prints it")
+    return _Reader(file, found, graph).answer()
+
+
+class _Reader:
+    """Takes an object apart, key by key."""
+
+    def __init__(self, file: str, found: dict[str, Any], graph: nearchord.Graph) -> None:
+        self._file = file
+        self._found = found
+        self._graph = graph
+
+    def answer(self) -> nearchord.Answer:
+        kind = nearchord.QUESTIONS[self._word("question", nearchord.QUESTIONS)]
+        verdict = self._word("verdict", [str(verdict) for verdict in nearchord.Verdict])
+        return nearchord.Answer(
+            job_id=str(self._found.get("job", "")),
+            batch_index=0,
+            label=str(self._found.get("label", "")),
+            question=kind(must=self._vertices("must"), never=self._vertices("never")),
+            verdict=nearchord.Verdict(verdict),
+            value=self._exact("value"),
+            bound=self._exact("bound"),
+            chosen=np.array(sorted(self._vertices("chosen")), dtype=np.uint32),
+            reason=str(self._found.get("reason", "")),
+            fill=self._count("fill"),
+            fill_lower_bound=self._count("fill_lower_bound"),
+            states=self._count("states"),
+            bags=self._count("bags"),
+            largest_bag=self._count("largest_bag"),
+            parts=self._count("parts"),
+            fill_cores=self._count("fill_cores"),
+            proof=nearchord.ProofKind.NONE,
+            proof_kinds=(),
+            seconds=0.0,
+            vertices=self._graph.n,
+            names_address="",
+            provenance=nearchord.Provenance(
+                graph_address=self._address("graph_address", self._graph.address),
+                weights_address=self._address("weights_address", _weights_address(self._graph)),
+                solver_version="",
+                proof_format=0,
+                budget=nearchord.Budget(),
+                when_over=nearchord.WhenOver.BOUND,
+                attempt=0,
+                phases=(),
+                seconds=0.0,
+                wait_seconds=0.0,
+                peak_memory_bytes=0,
+                finished_at=None,
+            ),
+        )
+
+    def _word(self, key: str, allowed: Iterable[str]) -> str:
+        value = str(self._found.get(key))
+        if value not in set(allowed):
+            raise self._problem(key, f"is {value!r}", f"it has to be one of {', '.join(allowed)}")
+        return value
+
+    def _exact(self, key: str) -> int | Fraction | None:
+        value = self._found.get(key)
+        if value is None or (isinstance(value, int) and not isinstance(value, bool)):
+            return value
+        try:
+            return Fraction(value if isinstance(value, str) else "")
+        except (ValueError, ZeroDivisionError):
+            raise self._problem(key, f"is {value!r}", 'give a whole number, "p/q", or null') from None
+
+    def _count(self, key: str) -> int | None:
+        value = self._found.get(key)
+        return value if isinstance(value, int) else None
+
+    def _address(self, key: str, own: str) -> str:
+        """What the answer says it is about; an answer that says nothing is taken to be about the graph at hand."""
+        origin = self._found.get("provenance")
+        return str(origin.get(key, own)) if isinstance(origin, dict) else own
+
+    def _vertices(self, key: str) -> tuple[int, ...]:
+        listed = self._found.get(key) or []
+        if not isinstance(listed, list):
+            raise self._problem(key, "is not a list", "give the names of the vertices in a list")
+        return tuple(self._vertex(key, name) for name in listed)
+
+    def _vertex(self, key: str, name: object) -> int:
+        try:
+            return self._graph.vertex(str(name))
+        except KeyError:
+            raise self._problem(key, f"names {name!r}, which the graph does not have", "check both files") from None
+
+    def _problem(self, key: str, problem: str, remedy: str) -> nearchord.FileProblem:
+        return nearchord.FileProblem(self._file, None, f'"{key}" {problem}', remedy)
+
+
+def _weights_address(graph: nearchord.Graph) -> str:
+    return "" if graph.weights is None else hashlib.sha256(graph.weights.astype("<i8").tobytes()).hexdigest()

@@ -1,0 +1,39 @@
+"""`nearchord solve`: one graph, one question, one answer."""
+
+from __future__ import annotations
+
+import click
+
+from nearchord.cli import options
+from nearchord.cli.connection import detaching, remote_or_private
+from nearchord.cli.exits import of_verdict
+from nearchord.cli.follow import follow
+from nearchord.cli.graphs import read
+from nearchord.cli.layout import print_json
+from nearchord.cli.options import Ask, Source
+from nearchord.cli.progress import JobDisplay
+from nearchord.cli.record import record, show
+
+
+@click.command(short_help="Answer a question about one graph.")
+@options.graph_argument
+@options.asks
+@options.reads
+@options.server
+@options.as_json
+def solve(file: str, ask: Ask, source: Source, server: str | None, as_json: bool) -> int:
+    """Answer a question about the graph in FILE (- for stdin).
+
+    Without --server a private service is started for this one answer. Ctrl-C leaves a job on a server running and says
+    how to come back to it.
+    """
+    graph = read(file, source)
+    with JobDisplay() as display, remote_or_private(server, display) as service:
+        job = ask.submit(service, graph)
+        with detaching("job", job.id, server):
+            answer = follow(service, job, display)
+    if as_json:
+        print_json(record(answer, graph.names))
+    else:
+        show(answer, graph.names)
+    return of_verdict(answer.verdict)

@@ -1,0 +1,97 @@
+"""What a job asks of a graph, and what it may spend."""
+
+from __future__ import annotations
+
+import operator
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import ClassVar
+
+from nearchord.errors import BadInput
+
+Pin = int | str
+"""A vertex: its number from 0, or its name in the graph."""
+
+
+@dataclass(frozen=True)
+class Question:
+    """Base of the questions that choose vertices.
+
+    `must` are vertices that have to be chosen, `never` vertices that must not be; each is a number from 0 or a name of
+    the graph. Pins that contradict each other are no error: the verdict says INFEASIBLE.
+    """
+
+    must: tuple[Pin, ...] = ()
+    never: tuple[Pin, ...] = ()
+
+    name: ClassVar[str] = ""
+    maximises: ClassVar[bool] = True
+
+    def __post_init__(self) -> None:
+        for field in ("must", "never"):
+            object.__setattr__(self, field, _pins(field, getattr(self, field)))
+
+
+def _pins(field: str, pins: Iterable[Pin]) -> tuple[Pin, ...]:
+    if isinstance(pins, str):
+        raise BadInput(f"{field} is the single word {pins!r}", f"write {field}=[{pins!r}]")
+    return tuple(pin if isinstance(pin, str) else _vertex(field, pin) for pin in pins)
+
+
+def _vertex(field: str, pin: object) -> int:
+    try:
+        return operator.index(pin)  # type: ignore[arg-type]
+    except TypeError:
+        raise BadInput(
+            f"{field} has {pin!r}, which is neither a vertex number nor a name", "give numbers from 0, or names"
+        ) from None
+
+
+@dataclass(frozen=True)
+class IndependentSet(Question):
+    """Heaviest set of vertices with no edge inside: the best conflict-free choice on one channel."""
+
+    name: ClassVar[str] = "independent-set"
+
+
+@dataclass(frozen=True)
+class VertexCover(Question):
+    """Lightest set of vertices touching every edge: the cheapest requests to withdraw."""
+
+    name: ClassVar[str] = "vertex-cover"
+    maximises: ClassVar[bool] = False
+
+
+QUESTIONS: dict[str, type[Question]] = {kind.name: kind for kind in (IndependentSet, VertexCover)}
+"""Every question by its name on the command line and in metrics."""
+
+
+@dataclass(frozen=True)
+class Budget:
+    """What a job may spend; None takes the server's default.
+
+    `fill`: fill edges of a triangulation, 0 for chordal graphs only. `states`: states of the dynamic program, at least
+    1. `seconds`: running time, queue wait not counted, above 0. `memory`: bytes, at least 1.
+    """
+
+    fill: int | None = None
+    states: int | None = None
+    seconds: float | None = None
+    memory: int | None = None
+
+    def __post_init__(self) -> None:
+        for field in ("fill", "states", "memory"):
+            self._whole(field, getattr(self, field))
+        if self.seconds is not None and not isinstance(self.seconds, int | float):
+            raise BadInput(f"budget seconds={self.seconds!r} is not a number", "give seconds, such as 30")
+
+    def _whole(self, field: str, value: object) -> None:
+        if value is None:
+            return
+        try:
+            whole = operator.index(value)  # type: ignore[arg-type]
+        except TypeError:
+            raise BadInput(f"budget {field}={value!r} is not a whole number", "give a whole number") from None
+        if not -(2**63) <= whole < 2**63:
+            raise BadInput(f"budget {field}={whole} is out of range", "give a number below 2^63")
+        object.__setattr__(self, field, whole)

@@ -1,0 +1,87 @@
+"""Graphs, weights and names as the bytes that are stored: their pieces, addresses and sizes."""
+
+from __future__ import annotations
+
+import hashlib
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from functools import cached_property
+
+from nearchord.canonical import little_endian
+from nearchord.errors import BadInput
+from nearchord.graph import Graph
+from nearchord.v1 import content_pb2
+
+
+@dataclass(frozen=True, eq=False)
+class Content:
+    """Bytes of one kind, kept in the parts in which they lie in memory."""
+
+    kind: content_pb2.ContentKind
+    parts: Sequence[memoryview]
+
+    @cached_property
+    def size(self) -> int:
+        """Length in bytes."""
+        return sum(part.nbytes for part in self.parts)
+
+    @cached_property
+    def address(self) -> str:
+        """SHA-256, 64 lower-case hexadecimal digits."""
+        digest = hashlib.sha256()
+        for part in self.parts:
+            digest.update(part)
+        return digest.hexdigest()
+
+    def inline(self) -> bytes:
+        """All bytes in one."""
+        return b"".join(self.parts)
+
+    def pieces(self, offset: int, piece_bytes: int) -> Iterator[bytes]:
+        """The bytes from `offset` on, at most `piece_bytes` at a time; one copy of each byte."""
+        for part in self.parts:
+            start, offset = min(offset, part.nbytes), max(0, offset - part.nbytes)
+            for begin in range(start, part.nbytes, piece_bytes):
+                yield bytes(part[begin : begin + piece_bytes])
+
+
+@dataclass(frozen=True)
+class InputContent:
+    """Everything of a graph that a job can carry."""
+
+    graph: Content
+    weights: Content | None
+    names: Content | None
+
+    @property
+    def present(self) -> list[Content]:
+        """What is there, graph first."""
+        return [content for content in (self.graph, self.weights, self.names) if content is not None]
+
+    @property
+    def size(self) -> int:
+        """Bytes in all."""
+        return sum(content.size for content in self.present)
+
+
+def content_of(graph: Graph) -> InputContent:
+    """The stored form of a graph, its weights and its names."""
+    weights = names = None
+    if graph.weights is not None:
+        weights = Content(content_pb2.CONTENT_KIND_WEIGHTS, [little_endian(graph.weights)])
+    if graph.names is not None:
+        names = Content(content_pb2.CONTENT_KIND_NAMES, [memoryview(names_bytes(graph.names))])
+    return InputContent(Content(content_pb2.CONTENT_KIND_GRAPH, graph.canonical()), weights, names)
+
+
+def names_bytes(names: Sequence[str]) -> bytes:
+    """UTF-8, every name ended by a line feed."""
+    try:
+        return "".join(f"{name}\n" for name in names).encode()
+    except UnicodeEncodeError as broken:
+        raise BadInput(f"a name has {broken.object[broken.start]!r}, which UTF-8 cannot hold", "rename it") from None
+
+
+def names_from(data: bytes) -> tuple[str, ...]:
+    """The names in stored bytes."""
+    return tuple(data.decode().split("\n")[:-1])

@@ -1,0 +1,151 @@
+"""From what a caller says to the messages of the wire."""
+
+from __future__ import annotations
+
+import uuid
+from collections.abc import Iterable
+from datetime import UTC, datetime
+from typing import Any
+
+from google.protobuf.timestamp_pb2 import Timestamp
+
+from nearchord.errors import BadInput
+from nearchord.graph import Graph
+from nearchord.jobs import Addresses, JobRequest
+from nearchord.question import Budget, Pin, Question
+from nearchord.session.content import InputContent
+from nearchord.stages import Stage, WhenOver
+from nearchord.v1 import content_pb2, job_pb2, question_pb2
+
+WHEN_OVER = {WhenOver.BOUND: question_pb2.WHEN_OVER_BOUND, WhenOver.STOP: question_pb2.WHEN_OVER_STOP}
+STAGES = {
+    Stage.WAITING: job_pb2.STAGE_WAITING,
+    Stage.SOLVING: job_pb2.STAGE_SOLVING,
+    Stage.DONE: job_pb2.STAGE_DONE,
+}
+
+
+def new_request_id() -> str:
+    """A request id that nobody has used: repeating a call under it is harmless."""
+    return uuid.uuid4().hex
+
+
+def spec(request: JobRequest, graph_input: content_pb2.GraphInput) -> job_pb2.JobSpec:
+    """The spec of a job whose graph travels as `graph_input`."""
+    try:
+        return job_pb2.JobSpec(
+            input=graph_input,
+            question=question(request.question, request.graph),
+            budget=budget(request.budget or Budget()),
+            when_over=when_over(request.when_over),
+            priority=request.priority,
+            not_after=None if request.not_after is None else timestamp(request.not_after),
+            label=request.label,
+        )
+    except (TypeError, ValueError) as wrong:
+        if isinstance(wrong, BadInput):
+            raise
+        raise BadInput(f"a field of the job cannot be sent ({wrong})", "correct priority or label") from wrong
+
+
+def question(asked: Question, graph: Graph | Addresses) -> question_pb2.Question:
+    """A question with its pins as numbers."""
+    must, never = (pins(field, getattr(asked, field), graph) for field in ("must", "never"))
+    field = asked.name.replace("-", "_")
+    kinds: dict[str, Any] = {"independent_set": question_pb2.IndependentSet, "vertex_cover": question_pb2.VertexCover}
+    if field not in kinds:
+        raise BadInput(f"{asked!r} is no question", "ask IndependentSet() or VertexCover()")
+    return question_pb2.Question(**{field: kinds[field](must=must, never=never)})
+
+
+def pins(field: str, given: tuple[Pin, ...], graph: Graph | Addresses) -> list[int]:
+    """Pins as vertex numbers; BadInput names the first that is not a vertex of the graph."""
+    return [pin_number(field, pin, graph) for pin in given]
+
+
+def pin_number(field: str, pin: Pin, graph: Graph | Addresses) -> int:
+    """One pin as a vertex number."""
+    if isinstance(pin, str):
+        return _named(field, pin, graph)
+    limit = graph.n if isinstance(graph, Graph) else 2**32
+    if not 0 <= pin < limit:
+        what = f"the graph has vertices 0 to {limit - 1}" if limit else "the graph has no vertices"
+        raise BadInput(f"{field} has vertex {pin}, which does not exist", what)
+    return pin
+
+
+def _named(field: str, name: str, graph: Graph | Addresses) -> int:
+    if not isinstance(graph, Graph) or graph.names is None:
+        raise BadInput(f"{field} has the name {name!r}, but the graph carries no names", "give vertex numbers from 0")
+    try:
+        return graph.vertex(name)
+    except KeyError:
+        raise BadInput(f"{field} has {name!r}, which is no vertex of the graph", "give names of the graph") from None
+
+
+def budget(spent: Budget) -> question_pb2.Budget:
+    """A budget; absent fields stay absent."""
+    return question_pb2.Budget(fill=spent.fill, states=spent.states, seconds=spent.seconds, memory_bytes=spent.memory)
+
+
+def when_over(word: WhenOver | str) -> question_pb2.WhenOver:
+    """`bound` or `stop`."""
+    try:
+        return WHEN_OVER[WhenOver(word)]
+    except ValueError:
+        raise BadInput(f"when_over is {word!r}", "say 'bound' or 'stop'") from None
+
+
+def stage(word: Stage | str | None) -> job_pb2.Stage:
+    """A stage to filter by; None: every stage."""
+    if word is None:
+        return job_pb2.STAGE_UNSPECIFIED
+    try:
+        return STAGES[Stage(word)]
+    except ValueError:
+        raise BadInput(f"stage is {word!r}", "say WAITING, SOLVING or DONE") from None
+
+
+def timestamp(moment: datetime) -> Timestamp:
+    """A moment; BadInput without a time zone, because nobody could tell when it is."""
+    if moment.tzinfo is None:
+        raise BadInput(f"not_after {moment.isoformat()} has no time zone", "add one, such as datetime.UTC")
+    result = Timestamp()
+    result.FromDatetime(moment.astimezone(UTC))
+    return result
+
+
+def inline_input(content: InputContent) -> content_pb2.GraphInput:
+    """A graph that travels with its job."""
+    return content_pb2.GraphInput(
+        graph_content=content.graph.inline(),
+        weights_content=None if content.weights is None else content.weights.inline(),
+        names_content=None if content.names is None else content.names.inline(),
+    )
+
+
+def stored_input(addresses: Addresses) -> content_pb2.GraphInput:
+    """A graph that has been stored."""
+    return content_pb2.GraphInput(
+        graph_address=addresses.graph,
+        weights_address=addresses.weights or None,
+        names_address=addresses.names or None,
+    )
+
+
+def checked_id(kind: str, word: str) -> str:
+    """An id; BadInput when it is empty or no text."""
+    if not isinstance(word, str) or not word:
+        raise BadInput(f"{word!r} is no {kind} id", f"give the id printed when the {kind} was submitted")
+    return word
+
+
+def request_list(items: Iterable[JobRequest]) -> list[JobRequest]:
+    """The jobs of a batch; BadInput when there is none, or when something else is among them."""
+    requests = list(items)
+    if not requests:
+        raise BadInput("a batch has no jobs", "give at least one JobRequest")
+    for place, item in enumerate(requests):
+        if not isinstance(item, JobRequest):
+            raise BadInput(f"item {place} of the batch is {type(item).__name__}", "give nearchord.JobRequest objects")
+    return requests

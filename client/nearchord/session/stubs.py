@@ -1,0 +1,18 @@
+"""The generated stubs of a channel, by method; they serve both gRPC stacks."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from nearchord.session.steps import Method
+from nearchord.v1 import graph_service_pb2_grpc, job_service_pb2_grpc, load_service_pb2_grpc
+
+
+def stubs_of(channel: Any) -> dict[Method, Any]:
+    """Every callable of the contract on a channel."""
+    stubs: dict[str, Any] = {
+        "graph": graph_service_pb2_grpc.GraphServiceStub(channel),  # type: ignore[no-untyped-call]
+        "job": job_service_pb2_grpc.JobServiceStub(channel),  # type: ignore[no-untyped-call]
+        "load": load_service_pb2_grpc.LoadServiceStub(channel),  # type: ignore[no-untyped-call]
+    }
+    return {method: getattr(stubs[method.value[0]], method.value[1]) for method in Method}

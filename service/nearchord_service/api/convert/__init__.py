@@ -1,0 +1,1 @@
+"""The only place where protobuf meets the model: requests become checked values here, values become responses."""

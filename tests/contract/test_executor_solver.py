@@ -1,0 +1,101 @@
+"""The local executor with the real solver: warm-up, answers, and a stop in the middle of a solve."""
+
+from __future__ import annotations
+
+import random
+import struct
+
+import numpy as np
+import pytest
+from contract.executor_stage import Stage
+from nearchord_service.model.content import Bytes
+from nearchord_service.model.event import Phase
+from nearchord_service.model.question import Budget, Question, QuestionName, WhenOver
+from nearchord_service.model.stage import Verdict
+from nearchord_service.work.local import LocalExecutor
+from nearchord_service.work.port import Task, TaskKey
+
+COLD_SECONDS = 280.0
+"""Kernels may have to be compiled first."""
+
+
+def canonical(n, edges):
+    """Canonical bytes of a graph, from the definition in the wire contract."""
+    rows = [sorted({max(u, v) for u, v in edges if min(u, v) == low}) for low in range(n)]
+    pointers = np.concatenate([[0], np.cumsum([len(row) for row in rows])]).astype("<u8")
+    targets = np.array([target for row in rows for target in row], "<u4")
+    return struct.pack("<IQ", n, targets.size) + pointers.tobytes() + targets.tobytes()
+
+
+@pytest.fixture(scope="module")
+def stage():
+    made = Stage(LocalExecutor(2))
+    with made.audience.changed:
+        assert made.audience.changed.wait_for(lambda: made.executor.free() == 2, COLD_SECONDS)
+    yield made
+    made.executor.stop(0.0)
+
+
+def solved(stage, n, edges, *, name=QuestionName.INDEPENDENT_SET, weights=None, seconds=60.0, **pins):
+    data = canonical(n, edges)
+    one = Task(
+        key=TaskKey(f"{name}-{n}-{random.random()}", 1),
+        graph=Bytes(data, None),
+        weights=None if weights is None else Bytes(np.array(weights, "<i8").tobytes(), None),
+        vertices=n,
+        edges=len(edges),
+        question=Question(name, **pins),
+        budget=Budget(seconds=seconds),
+        when_over=WhenOver.BOUND,
+    )
+    stage.executor.run(one)
+    return stage.audience.end_of(one).answer
+
+
+def chosen(answer):
+    (column,) = answer.columns
+    return np.frombuffer(column.data, "<u4").tolist()
+
+
+PENTAGON = [(0, 1), (1, 2), (2, 3), (3, 4), (0, 4)]
+
+
+def test_pentagon_with_weights(stage):
+    """Of the five maximal independent sets of a pentagon {1, 3} weighs 5 + 4, the others less."""
+    answer = solved(stage, 5, PENTAGON, weights=[3, 5, 1, 4, 2])
+    assert (answer.verdict, answer.value, answer.bound) == (Verdict.PROVEN, (9, 1), (9, 1))
+    assert chosen(answer) == [1, 3]
+    assert (answer.fill, answer.fill_cores) == (2, 1)
+    assert Phase.SWEEP in dict(answer.phase_seconds)
+
+
+def test_pentagon_covered(stage):
+    """The complement of the heaviest independent set is the lightest cover."""
+    answer = solved(stage, 5, PENTAGON, weights=[3, 5, 1, 4, 2], name=QuestionName.VERTEX_COVER)
+    assert (answer.verdict, answer.value) == (Verdict.PROVEN, (6, 1))
+    assert chosen(answer) == [0, 2, 4]
+
+
+def test_pins_reach_the_solver(stage):
+    """A vertex that must be in takes its neighbours out; contradicting pins are INFEASIBLE."""
+    assert chosen(solved(stage, 5, PENTAGON, must=(0,), never=(2,))) == [0, 3]
+    assert solved(stage, 5, PENTAGON, must=(0, 1)).verdict is Verdict.INFEASIBLE
+
+
+@pytest.mark.parametrize("name", list(QuestionName))
+def test_empty_graph(stage, name):
+    """Nothing to choose from is proven at once."""
+    answer = solved(stage, 0, [], name=name)
+    assert (answer.verdict, answer.value, chosen(answer)) == (Verdict.PROVEN, (0, 1), [])
+
+
+def test_a_hard_graph_ends_at_its_seconds(stage):
+    """A random graph far from chordal ends within its seconds, bounded honestly, without a kill."""
+    dice = random.Random(7)
+    edges = [(u, v) for u in range(400) for v in range(u + 1, 400) if dice.random() < 0.5]
+    answer = solved(stage, 400, edges, seconds=0.5)
+    assert answer.verdict is Verdict.BOUNDED
+    assert answer.value <= answer.bound
+    picked = set(chosen(answer))
+    assert not any(u in picked and v in picked for u, v in edges)
+    assert answer.value == (len(picked), 1)

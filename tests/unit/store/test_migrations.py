@@ -1,0 +1,89 @@
+"""Schema versions: a fresh database is what the tables say, a newer or damaged one is refused."""
+
+from __future__ import annotations
+
+import sqlite3
+from pathlib import Path
+
+import pytest
+from contract.stores import ANN, submit
+from nearchord_service.model.errors import StoreUnavailable
+from nearchord_service.store.sql import SqlStore, migrations
+from nearchord_service.store.sql.schema import metadata
+from sqlalchemy import Engine, create_engine, inspect
+
+
+@pytest.fixture
+def path(tmp_path: Path) -> Path:
+    store = SqlStore(tmp_path)
+    store.start()
+    store.stop()
+    return tmp_path / "nearchord.db"
+
+
+def shape(engine: Engine) -> dict[str, object]:
+    """Return columns and keys of each table, and each index as it was written."""
+    found = inspect(engine)
+    tables: dict[str, object] = {}
+    for table in found.get_table_names():
+        columns = {c["name"]: (str(c["type"]), c["nullable"]) for c in found.get_columns(table)}
+        tables[table] = columns, found.get_pk_constraint(table)["constrained_columns"]
+    with engine.connect() as connection:
+        indexes = connection.exec_driver_sql("SELECT name, sql FROM sqlite_master WHERE type = 'index' AND sql <> ''")
+        tables["indexes"] = {name: " ".join(sql.split()) for name, sql in indexes}
+    engine.dispose()
+    return tables
+
+
+def test_migrations_lead_to_the_tables(path: Path, tmp_path: Path) -> None:
+    """What the migrations make and what the statements are built from are the same."""
+    stated = create_engine(f"sqlite:///{tmp_path / 'stated.db'}")
+    metadata.create_all(stated)
+    migrated = shape(create_engine(f"sqlite:///{path}"))
+    assert migrated.pop("schema_version")
+    assert migrated == shape(stated)
+
+
+def test_opening_again_applies_nothing(path: Path) -> None:
+    store = SqlStore(path.parent)
+    store.start()
+    submit(store)
+    store.stop()
+    with sqlite3.connect(path) as connection:
+        assert connection.execute("SELECT version FROM schema_version").fetchall() == [(1,)]
+    connection.close()
+
+
+def test_newer_database_is_refused_and_left_alone(path: Path) -> None:
+    with sqlite3.connect(path) as connection:
+        connection.execute("INSERT INTO schema_version VALUES (7, 0)")
+    connection.close()
+    store = SqlStore(path.parent)
+    with pytest.raises(
+        StoreUnavailable, match=r"schema version 7, this server knows up to 1: .*newer server"
+    ) as caught:
+        store.start()
+    assert str(path) in str(caught.value)
+    store.stop()
+
+
+def test_failed_migration_leaves_the_version_before(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    broken = (*migrations.VERSIONS, ("CREATE TABLE half (x $bytes)", "CREATE TABLE nonsense ("))
+    with monkeypatch.context() as patch:
+        patch.setattr(migrations, "VERSIONS", broken)
+        with pytest.raises(StoreUnavailable, match=r"nearchord\.db"):
+            SqlStore(path.parent).start()
+    store = SqlStore(path.parent)
+    store.start()
+    job = submit(store)
+    assert store.job(ANN, job.id) == job
+    store.stop()
+    engine = create_engine(f"sqlite:///{path}")
+    assert "half" not in inspect(engine).get_table_names()
+    engine.dispose()
+
+
+def test_damaged_database_is_named_with_the_remedy(path: Path) -> None:
+    path.write_bytes(b"not a database at all" * 100)
+    with pytest.raises(StoreUnavailable, match=r"nearchord\.db: file is not a database; .*backup"):
+        SqlStore(path.parent).start()
