@@ -10,6 +10,7 @@ from nearchord_solve.fill.exact.words import new_pairs, rows_of
 from nearchord_solve.kernels.dense import list_fill, thin
 from nearchord_solve.monitor import Monitor
 
+ENDLESS_EFFORT = 2**62
 MOST_FOR_SEARCH = 500
 MOST_RESTARTS = 20
 RESTARTS_OF_ONE = 10_000  # restarts are at most this over the number of vertices
@@ -38,7 +39,7 @@ def minimal(core: Core, fill: list[Pair]) -> list[Pair]:
 def thinned(core: Core, filled: U64) -> list[Pair]:
     """Fill of a triangulation after dropping what can go; ``filled`` is overwritten."""
     pairs = list_fill(rows_of(core.adj), filled)
-    thin(filled, pairs, _GOING_ON)
+    thin(filled, pairs, np.array([ENDLESS_EFFORT]), _GOING_ON)
     return new_pairs(core.adj, filled)
 
 
