@@ -2,13 +2,13 @@
 
 import numpy as np
 
-from .arrays import I64
-from .budget import Budget
-from .errors import SolverError
-from .graph import Graph
-from .monitor import Monitor, Phase
-from .outcome import Outcome
-from .questions import IndependentSet, VertexCover
+from nearchord_solve.arrays import I64
+from nearchord_solve.budget import Budget
+from nearchord_solve.errors import SolverError
+from nearchord_solve.graph import Graph
+from nearchord_solve.monitor import Monitor, Phase
+from nearchord_solve.outcome import Outcome
+from nearchord_solve.questions import IndependentSet, VertexCover
 
 MOST_WEIGHT = 2**62  # sums of weights stay below, so that sums and differences of two fit int64
 

@@ -4,15 +4,24 @@ from typing import NamedTuple
 
 import numpy as np
 
-from .bags import count_parts, count_states, write_bags
-from .cells import STEP, STOP
-from .compiled import I32, I64, U8, kernel
-from .core_lists import core_vertices, dense_lists, dense_rows, sparse_lists
-from .dense import list_fill
-from .grow import grown8, grown32, grown64
-from .layout import FILL_EDGES, FILL_LOWER, PARTS_FILL, PARTS_PLAIN, STATES, TABLE, Forest, Numbering
-from .packing import pack_cycles
-from .triangulate import best_triangulation
+from nearchord_solve.kernels.bags import count_parts, count_states, write_bags
+from nearchord_solve.kernels.cells import STEP, STOP
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.core_lists import core_vertices, dense_lists, dense_rows, sparse_lists
+from nearchord_solve.kernels.dense import list_fill
+from nearchord_solve.kernels.grow import grown8, grown32, grown64
+from nearchord_solve.kernels.layout import (
+    FILL_EDGES,
+    FILL_LOWER,
+    PARTS_FILL,
+    PARTS_PLAIN,
+    STATES,
+    TABLE,
+    Forest,
+    Numbering,
+)
+from nearchord_solve.kernels.packing import pack_cycles
+from nearchord_solve.kernels.triangulate import best_triangulation
 
 
 class Plan(NamedTuple):

@@ -6,8 +6,8 @@ uint64[k, W] the rows of a triangulation H of G.  Bit j of row i stands for the 
 
 import numpy as np
 
-from .cells import STOP
-from .compiled import I32, I64, U64, kernel, lowest, ones
+from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest, ones
 
 ONE = np.uint64(1)
 WORD = 64

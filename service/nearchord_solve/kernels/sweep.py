@@ -9,12 +9,12 @@ from has lower ones.
 
 import numpy as np
 
-from .cells import BAGS_DONE, POLL, STEP, STOP
-from .cliques import touched
-from .compiled import I32, I64, U8, kernel
-from .cover import choose_greedily, cover_core
-from .layout import ADHESION_FILL, BAG_FILL, Forest, Numbering, Tries
-from .tables import best_state, collect_messages, fill_table, settle_message
+from nearchord_solve.kernels.cells import BAGS_DONE, POLL, STEP, STOP
+from nearchord_solve.kernels.cliques import touched
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.cover import choose_greedily, cover_core
+from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest, Numbering, Tries
+from nearchord_solve.kernels.tables import best_state, collect_messages, fill_table, settle_message
 
 
 @kernel

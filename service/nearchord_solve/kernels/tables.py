@@ -17,8 +17,8 @@ difference, which is smaller than 2**62.
 
 import numpy as np
 
-from .cliques import depth_limit
-from .compiled import I32, I64, U64, kernel, lowest
+from nearchord_solve.kernels.cliques import depth_limit
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest
 
 ONE = np.uint64(1)
 

@@ -5,10 +5,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..arrays import I64, U32
-from ..errors import SolverError
-from ..graph import Graph
-from ..kernels import csr
+from nearchord_solve.arrays import I64, U32
+from nearchord_solve.errors import SolverError
+from nearchord_solve.graph import Graph
+from nearchord_solve.kernels import csr
 
 
 @dataclass(frozen=True)

@@ -15,8 +15,8 @@ from nearchord_solve.recognise.kernels.lexicographic import lexicographic_search
 class Interval:
     """``interval``: whether the graph is an interval graph.
 
-    If so, clique i is ``vertex[ptr[i]:ptr[i+1]]``, ascending: all maximal cliques, in an order in which those of each vertex are
-    consecutive.  Otherwise both are None.
+    If so, clique i is ``vertex[ptr[i]:ptr[i+1]]``, ascending: all maximal cliques, in an order in which those of
+    each vertex are consecutive.  Otherwise both are None.
     """
 
     interval: bool

@@ -29,8 +29,8 @@ def recognise_split(graph: Graph) -> Split:
     """Splittance and partition from the degrees alone.
 
     With degrees d_1 >= d_2 >= ... and p the largest i with d_i >= i - 1, the splittance is half of
-    p(p - 1) + sum of d_i for i > p - sum of d_i for i <= p; if it is 0, the first p vertices are a clique and the others are
-    independent (Hammer and Simeone, Combinatorica 1 (1981) 275-284).  O(n log n) time.
+    p(p - 1) + sum of d_i for i > p - sum of d_i for i <= p; if it is 0, the first p vertices are a clique and the
+    others are independent (Hammer and Simeone, Combinatorica 1 (1981) 275-284).  O(n log n) time.
 
     A path on four vertices is split: its middle is the clique.
 

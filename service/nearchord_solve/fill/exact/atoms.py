@@ -7,28 +7,32 @@ triangulations of the pieces meet in a clique, so their union is a triangulation
 
 from collections.abc import Sequence
 
-from nearchord_solve.fill.exact.core import Mask, Pair, around, is_clique, members, reach
+from nearchord_solve.arrays import I64
+from nearchord_solve.fill.exact.core import Mask, Pair, is_clique, members, reach
+from nearchord_solve.kernels.cells import STOP
 
 
-def minimal_triangulation(adj: Sequence[Mask], within: Mask) -> tuple[list[int], list[Mask]]:
+def minimal_triangulation(adj: Sequence[Mask], within: Mask, cells: I64) -> tuple[list[int], list[Mask]] | None:
     """Order and later neighbours of a minimal triangulation of the graph induced on ``within``.
 
     MCS-M (Berry, Blair, Heggernes, Peyton, Algorithmica 39 (2004) 287-298): returns the minimal elimination order
-    of the vertices and, at each of them, its neighbours in the triangulation that come later in the order.
-    O(n m) time.
+    of the vertices and, at each of them, its neighbours in the triangulation that come later in the order; None if
+    ``cells`` say stop.  O(n m) time.
     """
     weight = dict.fromkeys(members(within), 0)
     left = within
-    backwards: list[tuple[int, Mask]] = []
+    backwards: list[int] = []
     later: dict[int, Mask] = dict.fromkeys(weight, 0)
     while left:
+        if cells[STOP]:
+            return None
         v = max(members(left), key=lambda u: (weight[u], -u))
         left &= ~(1 << v)
         for u in members(_reached_below(adj, v, left, weight)):
             weight[u] += 1
             later[u] |= 1 << v
-        backwards.append((v, 0))
-    order = [v for v, _ in reversed(backwards)]
+        backwards.append(v)
+    order = backwards[::-1]
     return order, [later[v] for v in order]
 
 
@@ -55,17 +59,20 @@ def _reached_below(adj: Sequence[Mask], v: int, left: Mask, weight: dict[int, in
     return found
 
 
-def atoms(adj: Sequence[Mask], within: Mask) -> list[Mask]:
+def atoms(adj: Sequence[Mask], within: Mask, cells: I64) -> list[Mask]:
     """Atoms of the graph induced on ``within``: its pieces without clique separators.
 
     In the order of MCS-M, a vertex whose later neighbours S form a clique of the graph cuts off S and the component
     of the rest that holds it (Berry, Pogorelcnik, Simonet, Algorithms 3 (2010) 197-215; Leimer, Discrete Math. 113
-    (1993) 99-123).  Simplicial vertices come out as clique atoms.  O(n m) time.
+    (1993) 99-123).  Simplicial vertices come out as clique atoms.  O(n m) time.  When
+    stopped, the whole comes out as one piece.
     """
-    order, later = minimal_triangulation(adj, within)
+    triangulation = minimal_triangulation(adj, within, cells)
+    if triangulation is None:
+        return [within]
     remaining = within
     found: list[Mask] = []
-    for v, ahead in zip(order, later, strict=True):
+    for v, ahead in zip(*triangulation, strict=True):
         if not remaining >> v & 1:
             continue
         cut = ahead & remaining
@@ -79,22 +86,12 @@ def atoms(adj: Sequence[Mask], within: Mask) -> list[Mask]:
     return found
 
 
-def triangulation_fill(adj: Sequence[Mask], within: Mask) -> list[Pair]:
-    """Fill edges of the minimal triangulation of MCS-M."""
-    order, later = minimal_triangulation(adj, within)
+def triangulation_fill(adj: Sequence[Mask], within: Mask, cells: I64) -> list[Pair] | None:
+    """Fill edges of the minimal triangulation of MCS-M; None if stopped."""
+    triangulation = minimal_triangulation(adj, within, cells)
+    if triangulation is None:
+        return None
     pairs = []
-    for v, ahead in zip(order, later, strict=True):
+    for v, ahead in zip(*triangulation, strict=True):
         pairs += [(min(u, v), max(u, v)) for u in members(ahead & ~adj[v])]
     return pairs
-
-
-def full_components(adj: Sequence[Mask], separator: Mask, within: Mask) -> list[Mask]:
-    """Components of ``within`` minus the separator that see all of it."""
-    left = within & ~separator
-    full = []
-    while left:
-        part = reach(adj, left & -left, left)
-        left &= ~part
-        if around(adj, part) & within == separator:
-            full.append(part)
-    return full

@@ -49,9 +49,9 @@ def solve_blocks(
     place = {v: i for i, v in enumerate(order)}
     adj = [sum(1 << place[u] for u in members(core.adj[v])) for v in order]
     sizes = [core.sizes[v] for v in order]
-    separators = minimal_separators(adj, core.everything, most_separators)
+    separators = minimal_separators(adj, core.everything, most_separators, cells)
     if separators is None:
-        return Status.TOO_LARGE, []
+        return (Status.STOPPED if cells[STOP] else Status.TOO_LARGE), []
     prices = np.zeros((core.n, core.n), np.int64)
     for a, b in missing(adj, core.everything):
         named = (min(order[a], order[b]), max(order[a], order[b]))

@@ -91,7 +91,7 @@ class CaseSearch:
             if fractional and (stalled or turn > ROUNDS_A_CASE):
                 return None, self._choose(case, value)
             self.relaxation.drop_idle(PATIENCE)
-            cycles = violated(self.core, point, THRESHOLDS, 2 * CUTS_A_ROUND)
+            cycles = violated(self.core, point, THRESHOLDS, 2 * CUTS_A_ROUND, self.monitor.cells)
             if not self.relaxation.add(selected(cycles, CUTS_A_ROUND)):
                 if fractional:
                     return None, self._choose(case, value)

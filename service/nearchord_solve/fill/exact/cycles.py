@@ -12,7 +12,7 @@ For K = 0 these are the chordless cycles of the graph.  The separation looks for
 
 import numpy as np
 
-from nearchord_solve.arrays import F64
+from nearchord_solve.arrays import F64, I64
 from nearchord_solve.fill.exact.core import Core
 from nearchord_solve.fill.exact.kernels.chordless import adjacency, four_cycles, long_cycles, round_up
 from nearchord_solve.fill.exact.words import rows_of
@@ -31,7 +31,7 @@ def canonical(cycle: list[int]) -> Cycle:
     return tuple(turned)
 
 
-def violated(core: Core, x: F64, thresholds: tuple[float, ...], enough: int) -> list[Cycle]:
+def violated(core: Core, x: F64, thresholds: tuple[float, ...], enough: int, cells: I64) -> list[Cycle]:
     """Cycles whose cuts are violated at ``x`` float64[n, n] (symmetric, 0 on edges), the worst first.
 
     Thresholds are tried in turn until ``enough`` are found.
@@ -47,7 +47,7 @@ def violated(core: Core, x: F64, thresholds: tuple[float, ...], enough: int) -> 
     for threshold in thresholds:
         rounded = graph.copy()
         round_up(present, threshold, rounded)
-        flat, ends, gains = long_cycles(rounded, present, LEAST_VIOLATION)
+        flat, ends, gains = long_cycles(rounded, present, LEAST_VIOLATION, cells)
         start = 0
         for end, value in zip(ends.tolist(), gains.tolist(), strict=True):
             found[canonical(flat[start:end].tolist())] = value

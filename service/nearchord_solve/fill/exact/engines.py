@@ -15,16 +15,15 @@ from nearchord_solve.fill.exact.status import Status
 from nearchord_solve.fill.exact.subsets import MOST_FREE, free_vertices, solve_subsets
 from nearchord_solve.monitor import Monitor
 
-RESTARTS = 20
 FEW_SEPARATORS = 4_000
 MANY_SEPARATORS = 20_000
 FEW_NODES = 200
 ENDLESS = 2**31
 
 
-def first_bounds(core: Core) -> Bounds:
+def first_bounds(core: Core, monitor: Monitor) -> Bounds:
     """The cheapest fill of the portfolio."""
-    best = portfolio(core, RESTARTS)
+    best = portfolio(core, monitor)
     return Bounds(best, core.cost(best))
 
 

@@ -10,6 +10,11 @@ from nearchord_solve.fill.exact.words import new_pairs, rows_of
 from nearchord_solve.kernels.dense import list_fill, thin
 from nearchord_solve.monitor import Monitor
 
+ENDLESS_EFFORT = 2**62
+MOST_FOR_SEARCH = 500
+MOST_RESTARTS = 20
+RESTARTS_OF_ONE = 10_000  # restarts are at most this over the number of vertices
+
 _GOING_ON = np.zeros(Monitor.CELLS, np.int64)
 
 
@@ -34,24 +39,25 @@ def minimal(core: Core, fill: list[Pair]) -> list[Pair]:
 def thinned(core: Core, filled: U64) -> list[Pair]:
     """Fill of a triangulation after dropping what can go; ``filled`` is overwritten."""
     pairs = list_fill(rows_of(core.adj), filled)
-    thin(filled, pairs, _GOING_ON)
+    thin(filled, pairs, np.array([ENDLESS_EFFORT]), _GOING_ON)
     return new_pairs(core.adj, filled)
 
 
-def portfolio(core: Core, restarts: int) -> list[Pair]:
-    """The cheapest of: MCS-M, minimum degree, minimum fill, and ``restarts`` of minimum fill with shaken ties.
+def portfolio(core: Core, monitor: Monitor) -> list[Pair]:
+    """The cheapest of: minimum degree, MCS-M, minimum fill, and minimum fill with ties shaken; all minimal.
 
-    All minimal triangulations.  Deterministic: the shaking is a fixed sequence.
+    Deterministic: the shaking is a fixed sequence, the longer the smaller the core.  When stopped, at least minimum
+    degree.
     """
     still = np.zeros(core.n)
     price = prices_of(core)
-    found = [
-        triangulation_fill(core.adj, core.everything),
-        completed(core, BY_DEGREE, price, still),
-        completed(core, BY_FILL, price, still),
-    ]
+    found = [completed(core, BY_DEGREE, price, still)]
+    if core.n <= MOST_FOR_SEARCH and (searched := triangulation_fill(core.adj, core.everything, monitor.cells)):
+        found.append(searched)
     random = np.random.default_rng(core.n)
-    for turn in range(restarts):
-        noise = random.random(core.n) * (0.5 if turn % 2 else 2.0)
+    for turn in range(max(1, min(MOST_RESTARTS, RESTARTS_OF_ONE // max(1, core.n)))):
+        if monitor.stop:
+            break
+        noise = random.random(core.n) * (2.0, 0.5)[turn % 2] if turn else still
         found.append(completed(core, BY_FILL, price, noise))
     return min(found, key=core.cost)

@@ -4,8 +4,7 @@
 2. The atoms of the decomposition by clique separators are independent (module :mod:`atoms`).
 3. *Safe edge.*  Let y be a vertex, C a component of G - N[y], S = N(C), and let u, v be the only non-adjacent pair
    in S.  Then some minimum triangulation contains uv.
-4. *Forced edge.*  See :func:`forced_edges`.
-5. True twins form a class, and the fill between two classes is all or nothing: replace the fill edges of every
+4. True twins form a class, and the fill between two classes is all or nothing: replace the fill edges of every
    member by those of a member with fewest; the result is still a triangulation (a true twin can be added to any
    vertex of a chordal graph) and costs no more.
 
@@ -25,7 +24,8 @@ s(u) s(x), and x gave back at least s(c) s(x) >= s(u) s(x) for some c in C.  So 
 from dataclasses import dataclass
 
 from nearchord_solve.fill.exact.atoms import atoms
-from nearchord_solve.fill.exact.core import Core, Mask, Pair, around, components, is_clique, members, missing, reach
+from nearchord_solve.fill.exact.core import Core, Mask, Pair, around, components, is_clique, members
+from nearchord_solve.monitor import Monitor
 
 
 @dataclass(frozen=True)
@@ -36,7 +36,7 @@ class Reduced:
     added: list[Pair]
 
 
-def decompose(core: Core) -> list[Core]:
+def decompose(core: Core, monitor: Monitor) -> list[Core]:
     """Atoms without universal and simplicial vertices: rules 1 and 2 only.  Their fill numbers add up."""
     waiting = [core.everything]
     found = []
@@ -45,7 +45,7 @@ def decompose(core: Core) -> list[Core]:
         inside = stripped(core.adj, kept)
         if not inside:
             continue
-        pieces = atoms(core.adj, inside)
+        pieces = atoms(core.adj, inside, monitor.cells)
         if len(pieces) == 1:
             found.append(core.induced(pieces[0]))
         else:
@@ -53,18 +53,18 @@ def decompose(core: Core) -> list[Core]:
     return found
 
 
-def reduce_core(core: Core) -> Reduced:
-    """Apply rules 1, 2, 3 and 5 until nothing changes.  Cores come in a fixed order."""
+def reduce_core(core: Core, monitor: Monitor) -> Reduced:
+    """Apply all rules until nothing changes.  Cores come in a fixed order."""
     waiting = [core]
     found: list[Core] = []
     added: list[Pair] = []
     while waiting:
         current = waiting.pop()
-        pieces = decompose(current)
+        pieces = decompose(current, monitor)
         if len(pieces) != 1 or pieces[0].n < current.n:
             waiting.extend(reversed(pieces))
             continue
-        safe = safe_edges(current)
+        safe = [] if monitor.stop else safe_edges(current)
         if safe:
             added += current.lift(safe)
             waiting.append(current.with_edges(safe))
@@ -140,36 +140,3 @@ def contract_twins(core: Core) -> Core:
         kept |= 1 << v
     smaller = core.induced(kept)
     return Core(smaller.adj, [tuple(sorted(joined[v])) for v in members(kept)])
-
-
-def forced_edges(core: Core, budget: int) -> list[Pair]:
-    """Pairs that every fill of at most ``budget`` edges contains (Natanzon, Shamir, Sharan, SIAM J. Comput. 30
-    (2000) 1067-1079, sharpened).
-
-    For non-adjacent x, y let A be the common neighbours b for which a path from x to y avoids all other vertices
-    of N[b].  If the fill lacks xy, the cycle through b and a shortest such path needs a chord at b, so every b in A
-    meets a fill edge.  A fill edge meets two vertices of A only if they are not adjacent; so there are at least
-    half as many fill edges as vertices of A with a non-neighbour in A, plus the number of the others.
-    """
-    found = []
-    for x in range(core.n):
-        for y in members(core.everything & ~core.adj[x] & ~((2 << x) - 1)):
-            common = core.adj[x] & core.adj[y]
-            if sum(core.sizes[b] for b in members(common)) > budget and _needs(core, x, y, common) > 2 * budget:
-                found.append((x, y))
-    return found
-
-
-def _needs(core: Core, x: int, y: int, common: Mask) -> int:
-    """Twice the lower bound on the number of fill edges if xy is not one of them."""
-    both = 1 << x | 1 << y
-    tied = 0
-    for b in members(common):
-        if reach(core.adj, 1 << x, core.everything & ~(core.adj[b] | 1 << b) | both) >> y & 1:
-            tied |= 1 << b
-    return sum(core.sizes[b] * (1 if tied & ~core.adj[b] & ~(1 << b) else 2) for b in members(tied))
-
-
-def all_missing(core: Core) -> list[Pair]:
-    """All non-adjacent pairs of the core."""
-    return missing(core.adj, core.everything)

@@ -5,10 +5,12 @@ from collections.abc import Mapping
 import highspy
 import numpy as np
 
-from nearchord_solve.arrays import F64
+from nearchord_solve.arrays import F64, I64
 from nearchord_solve.fill.exact.core import Core, Pair
 from nearchord_solve.fill.exact.cycles import Cycle
 from nearchord_solve.fill.exact.packing import sides_and_chords
+from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.monitor import Monitor
 
 FORBIDDING = 1e5
 
@@ -25,13 +27,24 @@ class _Silent(highspy.Highs):
         super().enableCallbacks()  # type: ignore[no-untyped-call]
 
 
+class _Watch:
+    """Ends a run of the solver when the monitor says stop.  Holds the cells only, so that no cycle keeps it alive."""
+
+    def __init__(self, cells: I64) -> None:
+        self.cells = cells
+
+    def __call__(self, event: highspy.HighsCallbackEvent) -> None:
+        if self.cells[STOP] != 0:
+            event.interrupt()
+
+
 class Relaxation:
     """A growing linear program over x in [0, 1], solved again from its last basis.
 
     ``pairs`` are the columns: non-edges that occur in a cut; ``cycles`` are the rows.  Both in order of addition.
     """
 
-    def __init__(self, core: Core) -> None:
+    def __init__(self, core: Core, monitor: Monitor) -> None:
         self.core = core
         self.pairs: list[Pair] = []
         self.column: dict[Pair, int] = {}
@@ -40,6 +53,7 @@ class Relaxation:
         self.idle: list[int] = []
         self._decided: dict[Pair, int] = {}
         self._solver = _Silent()
+        self._solver.cbSimplexInterrupt.subscribe(_Watch(monitor.cells))
         for option, value in (("threads", 1), ("parallel", "off"), ("presolve", "off"), ("random_seed", 0)):
             self._solver.setOptionValue(option, value)
 

@@ -56,9 +56,11 @@ class Bounds:
 
 def cut(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> Relaxation:
     """Improve ``bounds`` by rounds of cuts until closed, over ``most``, out of cuts or of progress, or stopped."""
-    relaxation = Relaxation(core)
+    relaxation = Relaxation(core, monitor)
     values: list[float] = []
-    relaxation.add(selected(violated(core, np.zeros((core.n, core.n)), THRESHOLDS, 3 * CUTS_A_ROUND), CUTS_A_ROUND))
+    relaxation.add(
+        selected(violated(core, np.zeros((core.n, core.n)), THRESHOLDS, 3 * CUTS_A_ROUND, monitor.cells), CUTS_A_ROUND)
+    )
     for turn in range(MOST_ROUNDS):
         value = relaxation.solve()
         if value is None or monitor.stop:
@@ -71,7 +73,7 @@ def cut(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> Relaxation:
             guided(core, point, bounds, 1)
         if bounds.closed or bounds.lower > most:
             break
-        fresh = selected(violated(core, point, THRESHOLDS, 3 * CUTS_A_ROUND), CUTS_A_ROUND)
+        fresh = found_at(core, point, monitor)
         relaxation.drop_idle(4)
         stalled = len(values) > PATIENCE and value - values[-PATIENCE] < LEAST_PROGRESS
         if stalled or not relaxation.add(fresh):
@@ -79,6 +81,11 @@ def cut(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> Relaxation:
     if not bounds.closed and relaxation.cycles and not monitor.stop and relaxation.solve() is not None:
         guided(core, relaxation.point(), bounds, 24)
     return relaxation
+
+
+def found_at(core: Core, point: F64, monitor: Monitor) -> list[Cycle]:
+    """A round of cuts violated at ``point``."""
+    return selected(violated(core, point, THRESHOLDS, 3 * CUTS_A_ROUND, monitor.cells), CUTS_A_ROUND)
 
 
 def selected(cycles: list[Cycle], most: int) -> list[Cycle]:

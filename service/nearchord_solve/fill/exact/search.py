@@ -1,6 +1,6 @@
 """Minimum fill of parts: decompose, bound, and search where the bounds do not meet.
 
-1. Split into atoms and contract true twins (module :mod:`reduce`, rules 1, 2, 5).
+1. Split into atoms and contract true twins (module :mod:`reduce`, rules 1, 2, 4).
 2. For each atom take a fill from a portfolio and a packing bound by cutting planes.  Where they meet, the packing is
    the proof.
 3. Where they nearly meet, try a few cases by branch and cut: the tree is the proof.
@@ -21,7 +21,7 @@ from nearchord_solve.fill.exact.reduce import contract_twins, decompose, reduce_
 from nearchord_solve.fill.exact.relaxation import Relaxation
 from nearchord_solve.fill.exact.result import Branch, FillResult, Packing, PieceProof, ProofKind
 from nearchord_solve.fill.exact.root import Bounds, cut
-from nearchord_solve.monitor import Monitor
+from nearchord_solve.monitor import Monitor, Phase
 
 UNLIMITED = 2**62
 PROOF_NODES = 150
@@ -78,8 +78,8 @@ def fill_of_parts(parts: Sequence[tuple[I64, I32]], limit: int | None, monitor: 
     """
     most = UNLIMITED if limit is None else limit
     cores = [Core.from_rows(ptr, adj) for ptr, adj in parts]
-    pieces = [[bounded(atom, monitor) for atom in decompose(core)] for core in cores]
-    everything = [piece for own in pieces for piece in own]
+    pieces = bounded_parts(cores, monitor)
+    everything = sorted((piece for own in pieces for piece in own), key=lambda piece: piece.core.n)
     lower = sum(piece.lower for piece in everything)
     for piece in everything:
         if lower > most or monitor.stop:
@@ -92,12 +92,24 @@ def fill_of_parts(parts: Sequence[tuple[I64, I32]], limit: int | None, monitor: 
     return [summed(core, own, lower > most) for core, own in zip(cores, pieces, strict=True)]
 
 
+def bounded_parts(cores: Sequence[Core], monitor: Monitor) -> list[list[Piece]]:
+    """The atoms of each part, bounded: small ones first, so that a stop finds most of them done."""
+    atoms = [(number, atom) for number, core in enumerate(cores) for atom in decompose(core, monitor)]
+    pieces: list[list[Piece]] = [[] for _ in cores]
+    monitor.enter(Phase.FILL, len(atoms))
+    for step, (number, atom) in enumerate(sorted(atoms, key=lambda item: item[1].n)):
+        pieces[number].append(bounded(atom, monitor))
+        monitor.cells[Monitor.STEP] = step + 1
+    return pieces
+
+
 def bounded(atom: Core, monitor: Monitor) -> Piece:
     """Portfolio and packing bound of an atom."""
     core = contract_twins(atom)
-    bounds = first_bounds(core)
+    bounds = first_bounds(core, monitor)
     relaxation = None if monitor.stop else cut(core, bounds, UNLIMITED, monitor)
-    return Piece(core, bounds, None if bounds.closed else relaxation, core.lift(bounds.best), bounds.lower, bounds.lower)
+    kept = None if bounds.closed else relaxation
+    return Piece(core, bounds, kept, core.lift(bounds.best), bounds.lower, bounds.lower)
 
 
 def search_piece(piece: Piece, most: int, monitor: Monitor) -> None:
@@ -124,8 +136,8 @@ def by_cases(piece: Piece, most: int, monitor: Monitor) -> bool:
 
 def by_engines(piece: Piece, most: int, monitor: Monitor) -> None:
     """Reduce the atom further and search each of its cores."""
-    reduced = reduce_core(piece.core)
-    states = [first_bounds(core) for core in reduced.cores]
+    reduced = reduce_core(piece.core, monitor)
+    states = [first_bounds(core, monitor) for core in reduced.cores]
     lower = len(reduced.added)
     for core, state in zip(reduced.cores, states, strict=True):
         if monitor.stop:

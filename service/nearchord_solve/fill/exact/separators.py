@@ -24,8 +24,8 @@ from nearchord_solve.fill.exact.kernels.separators import accepted, affordable, 
 from nearchord_solve.kernels.cells import STOP
 
 
-def minimal_separators(adj: list[Mask], within: Mask, most: int) -> list[Mask] | None:
-    """All minimal separators of the connected graph induced on ``within``, or None if more than ``most``.
+def minimal_separators(adj: list[Mask], within: Mask, most: int, cells: I64) -> list[Mask] | None:
+    """All minimal separators of the connected graph induced on ``within``, or None if more than ``most`` or stopped.
 
     Starts from neighbourhoods N(C), C a component of G - N[v], and closes under S -> N(C), C a component of
     G - S - N(x), x in S (Berry, Bordat, Cogis, Int. J. Found. Comput. Sci. 11 (2000) 397-403).
@@ -38,7 +38,7 @@ def minimal_separators(adj: list[Mask], within: Mask, most: int) -> list[Mask] |
         separator = waiting.pop()
         for x in members(separator):
             waiting.extend(_close_by(adj, within & ~separator & ~adj[x], found))
-        if len(found) > most:
+        if len(found) > most or cells[STOP]:
             return None
     return list(found)
 

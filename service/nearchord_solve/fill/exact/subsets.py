@@ -18,14 +18,17 @@ from nearchord_solve.fill.exact.status import Status
 
 MOST_FREE = 24
 MOST_VERTICES = 62
+MOST_TRIES = 20_000
 _MOST_COST = 2**16 - 2
 
 
 def largest_clique(core: Core) -> Mask:
-    """A clique of most vertices, by branch and bound on remaining candidates; meant for small cores."""
+    """A clique of most vertices as far as :data:`MOST_TRIES` steps of branch and bound can tell."""
     best = 0
     stack = [(0, core.everything)]
-    while stack:
+    for _ in range(MOST_TRIES):
+        if not stack:
+            break
         chosen, open_ = stack.pop()
         if not open_:
             if chosen.bit_count() > best.bit_count():

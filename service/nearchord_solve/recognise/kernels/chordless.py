@@ -47,7 +47,7 @@ def chordless_cycle(ptr: I64, adj: I32, cells: I64) -> tuple[bool, I32]:
 
 @kernel
 def _attachments(ptr: I64, adj: I32, v: int, start: int, label: I32, queue: I32, mark: I32) -> tuple[int, int]:
-    """Label the component of ``start`` by it; returns two neighbours of v that see it and are not adjacent, or -1, -1."""
+    """Label the component of ``start`` by it; two non-adjacent neighbours of v that see it, or -1, -1."""
     n = label.shape[0]
     seen = np.zeros(n, np.uint8)
     contacts = np.empty(n, np.int32)

@@ -1,9 +1,10 @@
 """Ordering the maximal cliques of a chordal graph so that those of each vertex stand together, if that can be.
 
 Habib, McConnell, Paul, Viennot, Theor. Comput. Sci. 234 (2000) 59-84, section 5.  Cliques are kept in classes; the
-order of the classes is settled, inside a class it is open.  A pivot vertex x pulls its cliques together: in the first class that
-holds one of them they go to the end, in the last one to the beginning.  When a tree edge comes to join two classes, the vertices it
-shares become pivots.  Without pivots, the clique of a class that the search found last is set apart as its end.
+order of the classes is settled, inside a class it is open.  A pivot vertex x pulls its cliques together: in the
+first class that holds one of them they go to the end, in the last one to the beginning.  When a tree edge comes to
+join two classes, the vertices it shares become pivots.  Without pivots, the clique of a class that the search found
+last is set apart as its end.
 """
 
 import numpy as np
@@ -45,9 +46,10 @@ def arrange(
 ) -> bool:
     """Try to order the k cliques; True if the cliques of each vertex are consecutive.
 
-    ``component`` int32[k] ascending from 0 in discovery order; row v of ``clique_of``: the cliques of vertex v, ascending;
-    ``parent``, ``shared``: the clique tree; ``position`` int64[k] is overwritten with the places.  Invariants: members of a class ascend in
-    its list; begin[g] counts the cliques in earlier classes.  O(n + total size of the cliques) time.
+    ``component`` int32[k] ascending from 0 in discovery order; row v of ``clique_of``: the cliques of vertex v,
+    ascending; ``parent``, ``shared``: the clique tree; ``position`` int64[k] is overwritten with the places.
+    Invariants: members of a class ascend in its list; begin[g] counts the cliques in earlier classes.
+    O(n + total size of the cliques) time.
     """
     k = parent.shape[0]
     n = clique_of_ptr.shape[0] - 1
@@ -146,9 +148,7 @@ def _cut(half: int, at: int, first: I32, after: I32, before: I32) -> None:
 
 
 @kernel
-def _pull(
-    chosen: I32, group: I32, link: I32, head: I32, tail: I32, size: I64, begin: I64, classes: int
-) -> int:
+def _pull(chosen: I32, group: I32, link: I32, head: I32, tail: I32, size: I64, begin: I64, classes: int) -> int:
     """Bring the chosen cliques together where the order is open; returns the new number of classes."""
     left = group[chosen[0]]
     right = left

@@ -11,8 +11,9 @@ def lexicographic_search(ptr: I64, adj: I32, order: I32, place: I32, cells: I64)
     """Visit next, among the vertices left, one whose visited neighbours come lexicographically first.
 
     Overwrites ``order`` int32[n] (vertex at each place) and ``place`` int32[n].  Returns False if stopped.
-    The vertices left stand in ``order`` behind the visited ones, in classes of equal labels, the best class first; a visit splits
-    each class into neighbours and others (Habib, McConnell, Paul, Viennot, Theor. Comput. Sci. 234 (2000) 59-84).
+    The vertices left stand in ``order`` behind the visited ones, in classes of equal labels, the best class first; a
+    visit splits each class into neighbours and others (Habib, McConnell, Paul, Viennot, Theor. Comput. Sci. 234
+    (2000) 59-84).
     O(n + m) time.
     """
     n = order.shape[0]

@@ -7,6 +7,7 @@ diagonal.
 import numpy as np
 
 from nearchord_solve.fill.exact.kernels.words import F64, unpack
+from nearchord_solve.kernels.cells import STOP
 from nearchord_solve.kernels.compiled import I64, U64, kernel, lowest
 from nearchord_solve.kernels.dense import holds, set_pair
 
@@ -161,11 +162,11 @@ def _worst_through(
 
 
 @kernel
-def long_cycles(rounded: U64, present: F64, least: float) -> tuple[I64, I64, F64]:
+def long_cycles(rounded: U64, present: F64, least: float, cells: I64) -> tuple[I64, I64, F64]:
     """Violated cuts of cycles that are chordless in ``rounded`` uint64[n, W], which contains the graph.
 
     For each b and each neighbour a of b the most violated one of those found.  Returns the vertices of all cycles
-    one after another, the end of each, the violation of each.  O(n m) searches of O(n W).
+    one after another, the end of each, the violation of each; fewer when stopped.  O(n m) searches of O(n W).
     """
     n = rounded.shape[0]
     flat = np.empty(1024, np.int64)
@@ -179,6 +180,8 @@ def long_cycles(rounded: U64, present: F64, least: float) -> tuple[I64, I64, F64
     path = np.empty(n + 1, np.int64)
     kept = np.empty(n + 1, np.int64)
     for b in range(n):
+        if cells[STOP] != 0:
+            break
         degree = unpack(rounded[b], near)
         for i in range(degree):
             length, value = _worst_through(rounded, present, b, near, i, degree, back, queue, path, kept)

@@ -7,7 +7,7 @@ from nearchord_solve.kernels.compiled import I32, I64, kernel
 
 @kernel
 def part_places(low_ptr: I64, low: I32, fill_end: I64, fill: I32, places: I32) -> I32:
-    """All places of a part: those of its core, ascending, and the places the lowest of them is joined to from outside."""
+    """Places of a part: those of its core, ascending in ``places``, and those above that the first is joined to."""
     top = places[0]
     own = low_ptr[top + 1] - low_ptr[top]
     added = fill_end[top] - fill_end[top + 1]

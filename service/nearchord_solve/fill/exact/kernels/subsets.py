@@ -90,7 +90,7 @@ def sweep(adj: U64, sizes: I64, free: int, limit: int, last: Any, cells: I64) ->
     n = adj.shape[0]
     best = np.full(1 << free, UNREACHED, np.uint16)
     best[0] = 0
-    plain = sizes.max() == 1
+    plain = bool((sizes == 1).all())
     reached = np.zeros(n, np.uint64)
     everything = (ONE << np.uint64(n)) - ONE
     for number in range(1 << free):
