@@ -4,14 +4,14 @@ from collections.abc import Callable, Iterator
 
 import numpy as np
 
-from .budget import Budget
-from .fill import find_cores, triangulate
-from .graph import Graph
-from .kernels.triangulate import best_triangulation
-from .monitor import Monitor, Phase, Stop
-from .order import Unfinished, eliminate, rank, rank_by_degree
-from .questions import IndependentSet, VertexCover
-from .solving import solve
+from nearchord_solve.budget import Budget
+from nearchord_solve.fill import find_cores, triangulate
+from nearchord_solve.graph import Graph
+from nearchord_solve.kernels.triangulate import best_triangulation
+from nearchord_solve.monitor import Monitor, Phase, Stop
+from nearchord_solve.order import Unfinished, eliminate, rank, rank_by_degree
+from nearchord_solve.questions import IndependentSet, VertexCover
+from nearchord_solve.solving import solve
 
 Report = Callable[[int, int], None]
 

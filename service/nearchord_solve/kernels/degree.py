@@ -11,8 +11,8 @@ from typing import NamedTuple
 
 import numpy as np
 
-from .cells import STEP, STOP
-from .compiled import I32, I64, kernel
+from nearchord_solve.kernels.cells import STEP, STOP
+from nearchord_solve.kernels.compiled import I32, I64, kernel
 
 DONE, STOPPED, TOO_LARGE = 0, 1, 2
 
