@@ -15,8 +15,9 @@ from nearchord_solve.order import Unfinished
 from nearchord_solve.outcome import Verdict
 from nearchord_solve.questions.branching import Branching
 from nearchord_solve.questions.gauge import Gauge
+from nearchord_solve.structure import Structure
 from nearchord_solve.sweep import sweep
-from nearchord_solve.tree import Partial, Structure, build_structure
+from nearchord_solve.tree import Partial, build_structure
 
 
 @dataclass(frozen=True, eq=False)
@@ -92,11 +93,9 @@ def _without_structure(task: Task, partial: Partial) -> Found:
     else:
         chosen, bound = bounds.cover_pair(partial.ranking, task.weights)
     if partial.why is Unfinished.STOPPED:
-        where = "ordering" if partial.ranking is None else "triangulating"
-        return _close(task, chosen, bound, None, f"seconds ran out while {where} the graph")
-    reason = "memory budget: the fill of the graph is too large to hold"
+        return _close(task, chosen, bound, None, partial.reason)
     everything = np.arange(task.graph.n, dtype=np.int32)
-    return _search_on(task, chosen, bound, everything, None, reason)
+    return _search_on(task, chosen, bound, everything, None, partial.reason)
 
 
 def _over_fill(task: Task, structure: Structure) -> Found | None:

@@ -5,9 +5,10 @@ from dataclasses import dataclass
 import numpy as np
 
 from nearchord_solve.arrays import I32, I64
-from nearchord_solve.fill.cores import find_cores
+from nearchord_solve.fill.cores import Cores, find_cores
 from nearchord_solve.fill.exact.parts import parts_of
 from nearchord_solve.graph import Graph
+from nearchord_solve.kernels.layout import Numbering
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.order import Ranking, Unfinished, eliminate, rank
 from nearchord_solve.recognise.kernels.chordless import chordless_cycle
@@ -53,6 +54,11 @@ def _witness(graph: Graph, ranking: Ranking, monitor: Monitor) -> Chordal | None
     cores = numbering if isinstance(numbering, Unfinished) else find_cores(numbering, monitor)
     if isinstance(cores, Unfinished) or isinstance(numbering, Unfinished):
         return None
+    return find_chordless(graph, numbering, cores, monitor)
+
+
+def find_chordless(graph: Graph, numbering: Numbering, cores: Cores, monitor: Monitor) -> Chordal | None:
+    """A chordless cycle of a graph that has fill along a maximum cardinality search; None if stopped."""
     for part in parts_of(graph, numbering, cores):
         found = _cycle_inside(part.ptr, part.adj, monitor)
         if found is None:

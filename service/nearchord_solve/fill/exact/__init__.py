@@ -10,17 +10,17 @@
 
 from nearchord_solve.fill.exact.result import Branch, FillResult, Packing, PieceProof, ProofKind, packing_bound
 from nearchord_solve.fill.exact.search import fill_of_parts, minimum_fill
-from nearchord_solve.fill.exact.whole import GraphFill, fill_of_graph, fill_of_numbered
+from nearchord_solve.fill.exact.whole import GraphFill, PartFill, fill_of_graph
 
 __all__ = [
     "Branch",
     "FillResult",
     "GraphFill",
     "Packing",
+    "PartFill",
     "PieceProof",
     "ProofKind",
     "fill_of_graph",
-    "fill_of_numbered",
     "fill_of_parts",
     "minimum_fill",
     "packing_bound",

@@ -3,6 +3,7 @@
 from collections.abc import Iterator
 from itertools import product
 
+from nearchord_solve.budget import Budget
 from nearchord_solve.fill.exact.blocks import solve_blocks
 from nearchord_solve.fill.exact.core import Core
 from nearchord_solve.fill.exact.subsets import solve_subsets
@@ -10,6 +11,8 @@ from nearchord_solve.fill.exact.whole import fill_of_graph
 from nearchord_solve.graph import Graph
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.recognise import recognise_chordal, recognise_interval
+from nearchord_solve.structure import Structure
+from nearchord_solve.tree import build_structure
 
 MANY = 1000
 
@@ -30,5 +33,7 @@ def rehearse() -> Iterator[None]:
     yield
     solve_blocks(core, MANY, {}, 0, MANY, cells)
     yield
-    fill_of_graph(grid, None, Monitor())
+    structure = build_structure(grid, Budget(), Monitor())
+    assert isinstance(structure, Structure)
+    fill_of_graph(grid, structure, None, Monitor())
     yield

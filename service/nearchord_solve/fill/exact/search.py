@@ -61,6 +61,45 @@ class Piece:
         return len(self.fill) - self.lower <= 2 + self.lower // 25
 
 
+@dataclass
+class Tally:
+    """The bounds of all parts as they are known, kept in the monitor's cells: ``fills[i]`` and ``lowers[i]``."""
+
+    fills: list[int]
+    lowers: list[int]
+    monitor: Monitor
+    fill: int = 0  # sum of fills
+    lower: int = 0  # sum of lowers: all parts together need so many
+
+    def __post_init__(self) -> None:
+        self.fill, self.lower = sum(self.fills), sum(self.lowers)
+        self._show()
+
+    @classmethod
+    def blank(cls, parts: int, monitor: Monitor) -> "Tally":
+        """Nothing is known."""
+        return cls([UNLIMITED] * parts, [0] * parts, monitor)
+
+    def without(self, number: int, pieces: Sequence["Piece"], piece: "Piece") -> int:
+        """Fill edges that are needed outside one atom of a part."""
+        return self.lower - self.lowers[number] + sum(other.lower for other in pieces if other is not piece)
+
+    def note(self, number: int, pieces: Sequence["Piece"]) -> None:
+        """Take over what the atoms of a part say."""
+        fill = min(self.fills[number], sum(len(piece.fill) for piece in pieces))
+        lower = max(self.lowers[number], sum(piece.lower for piece in pieces))
+        self.fill += fill - self.fills[number]
+        self.lower += lower - self.lowers[number]
+        self.fills[number], self.lowers[number] = fill, lower
+        self._show()
+
+    def _show(self) -> None:
+        cells = self.monitor.cells
+        cells[Monitor.FILL_LOWER] = self.lower
+        if self.fill < UNLIMITED:
+            cells[Monitor.FILL] = self.fill
+
+
 def minimum_fill(ptr: I64, adj: I32, limit: int | None, monitor: Monitor) -> FillResult:
     """Fewest edges whose addition makes a part chordal.
 
@@ -68,46 +107,71 @@ def minimum_fill(ptr: I64, adj: I32, limit: int | None, monitor: Monitor) -> Fil
     to be larger.  When the monitor says stop, the bounds reached stand.  Exponential in the worst case; deterministic
     unless stopped.
     """
-    return fill_of_parts([(ptr, adj)], limit, monitor)[0]
+    found = fill_of_parts([(ptr, adj)], limit, monitor)[0]
+    if found is None:
+        core = Core.from_rows(ptr, adj)
+        return summed(core, [bounded(atom, UNLIMITED, monitor) for atom in decompose(core, monitor)], False)
+    return found
 
 
-def fill_of_parts(parts: Sequence[tuple[I64, I32]], limit: int | None, monitor: Monitor) -> list[FillResult]:
+def fill_of_parts(
+    parts: Sequence[tuple[I64, I32]], limit: int | None, monitor: Monitor, tally: Tally | None = None
+) -> list[FillResult | None]:
     """Minimum fill of independent parts; ``limit`` is for their sum.
 
-    All parts are bounded before any is searched, so that a limit that is too small shows early.
+    All parts are bounded before any is searched, so that a limit that is too small shows early.  ``tally``: what is
+    known about each part beforehand.  None for parts of which some atom was not bounded before a stop, or before the
+    limit was seen to be too small.
     """
+    tally = tally or Tally.blank(len(parts), monitor)
     most = UNLIMITED if limit is None else limit
     cores = [Core.from_rows(ptr, adj) for ptr, adj in parts]
-    pieces = bounded_parts(cores, monitor)
-    everything = sorted((piece for own in pieces for piece in own), key=lambda piece: piece.core.n)
-    lower = sum(piece.lower for piece in everything)
-    for piece in everything:
-        if lower > most or monitor.stop:
+    pieces = bounded_parts(cores, most, tally, monitor)
+    known = [(number, own) for number, own in enumerate(pieces) if own is not None]
+    waiting = [(number, own, piece) for number, own in known for piece in own if not piece.closed]
+    monitor.enter(Phase.IMPROVE, len(waiting))
+    for step, (number, own, piece) in enumerate(sorted(waiting, key=lambda item: item[2].core.n)):
+        if tally.lower > most or monitor.stop:
             break
-        if not piece.closed:
-            lower -= piece.lower
-            search_piece(piece, most - lower, monitor)
-            lower += piece.lower
-        monitor.cells[Monitor.FILL_LOWER] = lower
-    return [summed(core, own, lower > most) for core, own in zip(cores, pieces, strict=True)]
+        search_piece(piece, most - tally.without(number, own, piece), monitor)
+        tally.note(number, own)
+        monitor.cells[Monitor.STEP] = step + 1
+    over = tally.lower > most
+    return [None if own is None else summed(core, own, over) for core, own in zip(cores, pieces, strict=True)]
 
 
-def bounded_parts(cores: Sequence[Core], monitor: Monitor) -> list[list[Piece]]:
+def bounded_parts(cores: Sequence[Core], most: int, tally: Tally, monitor: Monitor) -> list[list[Piece] | None]:
     """The atoms of each part, bounded: small ones first, so that a stop finds most of them done."""
-    atoms = [(number, atom) for number, core in enumerate(cores) for atom in decompose(core, monitor)]
-    pieces: list[list[Piece]] = [[] for _ in cores]
+    monitor.enter(Phase.FILL, len(cores))
+    atoms: list[tuple[int, Core]] = []
+    due = [0] * len(cores)
+    pieces: list[list[Piece] | None] = [None] * len(cores)
+    for number, core in enumerate(cores):
+        if monitor.stop:
+            return pieces
+        monitor.cells[Monitor.STEP] = number
+        own = decompose(core, monitor)
+        due[number] = len(own)
+        atoms += [(number, atom) for atom in own]
     monitor.enter(Phase.FILL, len(atoms))
+    done: list[list[Piece]] = [[] for _ in cores]
     for step, (number, atom) in enumerate(sorted(atoms, key=lambda item: item[1].n)):
-        pieces[number].append(bounded(atom, monitor))
+        if monitor.stop or tally.lower > most:
+            break
+        most_here = most - tally.lower - sum(piece.lower for piece in done[number])
+        done[number].append(bounded(atom, most_here, monitor))
+        if len(done[number]) == due[number]:
+            pieces[number] = done[number]
+            tally.note(number, done[number])
         monitor.cells[Monitor.STEP] = step + 1
     return pieces
 
 
-def bounded(atom: Core, monitor: Monitor) -> Piece:
-    """Portfolio and packing bound of an atom."""
+def bounded(atom: Core, most: int, monitor: Monitor) -> Piece:
+    """Portfolio and packing bound of an atom; a bound above ``most`` is good enough."""
     core = contract_twins(atom)
     bounds = first_bounds(core, monitor)
-    relaxation = None if monitor.stop else cut(core, bounds, UNLIMITED, monitor)
+    relaxation = None if monitor.stop else cut(core, bounds, most, monitor)
     kept = None if bounds.closed else relaxation
     return Piece(core, bounds, kept, core.lift(bounds.best), bounds.lower, bounds.lower)
 

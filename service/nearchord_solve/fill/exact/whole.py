@@ -5,31 +5,48 @@ from dataclasses import dataclass
 import numpy as np
 
 from nearchord_solve.arrays import I32
-from nearchord_solve.fill.cores import find_cores
-from nearchord_solve.fill.exact.parts import parts_of
+from nearchord_solve.fill.exact.parts import Part, parts_of
 from nearchord_solve.fill.exact.result import FillResult, ProofKind
-from nearchord_solve.fill.exact.search import fill_of_parts
+from nearchord_solve.fill.exact.search import Tally, fill_of_parts
 from nearchord_solve.graph import Graph
-from nearchord_solve.kernels.layout import Numbering
+from nearchord_solve.kernels.layout import FILL_EDGES, FILL_LOWER
 from nearchord_solve.monitor import Monitor
-from nearchord_solve.order import Unfinished, eliminate, rank
+from nearchord_solve.structure import Structure
 
-FILL_ROOM = 10**7  # the triangulation of the search may have 3m + this many edges
+MOST_VERTICES = 2048  # larger parts keep the fill of their structure: a step of the search would take too long
+
+
+@dataclass(frozen=True, eq=False)
+class PartFill:
+    """A part that holds fill: ``vertices`` int32, ascending; ``edges`` int32[k, 2] in vertices of the graph.
+
+    ``result``, in numbers 0.. of the vertices, is None if the part was not searched, or not long enough; then edges
+    and ``lower_bound`` are those of the structure.
+    """
+
+    vertices: I32
+    edges: I32
+    lower_bound: int
+    result: FillResult | None
+
+    @property
+    def kind(self) -> ProofKind:
+        """How the bound is known, NONE where the bounds are apart."""
+        return ProofKind.NONE if self.result is None else self.result.proof
 
 
 @dataclass(frozen=True, eq=False)
 class GraphFill:
-    """``edges`` int32[k, 2]: a minimal fill in vertices of the graph, smaller end first, sorted.
+    """``edges`` int32[k, 2]: a fill in vertices of the graph, smaller end first, sorted.
 
-    The fill number lies between ``lower_bound`` and k = ``upper_bound``.  Part i has vertices ``vertices[i]`` int32,
-    ascending, and ``results[i]`` in numbers 0.. of these.  ``over``: the fill number is certainly above the limit.
+    The fill number lies between ``lower_bound`` and k = ``upper_bound``.  The fill is minimal, except in parts that
+    were too large to be searched or to be thinned.  ``over``: the fill number is certainly above the limit.
     """
 
     edges: I32
     lower_bound: int
     over: bool
-    vertices: tuple[I32, ...]
-    results: tuple[FillResult, ...]
+    parts: tuple[PartFill, ...]
 
     @property
     def upper_bound(self) -> int:
@@ -38,38 +55,35 @@ class GraphFill:
 
     @property
     def kinds(self) -> tuple[ProofKind, ...]:
-        """How the bound of each part is known, NONE where its bounds are apart."""
-        return tuple(result.proof for result in self.results)
+        """How the bound of each part is known."""
+        return tuple(part.kind for part in self.parts)
 
 
-def fill_of_graph(graph: Graph, limit: int | None, monitor: Monitor) -> GraphFill | Unfinished:
+def fill_of_graph(graph: Graph, structure: Structure, limit: int | None, monitor: Monitor) -> GraphFill:
     """Fewest edges whose addition makes a graph chordal, as far as the limit and the monitor allow.
 
-    Numbers the graph by maximum cardinality search and searches the parts that hold fill.  Unfinished if it was
-    stopped before, or if the triangulation of that search is too large.
+    Searches the parts of ``structure`` that hold fill, and falls back on its fill.  That more than ``limit`` is needed
+    is concluded from the search only, as its packings can be checked.
     """
-    ranking = rank(graph, monitor)
-    if isinstance(ranking, Unfinished):
-        return ranking
-    numbering = eliminate(ranking, 2 * graph.m + FILL_ROOM, monitor)
-    if isinstance(numbering, Unfinished):
-        return numbering
-    return fill_of_numbered(graph, numbering, limit, monitor)
+    figures = structure.forest.figures
+    parts = list(parts_of(graph, structure.numbering, structure.cores))
+    small = [number for number, part in enumerate(parts) if part.vertices.size <= MOST_VERTICES]
+    rows = [(parts[number].ptr, parts[number].adj) for number in small]
+    tally = Tally(figures[small, FILL_EDGES].tolist(), [0] * len(small), monitor)
+    found = dict(zip(small, fill_of_parts(rows, limit, monitor, tally), strict=True))
+    settled = tuple(_settled(structure, number, part, found.get(number)) for number, part in enumerate(parts))
+    edges = np.concatenate([np.empty((0, 2), np.int32), *(part.edges for part in settled)])
+    lower = max(structure.fill_lower_bound, sum(part.lower_bound for part in settled))
+    return GraphFill(edges[np.lexsort((edges[:, 1], edges[:, 0]))], lower, limit is not None and lower > limit, settled)
 
 
-def fill_of_numbered(graph: Graph, numbering: Numbering, limit: int | None, monitor: Monitor) -> GraphFill | Unfinished:
-    """The same for a graph that has been numbered already."""
-    cores = find_cores(numbering, monitor)
-    if isinstance(cores, Unfinished):
-        return cores
-    parts = list(parts_of(graph, numbering, cores))
-    results = fill_of_parts([(part.ptr, part.adj) for part in parts], limit, monitor)
-    found = [part.vertices[result.edges] for part, result in zip(parts, results, strict=True)]
-    edges = np.concatenate([np.empty((0, 2), np.int32), *found])
-    return GraphFill(
-        edges[np.lexsort((edges[:, 1], edges[:, 0]))],
-        sum(result.lower_bound for result in results),
-        any(result.over for result in results),
-        tuple(part.vertices for part in parts),
-        tuple(results),
-    )
+def _settled(structure: Structure, number: int, part: Part, result: FillResult | None) -> PartFill:
+    """The better of what the search found and what the structure has."""
+    figures = structure.forest.figures[number]
+    lower = int(figures[FILL_LOWER])
+    if result is None:
+        return PartFill(part.vertices, structure.core_fill(number), lower, None)
+    edges = part.vertices[result.edges]
+    if result.upper_bound > figures[FILL_EDGES]:
+        edges = structure.core_fill(number)
+    return PartFill(part.vertices, edges, max(lower, result.lower_bound), result)

@@ -6,16 +6,21 @@ from bench.generators import time_windows
 from definition import least_fill
 from fill_proof import confirm, is_chordal, spare
 from hypothesis import given, settings
-from nearchord_solve import Graph, Monitor
+from nearchord_solve import Budget, Graph, Monitor
 from nearchord_solve.fill.exact import GraphFill, ProofKind, fill_of_graph
-from nearchord_solve.order import Unfinished
+from nearchord_solve.structure import Structure
+from nearchord_solve.tree import build_structure
 from strategies import Edges, graphs, near_chordal_graphs
 
 
 def solved(graph: nx.Graph, limit: int | None = None) -> GraphFill:
-    found = fill_of_graph(Graph.from_edges(graph.number_of_nodes(), list(graph.edges)), limit, Monitor())
-    assert isinstance(found, GraphFill)
-    return found
+    return searched(Graph.from_edges(graph.number_of_nodes(), list(graph.edges)), limit)
+
+
+def searched(graph: Graph, limit: int | None = None) -> GraphFill:
+    structure = build_structure(graph, Budget(), Monitor())
+    assert isinstance(structure, Structure)
+    return fill_of_graph(graph, structure, limit, Monitor())
 
 
 def drawn(edges: Edges) -> nx.Graph:
@@ -33,8 +38,10 @@ def test_fill_of_the_whole_is_a_minimal_fill(edges: Edges) -> None:
     fill = [tuple(pair) for pair in found.edges.tolist()]
     assert is_chordal(graph, fill)
     assert not spare(graph, fill)
-    for vertices, result in zip(found.vertices, found.results, strict=True):
-        confirm(nx.convert_node_labels_to_integers(graph.subgraph(vertices.tolist()), ordering="sorted"), result)
+    for part in found.parts:
+        assert part.result is not None
+        inside = nx.convert_node_labels_to_integers(graph.subgraph(part.vertices.tolist()), ordering="sorted")
+        confirm(inside, part.result)
 
 
 @settings(deadline=None)
@@ -50,7 +57,7 @@ def test_fill_of_the_whole_is_least(edges: Edges) -> None:
 def test_chordal_graphs_have_no_parts_with_fill(edges: Edges) -> None:
     """Nothing to search."""
     found = solved(drawn(edges))
-    assert found.results == ()
+    assert found.parts == ()
     assert found.upper_bound == found.lower_bound == 0
 
 
@@ -59,8 +66,7 @@ def test_fill_never_exceeds_the_number_of_removed_conflicts() -> None:
     for seed in range(3):
         windows = time_windows(2000, 20.0, 100, seed)
         graph = Graph.from_canonical(windows.n, *windows.canonical())
-        found = fill_of_graph(graph, None, Monitor())
-        assert isinstance(found, GraphFill)
+        found = searched(graph)
         assert found.lower_bound == found.upper_bound <= 100
         assert set(found.kinds) == {ProofKind.PACKING}
 
@@ -73,11 +79,16 @@ def test_the_limit_is_for_the_whole_graph() -> None:
     assert not solved(squares, 3).over
 
 
-def test_a_stop_before_the_parts_are_known_gives_no_answer() -> None:
-    """The caller has no fill then."""
+def test_a_stop_before_the_search_leaves_the_fill_of_the_structure() -> None:
+    """The caller has a fill and a lower bound at any time."""
+    square = Graph.from_edges(4, [(0, 1), (1, 2), (2, 3), (0, 3)])
+    structure = build_structure(square, Budget(), Monitor())
+    assert isinstance(structure, Structure)
     monitor = Monitor()
     monitor.cells[Monitor.STOP] = 1
-    assert fill_of_graph(Graph.from_edges(4, [(0, 1), (1, 2), (2, 3), (0, 3)]), None, monitor) is Unfinished.STOPPED
+    found = fill_of_graph(square, structure, None, monitor)
+    assert [part.result for part in found.parts] == [None]
+    assert found.upper_bound == found.lower_bound == 1
 
 
 def test_edges_are_sorted_pairs_of_the_graph() -> None:
