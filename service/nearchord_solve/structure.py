@@ -137,7 +137,7 @@ class Structure:
         fits = np.zeros(states.size, np.uint8)
         by_states = np.argsort(states, kind="stable")
         within = (np.cumsum(states[by_states]) <= budget.states) & (
-            np.cumsum(memory[by_states]) <= budget.memory - self._held()
+            np.cumsum(memory[by_states]) <= budget.memory - self.held_bytes
         )
         fits[by_states[: int(np.argmin(within)) if not within.all() else within.size]] = 1
         return fits
@@ -147,6 +147,8 @@ class Structure:
         large = np.diff(self.forest.core_slot) > DENSE_LIMIT
         return bool(large.any()) and bool((self.fitting(budget)[large] == 0).any())
 
-    def _held(self) -> int:
+    @property
+    def held_bytes(self) -> int:
+        """Memory of a solve without its tables: the graph, the structure, the arrays of the passes."""
         size = predicted_bytes(self.numbering.order.size, self.numbering.low.size)
         return size + 4 * self.numbering.fill.size + sum(array.nbytes for array in self.forest)
