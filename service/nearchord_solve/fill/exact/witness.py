@@ -18,7 +18,7 @@ from nearchord_solve.fill.exact.whole import PartFill
 from nearchord_solve.graph import Graph
 
 ONE = 2**60
-MOST_CHOICES = 256  # a ring of groups is written out only if it stands for at most so many cycles
+MOST_CHOICES = 4096  # a ring of groups is written out only if it stands for at most so many cycles
 
 
 def packing_columns(graph: Graph, parts: Sequence[PartFill]) -> dict[str, U32 | I64]:
