@@ -4,15 +4,15 @@ Pure: arrays in, answers out; no clock, file, log or network.  The caller counts
 monitor's STOP cell.
 """
 
-from .budget import Budget
-from .errors import GraphError, SolverError
-from .graph import Graph
-from .memory import predicted_bytes
-from .monitor import Monitor, Phase, Stop
-from .outcome import Outcome, Verdict
-from .questions import QUESTIONS, IndependentSet, VertexCover
-from .solving import solve
-from .warm import warm_up
+from nearchord_solve.budget import Budget
+from nearchord_solve.errors import GraphError, SolverError
+from nearchord_solve.graph import Graph
+from nearchord_solve.memory import predicted_bytes
+from nearchord_solve.monitor import Monitor, Phase, Stop
+from nearchord_solve.outcome import Outcome, Verdict
+from nearchord_solve.questions import QUESTIONS, IndependentSet, VertexCover
+from nearchord_solve.solving import solve
+from nearchord_solve.warm import warm_up
 
 VERSION = "0.1.0"
 

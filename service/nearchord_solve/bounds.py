@@ -4,11 +4,11 @@ from collections.abc import Callable
 
 import numpy as np
 
-from .arrays import I32, I64, U8
-from .graph import Graph
-from .kernels import cover, local_search, quick
-from .monitor import Monitor, Phase
-from .order import Ranking
+from nearchord_solve.arrays import I32, I64, U8
+from nearchord_solve.graph import Graph
+from nearchord_solve.kernels import cover, local_search, quick
+from nearchord_solve.monitor import Monitor, Phase
+from nearchord_solve.order import Ranking
 
 ROUNDS = 4096  # kicks between two looks at the result
 KICKS_PER_VERTEX = 1000

@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from .errors import SolverError
+from nearchord_solve.errors import SolverError
 
 DEFAULT_STATES = 10**7
 DEFAULT_MEMORY = 2**30

@@ -7,9 +7,9 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from .arrays import I32, I64, U32, U64
-from .errors import GraphError
-from .kernels import csr
+from nearchord_solve.arrays import I32, I64, U32, U64
+from nearchord_solve.errors import GraphError
+from nearchord_solve.kernels import csr
 
 MOST_VERTICES = 2**31 - 1
 

@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from .arrays import I64
+from nearchord_solve.arrays import I64
 
 PER_EDGE = 20  # rows as read 4, symmetric rows 8, elimination lists 4, their twin while an index is taken 4
 PER_VERTEX = 120

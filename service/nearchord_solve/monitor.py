@@ -5,14 +5,15 @@ writes only ``STOP``.  The array may live in shared memory.  There are no locks:
 and a watcher tolerates seeing cells of neighbouring moments together.
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from enum import IntEnum
 from typing import ClassVar
 
 import numpy as np
 
-from .arrays import I64
-from .errors import SolverError
+from nearchord_solve.arrays import I64
+from nearchord_solve.errors import SolverError
 
 
 class Stop(IntEnum):
@@ -82,6 +83,20 @@ class Monitor:
         if self.on_phase is not None:
             self.on_phase(phase)
 
+    @contextmanager
+    def aside(self) -> Iterator["Monitor"]:
+        """A monitor for a sub-problem: it sees STOP, tells nobody of phases, and leaves the cells as they were.
+
+        While it is in use a watcher may see figures of the sub-problem.
+        """
+        kept = self.cells[1:].copy()
+        quiet = Aside.__new__(Aside)
+        quiet.cells, quiet.on_phase = self.cells, None
+        try:
+            yield quiet
+        finally:
+            self.cells[1:] = kept
+
     def incumbent(self, value: int) -> None:
         """Record the value of the best feasible answer so far."""
         self.cells[self.INCUMBENT] = value
@@ -91,3 +106,10 @@ class Monitor:
         """Record the best bound so far."""
         self.cells[self.BOUND] = value
         self.cells[self.HAS_BOUND] = 1
+
+
+class Aside(Monitor):
+    """What :meth:`Monitor.aside` gives."""
+
+    def enter(self, phase: Phase, steps: int = 0) -> None:
+        """Keep the phase of the whole."""

@@ -5,11 +5,11 @@ from typing import NamedTuple
 
 import numpy as np
 
-from .arrays import I32, I64
-from .graph import Graph
-from .kernels import elimination, search
-from .kernels.layout import Numbering
-from .monitor import Monitor, Phase
+from nearchord_solve.arrays import I32, I64
+from nearchord_solve.graph import Graph
+from nearchord_solve.kernels import elimination, search
+from nearchord_solve.kernels.layout import Numbering
+from nearchord_solve.monitor import Monitor, Phase
 
 
 class Unfinished(Enum):

@@ -3,7 +3,7 @@
 from dataclasses import dataclass
 from enum import Enum
 
-from .arrays import U32
+from nearchord_solve.arrays import U32
 
 
 class Verdict(Enum):

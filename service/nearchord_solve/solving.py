@@ -2,13 +2,13 @@
 
 import numpy as np
 
-from .arrays import I64
-from .budget import Budget
-from .errors import SolverError
-from .graph import Graph
-from .monitor import Monitor, Phase
-from .outcome import Outcome
-from .questions import IndependentSet, VertexCover
+from nearchord_solve.arrays import I64
+from nearchord_solve.budget import Budget
+from nearchord_solve.errors import SolverError
+from nearchord_solve.graph import Graph
+from nearchord_solve.monitor import Monitor, Phase
+from nearchord_solve.outcome import Outcome
+from nearchord_solve.questions import IndependentSet, VertexCover
 
 MOST_WEIGHT = 2**62  # sums of weights stay below, so that sums and differences of two fit int64
 
@@ -39,9 +39,9 @@ def solve(
 
 
 def check_weights(weights: I64 | None, n: int) -> I64:
-    """Weights as a contiguous int64 array; SolverError names the first bad vertex."""
+    """Weights as a contiguous read-only int64 array; SolverError names the first bad vertex."""
     if weights is None:
-        return np.ones(n, np.int64)
+        weights = np.ones(n, np.int64)
     if weights.dtype != np.int64 or weights.shape != (n,):
         raise SolverError("weights", f"must be an int64 array of {n}, got {weights.dtype.name}{weights.shape}")
     if n and weights.min() < 0:

@@ -4,11 +4,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .arrays import I32, I64, U8
-from .budget import Budget
-from .fill import Cores, find_cores, triangulate
-from .graph import Graph
-from .kernels.layout import (
+from nearchord_solve.arrays import I32, I64, U8
+from nearchord_solve.budget import Budget
+from nearchord_solve.fill import Cores, find_cores, triangulate
+from nearchord_solve.graph import Graph
+from nearchord_solve.kernels.layout import (
     FILL_EDGES,
     FILL_LOWER,
     PARTS_FILL,
@@ -18,9 +18,9 @@ from .kernels.layout import (
     Forest,
     Numbering,
 )
-from .memory import predicted_bytes, table_bytes
-from .monitor import Monitor, Phase
-from .order import Ranking, Unfinished, eliminate, rank
+from nearchord_solve.memory import predicted_bytes, table_bytes
+from nearchord_solve.monitor import Monitor, Phase
+from nearchord_solve.order import Ranking, Unfinished, eliminate, rank
 
 FILL_ROOM = 10**7  # H = G + fill may have 3m + this many edges
 

@@ -1,62 +1,72 @@
 """Compiling everything before the first job."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 
 import numpy as np
 
-from .arrays import I64
-from .budget import Budget
-from .graph import Graph
-from .monitor import Monitor, Stop
-from .questions import IndependentSet, VertexCover
-from .solving import solve
+from nearchord_solve.budget import Budget
+from nearchord_solve.fill import find_cores, triangulate
+from nearchord_solve.graph import Graph
+from nearchord_solve.kernels.triangulate import best_triangulation
+from nearchord_solve.monitor import Monitor, Phase, Stop
+from nearchord_solve.order import Unfinished, eliminate, rank
+from nearchord_solve.questions import IndependentSet, VertexCover
+from nearchord_solve.solving import solve
 
 Report = Callable[[int, int], None]
+
+STAGES = 10  # what _compile yields
 
 
 def warm_up(report: Report | None = None) -> None:
     """Run tiny solves that together call every kernel with the production types.
 
-    Afterwards nothing is compiled any more, in this process or, through numba's disk cache, in later ones.
-    ``report(done, total)`` hears of each of them.
+    Afterwards nothing is compiled any more, in this process or, through numba's disk cache, in later ones.  Cold,
+    that takes half a minute of processor time.  ``report(done, total)`` hears of each stage.
     """
-    steps: list[Callable[[], object]] = [
-        lambda: _ring(4),
-        lambda: _solve(_ring(4), Budget()),
-        lambda: _solve(_ring(7), Budget(states=1)),
-        lambda: _solve(_ring(5), Budget(memory=1)),
-        lambda: _pinned(_ring(6)),
-        lambda: _stopped(_ring(6)),
-    ]
-    for done, step in enumerate(steps):
-        if report is not None:
-            report(done, len(steps))
-        step()
-    if report is not None:
-        report(len(steps), len(steps))
+    heard = report if report is not None else lambda done, total: None
+    heard(0, STAGES)
+    for done, _ in enumerate(_compile(), start=1):
+        heard(done, STAGES)
 
 
-def _ring(n: int) -> Graph:
-    """A cycle with a chord from each vertex to the one after the next, and a tail."""
-    pairs = {tuple(sorted((v, (v + step) % n))) for v in range(n) for step in (1, 2)}
-    if n == 4:
-        pairs = {(0, 1), (1, 2), (2, 3), (0, 3)}
-    return Graph.from_edges(n + 1, [*((a, b) for a, b in pairs), (n - 1, n)])
-
-
-def _ones(graph: Graph) -> I64:
-    return np.ones(graph.n, np.int64)
-
-
-def _solve(graph: Graph, budget: Budget) -> None:
-    solve(IndependentSet(), graph, _ones(graph), budget, "bound", Monitor())
-
-
-def _pinned(graph: Graph) -> None:
-    solve(VertexCover(must=(0,), never=(3,)), graph, None, Budget(fill=0), "stop", Monitor())
-
-
-def _stopped(graph: Graph) -> None:
+def _compile() -> Iterator[None]:
+    """Compile stage by stage, so that whoever waits sees it go on."""
+    square = Graph.from_edges(5, [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4)])
     monitor = Monitor()
-    monitor.cells[Monitor.STOP] = Stop.SECONDS
-    solve(IndependentSet(), graph, None, Budget(), "bound", monitor)
+    yield
+    ranking = rank(square, monitor)
+    assert not isinstance(ranking, Unfinished)
+    yield
+    numbering = eliminate(ranking, square.m, monitor)
+    assert not isinstance(numbering, Unfinished)
+    yield
+    cores = find_cores(numbering, monitor)
+    assert not isinstance(cores, Unfinished)
+    yield
+    rows = np.zeros((1, 1), np.uint64)
+    best_triangulation(rows, rows.copy(), 0, 0, 1, True, monitor.cells)
+    yield
+    triangulate(numbering, cores, 1, False, monitor)
+    yield
+    solve(IndependentSet(), square, None, Budget(), "bound", monitor)
+    yield
+    solve(VertexCover(must=(0,), never=(3,)), _braced_ring(6), None, Budget(fill=0), "stop", monitor)
+    yield
+    solve(IndependentSet(), _braced_ring(7), None, Budget(states=1), "bound", monitor)
+    yield
+    solve(IndependentSet(), square, None, Budget(memory=1), "bound", monitor)
+    monitor = Monitor(on_phase=lambda phase: _stop_in_fill(monitor, phase))
+    solve(IndependentSet(), square, None, Budget(), "bound", monitor)
+    yield
+
+
+def _stop_in_fill(monitor: Monitor, phase: Phase) -> None:
+    if phase is Phase.FILL:
+        monitor.cells[Monitor.STOP] = Stop.SECONDS
+
+
+def _braced_ring(n: int) -> Graph:
+    """A cycle in which also every second vertex is linked, and a tail."""
+    pairs = {(min(v, u), max(v, u)) for v in range(n) for u in ((v + 1) % n, (v + 2) % n)}
+    return Graph.from_edges(n + 1, [*sorted(pairs), (n - 1, n)])

@@ -158,7 +158,7 @@ def test_truncated_upload_is_refused_with_both_lengths(home: Home) -> None:
     upload.write(SMALL[:-1])
     with pytest.raises(ContentInvalid, match=f"after {len(SMALL) - 1} of the {len(SMALL)} bytes") as caught:
         upload.publish(accept_all)
-    assert caught.value.violations[0].field == "part.piece"
+    assert caught.value.violations[0].field == "piece"
     assert store.upload_state(ANN, address_of(SMALL)) == (0, False)
 
 
@@ -178,7 +178,7 @@ def test_malformed_content_drops_the_upload(home: Home) -> None:
     upload.write(SMALL)
 
     def refuse(view: memoryview) -> tuple[int, int]:
-        raise ContentInvalid(FieldViolation("part.piece", f"row 3 of {len(view)} is wrong"))
+        raise ContentInvalid(FieldViolation("piece", f"row 3 of {len(view)} is wrong"))
 
     with pytest.raises(ContentInvalid, match="row 3"):
         upload.publish(refuse)

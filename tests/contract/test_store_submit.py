@@ -93,11 +93,11 @@ def test_request_id_with_other_content_is_refused(home: Home) -> None:
     ("bad", "error", "text"),
     [
         (spec("0" * 64), ContentUnknown, "0" * 64),
-        (spec(weights_address=graph().address), FieldInvalid, r"spec\[1\]\.input\.weights_address: .* kind weights"),
+        (spec(weights_address=graph().address), FieldInvalid, r"specs\[1\]\.input\.weights_address: .* kind weights"),
         (
             spec(names_address=names(vertices=4).address, inline=(graph(), names(vertices=4))),
             FieldInvalid,
-            r"spec\[1\]\.input\.names_address: .* 4 entries, the graph 3 vertices",
+            r"specs\[1\]\.input\.names_address: .* 4 entries, the graph 3 vertices",
         ),
     ],
 )

@@ -59,7 +59,7 @@ def _bad_request(error: errors.FieldInvalid) -> Sequence[Message]:
 
 
 def _digest(error: errors.DigestMismatch) -> Sequence[Message]:
-    violation = details.BadRequest.FieldViolation(field="part.opening.address", description=str(error))
+    violation = details.BadRequest.FieldViolation(field="opening.address", description=str(error))
     return [details.BadRequest(field_violations=[violation])]
 
 

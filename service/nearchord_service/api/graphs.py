@@ -20,7 +20,7 @@ from nearchord_service.metrics import Metrics
 from nearchord_service.model.content import Bytes, Content
 from nearchord_service.store.port import Store
 
-PIECE_FIELD = "part.piece"
+PIECE_FIELD = "piece"
 
 
 class GraphServicer(graph_service_pb2_grpc.GraphServiceServicer):
@@ -38,13 +38,13 @@ class GraphServicer(graph_service_pb2_grpc.GraphServiceServicer):
         """Take an upload in; what was received before a break stays for a later call."""
         opening = await anext(requests, None)
         if opening is None or opening.WhichOneof("part") != "opening":
-            raise refuse("part.opening", "is missing: the first message of an upload is its opening")
-        kind = to_kind(opening.opening.kind, "part.opening.kind")
-        address = check_address(opening.opening.address, "part.opening.address")
-        size = check_content_size(opening.opening.size_bytes, self._caps, "part.opening.size_bytes")
+            raise refuse("opening", "is missing: the first message of an upload is its opening")
+        kind = to_kind(opening.opening.kind, "opening.kind")
+        address = check_address(opening.opening.address, "opening.address")
+        size = check_content_size(opening.opening.size_bytes, self._caps, "opening.size_bytes")
         offset = opening.opening.offset
         if not 0 <= offset <= size:
-            raise refuse("part.opening.offset", f"is {offset}; it must be from 0 to size_bytes = {size}")
+            raise refuse("opening.offset", f"is {offset}; it must be from 0 to size_bytes = {size}")
         begin = partial(self._store.begin_upload, owner(context), address, kind, size, offset, self._caps.owner)
         held = await self._uploads.begin(begin)
         if isinstance(held, Content):

@@ -77,9 +77,9 @@ class JobServicer(job_service_pb2_grpc.JobServiceServicer):
         caller = owner(context)
         first = await anext(requests, None)
         if first is None or first.WhichOneof("part") != "opening":
-            raise refuse("part.opening", "is missing: the first message of a batch is its opening")
-        request_id = check_request_id(first.opening.request_id, "part.opening.request_id")
-        label = check_label(first.opening.label, "part.opening.label")
+            raise refuse("opening", "is missing: the first message of a batch is its opening")
+        request_id = check_request_id(first.opening.request_id, "opening.request_id")
+        label = check_label(first.opening.label, "opening.label")
         reader = self._reader(caller)
         async with aclosing(_gathered(requests)) as groups:
             async for group in groups:

@@ -1,1 +1,1 @@
-"""What the service is about, in plain values: jobs, stages, verdicts, events, answers, errors. Standard library only."""
+"""What the service is about in plain values: jobs, stages, verdicts, events, answers, errors. Standard library only."""

@@ -1,6 +1,7 @@
 """The store's interface. Everything outside this room knows the store only through these classes.
 
 Calls block until their effect is durable (or raise) and may come from any thread, except where a Future is returned.
+Claims, renewals and progress survive the process but not every power failure, which ends the workers too.
 Every call can raise StoreUnavailable. Owners see only what is theirs: anything else is Unknown. The store keeps the
 time: leases, start-by times and time stamps use its clock.
 """
@@ -69,6 +70,7 @@ class Renewal:
 class Retention:
     """How long ended things are kept: by age in seconds and by total bytes (None: without limit).
 
+    Age counts from the end of a job (its answer, its earlier events), for content from its last store or submission.
     `upload_age` is the age at which an upload that is not continued is dropped.
     """
 
@@ -114,7 +116,7 @@ class Upload(Protocol):
     """Bytes received so far."""
 
     def write(self, piece: bytes) -> None:
-        """Append a piece; ContentInvalid (field `part.piece`) when it exceeds the announced size."""
+        """Append a piece; ContentInvalid (field `piece`) when it exceeds the announced size."""
 
     def publish(self, check: Callable[[memoryview], tuple[int, int]]) -> Content:
         """Check size, digest and form, make the content durable and visible.
@@ -135,7 +137,7 @@ class ContentStore(Protocol):
     def begin_upload(
         self, owner: str, address: str, kind: ContentKind, size_bytes: int, offset: int, limits: Limits
     ) -> Upload | Content:
-        """Take hold of an upload, or return the content when it is stored already.
+        """Take hold of an upload, or return the content when it is stored already. Offset 0 begins anew.
 
         Raises UploadOffset, UploadBusy, QuotaExceeded, FieldInvalid (stored or begun as another kind or size).
         """
@@ -222,7 +224,7 @@ class LeaseStore(Protocol):
         """Take back every job leased to `holder` without counting a lost worker (a restart); returns how many."""
 
     def expire_overdue(self) -> int:
-        """End WAITING jobs whose start-by time has passed with EXPIRED; returns how many."""
+        """End jobs that no worker has taken by their start-by time with EXPIRED; returns how many."""
 
     def retain(self, retention: Retention) -> Dropped:
         """Drop what is older or more than allowed; never anything that an unfinished job needs."""

@@ -4,12 +4,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..arrays import I32, I64
-from ..kernels import cores as core_kernels
-from ..kernels import elimination
-from ..kernels.layout import Forest, Numbering
-from ..monitor import Monitor
-from ..order import Unfinished
+from nearchord_solve.arrays import I32, I64
+from nearchord_solve.kernels import cores as core_kernels
+from nearchord_solve.kernels import elimination
+from nearchord_solve.kernels.layout import Forest, Numbering
+from nearchord_solve.monitor import Monitor
+from nearchord_solve.order import Unfinished
 
 DENSE_LIMIT = 4096  # vertices of a core that is triangulated on bitset rows: 2 MiB a candidate at the limit
 

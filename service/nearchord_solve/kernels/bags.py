@@ -9,9 +9,9 @@ its bag above is the one that holds the parent of that end.  Sorted by rank, a b
 
 import numpy as np
 
-from .cliques import count_cliques, touched
-from .compiled import I32, I64, U8, kernel
-from .layout import ADHESION_FILL, BAG_FILL
+from nearchord_solve.kernels.cliques import count_cliques, touched
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL
 
 
 @kernel

@@ -9,8 +9,8 @@ Graphs and Combinatorics 23 (2007) 337-352), and the other b - d - 1 or more ver
 
 import numpy as np
 
-from .cells import STOP
-from .compiled import I32, I64, U64, kernel, lowest, ones
+from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest, ones
 
 ONE = np.uint64(1)
 

@@ -6,9 +6,9 @@ by rank in an elimination order (highest rank first to go); ``fill`` lists give 
 
 import numpy as np
 
-from .compiled import I32, I64, U64, kernel, lowest
-from .dense import set_pair
-from .grow import grown32
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest
+from nearchord_solve.kernels.dense import set_pair
+from nearchord_solve.kernels.grow import grown32
 
 
 @kernel

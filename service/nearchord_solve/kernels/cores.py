@@ -4,15 +4,24 @@ from typing import NamedTuple
 
 import numpy as np
 
-from .bags import count_parts, count_states, write_bags
-from .cells import STEP, STOP
-from .compiled import I32, I64, U8, kernel
-from .core_lists import core_vertices, dense_lists, dense_rows, sparse_lists
-from .dense import list_fill
-from .grow import grown8, grown32, grown64
-from .layout import FILL_EDGES, FILL_LOWER, PARTS_FILL, PARTS_PLAIN, STATES, TABLE, Forest, Numbering
-from .packing import pack_cycles
-from .triangulate import best_triangulation
+from nearchord_solve.kernels.bags import count_parts, count_states, write_bags
+from nearchord_solve.kernels.cells import STEP, STOP
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.core_lists import core_vertices, dense_lists, dense_rows, sparse_lists
+from nearchord_solve.kernels.dense import list_fill
+from nearchord_solve.kernels.grow import grown8, grown32, grown64
+from nearchord_solve.kernels.layout import (
+    FILL_EDGES,
+    FILL_LOWER,
+    PARTS_FILL,
+    PARTS_PLAIN,
+    STATES,
+    TABLE,
+    Forest,
+    Numbering,
+)
+from nearchord_solve.kernels.packing import pack_cycles
+from nearchord_solve.kernels.triangulate import best_triangulation
 
 
 class Plan(NamedTuple):
@@ -23,7 +32,8 @@ class Plan(NamedTuple):
     later: I32
     fill_ptr: I64
     fill: I32
-    lower: int  # lower bound of the fill, 0 if the order was not made for this core
+    lower: int  # lower bound of the fill
+    minimal: bool  # no fill edge can go
 
 
 class Draft(NamedTuple):
@@ -66,13 +76,13 @@ def plan_core(
     """
     if places.shape[0] > dense_limit:
         lists = sparse_lists(places, anchors, nb.low_ptr, nb.low, nb.fill_end, nb.fill, local)
-        return Plan(places, lists[0], lists[1], lists[2], lists[3], 0)
+        return Plan(places, lists[0], lists[1], lists[2], lists[3], 0, False)
     real, full = dense_rows(places, anchors, nb.low_ptr, nb.low, nb.fill_end, nb.fill, local)
     easy = 8 * places.shape[0]
-    full, order = best_triangulation(real, full, anchors, easy, most, least_fill, cells)
-    lower = pack_cycles(real, list_fill(real, full), cells)
+    full, order, minimal = best_triangulation(real, full, anchors, easy, most, least_fill, cells)
+    lower = pack_cycles(real, list_fill(real, full), minimal, cells)
     lists = dense_lists(real, full, anchors, order)
-    return Plan(places[order], lists[0], lists[1], lists[2], lists[3], lower)
+    return Plan(places[order], lists[0], lists[1], lists[2], lists[3], lower, minimal)
 
 
 @kernel
@@ -118,16 +128,15 @@ def append_bags(draft: Draft, ptr: I64, rank: I32, adhesion: I32, above: I32, ki
 
 
 @kernel
-def note_figures(figures: I64, plan: Plan, kind: U8, states: int, table: int, stopped: bool) -> None:
+def note_figures(figures: I64, plan: Plan, kind: U8, states: int, table: int) -> None:
     """Write the figures int64[6] of one core.
 
-    A core that was thinned on bitset rows holds no fill that could go, so each part of it that holds fill needs
-    one fill edge at least.
+    If no fill edge can go, each part that holds fill is not chordal and needs one fill edge at least.
     """
     with_fill, without = count_parts(kind)
     figures[FILL_EDGES] = plan.fill_ptr[plan.place.shape[0]]
     figures[FILL_LOWER] = plan.lower
-    if plan.lower > 0 and not stopped:
+    if plan.minimal:
         figures[FILL_LOWER] = max(plan.lower, with_fill)
     figures[STATES] = states
     figures[TABLE] = table
@@ -163,7 +172,7 @@ def build_forest(
             local[p] = -1
         ptr, rank, adhesion, above, kind = write_bags(anchors, plan.later_ptr, plan.later, plan.fill_ptr, plan.fill)
         states, table = count_states(ptr, rank, adhesion, kind, plan.fill_ptr, plan.fill, most, cells)
-        note_figures(figures[c], plan, kind, states, table, cells[STOP] != 0)
+        note_figures(figures[c], plan, kind, states, table)
         draft = append_slots(draft, plan, core_slot[c])
         draft = append_bags(draft, ptr, rank, adhesion, above, kind, core_slot[c], core_bag[c])
         core_top[c] = homes[0]

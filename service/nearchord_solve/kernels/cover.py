@@ -6,7 +6,7 @@ value, no independent set loses by it, as it meets Q at most once.
 
 import numpy as np
 
-from .compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
 
 
 @kernel

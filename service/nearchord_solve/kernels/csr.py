@@ -6,7 +6,7 @@ Symmetric form: rows of all neighbours, ascending.
 
 import numpy as np
 
-from .compiled import I32, I64, U32, kernel
+from nearchord_solve.kernels.compiled import I32, I64, U32, kernel
 
 FINE, BAD_POINTER, BAD_RANGE, BAD_ORDER = 0, 1, 2, 3
 

@@ -6,8 +6,8 @@ uint64[k, W] the rows of a triangulation H of G.  Bit j of row i stands for the 
 
 import numpy as np
 
-from .cells import STOP
-from .compiled import I32, I64, U64, kernel, lowest, ones
+from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest, ones
 
 ONE = np.uint64(1)
 WORD = 64
@@ -57,7 +57,14 @@ def list_fill(real: U64, full: U64) -> I32:
 
 
 @kernel
-def _meet_in_clique(full: U64, u: int, v: int) -> bool:
+def spent(effort: I64, words: int, cells: I64) -> bool:
+    """Take ``words`` from the effort left (int64[1]); whether it is used up, or a stop is asked for."""
+    effort[0] -= words
+    return bool(effort[0] < 0 or cells[STOP] != 0)
+
+
+@kernel
+def _meet_in_clique(full: U64, u: int, v: int, effort: I64) -> bool:
     """Whether the common neighbours of u and v in ``full`` are pairwise adjacent."""
     words = full.shape[1]
     for w in range(words):
@@ -70,50 +77,69 @@ def _meet_in_clique(full: U64, u: int, v: int) -> bool:
                 if y == w:
                     rest &= ~(ONE << np.uint64(x & 63))
                 if rest != 0:
+                    effort[0] -= y
                     return False
+            effort[0] -= words
     return True
 
 
 @kernel
-def thin(full: U64, pairs: I32, cells: I64) -> int:
+def thin(full: U64, pairs: I32, effort: I64, cells: I64) -> tuple[int, bool]:
     """Drop fill edges until none can go; ``full`` then is a minimal triangulation.
 
     A fill edge uv of a chordal graph may go, leaving it chordal, iff the common neighbours of u and v form a
     clique: a chordless cycle after the removal would pass u, x, v, y with x and y common neighbours that are
     not adjacent.  And a triangulation from which no single fill edge can go is minimal (Rose, Tarjan and
-    Lueker, SIAM J. Comput. 5 (1976) 266-283).  ``full`` is changed in place; ``pairs`` int32[f, 2] is
-    overwritten, its first (result) rows are the fill that stays.  A stop leaves a valid triangulation.
+    Lueker, SIAM J. Comput. 5 (1976) 266-283).  An edge is looked at again only when an end of it has lost an
+    edge since: otherwise its common neighbours are the same and no more of them are adjacent.
+
+    ``full`` is changed in place; ``pairs`` int32[f, 2] is overwritten.  Returns (number of fill edges that stay,
+    the first rows of ``pairs``; whether none of them can go).  When the effort is spent or a stop is asked for,
+    a valid triangulation is left.
     """
     count = int(pairs.shape[0])
-    changed = True
-    while changed and cells[STOP] == 0:
-        changed = False
+    lost = np.zeros(full.shape[0], np.int64)
+    turn = 0
+    finished = False
+    while not finished:
+        turn += 1
+        finished = True
         kept = 0
         for e in range(count):
             u = pairs[e, 0]
             v = pairs[e, 1]
-            if (e & 255) == 0 and cells[STOP] != 0:
-                for f in range(e, count):
-                    pairs[kept, 0] = pairs[f, 0]
-                    pairs[kept, 1] = pairs[f, 1]
-                    kept += 1
-                break
-            if _meet_in_clique(full, u, v):
+            again = lost[u] >= turn - 1 or lost[v] >= turn - 1
+            if again and spent(effort, 1, cells):
+                return _close_up(pairs, kept, e, count), False
+            if again and _meet_in_clique(full, u, v, effort):
                 drop_pair(full, u, v)
-                changed = True
+                lost[u] = turn
+                lost[v] = turn
+                finished = False
             else:
                 pairs[kept, 0] = u
                 pairs[kept, 1] = v
                 kept += 1
         count = kept
-    return count
+    return count, True
 
 
 @kernel
-def fill_by_degree(real: U64, full: U64, cells: I64) -> bool:
+def _close_up(pairs: I32, kept: int, begin: int, end: int) -> int:
+    """Move rows begin..end-1 behind the first ``kept`` ones; returns the number of rows then."""
+    for e in range(begin, end):
+        pairs[kept, 0] = pairs[e, 0]
+        pairs[kept, 1] = pairs[e, 1]
+        kept += 1
+    return kept
+
+
+@kernel
+def fill_by_degree(real: U64, full: U64, effort: I64, cells: I64) -> bool:
     """Overwrite ``full`` with the triangulation of repeatedly eliminating a vertex of least degree.
 
-    Ties go to the lowest index.  O(k^2 + sum of degrees * W) time.  Returns False if stopped.
+    Ties go to the lowest index.  O(k^2 + sum of degrees * W) time.  Returns False if stopped or out of
+    effort.
     """
     k, words = real.shape
     full[:] = real
@@ -124,7 +150,7 @@ def fill_by_degree(real: U64, full: U64, cells: I64) -> bool:
         for w in range(words):
             degree[v] += ones(real[v, w])
     for _ in range(k):
-        if cells[STOP] != 0:
+        if spent(effort, k, cells):
             return False
         best = -1
         for v in range(k):
@@ -144,11 +170,12 @@ def fill_by_degree(real: U64, full: U64, cells: I64) -> bool:
                         full[u, y] &= ~(ONE << np.uint64(u & 63))
                     size += ones(full[u, y] & alive[y])
                 degree[u] = size
+                effort[0] -= words
     return True
 
 
 @kernel
-def _missing(full: U64, alive: U64, v: int) -> int:
+def _missing(full: U64, alive: U64, v: int, effort: I64) -> int:
     """Number of non-adjacent pairs among the neighbours of v that are alive."""
     words = full.shape[1]
     lacking = 0
@@ -160,15 +187,16 @@ def _missing(full: U64, alive: U64, v: int) -> int:
             for y in range(words):
                 lacking += ones(full[v, y] & alive[y] & ~full[u, y])
             lacking -= 1
+            effort[0] -= words
     return lacking // 2
 
 
 @kernel
-def fill_by_missing(real: U64, full: U64, cells: I64) -> bool:
+def fill_by_missing(real: U64, full: U64, effort: I64, cells: I64) -> bool:
     """Overwrite ``full`` with the triangulation of repeatedly eliminating a vertex that adds least fill.
 
     Ties go to the lowest index.  When ab is added, each common neighbour lacks one pair less; neighbours of
-    the eliminated vertex are counted anew.  Returns False if stopped.
+    the eliminated vertex are counted anew.  Returns False if stopped or out of effort.
     """
     k, words = real.shape
     full[:] = real
@@ -177,10 +205,12 @@ def fill_by_missing(real: U64, full: U64, cells: I64) -> bool:
         alive[v >> 6] |= ONE << np.uint64(v & 63)
     lacking = np.empty(k, np.int64)
     for v in range(k):
-        lacking[v] = _missing(full, alive, v)
+        if spent(effort, 0, cells):
+            return False
+        lacking[v] = _missing(full, alive, v, effort)
     around = np.empty(k, np.int32)
     for _ in range(k):
-        if cells[STOP] != 0:
+        if spent(effort, k, cells):
             return False
         best = -1
         for v in range(k):
@@ -198,10 +228,13 @@ def fill_by_missing(real: U64, full: U64, cells: I64) -> bool:
             for p in range(count):
                 for q in range(p + 1, count):
                     if not holds(full, around[p], around[q]):
+                        effort[0] -= words
                         _add_and_discount(full, alive, around[p], around[q], lacking)
         lacking[best] = -1
         for p in range(count):
-            lacking[around[p]] = _missing(full, alive, around[p])
+            if spent(effort, 0, cells):
+                return False
+            lacking[around[p]] = _missing(full, alive, around[p], effort)
     return True
 
 

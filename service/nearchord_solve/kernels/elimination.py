@@ -7,8 +7,8 @@ it.  The parent of i is max L(i), and L(i) - parent lies in L(parent): that is h
 
 import numpy as np
 
-from .cells import FILL, POLL, STEP, STOP
-from .compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.cells import FILL, POLL, STEP, STOP
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
 
 DONE, STOPPED, TOO_LARGE = 0, 1, 2
 

@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from .compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
 
 
 @kernel

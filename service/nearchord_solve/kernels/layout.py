@@ -7,7 +7,7 @@ the core; a vertex shared by cores has a slot in each.  ``Tries`` holds the mess
 
 from typing import NamedTuple
 
-from .compiled import I32, I64, U8
+from nearchord_solve.kernels.compiled import I32, I64, U8
 
 
 class Numbering(NamedTuple):

@@ -10,8 +10,8 @@ from typing import NamedTuple
 
 import numpy as np
 
-from .cells import STOP
-from .compiled import I32, I64, U8, U64, kernel
+from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.kernels.compiled import I32, I64, U8, U64, kernel
 
 KEEP_WORSE = 64  # one kick in so many is kept although it made things worse
 

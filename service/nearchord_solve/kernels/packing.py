@@ -6,9 +6,9 @@ share no non-edge need different chords, so these numbers add up.
 
 import numpy as np
 
-from .cells import STOP
-from .compiled import I32, I64, U64, kernel, lowest
-from .dense import holds, set_pair
+from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest
+from nearchord_solve.kernels.dense import holds, set_pair
 
 ONE = np.uint64(1)
 STEPS = 200_000  # about the vertices that the shortest paths of one core may look at
@@ -65,17 +65,18 @@ def _take(real: U64, used: U64, cycle: I32, length: int) -> bool:
 
 
 @kernel
-def pack_cycles(real: U64, pairs: I32, cells: I64) -> int:
+def pack_cycles(real: U64, pairs: I32, minimal: bool, cells: I64) -> int:
     """Greedy packing; returns the sum of c - 3 over its cycles.
 
-    ``real`` uint64[k, W]; ``pairs`` int32[f, 2]: the fill of some triangulation.  Every chordless cycle has a
+    ``real`` uint64[k, W]; ``pairs`` int32[f, 2]: the fill of some triangulation, ``minimal``
+    if none of it can go.  Every chordless cycle has a
     vertex whose two neighbours on it are joined by fill, so only such (fill edge, common neighbour) are
     tried: cycles on four vertices first, as they use the fewest non-edges for what they add, then all.  The
     number of paths is limited by ``STEPS``.
     """
     k, words = real.shape
-    if pairs.shape[0] <= 1:
-        return pairs.shape[0] if cells[STOP] == 0 else 0
+    if pairs.shape[0] <= 1 and minimal:
+        return int(pairs.shape[0])
     used = np.zeros((k, words), np.uint64)
     before = np.empty(k, np.int32)
     queue = np.empty(k, np.int32)

@@ -1,6 +1,6 @@
 """A feasible set and a bound in linear time, for solves that are stopped before they have anything better."""
 
-from .compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
 
 
 @kernel

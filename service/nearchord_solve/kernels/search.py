@@ -6,8 +6,8 @@ order is a perfect elimination order (Tarjan and Yannakakis, SIAM J. Comput. 13 
 
 import numpy as np
 
-from .cells import POLL, STEP, STOP
-from .compiled import I32, I64, kernel
+from nearchord_solve.kernels.cells import POLL, STEP, STOP
+from nearchord_solve.kernels.compiled import I32, I64, kernel
 
 NEXT, PREV, COUNT, PLACE = 0, 1, 2, 3
 

@@ -9,12 +9,12 @@ from has lower ones.
 
 import numpy as np
 
-from .cells import BAGS_DONE, POLL, STEP, STOP
-from .cliques import touched
-from .compiled import I32, I64, U8, kernel
-from .cover import choose_greedily, cover_core
-from .layout import ADHESION_FILL, BAG_FILL, Forest, Numbering, Tries
-from .tables import best_state, collect_messages, fill_table, settle_message
+from nearchord_solve.kernels.cells import BAGS_DONE, POLL, STEP, STOP
+from nearchord_solve.kernels.cliques import touched
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.cover import choose_greedily, cover_core
+from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest, Numbering, Tries
+from nearchord_solve.kernels.tables import best_state, collect_messages, fill_table, settle_message
 
 
 @kernel
@@ -138,7 +138,7 @@ def inward(
     seen = np.zeros(n, np.int32)
     first, following = link_bags(forest.bag_above, forest.bag_kind)
     base = 0
-    used = 0
+    used = int(np.int64(0))  # a literal 0 would compile what it is passed to twice
     bags = 0
     for i in range(n - 1, -1, -1):
         if (i & POLL) == 0:

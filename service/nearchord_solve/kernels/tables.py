@@ -17,8 +17,8 @@ difference, which is smaller than 2**62.
 
 import numpy as np
 
-from .cliques import depth_limit
-from .compiled import I32, I64, U64, kernel, lowest
+from nearchord_solve.kernels.cliques import depth_limit
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest
 
 ONE = np.uint64(1)
 
@@ -121,7 +121,7 @@ def fill_table(
     chosen = np.empty(deepest, np.int64)
     current = np.full(children, -1, np.int64)
     undo = np.empty(meet_node.shape[0] + 1, np.int64)
-    undone = 0
+    undone = int(np.int64(0))  # a literal 0 would compile what it is passed to twice
     empty = spare
     for w in range(words):
         stack[0, w] = 0
@@ -229,7 +229,7 @@ def best_state(
     chosen = np.empty(deepest, np.int64)
     current = np.full(children, -1, np.int64)
     undo = np.empty(meet_node.shape[0] + 1, np.int64)
-    undone = 0
+    undone = int(np.int64(0))  # a literal 0 would compile what it is passed to twice
     for w in range(words):
         stack[0, w] = 0
     for j in range(lead, count):

@@ -2,11 +2,13 @@
 
 import numpy as np
 
-from .bags import count_states, write_bags
-from .cells import STOP
-from .compiled import I32, I64, U64, kernel
-from .core_lists import dense_lists
-from .dense import fill_by_degree, fill_by_missing, list_fill, number_from, thin
+from nearchord_solve.kernels.bags import count_states, write_bags
+from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel
+from nearchord_solve.kernels.core_lists import dense_lists
+from nearchord_solve.kernels.dense import fill_by_degree, fill_by_missing, list_fill, number_from, thin
+
+EFFORT = 1_000_000_000  # words that one candidate for one core may touch: about a second
 
 
 @kernel
@@ -23,26 +25,29 @@ def judge(real: U64, full: U64, anchors: int, most: int, cells: I64) -> tuple[in
 @kernel
 def best_triangulation(
     real: U64, full: U64, anchors: int, easy: int, most: int, least_fill: bool, cells: I64
-) -> tuple[U64, I32]:
-    """The best of up to three minimal triangulations of one core, with its elimination order.
+) -> tuple[U64, I32, bool]:
+    """The best of up to three triangulations of one core, its elimination order, and whether it is minimal.
 
     Candidates: the given ``full`` (overwritten by its thinning), least degree, least missing pairs, each
     thinned.  Fewest states wins (fewest fill edges if ``least_fill``), then the other of the two, then the
-    first.  If the first has at most ``easy`` states and ``least_fill`` is off, it is taken at once.
+    first.  If the first has at most ``easy`` states and ``least_fill`` is off, it is taken at once.  Each
+    candidate may cost ``EFFORT`` words; beyond it is left out, or left unthinned.
     """
-    thin(full, list_fill(real, full), cells)
+    effort = np.array([EFFORT])
+    _, minimal = thin(full, list_fill(real, full), effort, cells)
     states, fill, order = judge(real, full, anchors, most, cells)
     if states <= easy and not least_fill:
-        return full, order
+        return full, order, minimal
     for method in range(2):
         other = np.empty_like(real)
+        effort[0] = EFFORT
         if method == 0:
-            done = fill_by_degree(real, other, cells)
+            done = fill_by_degree(real, other, effort, cells)
         else:
-            done = fill_by_missing(real, other, cells)
+            done = fill_by_missing(real, other, effort, cells)
         if not done:
-            break
-        thin(other, list_fill(real, other), cells)
+            continue
+        _, other_minimal = thin(other, list_fill(real, other), effort, cells)
         other_states, other_fill, other_order = judge(real, other, anchors, most, cells)
         if cells[STOP] != 0:
             break
@@ -51,5 +56,6 @@ def best_triangulation(
         else:
             better = other_states < states or (other_states == states and other_fill < fill)
         if better:
-            states, fill, full, order = other_states, other_fill, other, other_order
-    return full, order
+            states, fill, minimal = other_states, other_fill, other_minimal
+            full, order = other, other_order
+    return full, order, minimal

@@ -1,7 +1,7 @@
 """The questions that a solve can answer, one module each."""
 
-from .independent_set import IndependentSet
-from .vertex_cover import VertexCover
+from nearchord_solve.questions.independent_set import IndependentSet
+from nearchord_solve.questions.vertex_cover import VertexCover
 
 QUESTIONS: dict[str, type[IndependentSet] | type[VertexCover]] = {
     "independent-set": IndependentSet,

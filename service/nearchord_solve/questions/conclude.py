@@ -4,11 +4,11 @@ from collections.abc import Callable
 
 import numpy as np
 
-from ..arrays import U32
-from ..outcome import Outcome, Verdict
-from ..sweep.independent import as_vertices
-from .heaviest import Found
-from .pins import Contradiction
+from nearchord_solve.arrays import U32
+from nearchord_solve.outcome import Outcome, Verdict
+from nearchord_solve.questions.heaviest import Found
+from nearchord_solve.questions.pins import Contradiction
+from nearchord_solve.sweep.independent import as_vertices
 
 
 def contradiction(pins: Contradiction, inside: str, outside: str) -> Outcome:

@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from ..monitor import Monitor
+from nearchord_solve.monitor import Monitor
 
 
 @dataclass(frozen=True)

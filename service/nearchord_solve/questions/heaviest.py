@@ -4,18 +4,19 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .. import bounds
-from ..arrays import I32, I64, U8
-from ..budget import Budget
-from ..graph import Graph
-from ..kernels.layout import STATES
-from ..memory import predicted_bytes
-from ..monitor import Stop
-from ..order import Unfinished
-from ..outcome import Verdict
-from ..sweep import sweep
-from ..tree import Partial, Structure, build_structure
-from .gauge import Gauge
+from nearchord_solve import bounds
+from nearchord_solve.arrays import I32, I64, U8
+from nearchord_solve.budget import Budget
+from nearchord_solve.graph import Graph
+from nearchord_solve.kernels.layout import STATES
+from nearchord_solve.memory import predicted_bytes
+from nearchord_solve.monitor import Stop
+from nearchord_solve.order import Unfinished
+from nearchord_solve.outcome import Verdict
+from nearchord_solve.questions.branching import Branching
+from nearchord_solve.questions.gauge import Gauge
+from nearchord_solve.sweep import sweep
+from nearchord_solve.tree import Partial, Structure, build_structure
 
 
 @dataclass(frozen=True, eq=False)
@@ -161,13 +162,25 @@ def _homes(structure: Structure, fits: U8) -> I32:
 
 
 def _search_on(task: Task, chosen: U8, bound: int, candidates: I32, structure: Structure | None, reason: str) -> Found:
-    """Improve a pair by local search, if the job wants it."""
+    """Improve a pair by local search, then by branching, if the job wants it."""
     task.gauge.incumbent(task.weight(chosen))
     task.gauge.bound(bound)
     if task.when_over == "bound" and candidates.size and not task.stop:
         chosen = bounds.improve(
             task.graph, task.weights, chosen, candidates, bound, task.gauge.incumbent, task.gauge.monitor
         )
+        if structure is not None:
+            chosen, bound, more = _branch(task, chosen, bound)
+            reason += more
         if task.stop is Stop.SECONDS:
-            reason += "; seconds ran out in the local search"
+            reason += "; seconds ran out in the search"
     return _close(task, chosen, bound, structure, reason)
+
+
+def _branch(task: Task, chosen: U8, bound: int) -> tuple[U8, int, str]:
+    """Close the gap, or a part of it, by branching; also says so."""
+    search = Branching(task.graph, task.weights, task.budget, task.gauge, chosen, task.weight(chosen))
+    if search.value >= bound or not search.worthwhile or task.stop:
+        return chosen, bound, ""
+    bound = search.run(bound)
+    return search.chosen, bound, f"; {search.nodes} branches were looked at"

@@ -5,10 +5,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..arrays import I64, U32
-from ..errors import SolverError
-from ..graph import Graph
-from ..kernels import csr
+from nearchord_solve.arrays import I64, U32
+from nearchord_solve.errors import SolverError
+from nearchord_solve.graph import Graph
+from nearchord_solve.kernels import csr
 
 
 @dataclass(frozen=True)
@@ -69,8 +69,9 @@ def apply_pins(graph: Graph, weights: I64, must: I64, never: I64) -> Rest | Cont
     index = np.full(graph.n, -1, np.int32)
     index[vertices] = np.arange(vertices.size, dtype=np.int32)
     ptr, adj = csr.induce(graph.ptr, graph.adj, index, vertices.size)
-    rest = Graph.from_symmetric(ptr, adj)
-    return Rest(rest, weights[vertices], vertices, must, int(weights[must].sum()))
+    left = weights[vertices]
+    left.flags.writeable = False  # as all weights are: kernels are compiled for one kind of array
+    return Rest(Graph.from_symmetric(ptr, adj), left, vertices, must, int(weights[must].sum()))
 
 
 def lift(rest: Rest, chosen: U32) -> U32:

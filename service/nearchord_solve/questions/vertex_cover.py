@@ -9,15 +9,15 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..arrays import I64, U32
-from ..budget import Budget
-from ..graph import Graph
-from ..monitor import Monitor
-from ..outcome import Outcome
-from .conclude import contradiction, outcome_of
-from .gauge import Gauge
-from .heaviest import Task, find_heaviest
-from .pins import Contradiction, apply_pins, lift, pin_array
+from nearchord_solve.arrays import I64, U32
+from nearchord_solve.budget import Budget
+from nearchord_solve.graph import Graph
+from nearchord_solve.monitor import Monitor
+from nearchord_solve.outcome import Outcome
+from nearchord_solve.questions.conclude import contradiction, outcome_of
+from nearchord_solve.questions.gauge import Gauge
+from nearchord_solve.questions.heaviest import Task, find_heaviest
+from nearchord_solve.questions.pins import Contradiction, apply_pins, lift, pin_array
 
 
 @dataclass(frozen=True)

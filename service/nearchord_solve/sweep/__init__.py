@@ -1,5 +1,5 @@
 """Passes over the tree of bags."""
 
-from .independent import Swept, sweep
+from nearchord_solve.sweep.independent import Swept, sweep
 
 __all__ = ["Swept", "sweep"]

@@ -4,11 +4,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..arrays import I64, U8, U32
-from ..kernels import sweep as kernels
-from ..kernels.layout import TABLE, Tries
-from ..monitor import Monitor, Phase
-from ..tree import Structure
+from nearchord_solve.arrays import I64, U8, U32
+from nearchord_solve.kernels import sweep as kernels
+from nearchord_solve.kernels.layout import TABLE, Tries
+from nearchord_solve.monitor import Monitor, Phase
+from nearchord_solve.tree import Structure
 
 
 @dataclass(frozen=True, eq=False)

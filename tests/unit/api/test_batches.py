@@ -63,12 +63,12 @@ def test_a_batch_whose_stream_breaks_leaves_nothing(served: Serving) -> None:
 @pytest.mark.parametrize(
     ("messages", "field", "description"),
     [
-        ([], "part.opening", "is missing: the first message of a batch is its opening"),
-        (list(batching([a_spec()]))[1:], "part.opening", "is missing: the first message of a batch is its opening"),
+        ([], "opening", "is missing: the first message of a batch is its opening"),
+        (list(batching([a_spec()]))[1:], "opening", "is missing: the first message of a batch is its opening"),
         (list(batching([])), "specs", "are missing: a batch has at least one job"),
         ([*batching([a_spec()]), *batching([])], "specs[1]", "is missing: after the opening a batch has only specs"),
-        (list(batching([a_spec()], request_id="")), "part.opening.request_id", "must be 1 to 64 characters"),
-        (list(batching([a_spec()], label="a\tb")), "part.opening.label", "holds the control character U+0009"),
+        (list(batching([a_spec()], request_id="")), "opening.request_id", "must be 1 to 64 characters"),
+        (list(batching([a_spec()], label="a\tb")), "opening.label", "holds the control character U+0009"),
     ],
 )
 def test_a_batch_has_a_form(

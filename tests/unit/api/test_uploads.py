@@ -106,7 +106,7 @@ def test_content_out_of_form_is_refused_and_forgotten(
 ) -> None:
     found = failure(lambda: served.upload(data, kind))
     assert found.summary == INVALID
-    assert found.fields == (("part.piece", description),)
+    assert found.fields == (("piece", description),)
     state = served.graphs.GetUpload(pb.GetUploadRequest(address=address_of(data)))
     assert (state.committed_bytes, state.stored) == (0, False)
 
@@ -114,7 +114,7 @@ def test_content_out_of_form_is_refused_and_forgotten(
 def test_a_wrong_digest_is_refused_and_forgotten(served: Serving) -> None:
     found = failure(lambda: served.graphs.StoreContent(uploading(TRIANGLE, address=UNKNOWN)))
     assert found.summary == ("INVALID_ARGUMENT", "DIGEST_MISMATCH")
-    assert found.fields[0][0] == "part.opening.address"
+    assert found.fields[0][0] == "opening.address"
     assert address_of(TRIANGLE) in found.message
     assert "upload again from offset 0" in found.message
     assert served.graphs.GetUpload(pb.GetUploadRequest(address=UNKNOWN)).committed_bytes == 0
@@ -123,25 +123,25 @@ def test_a_wrong_digest_is_refused_and_forgotten(served: Serving) -> None:
 def test_fewer_bytes_than_announced_are_refused(served: Serving) -> None:
     found = failure(lambda: served.graphs.StoreContent(uploading(TRIANGLE, size=len(TRIANGLE) + 1)))
     assert found.summary == INVALID
-    assert found.fields[0][0] == "part.piece"
+    assert found.fields[0][0] == "piece"
 
 
 def test_more_bytes_than_announced_are_refused(served: Serving) -> None:
     found = failure(lambda: served.graphs.StoreContent(uploading(TRIANGLE, size=len(TRIANGLE) - 1)))
     assert found.summary == INVALID
-    assert found.fields[0][0] == "part.piece"
+    assert found.fields[0][0] == "piece"
 
 
 @pytest.mark.parametrize(
     ("change", "field"),
     [
-        ({"kind": content_pb2.CONTENT_KIND_UNSPECIFIED}, "part.opening.kind"),
-        ({"kind": 77}, "part.opening.kind"),
-        ({"address": "../../etc"}, "part.opening.address"),
-        ({"address": ""}, "part.opening.address"),
-        ({"size": -1}, "part.opening.size_bytes"),
-        ({"offset": -1}, "part.opening.offset"),
-        ({"offset": 10_000}, "part.opening.offset"),
+        ({"kind": content_pb2.CONTENT_KIND_UNSPECIFIED}, "opening.kind"),
+        ({"kind": 77}, "opening.kind"),
+        ({"address": "../../etc"}, "opening.address"),
+        ({"address": ""}, "opening.address"),
+        ({"size": -1}, "opening.size_bytes"),
+        ({"offset": -1}, "opening.offset"),
+        ({"offset": 10_000}, "opening.offset"),
     ],
 )
 def test_a_wrong_opening_is_named(served: Serving, change: dict[str, object], field: str) -> None:
@@ -155,16 +155,16 @@ def test_an_upload_begins_with_its_opening(served: Serving) -> None:
     (opening, piece) = uploading(TRIANGLE)
     for messages in ([], [piece], [pb.StoreContentRequest()]):
         found = failure(lambda messages=messages: served.graphs.StoreContent(iter(messages)))
-        assert found.fields == (("part.opening", "is missing: the first message of an upload is its opening"),)
+        assert found.fields == (("opening", "is missing: the first message of an upload is its opening"),)
     found = failure(lambda: served.graphs.StoreContent(iter([opening, opening])))
-    assert found.fields == (("part.piece", "is missing: after the opening an upload has only pieces"),)
+    assert found.fields == (("piece", "is missing: after the opening an upload has only pieces"),)
 
 
 def test_content_beyond_the_cap_is_a_quota(served: Serving) -> None:
     (opening, *_) = uploading(TRIANGLE, size=2**24 + 1)
     found = failure(lambda: served.graphs.StoreContent(iter([opening])))
     assert found.summary == ("RESOURCE_EXHAUSTED", "QUOTA_EXCEEDED")
-    assert found.others == ("part.opening.size_bytes",)
+    assert found.others == ("opening.size_bytes",)
     assert found.retry_seconds is None
 
 
@@ -179,7 +179,7 @@ def test_a_piece_beyond_the_cap_is_a_quota(served: Serving) -> None:
     data = bytes(2**20 + 1)
     found = failure(lambda: served.graphs.StoreContent(uploading(data, piece=2**21)))
     assert found.summary == ("RESOURCE_EXHAUSTED", "QUOTA_EXCEEDED")
-    assert found.others == ("part.piece",)
+    assert found.others == ("piece",)
 
 
 class Broken:

@@ -113,7 +113,7 @@ def test_fill_budget_of_zero_allows_chordal_graphs() -> None:
 def test_more_fill_than_budgeted_is_used_and_said() -> None:
     outcome = run(Budget(fill=0), "bound")
     assert (outcome.verdict, outcome.value) == (Verdict.PROVEN, BEST)
-    assert f"more fill than the 0 budgeted" in outcome.reason
+    assert "more fill than the 0 budgeted" in outcome.reason
 
 
 def test_fill_between_lower_bound_and_budget_is_bounded_with_stop() -> None:

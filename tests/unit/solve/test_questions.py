@@ -15,7 +15,7 @@ def solve(question, graph, weights=None, budget=None, when_over="bound"):  # typ
 
 
 def test_questions_are_found_by_their_wire_names() -> None:
-    assert QUESTIONS == {"independent-set": IndependentSet, "vertex-cover": VertexCover}
+    assert {"independent-set": IndependentSet, "vertex-cover": VertexCover} == QUESTIONS
 
 
 def test_independent_set_of_a_path() -> None:

@@ -15,6 +15,11 @@ from nearchord_solve.tree import Structure, build_structure
 CELLS = np.zeros(16, np.int64)
 
 
+def effort(words: int = 10**9) -> np.ndarray:
+    """So much effort."""
+    return np.array([words])
+
+
 def structure_of(n: int, edges: list[tuple[int, int]]) -> Structure:
     """Structure within the default budget."""
     built = build_structure(Graph.from_edges(n, edges), Budget(), Monitor())
@@ -65,7 +70,8 @@ def test_thinning_handles_the_case_that_one_pass_misses(seed: int) -> None:
             dense.set_pair(full, u, v)
     pairs = dense.list_fill(real, full)
     np.random.default_rng(seed).shuffle(pairs)
-    count = dense.thin(full, pairs, CELLS)
+    count, finished = dense.thin(full, pairs, effort(), CELLS)
+    assert finished
     graph = networkx_graph(n, edges)
     graph.add_edges_from(pairs[:count].tolist())
     assert nx.is_chordal(graph)
@@ -73,6 +79,26 @@ def test_thinning_handles_the_case_that_one_pass_misses(seed: int) -> None:
         graph.remove_edge(u, v)
         assert not nx.is_chordal(graph)
         graph.add_edge(u, v)
+
+
+@pytest.mark.parametrize("words", [0, 3, 20])
+def test_thinning_that_runs_out_of_effort_leaves_a_triangulation(words: int) -> None:
+    n = 9
+    edges = random_graph(n, 0.35, 4)
+    real = np.zeros((n, 1), np.uint64)
+    full = np.zeros((n, 1), np.uint64)
+    for v in range(n):
+        for u in range(v):
+            dense.set_pair(full, u, v)
+    for u, v in edges:
+        dense.set_pair(real, u, v)
+    pairs = dense.list_fill(real, full)
+    count, finished = dense.thin(full, pairs, effort(words), CELLS)
+    assert not finished
+    assert sorted(map(tuple, pairs[:count].tolist())) == sorted(map(tuple, dense.list_fill(real, full).tolist()))
+    graph = networkx_graph(n, edges)
+    graph.add_edges_from(pairs[:count].tolist())
+    assert nx.is_chordal(graph)
 
 
 @pytest.mark.parametrize("method", [dense.fill_by_degree, dense.fill_by_missing])
@@ -83,7 +109,7 @@ def test_greedy_orders_triangulate(method: object, n: int) -> None:
     full = np.empty_like(real)
     for u, v in edges:
         dense.set_pair(real, u, v)
-    assert method(real, full, CELLS)  # type: ignore[operator]
+    assert method(real, full, effort(), CELLS)  # type: ignore[operator]
     graph = networkx_graph(n, edges)
     graph.add_edges_from(dense.list_fill(real, full).tolist())
     assert nx.is_chordal(graph)
@@ -96,7 +122,7 @@ def test_greedy_by_missing_pairs_keeps_its_counts_right() -> None:
     full = np.empty_like(real)
     for u, v in edges:
         dense.set_pair(real, u, v)
-    dense.fill_by_missing(real, full, CELLS)
+    dense.fill_by_missing(real, full, effort(), CELLS)
     graph, fill = networkx_graph(n, edges), set()
     while graph:
 

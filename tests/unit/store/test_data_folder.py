@@ -5,12 +5,17 @@ from __future__ import annotations
 import logging
 import os
 import sqlite3
+import threading
 from pathlib import Path
 
 import pytest
-from contract.stores import ANN, LIMITS, Clock, begin, graph, put, spec, submit
+from contract.stores import ANN, LIMITS, Clock, begin, claim_one, finish, give_back, graph, put, spec, submit
 from nearchord_service.model.errors import StoreUnavailable
+from nearchord_service.model.question import QuestionName
+from nearchord_service.model.stage import Verdict
+from nearchord_service.store.port import LOST_WORKERS_ALLOWED
 from nearchord_service.store.sql import SqlStore
+from nearchord_service.store.sql.statement import Connection
 
 
 @pytest.fixture
@@ -105,6 +110,34 @@ def test_writer_syncs_every_commit_and_readers_cannot_write(store: SqlStore) -> 
             connection.cursor.execute("DELETE FROM jobs")
 
 
+def test_only_what_must_last_waits_for_the_disk(store: SqlStore) -> None:
+    """One lasting operation makes its whole group last."""
+
+    def level(transaction: Connection) -> int:
+        transaction.cursor.execute("PRAGMA synchronous")
+        return int(transaction.cursor.fetchone()[0])  # type: ignore[index]
+
+    assert [store._write(level, lasting=lasting) for lasting in (False, True, False, True)] == [1, 2, 1, 2]
+    entered, leave = threading.Event(), threading.Event()
+
+    def wait(_: Connection) -> None:
+        entered.set()
+        assert leave.wait(60)
+
+    store._enqueue(wait)
+    assert entered.wait(60)
+    group = [store._enqueue(level, lasting=lasting) for lasting in (False, True, False)]
+    leave.set()
+    assert [future.result(60) for future in group] == [2, 2, 2]
+
+
+def test_numbers_that_a_power_failure_may_take_back_are_not_given_again(store: SqlStore) -> None:
+    last = submit(store).sequence
+    store.stop()
+    store.start()
+    assert submit(store).sequence > last + 100_000
+
+
 def test_sqlite_version_is_logged(tmp_path: Path, caplog: pytest.LogCaptureFixture) -> None:
     with caplog.at_level(logging.INFO):
         opened = SqlStore(tmp_path / "data")
@@ -121,6 +154,32 @@ def test_seconds_of_each_transaction_are_reported(tmp_path: Path) -> None:
     opened.stop()
     assert len(seconds) == 1
     assert seconds[0] > 0
+
+
+def test_counter_that_fails_harms_no_write(tmp_path: Path) -> None:
+    def fail(_: float) -> None:
+        raise RuntimeError("counter")
+
+    opened = SqlStore(tmp_path / "data", on_write=fail)
+    opened.start()
+    job = submit(opened)
+    assert opened.job(ANN, job.id) == job
+    opened.stop()
+
+
+def test_every_end_of_a_job_is_reported_once(tmp_path: Path) -> None:
+    ends: list[tuple[QuestionName, Verdict]] = []
+    opened = SqlStore(tmp_path / "data", clock=Clock(), on_end=lambda *end: ends.append(end))
+    opened.start()
+    withdrawn, _, _ = submit(opened), submit(opened), submit(opened)
+    opened.cancel_job(ANN, withdrawn.id)
+    opened.cancel_job(ANN, withdrawn.id)
+    lease = claim_one(opened)
+    assert (finish(opened, lease), finish(opened, lease)) == (True, False)
+    for _ in range(LOST_WORKERS_ALLOWED):
+        give_back(opened, claim_one(opened))
+    opened.stop()
+    assert ends == [(QuestionName.INDEPENDENT_SET, end) for end in (Verdict.CANCELLED, Verdict.PROVEN, Verdict.BROKEN)]
 
 
 def test_quota_tallies_equal_a_recount(store: SqlStore) -> None:

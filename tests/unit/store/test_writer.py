@@ -26,7 +26,7 @@ class Bench:
         self.commits: list[float] = []
         self.changes: list[Change] = []
         self.connection = self.database.open(0)
-        self.writer = Writer(self.database, self.connection, self._now, self.commits.append, self.changes.append)
+        self.writer = Writer(self.database, self.connection, self._now, self.commits.append, None, self.changes.append)
         self.writer.start()
 
     @staticmethod

@@ -106,14 +106,14 @@ class Core:
     def _now(self) -> int:
         return micros(self._clock())
 
-    def _enqueue(self, operation: Operation[_T]) -> Future[_T]:
+    def _enqueue(self, operation: Operation[_T], *, lasting: bool = True) -> Future[_T]:
         writer = self._writer
         if writer is None:
             raise StoreUnavailable("the store is closed; start the server again")
-        return writer.enqueue(operation)
+        return writer.enqueue(operation, lasting=lasting)
 
-    def _write(self, operation: Operation[_T]) -> _T:
-        return self._enqueue(operation).result()
+    def _write(self, operation: Operation[_T], *, lasting: bool = True) -> _T:
+        return self._enqueue(operation, lasting=lasting).result()
 
     def _reading(self) -> AbstractContextManager[Connection]:
         return self._database.reading()

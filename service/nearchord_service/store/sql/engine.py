@@ -12,30 +12,40 @@ from contextlib import contextmanager
 from pathlib import Path
 from typing import Any
 
-from sqlalchemy import URL, create_engine, event
+from sqlalchemy import URL, bindparam, create_engine, event, update
 from sqlalchemy.dialects import sqlite
 from sqlalchemy.engine import Engine
 from sqlalchemy.engine.interfaces import Dialect
+from sqlalchemy.exc import TimeoutError as PoolTimeoutError
 from sqlalchemy.pool import NullPool, PoolProxiedConnection, QueuePool
 
 from nearchord_service.model.errors import StoreUnavailable
 from nearchord_service.store.sql.migrations import migrate
-from nearchord_service.store.sql.statement import Connection
+from nearchord_service.store.sql.schema import counters
+from nearchord_service.store.sql.statement import Connection, Statement, word
 
 _log = logging.getLogger(__name__)
 _OLDEST = (3, 35, 0)
 """The first with RETURNING."""
 
-_COMMON = ("PRAGMA busy_timeout = 5000", "PRAGMA temp_store = MEMORY", "PRAGMA cache_size = -16000")
+_COMMON = ("PRAGMA busy_timeout = 5000", "PRAGMA temp_store = MEMORY")
 _WRITING = (
     "PRAGMA auto_vacuum = INCREMENTAL",  # only a database without tables takes this in
     "PRAGMA journal_mode = WAL",
     "PRAGMA synchronous = FULL",
     "PRAGMA wal_autocheckpoint = 4000",
     "PRAGMA journal_size_limit = 67108864",
+    "PRAGMA cache_size = -131072",  # KiB; the pages that a batch of 100,000 jobs touches, few of them in order
 )
-_READING = ("PRAGMA query_only = ON",)
+_READING = ("PRAGMA query_only = ON", "PRAGMA cache_size = -4096")
 _WORDS = {"key": "INTEGER", "bytes": "BLOB", "clustered": "WITHOUT ROWID"}
+
+
+_NUMBERS_AT_RISK = 1_000_000
+_SKIP_NUMBERS = Statement(
+    update(counters).where(counters.c.name == word("event")).values(value=counters.c.value + bindparam("count"))
+)
+"""At each later opening the counter leaps: a number that a power failure took back may be some watcher's cursor."""
 
 
 class SqliteDatabase:
@@ -47,6 +57,7 @@ class SqliteDatabase:
         self._writing: Engine | None = None
         self._reading: Engine | None = None
         self._link: PoolProxiedConnection | None = None
+        self._lasting = True
 
     def open(self, now: int) -> Connection:
         """Open, migrate and return the writing connection. Raises StoreUnavailable."""
@@ -71,9 +82,11 @@ class SqliteDatabase:
         self._reading = self._engine(_READING, QueuePool, pool_size=16, max_overflow=48)
         self._link = self._writing.raw_connection()
         connection = Connection(self._link.cursor(), self.dialect)
-        self.begin(connection)
+        self._lasting = True
+        self.begin(connection, lasting=True)
         try:
-            migrate(connection.cursor, _WORDS, self.path, now)
+            if migrate(connection.cursor, _WORDS, self.path, now):
+                connection.run(_SKIP_NUMBERS, count=_NUMBERS_AT_RISK)
             self.commit(connection)
         finally:
             self.rollback(connection)
@@ -114,6 +127,11 @@ class SqliteDatabase:
             raise StoreUnavailable("the store is closed; start the server again")
         try:
             link = self._reading.raw_connection()
+        except PoolTimeoutError as fault:
+            raise StoreUnavailable(f"{self.path}: too many reads at once; try again in a moment") from fault
+        except sqlite3.Error as fault:
+            raise self.trouble(fault) from fault
+        try:
             try:
                 connection = Connection(link.cursor(), self.dialect)
                 connection.cursor.execute("BEGIN")
@@ -125,8 +143,11 @@ class SqliteDatabase:
                 raise
             raise self.trouble(fault) from fault
 
-    def begin(self, connection: Connection) -> None:
-        """Begin a transaction that may write."""
+    def begin(self, connection: Connection, *, lasting: bool) -> None:
+        """Begin a transaction that may write. One that is not lasting survives the process, not a power failure."""
+        if lasting is not self._lasting:
+            connection.cursor.execute(f"PRAGMA synchronous = {'FULL' if lasting else 'NORMAL'}")
+            self._lasting = lasting
         connection.cursor.execute("BEGIN IMMEDIATE")
 
     def commit(self, connection: Connection) -> None:

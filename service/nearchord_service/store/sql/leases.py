@@ -1,4 +1,8 @@
-"""The workers' side: claiming, renewing, progress, answers, and what happens to the jobs of lost workers."""
+"""The workers' side: claiming, renewing, progress, answers, and what happens to the jobs of lost workers.
+
+Claims, renewals and progress do not wait for the disk: a power failure that undoes them has ended the workers too, and
+their event numbers are not given again (see `engine`).
+"""
 
 from __future__ import annotations
 
@@ -94,7 +98,7 @@ class Leases(Core):
             claimed = [transaction.one(_BY_NUMBER, number=row["number"]) for row in rows]
             return [row for row in claimed if row is not None]
 
-        claimed = self._write(operation)
+        claimed = self._write(operation, lasting=False)
         if not claimed:
             return ()
         with self._reading() as connection:
@@ -126,7 +130,7 @@ class Leases(Core):
                 found[job_id, attempt] = Renewal(row is not None, row is not None and bool(row["cancel_requested"]))
             return found
 
-        return self._write(operation) if wanted else {}
+        return self._write(operation, lasting=False) if wanted else {}
 
     def record_progress(self, rows: Sequence[tuple[str, int, Progress]]) -> None:
         """Replace the progress of jobs whose attempts still hold them."""
@@ -139,7 +143,7 @@ class Leases(Core):
                     _record(transaction, row, figures)
 
         if written:
-            self._write(operation)
+            self._write(operation, lasting=False)
 
     def finish(self, job_id: str, attempt: int, answer: Answer) -> Future[bool]:
         """Record an answer. ValueError for a verdict that no worker may give."""

@@ -206,4 +206,4 @@ class FileUpload:
 
 
 def _invalid(what: str) -> ContentInvalid:
-    return ContentInvalid(FieldViolation("part.piece", f"{what}; nothing was stored: upload again from offset 0"))
+    return ContentInvalid(FieldViolation("piece", f"{what}; nothing was stored: upload again from offset 0"))

@@ -149,9 +149,9 @@ class Uploads(Contents):
 def _same(row: Row, announced: Announced, state: str) -> None:
     wrong = []
     if row["kind"] != announced.kind:
-        wrong.append(FieldViolation("part.opening.kind", f"this address is {state} as {row['kind']}; announce that"))
+        wrong.append(FieldViolation("opening.kind", f"this address is {state} as {row['kind']}; announce that"))
     if row["size_bytes"] != announced.size_bytes:
         length = f"this address is {state} with {row['size_bytes']} bytes; announce that length"
-        wrong.append(FieldViolation("part.opening.size_bytes", length))
+        wrong.append(FieldViolation("opening.size_bytes", length))
     if wrong:
         raise FieldInvalid(*wrong)

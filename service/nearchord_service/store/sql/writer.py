@@ -43,7 +43,7 @@ _MARK, _KEEP, _UNDO = "SAVEPOINT operation", "RELEASE operation", "ROLLBACK TO o
 class Database(Protocol):
     """What the writer needs of a database, see `engine`."""
 
-    def begin(self, connection: Connection, /) -> None: ...  # noqa: D102
+    def begin(self, connection: Connection, /, *, lasting: bool) -> None: ...  # noqa: D102
     def commit(self, connection: Connection, /) -> None: ...  # noqa: D102
     def rollback(self, connection: Connection, /) -> None: ...  # noqa: D102
     def in_transaction(self, connection: Connection, /) -> bool: ...  # noqa: D102
@@ -101,6 +101,7 @@ OnEnd = Callable[[QuestionName, Verdict], None]
 class _Queued:
     operation: Operation[Any]
     future: Future[Any]
+    lasting: bool
 
 
 class Writer:
@@ -138,13 +139,16 @@ class Writer:
                 self._queue.put(None)
         self._thread.join()
 
-    def enqueue(self, operation: Operation[_T]) -> Future[_T]:
-        """Queue an operation; the future is resolved when it is durable or has failed."""
+    def enqueue(self, operation: Operation[_T], *, lasting: bool = True) -> Future[_T]:
+        """Queue an operation; the future is resolved when it is committed or has failed.
+
+        A lasting one then survives a power failure; any survives the end of the process.
+        """
         future: Future[_T] = Future()
         with self._gate:
             if not self._open:
                 raise StoreUnavailable("the store is closed; start the server again")
-            self._queue.put(_Queued(operation, future))
+            self._queue.put(_Queued(operation, future, lasting))
         return future
 
     def _run(self) -> None:
@@ -173,18 +177,25 @@ class Writer:
         began = time.perf_counter()
         news = News()
         try:
-            self._database.begin(self._connection)
+            self._database.begin(self._connection, lasting=any(queued.lasting for queued in group))
             outcomes = [self._attempt(queued.operation, news) for queued in group]
             self._database.commit(self._connection)
         except Exception as fault:
             self._give_up(group, fault)
             return
-        if self._on_write is not None:
-            self._on_write(time.perf_counter() - began)
-        if self._on_end is not None:
-            for question, verdict in news.ended:
-                self._on_end(question, verdict)
+        self._count(time.perf_counter() - began, news)
         self._settle(group, outcomes, news)
+
+    def _count(self, seconds: float, news: News) -> None:
+        """Tell those who count; what is committed does not depend on them."""
+        try:
+            if self._on_write is not None:
+                self._on_write(seconds)
+            if self._on_end is not None:
+                for question, verdict in news.ended:
+                    self._on_end(question, verdict)
+        except Exception:
+            _log.exception("a counter of the store's writes failed")
 
     def _attempt(self, operation: Operation[Any], news: News) -> Any:
         """Run one operation in its savepoint; returns its result or its exception."""
