@@ -1,9 +1,10 @@
 """How a solve ended."""
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, field
 from enum import Enum
 
-from nearchord_solve.arrays import U32
+from nearchord_solve.arrays import I64, U32
 
 
 class Verdict(Enum):
@@ -14,6 +15,37 @@ class Verdict(Enum):
     OVER_FILL = "OVER_FILL"
     INFEASIBLE = "INFEASIBLE"
     CANCELLED = "CANCELLED"
+
+
+@dataclass(frozen=True)
+class Recognition:
+    """Classes of a graph; None where it was not settled."""
+
+    chordal: bool | None
+    interval: bool | None
+    split: bool | None
+    splittance: int | None
+
+
+@dataclass(frozen=True)
+class Prediction:
+    """What an exact answer would take; ``colours`` is 0 where the question takes none."""
+
+    question: str
+    colours: int
+    states: int
+    at_least: bool
+    memory_bytes: int
+    fits: bool
+
+
+@dataclass(frozen=True)
+class StructureReport:
+    """How a graph falls apart."""
+
+    components: int
+    largest_core: int
+    predictions: tuple[Prediction, ...]
 
 
 @dataclass(frozen=True, eq=False)
@@ -32,7 +64,7 @@ class Outcome:
     verdict: Verdict
     value: int | None
     bound: int | None
-    chosen: U32
+    chosen: U32 | None
     fill: int | None
     fill_lower_bound: int
     states: int | None
@@ -43,3 +75,6 @@ class Outcome:
     proof: str
     proof_kinds: tuple[str, ...]
     reason: str
+    columns: Mapping[str, U32 | I64] = field(default_factory=dict)
+    recognition: Recognition | None = None
+    report: StructureReport | None = None
