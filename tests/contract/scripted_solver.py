@@ -141,7 +141,9 @@ def fill_outcome():
         "core_vertex": np.array([0, 1, 2, 3], np.uint32),
     }
     recognition = SimpleNamespace(chordal=np.False_, interval=np.False_, split=None, splittance=np.int64(2))
-    return with_fields(outcome(value=1), chosen=None, columns=columns, recognition=recognition, proof_kinds=("packing",))
+    return with_fields(
+        outcome(value=1), chosen=None, columns=columns, recognition=recognition, proof_kinds=("packing",)
+    )
 
 
 def structure_outcome():

@@ -29,8 +29,8 @@ class WhenOver(StrEnum):
 
 @dataclass(frozen=True)
 class Question:
-    """What a job asks. `must` and `never` are vertex numbers from 0, ascending, without repetition; both are empty for a
-    question that does not choose vertices."""
+    """What a job asks. `must` and `never` are vertex numbers from 0, ascending, without repetition; both are empty
+    for a question that does not choose vertices."""
 
     name: QuestionName
     must: tuple[int, ...] = ()

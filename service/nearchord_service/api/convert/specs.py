@@ -92,7 +92,8 @@ class SpecReader:
         if weighted is not None and question is not None and not question.name.chooses:
             wrong.add(
                 f"{place}.input.{weighted}",
-                f"is given, but the question {question.name} is about the graph alone and takes no weights; leave it out",
+                f"is given, but the question {question.name} is about the graph alone and takes no weights; "
+                "leave it out",
             )
         wrong.settle()
         assert question is not None, "a missing question is settled above"
