@@ -161,19 +161,22 @@ def test_reference_data_is_there() -> None:
     assert len(reference_rows()) >= 60
 
 
-FAR_FROM_CHORDAL = {"games120", "fap_graph-03", "hb_can_838"}
+# Bags of sixty vertices with few edges inside: beyond the tables, and beyond branching on them.  A smaller state
+# budget keeps the test short and changes nothing else.
+FAR_FROM_CHORDAL = {"hb_can_838": Budget(states=10**6)}
 
 
 @pytest.mark.parametrize("row", reference_rows(), ids=lambda row: row["name"])
 def test_reference_graphs(row: dict[str, str]) -> None:
-    """PROVEN with the reference value; for the few far from chordal an interval around it will do."""
+    """PROVEN with the reference value; for the one far from chordal an interval around it will do."""
     n, edges, own = read_dimacs(SHARED / "graphs" / f"{row['name']}.col")
     graph = Graph.from_edges(n, edges)
     weightings = {"unit": np.ones(n, np.int64), "seed": 1 + np.arange(n) * 7919 % 1000}
     if own:
         weightings["file"] = np.array([own.get(v, 1) for v in range(n)], np.int64)
     for kind, weights in weightings.items():
-        outcome = solve(IndependentSet(), graph, weights, Budget(), "bound", Monitor())
+        budget = FAR_FROM_CHORDAL.get(row["name"], Budget())
+        outcome = solve(IndependentSet(), graph, weights, budget, "bound", Monitor())
         assert is_independent(edges, outcome.chosen.tolist())
         assert weights[outcome.chosen].sum() == outcome.value
         low, high = int(row[f"mis_{kind}"]), int(row[f"mis_{kind}_ub"])
