@@ -18,6 +18,11 @@ def predicted_bytes(n: int, m: int) -> int:
     return ALWAYS + PER_VERTEX * n + PER_EDGE * m
 
 
+def quotient_bytes(n: int, m: int) -> int:
+    """What ordering by minimum degree needs on top, before its cliques grow."""
+    return 48 * n + 16 * m
+
+
 def table_bytes(entries: I64) -> I64:
     """Memory of so many table entries: label 4, end 8 and value 8 bytes."""
     return np.asarray(entries, np.int64) * 20

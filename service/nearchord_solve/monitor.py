@@ -25,7 +25,7 @@ class Stop(IntEnum):
 
 
 class Phase(IntEnum):
-    """Where a solve is; phases come in this order, some may be skipped."""
+    """Where a solve is; phases come in this order, some are skipped, and a hard graph is ordered twice."""
 
     READ = 0
     ORDER = 1

@@ -1,4 +1,4 @@
-"""Numbering a graph: maximum cardinality search, then symbolic elimination."""
+"""Numbering a graph: maximum cardinality search or minimum degree, then symbolic elimination."""
 
 from enum import Enum
 from typing import NamedTuple
@@ -7,7 +7,7 @@ import numpy as np
 
 from nearchord_solve.arrays import I32, I64
 from nearchord_solve.graph import Graph
-from nearchord_solve.kernels import elimination, search
+from nearchord_solve.kernels import degree, elimination, search
 from nearchord_solve.kernels.layout import Numbering
 from nearchord_solve.monitor import Monitor, Phase
 
@@ -34,6 +34,22 @@ def rank(graph: Graph, monitor: Monitor) -> Ranking | Unfinished:
     monitor.enter(Phase.ORDER, n)
     if not search.cardinality_search(graph.ptr, graph.adj, *ranking, monitor.cells):
         return Unfinished.STOPPED
+    return ranking
+
+
+def rank_by_degree(graph: Graph, most: int, monitor: Monitor) -> Ranking | Unfinished:
+    """Number ``graph`` by approximate minimum degree, the first to go last.
+
+    For large cores far from chordal, where maximum cardinality search may fill in too much.  TOO_LARGE if the
+    cliques on the way hold more than ``most`` entries.
+    """
+    n = graph.n
+    ranking = Ranking(np.empty(n, np.int32), np.empty(n + 1, np.int64), np.empty(graph.m, np.int32))
+    monitor.enter(Phase.ORDER, n)
+    code = degree.order_by_degree(graph.ptr, graph.adj, most, ranking.order, monitor.cells)
+    if code != degree.DONE:
+        return Unfinished.STOPPED if code == degree.STOPPED else Unfinished.TOO_LARGE
+    degree.rows_by_place(graph.ptr, graph.adj, *ranking)
     return ranking
 
 

@@ -7,6 +7,7 @@ import numpy as np
 from nearchord_solve.arrays import I32, I64, U8
 from nearchord_solve.budget import Budget
 from nearchord_solve.fill import Cores, find_cores, triangulate
+from nearchord_solve.fill.cores import DENSE_LIMIT
 from nearchord_solve.graph import Graph
 from nearchord_solve.kernels.layout import (
     FILL_EDGES,
@@ -18,9 +19,9 @@ from nearchord_solve.kernels.layout import (
     Forest,
     Numbering,
 )
-from nearchord_solve.memory import predicted_bytes, table_bytes
+from nearchord_solve.memory import predicted_bytes, quotient_bytes, table_bytes
 from nearchord_solve.monitor import Monitor, Phase
-from nearchord_solve.order import Ranking, Unfinished, eliminate, rank
+from nearchord_solve.order import Ranking, Unfinished, eliminate, rank, rank_by_degree
 
 FILL_ROOM = 10**7  # H = G + fill may have 3m + this many edges
 
@@ -47,8 +48,9 @@ class Structure:
     def fill_lower_bound(self) -> int:
         """No triangulation of the graph has fewer fill edges.
 
-        If the elimination order of the whole graph has fill, the graph is not chordal (maximum cardinality
-        search finds a perfect order of every chordal graph), so one fill edge is needed at least.
+        If the elimination order of the whole graph has fill, the graph is not chordal: maximum cardinality
+        search finds a perfect order of every chordal graph, and another order is only tried where it did
+        not.  So one fill edge is needed at least.
         """
         return max(self._sum(FILL_LOWER), min(1, self.numbering.fill.size))
 
@@ -100,6 +102,11 @@ class Structure:
         fits[by_states[: int(np.argmin(within)) if not within.all() else within.size]] = 1
         return fits
 
+    def coarse(self, budget: Budget) -> bool:
+        """Whether a core does not fit that was too large to be triangulated anew."""
+        large = np.diff(self.forest.core_slot) > DENSE_LIMIT
+        return bool(large.any()) and bool((self.fitting(budget)[large] == 0).any())
+
     def _held(self) -> int:
         size = predicted_bytes(self.numbering.order.size, self.numbering.low.size)
         return size + 4 * self.numbering.fill.size + sum(array.nbytes for array in self.forest)
@@ -127,11 +134,29 @@ def build_structure(graph: Graph, budget: Budget, monitor: Monitor) -> Structure
 
 
 def _build(graph: Graph, ranking: Ranking, budget: Budget, monitor: Monitor) -> Structure | Unfinished:
-    spare = max(0, budget.memory - predicted_bytes(graph.n, graph.m)) // 12
-    numbering = eliminate(ranking, min(2 * graph.m + FILL_ROOM, spare), monitor)
+    """Structure of the better of two numberings; the second is tried only if the first is costly and coarse."""
+    spare = budget.memory - predicted_bytes(graph.n, graph.m)
+    most = min(2 * graph.m + FILL_ROOM, max(0, spare) // 12)
+    first = _structured(ranking, most, budget, monitor)
+    if first is Unfinished.STOPPED or (isinstance(first, Structure) and not first.coarse(budget)):
+        return first
+    if spare < quotient_bytes(graph.n, graph.m):
+        return first
+    other = rank_by_degree(graph, graph.m + most, monitor)
+    if isinstance(other, Ranking):
+        second = _structured(other, most, budget, monitor)
+        if isinstance(second, Structure) and (
+            isinstance(first, Unfinished) or (second.states, second.fill) < (first.states, first.fill)
+        ):
+            return second
+    return Unfinished.STOPPED if monitor.stop else first
+
+
+def _structured(ranking: Ranking, most_fill: int, budget: Budget, monitor: Monitor) -> Structure | Unfinished:
+    numbering = eliminate(ranking, most_fill, monitor)
     if isinstance(numbering, Unfinished):
         return numbering
-    monitor.enter(Phase.TREE, graph.n)
+    monitor.enter(Phase.TREE, ranking.order.size)
     cores = find_cores(numbering, monitor)
     if isinstance(cores, Unfinished):
         return cores

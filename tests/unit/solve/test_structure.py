@@ -10,6 +10,7 @@ from nearchord_solve import Budget, Graph, Monitor
 from nearchord_solve.fill import cores
 from nearchord_solve.kernels import cliques, dense
 from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, STATES
+from nearchord_solve.order import Ranking, Unfinished, eliminate, rank_by_degree
 from nearchord_solve.tree import Structure, build_structure
 
 CELLS = np.zeros(16, np.int64)
@@ -236,3 +237,54 @@ def test_two_squares_sharing_a_vertex_are_two_cores() -> None:
     edges = [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4), (4, 5), (5, 6), (3, 6)]
     structure = structure_of(7, edges)
     assert (structure.fill_cores, structure.fill, structure.fill_lower_bound) == (2, 2, 2)
+
+
+@pytest.mark.parametrize("n", [1, 12, 80])
+@pytest.mark.parametrize("seed", range(6))
+def test_order_by_degree_counts_each_vertex_once_and_fills_what_elimination_fills(n: int, seed: int) -> None:
+    edges = random_graph(n, min(1.0, 4 / n), seed)
+    graph = Graph.from_edges(n, edges)
+    ranking = rank_by_degree(graph, 10**6, Monitor())
+    assert isinstance(ranking, Ranking)
+    assert sorted(ranking.order.tolist()) == list(range(n))
+    numbering = eliminate(ranking, 10**6, Monitor())
+    assert not isinstance(numbering, Unfinished)
+    left, fill = networkx_graph(n, edges), 0
+    for v in reversed(ranking.order.tolist()):
+        around = list(left[v])
+        missing = [(a, b) for i, a in enumerate(around) for b in around[:i] if not left.has_edge(a, b)]
+        left.add_edges_from(missing)
+        left.remove_node(v)
+        fill += len(missing)
+    assert numbering.fill.size == fill
+
+
+def test_order_by_degree_follows_least_degrees_closely() -> None:
+    """Degrees are upper bounds, so the fill is about that of exact minimum degree: grid 12 x 12."""
+    grid = nx.convert_node_labels_to_integers(nx.grid_2d_graph(12, 12))
+    graph = Graph.from_edges(144, grid.edges)
+    ranking = rank_by_degree(graph, 10**6, Monitor())
+    assert isinstance(ranking, Ranking)
+    numbering = eliminate(ranking, 10**6, Monitor())
+    assert not isinstance(numbering, Unfinished)
+    real = np.zeros((144, 3), np.uint64)
+    full = np.empty_like(real)
+    for u, v in grid.edges:
+        dense.set_pair(real, u, v)
+    dense.fill_by_degree(real, full, effort(), CELLS)
+    assert numbering.fill.size <= 1.25 * len(dense.list_fill(real, full))
+
+
+def test_a_long_strip_in_natural_order_is_settled() -> None:
+    """Maximum cardinality search fills a long strip badly; minimum degree keeps its bags small."""
+    x = np.arange(6 * 4000).reshape(4000, 6)
+    one = np.concatenate((x[:, :-1].ravel(), x[:-1].ravel(), x[:-1, :-1].ravel()))
+    other = np.concatenate((x[:, 1:].ravel(), x[1:].ravel(), x[1:, 1:].ravel()))
+    structure = structure_of(x.size, list(zip(one.tolist(), other.tolist(), strict=True)))
+    assert structure.largest_bag <= 20
+    assert structure.fitting(Budget()).all()
+
+
+def test_order_by_degree_gives_up_when_its_cliques_grow_too_large() -> None:
+    edges = random_graph(60, 0.3, 1)
+    assert rank_by_degree(Graph.from_edges(60, edges), 5, Monitor()) is Unfinished.TOO_LARGE
