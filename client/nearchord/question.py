@@ -89,6 +89,11 @@ QUESTIONS: dict[str, type[Question]] = {kind.name: kind for kind in (Independent
 """Every question by its name on the command line and in metrics."""
 
 
+def pins_of(question: Question) -> tuple[tuple[Pin, ...], tuple[Pin, ...]]:
+    """`must` and `never` of a question; both empty where it takes none."""
+    return (question.must, question.never) if isinstance(question, Choice) else ((), ())
+
+
 @dataclass(frozen=True)
 class Budget:
     """What a job may spend; None takes the server's default.
