@@ -115,6 +115,8 @@ class _Reader:
             return None
         try:
             ends = [(self._vertex(key, u), self._vertex(key, v)) for u, v in self._found[key]]
+        except nearchord.BadInput:
+            raise
         except (TypeError, ValueError):
             raise self._problem(key, "is not a list of pairs", "give two names of vertices in each") from None
         return np.array(sorted((min(pair), max(pair)) for pair in ends), np.uint32).reshape(-1)
@@ -122,9 +124,9 @@ class _Reader:
     def _witness(self) -> dict[str, Any]:
         try:
             return witness.from_json(self._found["witness"], lambda name: self._vertex("witness", name), self._graph.n)
+        except nearchord.BadInput:
+            raise
         except (ArithmeticError, AttributeError, IndexError, KeyError, TypeError, ValueError) as error:
-            if isinstance(error, nearchord.BadInput):
-                raise
             raise self._problem("witness", f"cannot be read ({error})", "give what `--json` printed") from None
 
     def _recognition(self) -> nearchord.Recognition | None:
