@@ -8,8 +8,9 @@ with nearchord.connect("127.0.0.1:7411") as service:
 nearchord.check(graph, answer)
 """
 
-from nearchord.answer import Answer, Provenance
-from nearchord.check import Confirmed, check
+from nearchord.answer import Answer, Prediction, Provenance, Recognition, StructureReport
+from nearchord.check import check
+from nearchord.checks.confirmed import Confirmed
 from nearchord.child import embedded, embedded_async
 from nearchord.errors import (
     AccessDenied,
@@ -32,7 +33,7 @@ from nearchord.errors import (
 from nearchord.graph import Graph
 from nearchord.jobs import Addresses, BatchInfo, Event, JobInfo, JobRequest, Progress
 from nearchord.load import Load, QuestionLoad, ServerInfo, Slots
-from nearchord.question import QUESTIONS, Budget, IndependentSet, Question, VertexCover
+from nearchord.question import QUESTIONS, Budget, Fill, IndependentSet, Question, Structure, VertexCover
 from nearchord.session.aio import AsyncBatch, AsyncJob, AsyncService, connect_async
 from nearchord.session.sync import Batch, Job, Service, connect
 from nearchord.stages import Phase, ProofKind, Stage, Verdict, WhenOver
@@ -56,6 +57,7 @@ __all__ = [
     "EmbeddedFailed",
     "Event",
     "FileProblem",
+    "Fill",
     "Graph",
     "IndependentSet",
     "Job",
@@ -66,18 +68,22 @@ __all__ = [
     "NotFound",
     "NotReady",
     "Phase",
+    "Prediction",
     "Progress",
     "ProofKind",
     "Provenance",
     "Question",
     "QuestionLoad",
     "QuotaExceeded",
+    "Recognition",
     "Rejected",
     "ServerFault",
     "ServerInfo",
     "Service",
     "Slots",
     "Stage",
+    "Structure",
+    "StructureReport",
     "TimeoutExceeded",
     "Unreachable",
     "Verdict",

@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, field
 from datetime import datetime
 from fractions import Fraction
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -31,6 +33,45 @@ class Provenance:
     finished_at: datetime | None
 
 
+@dataclass(frozen=True)
+class Recognition:
+    """Classes of a graph; None where it was not settled in time.
+
+    `chordal`: no chordless cycle on four or more vertices. `interval`: overlaps of intervals of a line. `split`: a
+    clique and an independent set together; `splittance`: fewest edges to add and remove to make it so.
+    """
+
+    chordal: bool | None
+    interval: bool | None
+    split: bool | None
+    splittance: int | None
+
+
+@dataclass(frozen=True)
+class Prediction:
+    """What an exact answer to a question would take: states of its dynamic program, and bytes.
+
+    `colours` is 0 where the question takes none. `at_least`: the truth is that many states or more. `fits`: both stay
+    within the budget of the job.
+    """
+
+    question: str
+    colours: int
+    states: int
+    at_least: bool
+    memory_bytes: int
+    fits: bool
+
+
+@dataclass(frozen=True)
+class StructureReport:
+    """How a graph falls apart: connected components, and vertices of the largest fill core (0 without one)."""
+
+    components: int
+    largest_core: int
+    predictions: tuple[Prediction, ...]
+
+
 @dataclass(frozen=True, eq=False)
 class Answer:
     """How a job ended.
@@ -38,6 +79,8 @@ class Answer:
     `chosen` are vertices from 0, ascending (read-only uint32; empty where nothing was chosen). `value` and `bound` are
     whole numbers unless the question deals in shares; `bound` is an upper bound when maximising and a lower bound when
     minimising. Figures that were never known are None. `seconds` is worker time, `vertices` the size of the graph.
+    `columns`: what else the answer has, by the names that the contract gives (nearchord/v1/answer.proto, ColumnInfo),
+    read-only uint32 or int64. `recognition` comes with the question `fill`, `structure` with `structure`.
     """
 
     job_id: str
@@ -62,3 +105,12 @@ class Answer:
     vertices: int
     names_address: str
     provenance: Provenance
+    columns: Mapping[str, NDArray[Any]] = field(default_factory=dict)
+    recognition: Recognition | None = None
+    structure: StructureReport | None = None
+
+    @property
+    def fill_edges(self) -> NDArray[np.uint32]:
+        """The pairs to add as uint32[k, 2], smaller end first, ascending; k = 0 unless the question is `fill`."""
+        ends: NDArray[np.uint32] = self.columns.get("fill_edge", np.zeros(0, np.uint32))
+        return ends.reshape(-1, 2)

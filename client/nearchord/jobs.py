@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import datetime
 from typing import TYPE_CHECKING
 
-from nearchord.question import Budget, Question
+from nearchord.question import Budget, Choice, Question
 from nearchord.stages import Phase, Stage, Verdict, WhenOver
 
 if TYPE_CHECKING:
@@ -33,6 +33,15 @@ class JobRequest:
     priority: int = 0
     not_after: datetime | None = None
     label: str = ""
+
+    @property
+    def subject(self) -> Graph | Addresses:
+        """What is sent of `graph`: without its weights for a question about the graph alone, which takes none."""
+        if isinstance(self.question, Choice):
+            return self.graph
+        if isinstance(self.graph, Addresses):
+            return replace(self.graph, weights="")
+        return self.graph.with_weights(None)
 
 
 @dataclass(frozen=True)

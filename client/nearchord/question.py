@@ -15,7 +15,15 @@ Pin = int | str
 
 @dataclass(frozen=True)
 class Question:
-    """Base of the questions that choose vertices.
+    """Base of all questions. `maximises`: whether a larger value is better; `bound` is on the other side of it."""
+
+    name: ClassVar[str] = ""
+    maximises: ClassVar[bool] = True
+
+
+@dataclass(frozen=True)
+class Choice(Question):
+    """Base of the questions that choose vertices: they take weights and pins, the others take the graph alone.
 
     `must` are vertices that have to be chosen, `never` vertices that must not be; each is a number from 0 or a name of
     the graph. Pins that contradict each other are no error: the verdict says INFEASIBLE.
@@ -23,9 +31,6 @@ class Question:
 
     must: tuple[Pin, ...] = ()
     never: tuple[Pin, ...] = ()
-
-    name: ClassVar[str] = ""
-    maximises: ClassVar[bool] = True
 
     def __post_init__(self) -> None:
         for field in ("must", "never"):
@@ -48,22 +53,45 @@ def _vertex(field: str, pin: object) -> int:
 
 
 @dataclass(frozen=True)
-class IndependentSet(Question):
+class IndependentSet(Choice):
     """Heaviest set of vertices with no edge inside: the best conflict-free choice on one channel."""
 
     name: ClassVar[str] = "independent-set"
 
 
 @dataclass(frozen=True)
-class VertexCover(Question):
+class VertexCover(Choice):
     """Lightest set of vertices touching every edge: the cheapest requests to withdraw."""
 
     name: ClassVar[str] = "vertex-cover"
     maximises: ClassVar[bool] = False
 
 
-QUESTIONS: dict[str, type[Question]] = {kind.name: kind for kind in (IndependentSet, VertexCover)}
+@dataclass(frozen=True)
+class Fill(Question):
+    """Fewest edges whose addition makes the graph chordal: how far the conflict data is from well-behaved, and which
+    pairs break it. The answer has `fill_edges` and the classes that the graph belongs to (`recognition`)."""
+
+    name: ClassVar[str] = "fill"
+    maximises: ClassVar[bool] = False
+
+
+@dataclass(frozen=True)
+class Structure(Question):
+    """How the graph falls apart and what each question would cost: is an exact answer affordable, before paying. The
+    value is the fill of the triangulation found; the predictions are in the answer's `structure`."""
+
+    name: ClassVar[str] = "structure"
+    maximises: ClassVar[bool] = False
+
+
+QUESTIONS: dict[str, type[Question]] = {kind.name: kind for kind in (IndependentSet, VertexCover, Fill, Structure)}
 """Every question by its name on the command line and in metrics."""
+
+
+def pins_of(question: Question) -> tuple[tuple[Pin, ...], tuple[Pin, ...]]:
+    """`must` and `never` of a question; both empty where it takes none."""
+    return (question.must, question.never) if isinstance(question, Choice) else ((), ())
 
 
 @dataclass(frozen=True)

@@ -8,6 +8,7 @@ from __future__ import annotations
 import os
 import signal
 import time
+from dataclasses import dataclass
 from enum import Enum, IntEnum
 from types import SimpleNamespace
 
@@ -69,15 +70,29 @@ class Budget(SimpleNamespace):
     pass
 
 
-class IndependentSet(SimpleNamespace):
+@dataclass(frozen=True)
+class IndependentSet:
+    must: tuple[int, ...] = ()
+    never: tuple[int, ...] = ()
+
+
+@dataclass(frozen=True)
+class VertexCover:
+    must: tuple[int, ...] = ()
+    never: tuple[int, ...] = ()
+
+
+@dataclass(frozen=True)
+class Fill:
     pass
 
 
-class VertexCover(SimpleNamespace):
+@dataclass(frozen=True)
+class Structure:
     pass
 
 
-QUESTIONS = {"independent-set": IndependentSet, "vertex-cover": VertexCover}
+QUESTIONS = {"independent-set": IndependentSet, "vertex-cover": VertexCover, "fill": Fill, "structure": Structure}
 Verdict = Enum("Verdict", {name: name for name in ("PROVEN", "BOUNDED", "OVER_FILL", "INFEASIBLE", "CANCELLED")})
 _LEAKED = []
 
@@ -106,12 +121,50 @@ def outcome(verdict=Verdict.PROVEN, value=7, chosen=(0,), reason="scripted"):
         proof="certificate",
         proof_kinds=("certificate",),
         reason=reason,
+        columns={},
+        recognition=None,
+        report=None,
     )
+
+
+def fill_outcome():
+    """The fill of a cycle on four vertices, in the types that a solver of arrays has."""
+    columns = {
+        "fill_edge": np.array([0, 2], np.uint32),
+        "elimination_order": np.array([1, 3, 0, 2], np.uint32),
+        "chordless_cycle": np.array([0, 1, 2, 3], np.uint32),
+        "packing_start": np.array([0, 4], np.int64),
+        "packing_vertex": np.array([0, 1, 2, 3], np.uint32),
+        "packing_numerator": np.array([1], np.int64),
+        "packing_denominator": np.array([1], np.int64),
+        "core_start": np.array([0, 4], np.int64),
+        "core_vertex": np.array([0, 1, 2, 3], np.uint32),
+    }
+    recognition = SimpleNamespace(chordal=np.False_, interval=np.False_, split=None, splittance=np.int64(2))
+    return with_fields(
+        outcome(value=1), chosen=None, columns=columns, recognition=recognition, proof_kinds=("packing",)
+    )
+
+
+def structure_outcome():
+    """The structure of a cycle on four vertices."""
+    predictions = [
+        SimpleNamespace(question=name, colours=q, states=9 + q, at_least=q == 3, memory_bytes=64, fits=q < 3)
+        for name, q in (("independent-set", 0), ("colourable-subgraph", 3))
+    ]
+    report = SimpleNamespace(components=np.int64(1), largest_core=4, predictions=predictions)
+    return with_fields(outcome(value=1), chosen=None, report=report)
+
+
+def with_fields(namespace, **changes):
+    return SimpleNamespace(**{**vars(namespace), **changes})
 
 
 def solve(question, graph, weights, budget, when_over, monitor):
     monitor.enter(Phase.SWEEP, 4)
     monitor.cells[monitor.STEP] = 1
+    if budget.states == Script.ANSWER and type(question) in _OUTCOMES:
+        return _OUTCOMES[type(question)]()
     return _SCRIPTS[Script(budget.states)](graph, weights, monitor)
 
 
@@ -177,6 +230,7 @@ def _leak(graph, weights, monitor):
     return outcome(value=os.getpid())
 
 
+_OUTCOMES = {Fill: fill_outcome, Structure: structure_outcome}
 _SCRIPTS = {
     Script.ANSWER: _answer,
     Script.UNTIL_STOPPED: _until_stopped,

@@ -14,7 +14,15 @@ from pathlib import Path
 from typing import Any, Protocol
 
 import pytest
-from nearchord_service.model.answer import Answer, Column, ElementType, ProofKind
+from nearchord_service.model.answer import (
+    Answer,
+    Column,
+    ElementType,
+    Prediction,
+    ProofKind,
+    Recognition,
+    StructureReport,
+)
 from nearchord_service.model.content import ContentKind, NewContent
 from nearchord_service.model.event import Phase, Progress
 from nearchord_service.model.job import Batch, Job, JobSpec, Lease, Submission
@@ -173,6 +181,8 @@ def answer(verdict: Verdict = Verdict.PROVEN, **others: Any) -> Answer:
             Column("empty", ElementType.INT64, b""),
             Column("price", ElementType.INT64, struct.pack("<2q", -1, 1)),
         ),
+        "recognition": Recognition(chordal=False, interval=None, split=True, splittance=2**40),
+        "structure": StructureReport(3, 70, (Prediction("induced-forest", 0, 2**65, True, 2**50, False),) * 2),
     }
     return Answer(verdict=verdict, **{**defaults, **others})
 

@@ -24,6 +24,7 @@ from nearchord_service.model.answer import Column, ElementType
 from nearchord_service.model.errors import BatchNotDone, BatchUnknown, FieldInvalid, JobNotDone, JobUnknown
 from nearchord_service.model.event import Reached
 from nearchord_service.model.job import Job
+from nearchord_service.model.question import Question, QuestionName
 from nearchord_service.model.stage import Stage, Verdict
 from nearchord_service.store.port import Query, Store
 
@@ -188,11 +189,30 @@ def test_answer_comes_back_exactly(home: Home) -> None:
 
 
 def test_bare_answer_comes_back_exactly(home: Home) -> None:
-    bare = answer(Verdict.INFEASIBLE, value=None, bound=None, states=None, columns=(), proof_kinds=(), phase_seconds=())
+    bare = answer(
+        Verdict.INFEASIBLE,
+        value=None,
+        bound=None,
+        states=None,
+        columns=(),
+        proof_kinds=(),
+        phase_seconds=(),
+        recognition=None,
+        structure=None,
+    )
     store = home.open()
     job = submit(store)
     finish(store, claim_one(store), bare)
     assert store.answer(ANN, job.id)[1] == bare
+
+
+@pytest.mark.parametrize("name", list(QuestionName))
+def test_every_question_is_kept_and_claimed_as_asked(home: Home, name: QuestionName) -> None:
+    asked = Question(name, must=(1,), never=(0, 2)) if name.chooses else Question(name)
+    job = submit(home.open(), spec(question=asked))
+    opened = home.open()
+    assert opened.job(ANN, job.id).question == asked
+    assert claim_one(opened).job.question == asked
 
 
 def test_large_answer_comes_back_exactly(home: Home) -> None:

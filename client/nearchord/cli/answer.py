@@ -12,8 +12,10 @@ from nearchord.cli.connection import STANDARD_SERVER, detaching, remote
 from nearchord.cli.exits import of_verdicts
 from nearchord.cli.follow import follow, follow_batch
 from nearchord.cli.layout import print_json, print_table
+from nearchord.cli.names import Names
+from nearchord.cli.numbers import exact
 from nearchord.cli.progress import BatchDisplay, JobDisplay
-from nearchord.cli.record import Names, exact, record, show
+from nearchord.cli.record import record, show
 
 
 @click.command(short_help="Print the answer of a job or a batch.")

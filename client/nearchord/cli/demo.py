@@ -14,9 +14,9 @@ from nearchord.cli.exits import Exit, usage
 from nearchord.cli.follow import follow_batch
 from nearchord.cli.graphs import collect, read_all
 from nearchord.cli.layout import print_table, print_text
+from nearchord.cli.numbers import number
 from nearchord.cli.options import Source
 from nearchord.cli.progress import BatchDisplay
-from nearchord.cli.record import number
 
 CHECKOUT_GRAPHS = Path(__file__).resolve().parents[3] / "deploy" / "demo" / "graphs"
 HEADINGS = ("graph", "vertices", "edges", "fill", "verdict", "value", "seconds", "checked")

@@ -12,7 +12,9 @@ from typing import Any
 import click
 
 import nearchord
+from nearchord.cli.exits import usage
 from nearchord.files import FORMATS
+from nearchord.question import Choice
 
 Command = Callable[..., int]
 
@@ -165,11 +167,26 @@ def asks(command: Command) -> Command:
         label: str,
         **rest: object,
     ) -> int:
-        asked = nearchord.QUESTIONS[question](must=sum(must, ()), never=sum(never, ()))
+        asked = _question(question, sum(must, ()), sum(never, ()), rest.get("weights"))
         budget = nearchord.Budget(fill=fill, states=states, seconds=seconds, memory=memory)
         return command(ask=Ask(asked, budget, when_over, priority, not_after, label), **rest)
 
     return _with([*_QUESTION, *_BUDGET, *_QUEUE], gathering)
+
+
+def _question(name: str, must: tuple[str, ...], never: tuple[str, ...], weights: object) -> nearchord.Question:
+    """The question with its options; those that it does not take are refused."""
+    kind = nearchord.QUESTIONS[name]
+    if issubclass(kind, Choice):
+        return kind(must=must, never=never)
+    for option, given in (("--must", must), ("--never", never), ("--weights", weights)):
+        if given:
+            raise usage(f"{option} does not go with the question {name}", f"leave it out, or ask {_choices()}")
+    return kind()
+
+
+def _choices() -> str:
+    return " or ".join(name for name, kind in nearchord.QUESTIONS.items() if issubclass(kind, Choice))
 
 
 def reads(command: Command) -> Command:

@@ -1,29 +1,33 @@
-"""An answer as the JSON object that programs rely on, and as lines for people."""
+"""An answer as the JSON object that programs rely on, and as lines for people; what only one question has is told by a
+module of its own."""
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Sequence
-from fractions import Fraction
+from collections.abc import Iterable, Iterator
 from typing import Any
 
 import nearchord
-from nearchord.cli.layout import print_entry, print_listing
-
-Names = Sequence[str] | None
+from nearchord.cli.answers import choice, fill, structure
+from nearchord.cli.layout import print_entry
+from nearchord.cli.names import Labels, Names
+from nearchord.cli.numbers import exact
+from nearchord.question import pins_of
 
 
 def record(answer: nearchord.Answer, names: Names) -> dict[str, Any]:
-    """The object of `--json`: every key is always there, null where a figure was not reached."""
+    """The object of `--json`: every key of a question is always there, null where a figure was not reached."""
+    labels = Labels(names)
+    must, never = pins_of(answer.question)
     return {
         "job": answer.job_id,
         "label": answer.label,
         "question": answer.question.name,
-        "must": called(answer.question.must, names),
-        "never": called(answer.question.never, names),
+        "must": labels.of(must),
+        "never": labels.of(never),
         "verdict": str(answer.verdict),
         "value": exact(answer.value),
         "bound": exact(answer.bound),
-        "chosen": called(answer.chosen, names),
+        "chosen": labels.of(answer.chosen.tolist()),
         "fill": answer.fill,
         "fill_lower_bound": answer.fill_lower_bound,
         "states": answer.states,
@@ -36,61 +40,48 @@ def record(answer: nearchord.Answer, names: Names) -> dict[str, Any]:
         "proof": str(answer.proof),
         "proof_kinds": [str(kind) for kind in answer.proof_kinds],
         "vertices": answer.vertices,
+        **_of_its_question(answer, labels),
         "provenance": _provenance(answer.provenance),
     }
 
 
-def called(vertices: Iterable[int | str], names: Names) -> list[str | int]:
-    """What vertices are called in the file: numbers where every name of the graph is one, as in DIMACS files."""
-    numbers = [int(vertex) for vertex in vertices]
-    if names is None:
-        return list(numbers)
-    picked = [names[number] for number in numbers]
-    return [int(name) for name in picked] if all(map(_is_decimal, names)) else list(picked)
-
-
-def lines(answer: nearchord.Answer) -> Iterator[tuple[str, str]]:
-    """Its figures for people, as captions and texts; what was not reached is left out."""
-    yield "verdict", f"{answer.verdict}: {answer.reason}"
-    if answer.value is not None:
-        side = "at most" if answer.question.maximises else "at least"
-        proven = answer.verdict is nearchord.Verdict.PROVEN
-        optimum = "nothing better exists" if proven else f"the optimum is {side} {number(answer.bound)}"
-        yield "value", f"{number(answer.value)} ({optimum})"
-        yield "chosen", f"{len(answer.chosen):,} of {answer.vertices:,} vertices"
-    if answer.fill is not None:
-        least = f" (any triangulation needs {answer.fill_lower_bound:,})" if answer.fill_lower_bound else ""
-        yield "fill", f"{answer.fill:,}{least}"
-    if answer.bags:
-        largest = f", the largest with {answer.largest_bag:,} vertices" if answer.largest_bag is not None else ""
-        yield "bags", f"{answer.bags:,}{largest}"
-    yield "proof", str(answer.proof)
-    yield "seconds", f"{answer.seconds:.3f}"
-    yield "job", answer.job_id
+def _of_its_question(answer: nearchord.Answer, labels: Labels) -> dict[str, Any]:
+    match answer.question:
+        case nearchord.Fill():
+            return fill.record(answer, labels)
+        case nearchord.Structure():
+            return structure.record(answer)
+    return {}
 
 
 def show(answer: nearchord.Answer, names: Names) -> None:
     """Print an answer for people."""
-    for caption, text in lines(answer):
+    print_entry("verdict", f"{answer.verdict}: {answer.reason}")
+    labels = Labels(names)
+    match answer.question:
+        case nearchord.Fill():
+            _print(fill.lines(answer))
+            _print(_ending(answer))
+            fill.show_pairs(answer, labels)
+        case nearchord.Structure():
+            _print(structure.lines(answer))
+            _print(_ending(answer))
+            structure.show_predictions(answer)
+        case _:
+            _print(choice.lines(answer))
+            _print(_ending(answer))
+            choice.show_names(answer, labels)
+
+
+def _print(entries: Iterable[tuple[str, str]]) -> None:
+    for caption, text in entries:
         print_entry(caption, text)
-    if answer.value is not None:
-        print_listing("names", [str(name) for name in called(answer.chosen, names)])
 
 
-def exact(value: int | Fraction | None) -> int | str | None:
-    """A value as JSON has it: whole, "p/q", or null."""
-    if value is None or isinstance(value, int):
-        return value
-    return value.numerator if value.denominator == 1 else f"{value.numerator}/{value.denominator}"
-
-
-def number(value: int | Fraction | None) -> str:
-    """A value as people read it."""
-    return "unknown" if value is None else f"{value:,}" if isinstance(value, int) else str(value)
-
-
-def _is_decimal(name: str) -> bool:
-    return name.isdecimal() and str(int(name)) == name
+def _ending(answer: nearchord.Answer) -> Iterator[tuple[str, str]]:
+    yield "proof", str(answer.proof)
+    yield "seconds", f"{answer.seconds:.3f}"
+    yield "job", answer.job_id
 
 
 def _provenance(origin: nearchord.Provenance) -> dict[str, Any]:

@@ -13,6 +13,8 @@ from typing import Any
 import numpy as np
 
 import nearchord
+from nearchord.cli import witness
+from nearchord.question import Choice
 
 
 def load(file: str, graph: nearchord.Graph) -> nearchord.Answer:
@@ -36,13 +38,12 @@ class _Reader:
         self._graph = graph
 
     def answer(self) -> nearchord.Answer:
-        kind = nearchord.QUESTIONS[self._word("question", nearchord.QUESTIONS)]
         verdict = self._word("verdict", [str(verdict) for verdict in nearchord.Verdict])
         return nearchord.Answer(
             job_id=str(self._found.get("job", "")),
             batch_index=0,
             label=str(self._found.get("label", "")),
-            question=kind(must=self._vertices("must"), never=self._vertices("never")),
+            question=self._question(),
             verdict=nearchord.Verdict(verdict),
             value=self._exact("value"),
             bound=self._exact("bound"),
@@ -56,7 +57,7 @@ class _Reader:
             parts=self._count("parts"),
             fill_cores=self._count("fill_cores"),
             proof=nearchord.ProofKind.NONE,
-            proof_kinds=(),
+            proof_kinds=self._proof_kinds(),
             seconds=0.0,
             vertices=self._graph.n,
             names_address="",
@@ -65,7 +66,7 @@ class _Reader:
                 weights_address=self._address("weights_address", _weights_address(self._graph)),
                 solver_version="",
                 proof_format=0,
-                budget=nearchord.Budget(),
+                budget=nearchord.Budget(fill=self._fill_budget()),
                 when_over=nearchord.WhenOver.BOUND,
                 attempt=0,
                 phases=(),
@@ -74,7 +75,78 @@ class _Reader:
                 peak_memory_bytes=0,
                 finished_at=None,
             ),
+            columns=self._columns(),
+            recognition=self._recognition(),
+            structure=self._structure(),
         )
+
+    def _question(self) -> nearchord.Question:
+        kind = nearchord.QUESTIONS[self._word("question", nearchord.QUESTIONS)]
+        if issubclass(kind, Choice):
+            return kind(must=self._vertices("must"), never=self._vertices("never"))
+        return kind()
+
+    def _proof_kinds(self) -> tuple[nearchord.ProofKind, ...]:
+        kinds = self._found.get("proof_kinds") or ()
+        try:
+            return tuple(map(nearchord.ProofKind, kinds))
+        except (TypeError, ValueError):
+            known = ", ".join(nearchord.ProofKind)
+            raise self._problem("proof_kinds", f"is {kinds!r}", f"give a list of {known}") from None
+
+    def _fill_budget(self) -> int | None:
+        origin = self._found.get("provenance")
+        budget = origin.get("budget") if isinstance(origin, dict) else None
+        fill = budget.get("fill") if isinstance(budget, dict) else None
+        return fill if isinstance(fill, int) else None
+
+    def _columns(self) -> dict[str, Any]:
+        columns: dict[str, Any] = {}
+        pairs = self._pairs("fill_edges")
+        if self._found.get("witness") is not None:
+            columns = self._witness()
+        if pairs is not None:
+            columns["fill_edge"] = pairs
+        return columns
+
+    def _pairs(self, key: str) -> Any:
+        """Pairs as one flat column in the form of the contract: smaller end first, ascending."""
+        if self._found.get(key) is None:
+            return None
+        try:
+            ends = [(self._vertex(key, u), self._vertex(key, v)) for u, v in self._found[key]]
+        except nearchord.BadInput:
+            raise
+        except (TypeError, ValueError):
+            raise self._problem(key, "is not a list of pairs", "give two names of vertices in each") from None
+        return np.array(sorted((min(pair), max(pair)) for pair in ends), np.uint32).reshape(-1)
+
+    def _witness(self) -> dict[str, Any]:
+        try:
+            return witness.from_json(self._found["witness"], lambda name: self._vertex("witness", name), self._graph.n)
+        except nearchord.BadInput:
+            raise
+        except (ArithmeticError, AttributeError, IndexError, KeyError, TypeError, ValueError) as error:
+            raise self._problem("witness", f"cannot be read ({error})", "give what `--json` printed") from None
+
+    def _recognition(self) -> nearchord.Recognition | None:
+        if "chordal" not in self._found:
+            return None
+        return nearchord.Recognition(
+            self._flag("chordal"), self._flag("interval"), self._flag("split"), self._count("splittance")
+        )
+
+    def _flag(self, key: str) -> bool | None:
+        value = self._found.get(key)
+        if value is not None and not isinstance(value, bool):
+            raise self._problem(key, f"is {value!r}", "give true, false, or null")
+        return value
+
+    def _structure(self) -> nearchord.StructureReport | None:
+        components, largest = self._count("components"), self._count("largest_core")
+        if components is None or largest is None:
+            return None
+        return nearchord.StructureReport(components, largest, ())
 
     def _word(self, key: str, allowed: Iterable[str]) -> str:
         value = str(self._found.get(key))

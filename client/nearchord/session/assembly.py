@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from typing import Any
+from types import MappingProxyType
+from typing import Any, Literal
 
 import numpy as np
 from numpy.typing import NDArray
 
-from nearchord.answer import Answer, Provenance
+from nearchord.answer import Answer, Prediction, Provenance, Recognition, StructureReport
 from nearchord.errors import ServerFault
 from nearchord.session import replies
 from nearchord.stages import Verdict
@@ -17,6 +18,9 @@ DTYPES: dict[answer_pb2.ElementType, np.dtype[Any]] = {
     answer_pb2.ELEMENT_TYPE_UINT32: np.dtype("<u4"),
     answer_pb2.ELEMENT_TYPE_INT64: np.dtype("<i8"),
 }
+
+_NONE_CHOSEN = np.zeros(0, np.uint32)
+_NONE_CHOSEN.flags.writeable = False
 
 
 class AnswerAssembly:
@@ -58,6 +62,9 @@ class AnswerAssembly:
             raise ServerFault(f"the column {info.name!r} of job {head.job_id} came incomplete; try again")
         column = np.frombuffer(bytes(data), DTYPES[info.type])
         native: NDArray[Any] = column.astype(column.dtype.newbyteorder("="), copy=False)
+        if info.name == "fill_edge" and native.size % 2:
+            raise ServerFault(f"the column 'fill_edge' of job {head.job_id} has half a pair; try again")
+        native.flags.writeable = False
         return native
 
 
@@ -71,7 +78,7 @@ def answer(head: answer_pb2.AnswerHead, columns: dict[str, NDArray[Any]]) -> Ans
         verdict=_verdict(head),
         value=replies.rational(head.value) if head.HasField("value") else None,
         bound=replies.rational(head.bound) if head.HasField("bound") else None,
-        chosen=_chosen(columns),
+        chosen=columns.get("chosen", _NONE_CHOSEN),
         reason=head.reason,
         **{field: _known(head, field) for field in FIGURES},
         proof=replies.PROOF_KINDS[head.proof],
@@ -80,6 +87,9 @@ def answer(head: answer_pb2.AnswerHead, columns: dict[str, NDArray[Any]]) -> Ans
         vertices=head.vertices,
         names_address=head.names_address,
         provenance=provenance(head.provenance),
+        columns=MappingProxyType({name: column for name, column in columns.items() if name != "chosen"}),
+        recognition=_recognition(head.recognition) if head.HasField("recognition") else None,
+        structure=_structure(head.structure) if head.HasField("structure") else None,
     )
 
 
@@ -97,10 +107,24 @@ def _verdict(head: answer_pb2.AnswerHead) -> Verdict:
     return verdict
 
 
-def _chosen(columns: dict[str, NDArray[Any]]) -> NDArray[np.uint32]:
-    chosen = columns.get("chosen", np.zeros(0, np.uint32)).astype(np.uint32, copy=False)
-    chosen.flags.writeable = False
-    return chosen
+def _recognition(wire: answer_pb2.Recognition) -> Recognition:
+    return Recognition(
+        chordal=_settled(wire, "chordal"),
+        interval=_settled(wire, "interval"),
+        split=_settled(wire, "split"),
+        splittance=int(wire.splittance) if wire.HasField("splittance") else None,
+    )
+
+
+def _settled(wire: answer_pb2.Recognition, field: Literal["chordal", "interval", "split"]) -> bool | None:
+    return bool(getattr(wire, field)) if wire.HasField(field) else None
+
+
+def _structure(wire: answer_pb2.StructureReport) -> StructureReport:
+    predictions = tuple(
+        Prediction(p.question, p.colours, p.states, p.at_least, p.memory_bytes, p.fits) for p in wire.predictions
+    )
+    return StructureReport(wire.components, wire.largest_core, predictions)
 
 
 def provenance(wire: answer_pb2.Provenance) -> Provenance:

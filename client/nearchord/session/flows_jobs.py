@@ -30,7 +30,7 @@ def submit(caller: Caller, request: JobRequest, request_id: str | None) -> Flow[
     """Submits one job; a graph too large to travel inline is stored first."""
     request_id = request_id or requests.new_request_id()
     for last in (False, True):
-        spec = requests.spec(request, (yield from graph_input(caller, request.graph, None)))
+        spec = requests.spec(request, (yield from graph_input(caller, request, None)))
         message = job_service_pb2.SubmitJobRequest(request_id=request_id, spec=spec)
         try:
             reply = yield Call(Method.SUBMIT_JOB, message)
@@ -47,12 +47,14 @@ def forget(caller: Caller, graph: Graph | Addresses, error: NotFound, last: bool
     caller.stored.clear()
 
 
-def graph_input(caller: Caller, graph: Graph | Addresses, limit: int | None) -> Flow[content_pb2.GraphInput]:
+def graph_input(caller: Caller, request: JobRequest, limit: int | None) -> Flow[content_pb2.GraphInput]:
     """How a graph travels: by address, or inline while its bytes stay under `limit` (None: the server's cap)."""
+    if not isinstance(request.graph, Graph | Addresses):
+        given = type(request.graph).__name__
+        raise BadInput(f"a {given} is no graph", "build one: nearchord.Graph.from_edges, read, ...")
+    graph = request.subject
     if isinstance(graph, Addresses):
         return requests.stored_input(graph)
-    if not isinstance(graph, Graph):
-        raise BadInput(f"a {type(graph).__name__} is no graph", "build one: nearchord.Graph.from_edges, read, ...")
     content = content_of(graph)
     if (yield from travels_inline(caller, content, limit)):
         return requests.inline_input(content)
@@ -84,7 +86,7 @@ def batch_specs(caller: Caller, items: list[JobRequest]) -> Flow[list[job_pb2.Jo
     for place, item in enumerate(items):
         limit = min(SMALL_BYTES, BATCH_INLINE_BYTES - held)
         try:
-            spec = requests.spec(item, (yield from graph_input(caller, item.graph, limit)))
+            spec = requests.spec(item, (yield from graph_input(caller, item, limit)))
         except BadInput as wrong:
             raise BadInput(f"item {place} of the batch: {wrong.problem}", wrong.remedy) from None
         held += spec.ByteSize()

@@ -11,7 +11,7 @@ from google.protobuf.timestamp_pb2 import Timestamp
 from nearchord.errors import ServerFault
 from nearchord.jobs import BatchInfo, Event, JobInfo, Progress
 from nearchord.load import Load, QuestionLoad, ServerInfo, Slots
-from nearchord.question import QUESTIONS, Budget, Question
+from nearchord.question import QUESTIONS, Budget, Choice, Question
 from nearchord.stages import Phase, ProofKind, Stage, Verdict, WhenOver
 from nearchord.v1 import answer_pb2, job_pb2, load_service_pb2, question_pb2
 
@@ -19,6 +19,8 @@ PROOF_KINDS = {
     answer_pb2.PROOF_KIND_UNSPECIFIED: ProofKind.NONE,
     answer_pb2.PROOF_KIND_CERTIFICATE: ProofKind.CERTIFICATE,
     answer_pb2.PROOF_KIND_SEARCH: ProofKind.SEARCH,
+    answer_pb2.PROOF_KIND_PACKING: ProofKind.PACKING,
+    answer_pb2.PROOF_KIND_BRANCH: ProofKind.BRANCH,
 }
 
 
@@ -138,6 +140,8 @@ def question(asked: question_pb2.Question) -> Question:
     kind = QUESTIONS.get((field or "").replace("_", "-"))
     if field is None or kind is None:
         raise ServerFault("the server speaks of a question that this client does not know; update the client")
+    if not issubclass(kind, Choice):
+        return kind()
     wire = getattr(asked, field)
     return kind(must=tuple(wire.must), never=tuple(wire.never))
 

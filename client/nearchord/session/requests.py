@@ -5,14 +5,13 @@ from __future__ import annotations
 import uuid
 from collections.abc import Iterable
 from datetime import UTC, datetime
-from typing import Any
 
 from google.protobuf.timestamp_pb2 import Timestamp
 
 from nearchord.errors import BadInput
 from nearchord.graph import Graph
 from nearchord.jobs import Addresses, JobRequest
-from nearchord.question import Budget, Pin, Question
+from nearchord.question import QUESTIONS, Budget, Choice, Pin, Question
 from nearchord.session.content import InputContent
 from nearchord.stages import Stage, WhenOver
 from nearchord.v1 import content_pb2, job_pb2, question_pb2
@@ -49,13 +48,16 @@ def spec(request: JobRequest, graph_input: content_pb2.GraphInput) -> job_pb2.Jo
 
 
 def question(asked: Question, graph: Graph | Addresses) -> question_pb2.Question:
-    """A question with its pins as numbers."""
-    must, never = (pins(field, getattr(asked, field), graph) for field in ("must", "never"))
-    field = asked.name.replace("-", "_")
-    kinds: dict[str, Any] = {"independent_set": question_pb2.IndependentSet, "vertex_cover": question_pb2.VertexCover}
-    if field not in kinds:
-        raise BadInput(f"{asked!r} is no question", "ask IndependentSet() or VertexCover()")
-    return question_pb2.Question(**{field: kinds[field](must=must, never=never)})
+    """A question, its pins as numbers; BadInput for what is none that this client knows."""
+    if not isinstance(asked, Question) or asked.name not in QUESTIONS:
+        raise BadInput(f"{asked!r} is no question", f"ask one of {', '.join(k.__name__ for k in QUESTIONS.values())}")
+    message = question_pb2.Question()
+    wire = getattr(message, asked.name.replace("-", "_"))
+    wire.SetInParent()
+    if isinstance(asked, Choice):
+        wire.must.extend(pins("must", asked.must, graph))
+        wire.never.extend(pins("never", asked.never, graph))
+    return message
 
 
 def pins(field: str, given: tuple[Pin, ...], graph: Graph | Addresses) -> list[int]:

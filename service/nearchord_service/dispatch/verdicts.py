@@ -16,7 +16,7 @@ _FINAL = {
 def final_answer(lost: Lost) -> Answer | None:
     """Return the answer that a loss is, or None when the job is to be tried again.
 
-    The choice was lost with the worker, so there is no value; when seconds ran out the bound shown last still holds.
+    The answer was lost with the worker, so there is no value; when seconds ran out the bound shown last still holds.
     """
     verdict = _FINAL.get(lost.cause)
     if verdict is None:
@@ -28,7 +28,7 @@ def final_answer(lost: Lost) -> Answer | None:
     if verdict is Verdict.BOUNDED:
         bound = None if seen.bound is None else (seen.bound, 1)
         if seen.incumbent is not None:
-            reason += f"; a choice worth {seen.incumbent} had been found and was lost with it"
+            reason += f"; an answer of value {seen.incumbent} had been found and was lost with it"
     return Answer(
         verdict,
         reason,

@@ -14,6 +14,11 @@ class QuestionName(StrEnum):
     FILL = "fill"
     STRUCTURE = "structure"
 
+    @property
+    def chooses(self) -> bool:
+        """Whether its answer is a set of vertices: only then does it take weights and pins."""
+        return self in (QuestionName.INDEPENDENT_SET, QuestionName.VERTEX_COVER)
+
 
 class WhenOver(StrEnum):
     """What to do when the fill budget or the state budget does not suffice."""
@@ -24,7 +29,8 @@ class WhenOver(StrEnum):
 
 @dataclass(frozen=True)
 class Question:
-    """What a job asks. `must` and `never` are vertex numbers from 0, ascending, without repetition."""
+    """What a job asks. `must` and `never` are vertex numbers from 0, ascending, without repetition; both are empty
+    for a question that does not choose vertices."""
 
     name: QuestionName
     must: tuple[int, ...] = ()

@@ -10,24 +10,23 @@ from __future__ import annotations
 import logging
 import time
 from collections.abc import Callable
-from dataclasses import replace
-from fractions import Fraction
+from dataclasses import fields, replace
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from nearchord_service.model.answer import Answer, Column, ElementType, ProofKind
+from nearchord_service.model.answer import Answer
 from nearchord_service.model.event import Phase
 from nearchord_service.model.stage import Verdict
 from nearchord_service.work import unread
 from nearchord_service.work.content import graph_rows, weight_values
+from nearchord_service.work.outcome import REASON_LENGTH, recorded
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from nearchord_service.work.port import Task
 
-REASON_LENGTH = 2000
 _LOG = logging.getLogger(__name__)
 
 
@@ -78,7 +77,7 @@ def _solve(task: Task, solver: Any, cells: NDArray[np.int64], watch: PhaseClock)
     graph = solver.Graph.from_canonical(task.vertices, *graph_rows(task.graph, task.vertices, task.edges))
     weights = None if task.weights is None else weight_values(task.weights, task.vertices)
     outcome = solver.solve(_question(task, solver), graph, weights, _budget(task, solver), task.when_over, monitor)
-    return _recorded(outcome, task.vertices)
+    return recorded(outcome, task.vertices)
 
 
 def _phase(name: str) -> Phase | None:
@@ -86,50 +85,11 @@ def _phase(name: str) -> Phase | None:
 
 
 def _question(task: Task, solver: Any) -> Any:
-    return solver.QUESTIONS[task.question.name.value](must=task.question.must, never=task.question.never)
+    """Build the solver's question from what it takes, which are the fields of its class."""
+    kind = solver.QUESTIONS[task.question.name.value]
+    return kind(**{field.name: getattr(task.question, field.name) for field in fields(kind)})
 
 
 def _budget(task: Task, solver: Any) -> Any:
     budget = task.budget
     return solver.Budget(fill=budget.fill, states=budget.states, memory=budget.memory_bytes)
-
-
-def _recorded(outcome: Any, vertices: int) -> Answer:
-    verdict = Verdict(outcome.verdict.value)
-    chosen = None if verdict is Verdict.CANCELLED else outcome.chosen
-    return Answer(
-        verdict=verdict,
-        reason=str(outcome.reason)[:REASON_LENGTH] or f"the solver gave no reason for {verdict}",
-        value=None if chosen is None else _exact(outcome.value),
-        bound=_exact(outcome.bound),
-        fill=_count(outcome.fill),
-        fill_lower_bound=_count(outcome.fill_lower_bound),
-        states=_count(outcome.states),
-        bags=_count(outcome.bags),
-        largest_bag=_count(outcome.largest_bag),
-        parts=_count(outcome.parts),
-        fill_cores=_count(outcome.fill_cores),
-        proof=ProofKind(outcome.proof),
-        proof_kinds=tuple(ProofKind(kind) for kind in outcome.proof_kinds),
-        columns=() if chosen is None else (_chosen(chosen, vertices),),
-    )
-
-
-def _chosen(chosen: NDArray[np.integer[Any]], vertices: int) -> Column:
-    """Write chosen vertices as a column; ValueError unless they are vertices in ascending order, each once."""
-    if chosen.ndim != 1 or chosen.size > vertices:
-        raise ValueError(f"chosen has shape {chosen.shape} on {vertices} vertices")
-    if chosen.size and (int(chosen[0]) < 0 or int(chosen[-1]) >= vertices or bool((chosen[1:] <= chosen[:-1]).any())):
-        raise ValueError("chosen is not an ascending list of vertices")
-    return Column("chosen", ElementType.UINT32, chosen.astype("<u4", copy=False).tobytes())
-
-
-def _exact(value: int | Fraction | None) -> tuple[int, int] | None:
-    if value is None:
-        return None
-    exact = Fraction(value)
-    return exact.numerator, exact.denominator
-
-
-def _count(value: int | None) -> int | None:
-    return None if value is None or value < 0 else int(value)

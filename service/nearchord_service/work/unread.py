@@ -1,8 +1,8 @@
 """Answers for graphs that are predicted not to fit into the memory budget, given without reading them.
 
-Without pins an answer needs no edges: a single vertex is always an independent set and all vertices always are a cover;
+Without pins a choice needs no edges: a single vertex is always an independent set and all vertices always are a cover;
 all weights together bound the one from above, and nothing bounds the other from below. Where pins make a choice depend
-on the edges, there is only the bound.
+on the edges, there is not even a bound. Fill edges cannot be named without the edges: their number is at least 0.
 """
 
 from __future__ import annotations
@@ -28,6 +28,8 @@ def answer(task: Task, predicted_bytes: int) -> Answer:
         f"solving {task.vertices} vertices and {task.edges} edges is predicted to take {predicted_bytes} bytes of "
         f"memory, more than the {task.budget.memory_bytes} bytes budgeted; allow at least as many to have it solved"
     )
+    if not task.question.name.chooses:
+        return Answer(Verdict.BOUNDED, reason, bound=(0, 1), fill_lower_bound=0)
     if task.question.must or task.question.never or not task.vertices:
         return Answer(Verdict.BOUNDED, reason)
     total, heaviest, weight = _scan(task)

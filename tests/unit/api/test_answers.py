@@ -7,7 +7,14 @@ from typing import Any
 
 from nearchord.v1 import answer_pb2, job_pb2
 from nearchord.v1 import job_service_pb2 as pb
-from nearchord_service.model.answer import Column, ElementType
+from nearchord_service.model.answer import (
+    Column,
+    ElementType,
+    Prediction,
+    ProofKind,
+    Recognition,
+    StructureReport,
+)
 from nearchord_service.model.event import Phase
 from nearchord_service.model.stage import Verdict
 from unit.api.serving import DEADLINE, Serving, a_spec, an_answer, failure
@@ -41,6 +48,39 @@ def test_an_answer_is_a_head_and_its_columns(served: Serving) -> None:
     assert origin.HasField("finished_at")
     assert [(c.name, c.type, c.length) for c in head.head.columns] == [("chosen", answer_pb2.ELEMENT_TYPE_UINT32, 1)]
     assert (column.column.name, column.column.offset, column.column.data) == ("chosen", 0, struct.pack("<I", 1))
+
+
+def test_classes_and_structure_come_with_the_head(served: Serving) -> None:
+    """What was not settled is absent, which is not the same as no; other questions have neither part."""
+    plain, rich = served.submit(request_id="plain"), served.submit(request_id="rich")
+    report = StructureReport(2, 9, (Prediction("colourable-subgraph", 2, 10**12, True, 2**40, False),))
+    kinds = (ProofKind.PACKING, ProofKind.BRANCH, ProofKind.SEARCH)
+    answers = {
+        plain.id: an_answer(),
+        rich.id: an_answer(recognition=Recognition(False, None, True, 0), structure=report, proof_kinds=kinds),
+    }
+    for lease in served.claim(2):
+        served.finish(lease, answers[lease.job.id])
+    head, *_ = parts(served.jobs.ReadAnswer(pb.ReadAnswerRequest(job_id=rich.id)))
+    found = head.head.recognition
+    assert {field.name: value for field, value in found.ListFields()} == {
+        "chordal": False,
+        "split": True,
+        "splittance": 0,
+    }
+    structure = head.head.structure
+    assert (structure.components, structure.largest_core) == (2, 9)
+    (one,) = structure.predictions
+    assert (one.question, one.colours, one.states, one.at_least) == ("colourable-subgraph", 2, 10**12, True)
+    assert (one.memory_bytes, one.fits) == (2**40, False)
+    assert list(head.head.proof_kinds) == [
+        answer_pb2.PROOF_KIND_PACKING,
+        answer_pb2.PROOF_KIND_BRANCH,
+        answer_pb2.PROOF_KIND_SEARCH,
+    ]
+    head, *_ = parts(served.jobs.ReadAnswer(pb.ReadAnswerRequest(job_id=plain.id)))
+    assert not head.head.HasField("recognition")
+    assert not head.head.HasField("structure")
 
 
 def test_long_columns_come_in_pieces_of_whole_elements(served: Serving) -> None:

@@ -11,7 +11,9 @@ from pathlib import Path
 import pytest
 from google.protobuf.timestamp_pb2 import Timestamp
 from nearchord.v1 import job_pb2
+from nearchord_service.api.convert.questions import from_question, to_question
 from nearchord_service.api.convert.specs import SpecReader
+from nearchord_service.api.convert.violations import Violations
 from nearchord_service.api.limits import Caps
 from nearchord_service.model.content import ContentKind
 from nearchord_service.model.errors import ContentInvalid, FieldInvalid, QuotaExceeded
@@ -121,7 +123,7 @@ WRONG: list[tuple[Callable[[job_pb2.JobSpec], object], str, str]] = [
     (
         lambda s: s.ClearField("question"),
         "spec.question",
-        "is missing or not known to this server; ask one of independent-set",
+        "is missing or not known to this server; ask one of independent-set, vertex-cover, fill, structure",
     ),
     (pins(0, 2, 0), "spec.question.independent_set.must[2]", "names vertex 0 again, after [0]; name it once"),
     (pins(never=(1, 1)), "spec.question.independent_set.never[1]", "names vertex 1 again, after [0]; name it once"),
@@ -145,6 +147,50 @@ WRONG: list[tuple[Callable[[job_pb2.JobSpec], object], str, str]] = [
     (put("label", "x" * 201), "spec.label", "has 201 characters; shorten it to 200"),
     (put("label", "a\nb"), "spec.label", "holds the control character U+000A; remove it"),
 ]
+
+
+GRAPH_ONLY = [name for name in QuestionName if not name.chooses]
+
+
+@pytest.mark.parametrize("name", GRAPH_ONLY)
+def test_questions_about_the_graph_alone_are_read(name: QuestionName) -> None:
+    def change(spec: job_pb2.JobSpec) -> None:
+        getattr(spec.question, name).SetInParent()
+        spec.budget.fill = 3
+
+    found = read_one(change)
+    assert (found.question, found.budget.fill) == (Question(name), 3)
+
+
+@pytest.mark.parametrize("name", GRAPH_ONLY)
+@pytest.mark.parametrize(
+    ("field", "value"), [("weights_address", STORED), ("weights_content", struct.pack("<3q", 1, 1, 1))]
+)
+def test_questions_about_the_graph_alone_take_no_weights(name: QuestionName, field: str, value: str | bytes) -> None:
+    """Not even unit weights; the violation stands beside the others of the request."""
+
+    def change(spec: job_pb2.JobSpec) -> None:
+        getattr(spec.question, name).SetInParent()
+        setattr(spec.input, field, value)
+        spec.priority = 5_000
+
+    with pytest.raises(FieldInvalid) as caught:
+        read_one(change)
+    priority, weights = sorted(caught.value.violations, key=lambda v: v.field != "spec.priority")
+    assert priority.field == "spec.priority"
+    assert weights.field == f"spec.input.{field}"
+    assert weights.description == (
+        f"is given, but the question {name} is about the graph alone and takes no weights; leave it out"
+    )
+
+
+def test_the_written_question_is_the_one_read() -> None:
+    """Every question of the model has a branch in the contract, and comes back as itself."""
+    for name in QuestionName:
+        asked = Question(name, (0, 2), (1,)) if name.chooses else Question(name)
+        written = from_question(asked)
+        assert written.WhichOneof("question") == name.value.replace("-", "_")
+        assert to_question(written, "question", CAPS, Violations()) == asked
 
 
 @pytest.mark.parametrize(("change", "field", "description"), WRONG, ids=[f"{f}-{d[:20]}" for _, f, d in WRONG])

@@ -282,6 +282,20 @@ def answer_parts(index, chosen, piece=2, **head):
         yield answer_pb2.AnswerPart(column=chunk)
 
 
+def column_parts(columns, piece=3, **head):
+    """An answer whose columns are the given arrays, in pieces of `piece` elements."""
+    types = {"uint32": answer_pb2.ELEMENT_TYPE_UINT32, "int64": answer_pb2.ELEMENT_TYPE_INT64}
+    infos = [
+        answer_pb2.ColumnInfo(name=name, type=types[str(values.dtype)], length=values.size)
+        for name, values in columns.items()
+    ]
+    yield answer_pb2.AnswerPart(head=answer_pb2.AnswerHead(columns=infos, **head))
+    for name, values in columns.items():
+        for begin in range(0, values.size, piece):
+            data = values[begin : begin + piece].tobytes()
+            yield answer_pb2.AnswerPart(column=answer_pb2.ColumnChunk(name=name, offset=begin, data=data))
+
+
 @contextmanager
 def served(service):
     """Serves on a free loopback port; gives its address."""

@@ -119,12 +119,36 @@ def test_budget_survives_the_wire():
 
 
 @pytest.mark.parametrize("question", [nearchord.IndependentSet([0, "c"], [1]), nearchord.VertexCover()])
-def test_question_survives_the_wire(question):
+def test_choice_survives_the_wire(question):
     """Names become numbers, everything else stays."""
     back = replies.question(requests.question(question, GRAPH))
     assert type(back) is type(question)
     assert back.must == tuple(GRAPH.vertex(pin) if isinstance(pin, str) else pin for pin in question.must)
     assert back.never == question.never
+
+
+@pytest.mark.parametrize("question", [nearchord.Fill(), nearchord.Structure()])
+def test_question_about_the_graph_alone_survives_the_wire(question):
+    """There is nothing in it but its name."""
+    written = requests.question(question, GRAPH)
+    assert written.WhichOneof("question") == question.name
+    assert replies.question(written) == question
+
+
+def test_questions_about_the_graph_alone_take_no_pins():
+    """Neither by position nor by name."""
+    for kind in (nearchord.Fill, nearchord.Structure):
+        with pytest.raises(TypeError):
+            kind(must=[1])
+        with pytest.raises(TypeError):
+            kind([1])
+
+
+@pytest.mark.parametrize("asked", ["fill", None, nearchord.Fill, nearchord.Question()])
+def test_what_is_no_question_is_refused(asked):
+    """The remedy lists what can be asked."""
+    with pytest.raises(nearchord.BadInput, match="ask one of IndependentSet, VertexCover, Fill, Structure"):
+        requests.question(asked, GRAPH)
 
 
 def test_an_unknown_question_of_the_server_is_a_fault_not_a_crash():

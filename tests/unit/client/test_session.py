@@ -6,9 +6,10 @@ import asyncio
 import inspect
 
 import nearchord
+import numpy as np
 import pytest
-from nearchord.v1 import job_pb2
-from unit.client.fake_service import FakeService, answer_parts, progress, served, transition
+from nearchord.v1 import answer_pb2, job_pb2, question_pb2
+from unit.client.fake_service import FakeService, answer_parts, column_parts, progress, served, transition
 
 DONE = transition(9, job_pb2.STAGE_DONE, job_pb2.VERDICT_PROVEN, "value and bound meet")
 
@@ -110,6 +111,22 @@ def test_submit_sends_a_small_graph_inline(user, fake):
     assert (spec.budget.fill, spec.budget.HasField("fill"), spec.budget.HasField("states")) == (0, True, False)
     assert (spec.when_over, spec.priority, spec.label) == (2, 7, "x")
     assert fake.calls == {"SubmitJob": 1}
+
+
+@pytest.mark.parametrize("question", [nearchord.Fill(), nearchord.Structure()])
+def test_questions_about_the_graph_alone_travel_without_its_weights(user, fake, question):
+    """Inline, stored or by address, alone or in a batch: such a question takes none, so none are sent."""
+    stored = nearchord.Addresses("0" * 64, "1" * 64)
+    fake.contents = {"0" * 64: b"", "1" * 64: b""}
+    user.call(user.service.submit(small(), question))
+    user.call(user.service.submit(large().with_weights(np.ones(40_000, np.int64)), question))
+    user.call(user.service.submit(stored, question))
+    user.call(user.service.submit_batch([nearchord.JobRequest(small(), question)]))
+    specs = [*fake.seen["spec"], fake.seen["batch"][0][1][0]]
+    assert len(specs) == 4
+    assert [spec.input.WhichOneof("weights") for spec in specs] == [None] * 4
+    assert {spec.question.WhichOneof("question") for spec in specs} == {question.name}
+    assert specs[0].input.names_content == b"a\nb\nc\n"
 
 
 def test_submit_under_one_request_id_gives_one_job(user, fake):
@@ -228,6 +245,69 @@ def test_an_answer_is_waited_for_and_assembled(user, fake):
     assert answer.verdict is nearchord.Verdict.PROVEN
     assert answer.proof is nearchord.ProofKind.NONE
     assert not answer.chosen.flags.writeable
+
+
+def test_a_fill_is_assembled_with_its_columns_and_classes(user, fake):
+    """Pairs are rows, what was not settled is None, and nothing can be changed."""
+    columns = {
+        "fill_edge": np.array([0, 2, 1, 4], np.uint32),
+        "core_start": np.array([0, 4, 9], np.int64),
+        "split_clique": np.zeros(0, np.uint32),
+    }
+    fake.events = [transition(2, job_pb2.STAGE_WAITING), DONE]
+    fake.parts = list(
+        column_parts(
+            columns,
+            question=question_pb2.Question(fill=question_pb2.Fill()),
+            verdict=job_pb2.VERDICT_OVER_FILL,
+            proof=answer_pb2.PROOF_KIND_CERTIFICATE,
+            proof_kinds=[answer_pb2.PROOF_KIND_PACKING, answer_pb2.PROOF_KIND_BRANCH],
+            recognition=answer_pb2.Recognition(chordal=False, splittance=3),
+        )
+    )
+    answer = user.call(user.service.job("j").answer())
+    assert answer.question == nearchord.Fill()
+    assert answer.fill_edges.tolist() == [[0, 2], [1, 4]]
+    assert answer.fill_edges.dtype == np.uint32
+    assert list(answer.columns) == list(columns)
+    assert all(np.array_equal(answer.columns[name], values) for name, values in columns.items())
+    assert not any(column.flags.writeable for column in answer.columns.values())
+    assert not answer.fill_edges.flags.writeable
+    assert answer.recognition == nearchord.Recognition(False, None, None, 3)
+    assert answer.proof_kinds == (nearchord.ProofKind.PACKING, nearchord.ProofKind.BRANCH)
+    assert (answer.structure, answer.chosen.size) == (None, 0)
+    with pytest.raises(TypeError):
+        answer.columns["more"] = columns["fill_edge"]
+
+
+def test_half_a_fill_edge_is_a_fault_of_the_server(user, fake):
+    """A column of pairs has an even length."""
+    fake.events = [transition(2, job_pb2.STAGE_WAITING), DONE]
+    question = question_pb2.Question(fill=question_pb2.Fill())
+    fake.parts = list(column_parts({"fill_edge": np.zeros(3, np.uint32)}, question=question, verdict=1))
+    with pytest.raises(nearchord.ServerFault, match="half a pair"):
+        user.call(user.service.job("j").answer())
+
+
+def test_a_structure_report_is_read(user, fake):
+    """Components, the largest core, and one prediction a question."""
+    fake.events = [transition(2, job_pb2.STAGE_WAITING), DONE]
+    wire = answer_pb2.Prediction(
+        question="colourable-subgraph", colours=2, states=10**12, at_least=True, memory_bytes=9, fits=True
+    )
+    fake.parts = list(
+        column_parts(
+            {},
+            question=question_pb2.Question(structure=question_pb2.Structure()),
+            verdict=1,
+            structure=answer_pb2.StructureReport(components=3, largest_core=7, predictions=[wire]),
+        )
+    )
+    answer = user.call(user.service.job("j").answer())
+    prediction = nearchord.Prediction("colourable-subgraph", 2, 10**12, True, 9, True)
+    assert answer.structure == nearchord.StructureReport(3, 7, (prediction,))
+    assert answer.fill_edges.shape == (0, 2)
+    assert answer.recognition is None
 
 
 def test_an_answer_that_takes_too_long_raises_and_names_the_job(user, fake):

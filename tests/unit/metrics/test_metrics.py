@@ -197,6 +197,17 @@ def test_the_load_says_what_the_page_shows(metrics: Metrics, exposition: Exposit
     assert (second.verdict, second.seconds_p50) == (Verdict.BOUNDED, 9.0)
 
 
+@pytest.mark.parametrize("name", list(QuestionName))
+def test_every_question_has_series_of_its_own(metrics: Metrics, exposition: Exposition, name: QuestionName) -> None:
+    metrics.job_submitted(name)
+    end(metrics, job(name), answer(Verdict.OVER_FILL))
+    found = scrape(exposition)
+    assert found("nearchord_jobs_submitted_total", question=name) == 1
+    assert found("nearchord_jobs_finished_total", question=name, verdict="OVER_FILL") == 1
+    assert found("nearchord_fill_edges_sum", question=name) == 4
+    assert [(line.question, line.verdict) for line in metrics.load().questions] == [(name, Verdict.OVER_FILL)]
+
+
 def test_a_job_that_the_solver_never_answered_has_no_run_time(metrics: Metrics, exposition: Exposition) -> None:
     metrics.job_ended(QuestionName.INDEPENDENT_SET, Verdict.CANCELLED)
     metrics.job_finished(job(), Answer(Verdict.BROKEN, "three workers were lost"))

@@ -6,8 +6,11 @@ import sqlite3
 from pathlib import Path
 
 import pytest
-from contract.stores import ANN, submit
+from contract.stores import ANN, claim_one, finish, submit
+from nearchord_service.model.answer import Answer, Column, ElementType, ProofKind
 from nearchord_service.model.errors import StoreUnavailable
+from nearchord_service.model.event import Phase
+from nearchord_service.model.stage import Verdict
 from nearchord_service.store.sql import SqlStore, migrations
 from nearchord_service.store.sql.schema import metadata
 from sqlalchemy import Engine, create_engine, inspect
@@ -52,6 +55,50 @@ def test_opening_again_applies_nothing(path: Path) -> None:
     with sqlite3.connect(path) as connection:
         assert connection.execute("SELECT version FROM schema_version").fetchall() == [(1,)]
     connection.close()
+
+
+FIRST_FIGURES = (
+    '{"format":1,"verdict":"PROVEN","reason":"value and bound meet","value":[7,2],"bound":[7,2],"fill":4,'
+    '"fill_lower_bound":3,"states":12,"bags":7,"largest_bag":3,"parts":2,"fill_cores":1,"proof":"search",'
+    '"proof_kinds":["search"],"solver_version":"0.1.0","proof_format":0,"phase_seconds":[["read",0.25]],'
+    '"seconds":0.25,"peak_memory_bytes":9,"columns":[["chosen","uint32",4]]}'
+)
+"""Figures as they were written before answers had classes and structure."""
+
+
+def test_answers_recorded_before_there_were_classes_stay_readable(path: Path) -> None:
+    store = SqlStore(path.parent)
+    store.start()
+    job = submit(store)
+    finish(store, claim_one(store))
+    store.stop()
+    with sqlite3.connect(path) as connection:
+        columns = b"\x02\0\0\0"
+        connection.execute("UPDATE answers SET figures = ?, columns = ?", (FIRST_FIGURES, columns))
+    connection.close()
+    store = SqlStore(path.parent)
+    store.start()
+    assert store.answer(ANN, job.id)[1] == Answer(
+        Verdict.PROVEN,
+        "value and bound meet",
+        value=(7, 2),
+        bound=(7, 2),
+        fill=4,
+        fill_lower_bound=3,
+        states=12,
+        bags=7,
+        largest_bag=3,
+        parts=2,
+        fill_cores=1,
+        proof=ProofKind.SEARCH,
+        proof_kinds=(ProofKind.SEARCH,),
+        solver_version="0.1.0",
+        phase_seconds=((Phase.READ, 0.25),),
+        seconds=0.25,
+        peak_memory_bytes=9,
+        columns=(Column("chosen", ElementType.UINT32, columns),),
+    )
+    store.stop()
 
 
 def test_newer_database_is_refused_and_left_alone(path: Path) -> None:

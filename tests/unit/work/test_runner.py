@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import struct
 from dataclasses import replace
 from types import SimpleNamespace
 
@@ -10,6 +11,14 @@ import pytest
 from contract import scripted_solver
 from contract.executor_stage import edgeless, task
 from contract.scripted_solver import Script
+from nearchord_service.model.answer import (
+    Column,
+    ElementType,
+    Prediction,
+    ProofKind,
+    Recognition,
+    StructureReport,
+)
 from nearchord_service.model.content import Bytes
 from nearchord_service.model.event import Phase
 from nearchord_service.model.question import Question, QuestionName
@@ -40,7 +49,7 @@ def test_seconds_are_counted_by_phase():
     assert answer.seconds == 15.0
 
 
-@pytest.mark.parametrize("name", list(QuestionName))
+@pytest.mark.parametrize("name", [name for name in QuestionName if name.chooses])
 def test_the_solver_gets_what_the_job_says(name):
     """Question, pins, budget, weights and graph reach the solver."""
     seen = {}
@@ -58,6 +67,82 @@ def test_the_solver_gets_what_the_job_says(name):
     assert seen["graph"].n == 4
     assert seen["graph"].row_ptr.tolist() == [0] * 5
     assert seen["when_over"] == "bound"
+
+
+@pytest.mark.parametrize("name", [name for name in QuestionName if not name.chooses])
+def test_questions_get_only_what_they_take(name):
+    """A question without pins is made without any."""
+    seen = []
+    run(
+        task(Script.ANSWER, question=Question(name)),
+        solver_with(lambda question, *_: seen.append(question) or scripted_solver.outcome()),
+    )
+    assert seen == [scripted_solver.QUESTIONS[name]()]
+
+
+def test_a_fill_is_recorded_with_all_its_columns():
+    """Types of the solver's arrays decide the types of the columns; what was not settled stays open."""
+    answer = run(task(Script.ANSWER, question=Question(QuestionName.FILL)))
+    assert (answer.verdict, answer.value, answer.bound) == (Verdict.PROVEN, (1, 1), (1, 1))
+    assert answer.proof_kinds == (ProofKind.PACKING,)
+    assert answer.recognition == Recognition(chordal=False, interval=False, split=None, splittance=2)
+    columns = {column.name: column for column in answer.columns}
+    assert list(columns) == list(scripted_solver.fill_outcome().columns)
+    assert columns["fill_edge"] == Column("fill_edge", ElementType.UINT32, struct.pack("<2I", 0, 2))
+    assert columns["packing_start"] == Column("packing_start", ElementType.INT64, struct.pack("<2q", 0, 4))
+    assert "chosen" not in columns
+
+
+def test_a_structure_is_recorded_as_plain_values():
+    """Nothing of the solver's types reaches the store."""
+    answer = run(task(Script.ANSWER, question=Question(QuestionName.STRUCTURE)))
+    assert answer.structure == StructureReport(
+        components=1,
+        largest_core=4,
+        predictions=(
+            Prediction("independent-set", 0, 9, at_least=False, memory_bytes=64, fits=True),
+            Prediction("colourable-subgraph", 3, 12, at_least=True, memory_bytes=64, fits=False),
+        ),
+    )
+    assert type(answer.structure.components) is int
+    assert answer.columns == ()
+
+
+@pytest.mark.parametrize(
+    ("columns", "words"),
+    [
+        ({"fill_edge": np.array([0, 4], np.uint32)}, "column fill_edge has vertex 4 on 4 vertices"),
+        ({"fill_edge": np.array([[0, 1]], np.uint32)}, "column fill_edge has shape (1, 2)"),
+        ({"core_start": np.array([0.5])}, "type float64"),
+        ({"chosen": np.array([0], np.uint32)}, "stands twice"),
+    ],
+)
+def test_malformed_columns_are_broken(columns, words):
+    """What could not be read back is a defect of the solver, named."""
+    found = scripted_solver.with_fields(scripted_solver.outcome(), columns=columns)
+    answer = run(task(Script.ANSWER), solver_with(lambda *_: found))
+    assert (answer.verdict, answer.columns) == (Verdict.BROKEN, ())
+    assert words in answer.reason
+
+
+def test_a_cancelled_solve_leaves_no_answer():
+    """Figures stay; value, columns and report are dropped together."""
+    found = scripted_solver.with_fields(
+        scripted_solver.fill_outcome(),
+        verdict=scripted_solver.Verdict.CANCELLED,
+        report=scripted_solver.structure_outcome().report,
+    )
+    answer = run(task(Script.ANSWER), solver_with(lambda *_: found))
+    assert (answer.value, answer.columns, answer.recognition, answer.structure) == (None, (), None, None)
+    assert answer.fill == 0
+
+
+def test_too_small_a_fill_budget_keeps_its_witness():
+    """OVER_FILL is shown by the packing, so columns and value stay."""
+    found = scripted_solver.with_fields(scripted_solver.fill_outcome(), verdict=scripted_solver.Verdict.OVER_FILL)
+    answer = run(task(Script.ANSWER, question=Question(QuestionName.FILL)), solver_with(lambda *_: found))
+    assert (answer.verdict, answer.value) == (Verdict.OVER_FILL, (1, 1))
+    assert "packing_vertex" in {column.name for column in answer.columns}
 
 
 @pytest.mark.parametrize(
@@ -116,6 +201,15 @@ def test_unread_cover_is_everything():
     answer = unread.answer(task(Script.ANSWER, vertices=3, question=Question(QuestionName.VERTEX_COVER)), 10)
     assert (answer.value, answer.bound) == ((3, 1), (0, 1))
     assert np.frombuffer(answer.columns[0].data, "<u4").tolist() == [0, 1, 2]
+
+
+@pytest.mark.parametrize("name", [QuestionName.FILL, QuestionName.STRUCTURE])
+def test_unread_fill_is_at_least_nothing(name):
+    """No fill edge can be named without the edges; there is only the plainest bound."""
+    answer = unread.answer(task(Script.ANSWER, question=Question(name)), 10)
+    assert (answer.verdict, answer.value, answer.bound) == (Verdict.BOUNDED, None, (0, 1))
+    assert (answer.columns, answer.fill_lower_bound) == ((), 0)
+    assert "choice" not in answer.reason
 
 
 def test_unread_choice_takes_the_lowest_of_equal_vertices():

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import asdict
 
 from nearchord.v1 import answer_pb2
 
@@ -10,7 +11,7 @@ from nearchord_service.api.convert.enums import ELEMENT_TYPES, PHASES, PROOF_KIN
 from nearchord_service.api.convert.questions import from_budget, from_question
 from nearchord_service.api.convert.times import to_timestamp
 from nearchord_service.api.limits import PIECE_BYTES
-from nearchord_service.model.answer import Answer, Column
+from nearchord_service.model.answer import Answer, Column, Recognition, StructureReport
 from nearchord_service.model.job import Job
 
 
@@ -62,6 +63,22 @@ def _head(job: Job, answer: Answer) -> answer_pb2.AnswerHead:
         columns=[_info(column) for column in answer.columns],
         names_address=job.names_address or "",
         vertices=job.vertices,
+        recognition=_recognition(answer.recognition),
+        structure=_structure(answer.structure),
+    )
+
+
+def _recognition(found: Recognition | None) -> answer_pb2.Recognition | None:
+    return None if found is None else answer_pb2.Recognition(**asdict(found))
+
+
+def _structure(report: StructureReport | None) -> answer_pb2.StructureReport | None:
+    if report is None:
+        return None
+    return answer_pb2.StructureReport(
+        components=report.components,
+        largest_core=report.largest_core,
+        predictions=[answer_pb2.Prediction(**asdict(prediction)) for prediction in report.predictions],
     )
 
 

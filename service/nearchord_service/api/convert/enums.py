@@ -32,6 +32,8 @@ ELEMENT_TYPES: dict[ElementType, answer_pb2.ElementType] = _numbers(ElementType,
 PROOF_KINDS: dict[ProofKind, answer_pb2.ProofKind] = {
     ProofKind.CERTIFICATE: answer_pb2.PROOF_KIND_CERTIFICATE,
     ProofKind.SEARCH: answer_pb2.PROOF_KIND_SEARCH,
+    ProofKind.PACKING: answer_pb2.PROOF_KIND_PACKING,
+    ProofKind.BRANCH: answer_pb2.PROOF_KIND_BRANCH,
     ProofKind.NONE: answer_pb2.PROOF_KIND_UNSPECIFIED,
 }
 QUESTION_FIELDS: dict[QuestionName, str] = {name: name.name.lower() for name in QuestionName}

@@ -20,7 +20,9 @@ def to_question(message: question_pb2.Question, place: str, caps: Caps, wrong: V
     if name is None:
         wrong.add(place, f"is missing or not known to this server; ask one of {', '.join(QuestionName)}")
         return None
-    asked = getattr(message, name)
+    asked, question = getattr(message, name), QUESTIONS_BY_FIELD[name]
+    if not question.chooses:
+        return Question(question)
     pins = len(asked.must) + len(asked.never)
     if pins > caps.pins:
         wrong.add(
@@ -29,7 +31,7 @@ def to_question(message: question_pb2.Question, place: str, caps: Caps, wrong: V
         return None
     must = _pins(asked.must, f"{place}.{name}.must", wrong)
     never = _pins(asked.never, f"{place}.{name}.never", wrong)
-    return Question(QUESTIONS_BY_FIELD[name], must, never)
+    return Question(question, must, never)
 
 
 def _pins(vertices: Sequence[int], place: str, wrong: Violations) -> tuple[int, ...]:
@@ -69,8 +71,9 @@ def from_question(question: Question) -> question_pb2.Question:
     message = question_pb2.Question()
     asked = getattr(message, QUESTION_FIELDS[question.name])
     asked.SetInParent()
-    asked.must.extend(question.must)
-    asked.never.extend(question.never)
+    if question.name.chooses:
+        asked.must.extend(question.must)
+        asked.never.extend(question.never)
     return message
 
 

@@ -88,6 +88,13 @@ class SpecReader:
             wrong.add(f"{place}.label", fault)
         if message.input.WhichOneof("graph") is None:
             wrong.add(f"{place}.input", "names no graph; give graph_address or graph_content")
+        weighted = message.input.WhichOneof("weights")
+        if weighted is not None and question is not None and not question.name.chooses:
+            wrong.add(
+                f"{place}.input.{weighted}",
+                f"is given, but the question {question.name} is about the graph alone and takes no weights; "
+                "leave it out",
+            )
         wrong.settle()
         assert question is not None, "a missing question is settled above"
         graph, weights, names = (self._named(message, part, place) for part in _KINDS)

@@ -8,7 +8,15 @@ from collections.abc import Sequence
 from dataclasses import asdict
 from typing import Any
 
-from nearchord_service.model.answer import Answer, Column, ElementType, ProofKind
+from nearchord_service.model.answer import (
+    Answer,
+    Column,
+    ElementType,
+    Prediction,
+    ProofKind,
+    Recognition,
+    StructureReport,
+)
 from nearchord_service.model.content import Content, ContentKind
 from nearchord_service.model.event import Event, Phase, Progress, Reached
 from nearchord_service.model.job import Batch, Job, JobSpec
@@ -152,6 +160,10 @@ def answer_figures(answer: Answer) -> str:
     """Write down an answer without the bytes of its columns; whole numbers of any size stay exact."""
     figures = {name: getattr(answer, name) for name in _PLAIN}
     figures["columns"] = [(column.name, column.type, len(column.data)) for column in answer.columns]
+    for name in _OPTIONAL:
+        part = getattr(answer, name)
+        if part is not None:
+            figures[name] = asdict(part)
     return _compact({"format": 1, **figures})
 
 
@@ -175,6 +187,8 @@ _PLAIN = (
     "seconds",
     "peak_memory_bytes",
 )
+_OPTIONAL = ("recognition", "structure")
+"""What only some questions have; left out of the figures where there is none."""
 
 
 def answer_from(row: Row) -> Answer | None:
@@ -193,6 +207,8 @@ def answer_from(row: Row) -> Answer | None:
         proof_kinds=tuple(map(ProofKind, figures["proof_kinds"])),
         phase_seconds=tuple((Phase(phase), seconds) for phase, seconds in figures["phase_seconds"]),
         columns=_columns(figures["columns"], row["columns"]),
+        recognition=_recognition(figures.get("recognition")),
+        structure=_structure(figures.get("structure")),
     )
 
 
@@ -201,6 +217,17 @@ _SHAPED = frozenset({"verdict", "value", "bound", "proof", "proof_kinds", "phase
 
 def _pair(value: list[int] | None) -> tuple[int, int] | None:
     return None if value is None else (value[0], value[1])
+
+
+def _recognition(figures: dict[str, Any] | None) -> Recognition | None:
+    return None if figures is None else Recognition(**figures)
+
+
+def _structure(figures: dict[str, Any] | None) -> StructureReport | None:
+    if figures is None:
+        return None
+    predictions = tuple(Prediction(**prediction) for prediction in figures["predictions"])
+    return StructureReport(figures["components"], figures["largest_core"], predictions)
 
 
 def _columns(heads: list[tuple[str, str, int]], data: bytes) -> tuple[Column, ...]:

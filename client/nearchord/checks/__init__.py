@@ -1,0 +1,1 @@
+"""What the checker confirms, question by question, from graphs and definitions. No code is shared with the solver."""

@@ -1,0 +1,128 @@
+"""Choices of vertices: feasible by definition, worth what they say, bounded where it is plain."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+
+import numpy as np
+from numpy.typing import NDArray
+
+from nearchord.answer import Answer
+from nearchord.canonical import weight_sum
+from nearchord.checks.confirmed import Confirmed, check_sides, check_unanswered
+from nearchord.errors import CheckFailed
+from nearchord.graph import Graph
+from nearchord.question import Choice, IndependentSet, Pin, VertexCover
+from nearchord.stages import Verdict
+
+Mask = NDArray[np.bool_]
+
+
+def check_choice(graph: Graph, answer: Answer, question: Choice) -> Confirmed:
+    """Confirms choice, value and, where it is plain, bound. O(n + m)."""
+    if answer.verdict is Verdict.INFEASIBLE:
+        return _check_infeasible(graph, question)
+    if answer.value is None:
+        return check_unanswered(answer)
+    chosen = _chosen_mask(graph, answer)
+    done = [_check_definition(graph, question, chosen), _check_value(graph, answer, chosen)]
+    plain = _check_bound(graph, answer, question)
+    if plain is not None:
+        return Confirmed((*done, plain), ())
+    return Confirmed(tuple(done), (f"the bound {answer.bound}: the answer carries no proof of it",))
+
+
+def _check_infeasible(graph: Graph, question: Choice) -> Confirmed:
+    """The pins have to contradict each other: a vertex in both lists, or two ends of an edge forced the wrong way."""
+    must, never = (_mask(graph, getattr(question, field), field) for field in ("must", "never"))
+    both = np.flatnonzero(must & never)
+    if both.size:
+        return Confirmed((f"the pins contradict each other: vertex {graph.label(int(both[0]))} is in both lists",), ())
+    clash = _edge_inside(graph, never if isinstance(question, VertexCover) else must)
+    if clash is None:
+        raise CheckFailed("the verdict is INFEASIBLE, but the pins do not contradict each other")
+    return Confirmed((f"the pins contradict each other at the edge {clash}",), ())
+
+
+def _chosen_mask(graph: Graph, answer: Answer) -> Mask:
+    """The choice as a mask; its vertices have to ascend and to exist."""
+    chosen = answer.chosen.astype(np.int64)
+    if chosen.size and int(chosen.max()) >= graph.n:
+        raise CheckFailed(f"vertex {int(chosen.max())} is chosen, but the graph has {graph.n} vertices")
+    disorder = np.flatnonzero(np.diff(chosen) <= 0)
+    if disorder.size:
+        raise CheckFailed(f"the chosen vertices do not ascend at vertex {graph.label(int(chosen[disorder[0] + 1]))}")
+    return _mask(graph, chosen.tolist(), "chosen")
+
+
+def _mask(graph: Graph, vertices: Iterable[Pin], field: str) -> Mask:
+    mask = np.zeros(graph.n, np.bool_)
+    numbers = [graph.vertex(v) if isinstance(v, str) else v for v in vertices]
+    if numbers and max(numbers) >= graph.n:
+        raise CheckFailed(f"{field} has vertex {max(numbers)}, but the graph has {graph.n} vertices")
+    mask[numbers] = True
+    return mask
+
+
+def _edge_inside(graph: Graph, mask: Mask) -> str | None:
+    """The first edge with both ends in a set."""
+    u, v = graph.edges()
+    inside = mask[u] & mask[v]
+    if not inside.any():
+        return None
+    place = int(inside.argmax())
+    return f"{{{graph.label(int(u[place]))}, {graph.label(int(v[place]))}}}"
+
+
+def _check_definition(graph: Graph, question: Choice, chosen: Mask) -> str:
+    """The choice meets the definition of the question and its pins."""
+    _check_pins(graph, question, chosen)
+    if isinstance(question, IndependentSet):
+        clash = _edge_inside(graph, chosen)
+        if clash is not None:
+            raise CheckFailed(f"the chosen set has the edge {clash} inside")
+        return f"no edge lies inside the {int(chosen.sum())} chosen vertices"
+    if isinstance(question, VertexCover):
+        clash = _edge_inside(graph, ~chosen)
+        if clash is not None:
+            raise CheckFailed(f"the chosen set does not touch the edge {clash}")
+        return f"the {int(chosen.sum())} chosen vertices touch all {graph.m} edges"
+    raise CheckFailed(f"this client cannot check the question {question.name!r}; update it")
+
+
+def _check_pins(graph: Graph, question: Choice, chosen: Mask) -> None:
+    absent = np.flatnonzero(_mask(graph, question.must, "must") & ~chosen)
+    if absent.size:
+        raise CheckFailed(f"vertex {graph.label(int(absent[0]))} must be chosen, but is not")
+    present = np.flatnonzero(_mask(graph, question.never, "never") & chosen)
+    if present.size:
+        raise CheckFailed(f"vertex {graph.label(int(present[0]))} must not be chosen, but is")
+
+
+def weights_of(graph: Graph) -> NDArray[np.int64]:
+    """The weights of a graph, written down."""
+    return np.ones(graph.n, np.int64) if graph.weights is None else graph.weights
+
+
+def _check_value(graph: Graph, answer: Answer, chosen: Mask) -> str:
+    weight = weight_sum(weights_of(graph)[chosen])
+    if weight != answer.value:
+        raise CheckFailed(f"the value is given as {answer.value}, but the chosen vertices weigh {weight}")
+    return f"the chosen vertices weigh {weight}"
+
+
+def _check_bound(graph: Graph, answer: Answer, question: Choice) -> str | None:
+    """Words for a bound that is plain from the weights alone; None where it takes a proof.
+
+    Every solution holds all `must` vertices and no `never` vertex, so it weighs at least the first and at most all but
+    the second. A bound on the wrong side of the value, or a PROVEN one that does not meet it, is wrong in any case.
+    """
+    check_sides(answer)
+    bound = answer.bound
+    assert bound is not None, "check_sides refuses its absence"
+    weights = weights_of(graph)
+    if question.maximises and bound >= weight_sum(weights[~_mask(graph, question.never, "never")]):
+        return f"the bound {bound}: all vertices that may be chosen weigh no more"
+    if not question.maximises and bound <= weight_sum(weights[_mask(graph, question.must, "must")]):
+        return f"the bound {bound}: the vertices that must be chosen weigh no less"
+    return None
