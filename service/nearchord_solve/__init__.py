@@ -9,8 +9,8 @@ from nearchord_solve.errors import GraphError, SolverError
 from nearchord_solve.graph import Graph
 from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Monitor, Phase, Stop
-from nearchord_solve.outcome import Outcome, Verdict
-from nearchord_solve.questions import QUESTIONS, IndependentSet, VertexCover
+from nearchord_solve.outcome import Outcome, Prediction, Recognition, StructureReport, Verdict
+from nearchord_solve.questions import QUESTIONS, Fill, IndependentSet, Structure, VertexCover
 from nearchord_solve.solving import solve
 from nearchord_solve.warm import warm_up
 
@@ -20,14 +20,19 @@ __all__ = [
     "QUESTIONS",
     "VERSION",
     "Budget",
+    "Fill",
     "Graph",
     "GraphError",
     "IndependentSet",
     "Monitor",
     "Outcome",
     "Phase",
+    "Prediction",
+    "Recognition",
     "SolverError",
     "Stop",
+    "Structure",
+    "StructureReport",
     "Verdict",
     "VertexCover",
     "predicted_bytes",

@@ -26,3 +26,8 @@ def quotient_bytes(n: int, m: int) -> int:
 def table_bytes(entries: I64) -> I64:
     """Memory of so many table entries: label 4, end 8 and value 8 bytes."""
     return np.asarray(entries, np.int64) * 20
+
+
+def state_bytes(states: int) -> int:
+    """Memory of states kept with their way back: value 8, origin 8 and set 8 bytes."""
+    return states * 24

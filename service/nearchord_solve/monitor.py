@@ -25,7 +25,8 @@ class Stop(IntEnum):
 
 
 class Phase(IntEnum):
-    """Where a solve is; phases come in this order, some are skipped, and a hard graph is ordered twice."""
+    """Where a solve is; phases come in this order, some are skipped; a hard graph is ordered twice, and a search for
+    less fill goes through FILL, IMPROVE and TREE again."""
 
     READ = 0
     ORDER = 1

@@ -19,7 +19,7 @@ class Verdict(Enum):
 
 @dataclass(frozen=True)
 class Recognition:
-    """Classes of a graph; None where it was not settled."""
+    """Which well-known classes the graph belongs to; None where that was not settled."""
 
     chordal: bool | None
     interval: bool | None
@@ -29,7 +29,11 @@ class Recognition:
 
 @dataclass(frozen=True)
 class Prediction:
-    """What an exact answer would take; ``colours`` is 0 where the question takes none."""
+    """What an exact answer would take.
+
+    ``colours``: 0 where the question takes none.  ``states``: states that count against a state budget, at least so
+    many if ``at_least``.  ``memory_bytes``: what the solve would hold.  ``fits``: both are within the budget.
+    """
 
     question: str
     colours: int
@@ -41,7 +45,8 @@ class Prediction:
 
 @dataclass(frozen=True)
 class StructureReport:
-    """How a graph falls apart."""
+    """How a graph falls apart: connected components, vertices of the largest fill core (0 without one), and what each
+    question would cost."""
 
     components: int
     largest_core: int
@@ -53,12 +58,14 @@ class Outcome:
     """The answer of a solve and what it took.
 
     ``value``, ``bound``: int or None where there is none; ``bound`` is an upper bound when maximising, a lower
-    bound when minimising.  ``chosen`` uint32, ascending.  ``fill``: fill edges used, None if no triangulation
-    was finished; ``fill_lower_bound``: no triangulation has fewer.  ``states``: states in bags that hold fill
+    bound when minimising.  ``chosen`` uint32, ascending, None for questions that choose no vertices.
+    ``fill``: fill edges used, None if no triangulation was finished; ``fill_lower_bound``: no triangulation has fewer.
+    ``states``: states in bags that hold fill
     (bags without fill need no table), None if not counted.  ``parts``: what remains when the tree of bags is
     cut at adhesions without fill; ``fill_cores``: parts that hold fill.  ``proof``: "search" if the bound can
     be recomputed only, "certificate" if a checker can confirm it, "none" if nothing is proven;
-    ``proof_kinds``: one per fill core.  ``reason``: in words, never empty.
+    ``proof_kinds``: one per fill core.  ``reason``: in words, never empty.  ``columns``: further arrays by name,
+    uint32 (vertices) or int64.
     """
 
     verdict: Verdict

@@ -8,13 +8,13 @@ from nearchord_solve.errors import SolverError
 from nearchord_solve.graph import Graph
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.outcome import Outcome
-from nearchord_solve.questions import IndependentSet, VertexCover
+from nearchord_solve.questions import Question
 
 MOST_WEIGHT = 2**62  # sums of weights stay below, so that sums and differences of two fit int64
 
 
 def solve(
-    question: IndependentSet | VertexCover,
+    question: Question,
     graph: Graph,
     weights: I64 | None,
     budget: Budget,

@@ -6,23 +6,24 @@ import numpy as np
 
 from nearchord_solve.budget import Budget
 from nearchord_solve.fill import find_cores, triangulate
+from nearchord_solve.fill.exact.rehearse import rehearse
 from nearchord_solve.graph import Graph
 from nearchord_solve.kernels.triangulate import best_triangulation
 from nearchord_solve.monitor import Monitor, Phase, Stop
 from nearchord_solve.order import Unfinished, eliminate, rank, rank_by_degree
-from nearchord_solve.questions import IndependentSet, VertexCover
+from nearchord_solve.questions import Fill, IndependentSet, Structure, VertexCover
 from nearchord_solve.solving import solve
 
 Report = Callable[[int, int], None]
 
-STAGES = 11  # what _compile yields
+STAGES = 18  # what _compile yields
 
 
 def warm_up(report: Report | None = None) -> None:
     """Run tiny solves that together call every kernel with the production types.
 
     Afterwards nothing is compiled any more, in this process or, through numba's disk cache, in later ones.  Cold,
-    that takes half a minute of processor time.  ``report(done, total)`` hears of each stage.
+    that takes a minute of processor time.  ``report(done, total)`` hears of each stage.
     """
     heard = report if report is not None else lambda done, total: None
     heard(0, STAGES)
@@ -61,6 +62,11 @@ def _compile() -> Iterator[None]:
     monitor = Monitor(on_phase=lambda phase: _stop_in_fill(monitor, phase))
     solve(IndependentSet(), square, None, Budget(), "bound", monitor)
     yield
+    solve(Fill(), square, None, Budget(), "bound", Monitor())
+    yield
+    solve(Structure(), square, None, Budget(), "bound", Monitor())
+    yield
+    yield from rehearse()
 
 
 def _stop_in_fill(monitor: Monitor, phase: Phase) -> None:

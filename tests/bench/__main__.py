@@ -13,6 +13,7 @@ from bench import machine
 from bench.options import Options
 from bench.scenarios import SCENARIOS
 
+PIPED_WIDTH = 120  # columns of a table that no terminal limits
 RESULTS = Path(__file__).resolve().parent / "results"
 
 
@@ -23,6 +24,8 @@ def main() -> None:
     if unknown := set(arguments.scenario) - set(SCENARIOS):
         parser.error(f"unknown scenario {', '.join(sorted(unknown))}; known: {', '.join(SCENARIOS)}")
     console = Console()
+    if not console.is_terminal:
+        console = Console(width=PIPED_WIDTH)
     options = Options(
         out=arguments.out / "quick" if arguments.quick else arguments.out,
         quick=arguments.quick,

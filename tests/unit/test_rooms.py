@@ -39,7 +39,7 @@ PORT_ONLY = {
     f"{SERVICE}.metrics",
     f"{SERVICE}.settings",
 }
-PURE_MAY = {"numpy", "numba"}
+PURE_MAY = {"numpy", "numba", "highspy"}
 GRPC_ROOMS = (f"{SERVICE}.api", f"{SERVICE}.main", "nearchord.")
 
 

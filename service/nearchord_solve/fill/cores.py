@@ -48,14 +48,32 @@ def find_cores(numbering: Numbering, monitor: Monitor) -> Cores | Unfinished:
 
 
 def triangulate(
-    numbering: Numbering, cores: Cores, most_states: int, least_fill: bool, monitor: Monitor
+    numbering: Numbering, cores: Cores, most_states: int, least_fill: bool, monitor: Monitor, known: I32 | None = None
 ) -> Forest | Unfinished:
     """Triangulate every core and write all down as a forest of bags.
 
     ``most_states`` caps the counting of states in each core.  With ``least_fill`` the candidate with the least
-    fill is taken, otherwise the one with the fewest states.
+    fill is taken, otherwise the one with the fewest states.  ``known`` int32[k, 2], pairs of vertices: a minimal
+    fill, to be taken in all cores of at most ``DENSE_LIMIT`` vertices.
     """
+    given_ptr, given = np.empty(0, np.int64), np.empty((0, 2), np.int32)
+    if known is not None:
+        given_ptr, given = _by_core(numbering, cores, known)
     done, forest = core_kernels.build_forest(
-        numbering, cores.ptr, cores.place, DENSE_LIMIT, most_states, least_fill, monitor.cells
+        numbering, cores.ptr, cores.place, DENSE_LIMIT, most_states, least_fill, given_ptr, given, monitor.cells
     )
     return forest if done else Unfinished.STOPPED
+
+
+def _by_core(numbering: Numbering, cores: Cores, known: I32) -> tuple[I64, I32]:
+    """Pairs of vertices as pairs of places, core by core.
+
+    Two vertices of a core that are not adjacent are not both shared with what lies above it, so the one at the
+    higher place is settled by the core.
+    """
+    place = np.empty(numbering.order.size, np.int32)
+    place[numbering.order] = np.arange(place.size, dtype=np.int32)
+    pairs = place[known]
+    core = numbering.core[pairs.max(axis=1, initial=0)]
+    ptr = np.concatenate((np.zeros(1, np.int64), np.cumsum(np.bincount(core, minlength=cores.ptr.size - 1))))
+    return ptr, np.ascontiguousarray(pairs[np.argsort(core, kind="stable")])

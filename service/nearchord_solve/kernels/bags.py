@@ -133,3 +133,20 @@ def count_parts(kind: U8) -> tuple[int, int]:
         elif not kind[b] & ADHESION_FILL:
             cores += 1
     return cores, plain
+
+
+@kernel
+def fill_parts(bag_above: I32, bag_kind: U8) -> tuple[int, I32]:
+    """The number of parts that hold fill, and the part of each bag, int32[B]: -1 for bags without fill.
+
+    Bags follow the bag above them.  A bag with fill in its adhesion belongs to the part of the bag above.
+    """
+    part = np.full(bag_kind.shape[0], -1, np.int32)
+    count = 0
+    for b in range(bag_kind.shape[0]):
+        if bag_kind[b] & ADHESION_FILL:
+            part[b] = part[bag_above[b]]
+        elif bag_kind[b] & BAG_FILL:
+            part[b] = count
+            count += 1
+    return count, part

@@ -8,7 +8,7 @@ from nearchord_solve.kernels.bags import count_parts, count_states, write_bags
 from nearchord_solve.kernels.cells import STEP, STOP
 from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
 from nearchord_solve.kernels.core_lists import core_vertices, dense_lists, dense_rows, sparse_lists
-from nearchord_solve.kernels.dense import list_fill
+from nearchord_solve.kernels.dense import list_fill, number_from, set_pair
 from nearchord_solve.kernels.grow import grown8, grown32, grown64
 from nearchord_solve.kernels.layout import (
     FILL_EDGES,
@@ -86,6 +86,19 @@ def plan_core(
 
 
 @kernel
+def plan_given(nb: Numbering, places: I32, anchors: int, given: I32, local: I32) -> Plan:
+    """Elimination order of one core of a known minimal fill: ``given`` int32[k, 2], places of its vertices."""
+    real, full = dense_rows(places, anchors, nb.low_ptr, nb.low, nb.fill_end, nb.fill, local)
+    full = real.copy()
+    for e in range(given.shape[0]):
+        set_pair(full, local[given[e, 0]], local[given[e, 1]])
+    order = np.empty(places.shape[0], np.int32)
+    number_from(full, anchors, order)
+    lists = dense_lists(real, full, anchors, order)
+    return Plan(places[order], lists[0], lists[1], lists[2], lists[3], 0, True)
+
+
+@kernel
 def append_slots(draft: Draft, plan: Plan, slots: int) -> Draft:
     """Write the slots of a core behind the first ``slots`` ones."""
     k = plan.place.shape[0]
@@ -146,9 +159,13 @@ def note_figures(figures: I64, plan: Plan, kind: U8, states: int, table: int) ->
 
 @kernel
 def build_forest(
-    nb: Numbering, core_ptr: I64, core_place: I32, dense_limit: int, most: int, least_fill: bool, cells: I64
-) -> tuple[bool, Forest]:
+    nb: Numbering, core_ptr: I64, core_place: I32, dense_limit: int, most: int, least_fill: bool,
+    given_ptr: I64, given: I32, cells: I64,
+) -> tuple[bool, Forest]:  # fmt: skip
     """Build the forest of all cores; (False if stopped, forest).
+
+    If ``given_ptr`` int64[cores+1] is not empty, then ``given[given_ptr[c]:given_ptr[c+1]]``, pairs of places, are a
+    minimal fill of core c, if it has at most ``dense_limit`` vertices.
 
     Cores of at most ``dense_limit`` vertices are triangulated anew on bitset rows; larger ones keep the
     elimination order of the whole graph.  ``most`` caps the counting of states per core.
@@ -167,7 +184,10 @@ def build_forest(
             break
         homes = core_place[core_ptr[c] : core_ptr[c + 1]]
         places, anchors = core_vertices(homes, nb.low_ptr, nb.low, nb.fill_end, nb.fill, local)
-        plan = plan_core(nb, places, anchors, dense_limit, most, least_fill, local, cells)
+        if given_ptr.shape[0] > 0 and places.shape[0] <= dense_limit:
+            plan = plan_given(nb, places, anchors, given[given_ptr[c] : given_ptr[c + 1]], local)
+        else:
+            plan = plan_core(nb, places, anchors, dense_limit, most, least_fill, local, cells)
         for p in places:
             local[p] = -1
         ptr, rank, adhesion, above, kind = write_bags(anchors, plan.later_ptr, plan.later, plan.fill_ptr, plan.fill)

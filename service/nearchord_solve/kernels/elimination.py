@@ -154,6 +154,24 @@ def _count_cliques(low_ptr: I64, core: I32, covered: U8, sizes: I64) -> None:
 
 
 @kernel
+def clique_sizes(low_ptr: I64, parent: I32, fill_end: I64, core: I32, largest: int) -> I64:
+    """How many maximal cliques K(i) without fill there are of each size: int64[largest + 1].  O(n)."""
+    n = parent.shape[0]
+    covered = np.zeros(n, np.uint8)
+    for i in range(n):
+        p = parent[i]
+        if p >= 0:
+            size = low_ptr[i + 1] - low_ptr[i] + fill_end[i] - fill_end[i + 1]
+            if size == low_ptr[p + 1] - low_ptr[p] + fill_end[p] - fill_end[p + 1] + 1:
+                covered[p] = 1
+    count = np.zeros(largest + 1, np.int64)
+    for i in range(n):
+        if core[i] < 0 and covered[i] == 0:
+            count[low_ptr[i + 1] - low_ptr[i] + 1] += 1
+    return count
+
+
+@kernel
 def list_cores(core: I32, cores: int, places: int) -> tuple[I64, I32]:
     """Places of each core, ascending: (``core_ptr`` int64[cores+1], ``core_place`` int32[places]).  O(n)."""
     core_ptr = np.zeros(cores + 1, np.int64)

@@ -31,12 +31,13 @@ def best_triangulation(
     Candidates: the given ``full`` (overwritten by its thinning), least degree, least missing pairs, each
     thinned.  Fewest states wins (fewest fill edges if ``least_fill``), then the other of the two, then the
     first.  If the first has at most ``easy`` states and ``least_fill`` is off, it is taken at once.  Each
-    candidate may cost ``EFFORT`` words; beyond it is left out, or left unthinned.
+    candidate may cost ``EFFORT`` words; beyond it is left out, or left unthinned.  Any ``most`` that is not below the
+    states of the result gives the same result.
     """
     effort = np.array([EFFORT])
     _, minimal = thin(full, list_fill(real, full), effort, cells)
     states, fill, order = judge(real, full, anchors, most, cells)
-    if states <= easy and not least_fill:
+    if states <= min(easy, most) and not least_fill:
         return full, order, minimal
     for method in range(2):
         other = np.empty_like(real)

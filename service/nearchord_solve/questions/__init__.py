@@ -1,11 +1,17 @@
 """The questions that a solve can answer, one module each."""
 
+from nearchord_solve.questions.fill import Fill
 from nearchord_solve.questions.independent_set import IndependentSet
+from nearchord_solve.questions.structure import Structure
 from nearchord_solve.questions.vertex_cover import VertexCover
 
-QUESTIONS: dict[str, type[IndependentSet] | type[VertexCover]] = {
+Question = IndependentSet | VertexCover | Fill | Structure
+
+QUESTIONS: dict[str, type[Question]] = {
     "independent-set": IndependentSet,
     "vertex-cover": VertexCover,
+    "fill": Fill,
+    "structure": Structure,
 }
 
-__all__ = ["QUESTIONS", "IndependentSet", "VertexCover"]
+__all__ = ["QUESTIONS", "Fill", "IndependentSet", "Question", "Structure", "VertexCover"]

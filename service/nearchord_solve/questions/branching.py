@@ -17,8 +17,9 @@ from nearchord_solve.kernels.layout import STATES
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.questions.gauge import Gauge
 from nearchord_solve.questions.pins import Contradiction, Rest, apply_pins
+from nearchord_solve.structure import Structure
 from nearchord_solve.sweep import sweep
-from nearchord_solve.tree import Partial, Structure, build_structure
+from nearchord_solve.tree import Partial, build_structure
 
 SHARE = 64  # a node may use this part of the state budget
 WORK = 32  # all nodes together may use this many state budgets

@@ -5,6 +5,7 @@ from collections.abc import Callable
 import numpy as np
 
 from nearchord_solve.arrays import U32
+from nearchord_solve.monitor import Monitor, Stop
 from nearchord_solve.outcome import Outcome, Verdict
 from nearchord_solve.questions.heaviest import Found
 from nearchord_solve.questions.pins import Contradiction
@@ -19,6 +20,27 @@ def contradiction(pins: Contradiction, inside: str, outside: str) -> Outcome:
         reason = f"the pins contradict each other: adjacent vertices {pins.one} and {pins.other} both {inside}"
     nothing = np.empty(0, np.uint32)
     return Outcome(Verdict.INFEASIBLE, None, None, nothing, None, 0, None, 0, 0, 0, 0, "none", (), reason)
+
+
+def without_structure(monitor: Monitor, reason: str) -> Outcome:
+    """The end of a question about the fill that came to nothing: cancelled, or bounded by nought from below."""
+    cancelled = monitor.stop is Stop.CANCEL
+    return Outcome(
+        verdict=Verdict.CANCELLED if cancelled else Verdict.BOUNDED,
+        value=None,
+        bound=None if cancelled else 0,
+        chosen=None,
+        fill=None,
+        fill_lower_bound=0,
+        states=None,
+        bags=0,
+        largest_bag=0,
+        parts=0,
+        fill_cores=0,
+        proof="none",
+        proof_kinds=(),
+        reason="cancelled on request" if cancelled else reason,
+    )
 
 
 def outcome_of(found: Found, offset: int, sign: int, lift: Callable[[U32], U32]) -> Outcome:

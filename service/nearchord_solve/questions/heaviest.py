@@ -1,6 +1,6 @@
 """The heaviest independent set of a graph without pins: exact where the budgets allow, an interval where not."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -15,8 +15,10 @@ from nearchord_solve.order import Unfinished
 from nearchord_solve.outcome import Verdict
 from nearchord_solve.questions.branching import Branching
 from nearchord_solve.questions.gauge import Gauge
+from nearchord_solve.refine import over_fill, search_less_fill
+from nearchord_solve.structure import Structure
 from nearchord_solve.sweep import sweep
-from nearchord_solve.tree import Partial, Structure, build_structure
+from nearchord_solve.tree import Partial, build_structure
 
 
 @dataclass(frozen=True, eq=False)
@@ -62,8 +64,14 @@ def find_heaviest(task: Task) -> Found:
     structure = build_structure(task.graph, task.budget, task.gauge.monitor)
     if isinstance(structure, Partial):
         return _without_structure(task, structure)
-    over = _over_fill(task, structure)
-    return over if over is not None else _with_structure(task, structure)
+    if task.when_over == "stop" and over_fill(structure, task.budget):
+        structure = search_less_fill(task.graph, structure, task.budget, task.gauge.monitor)
+        if over_fill(structure, task.budget):
+            return _over_fill(task, structure)
+    found = _with_structure(task, structure)
+    if found.verdict is Verdict.BOUNDED and over_fill(structure, task.budget) and not task.stop:
+        return _with_less_fill(task, structure, found)
+    return found
 
 
 def _close(task: Task, chosen: U8, bound: int, structure: Structure | None, reason: str) -> Found:
@@ -92,25 +100,40 @@ def _without_structure(task: Task, partial: Partial) -> Found:
     else:
         chosen, bound = bounds.cover_pair(partial.ranking, task.weights)
     if partial.why is Unfinished.STOPPED:
-        where = "ordering" if partial.ranking is None else "triangulating"
-        return _close(task, chosen, bound, None, f"seconds ran out while {where} the graph")
-    reason = "memory budget: the fill of the graph is too large to hold"
+        return _close(task, chosen, bound, None, partial.reason)
     everything = np.arange(task.graph.n, dtype=np.int32)
-    return _search_on(task, chosen, bound, everything, None, reason)
+    return _search_on(task, chosen, bound, everything, None, partial.reason)
 
 
-def _over_fill(task: Task, structure: Structure) -> Found | None:
-    """End early if the fill budget does not suffice and the job asked to stop there."""
+def _over_fill(task: Task, structure: Structure) -> Found:
+    """End because the fill budget does not suffice, as far as the exact search could tell, and the job stops there."""
+    if task.stop is Stop.CANCEL:
+        return _cancelled(structure)
     most = task.budget.fill
-    if most is None or structure.fill <= most or task.when_over != "stop":
-        return None
     lower = structure.fill_lower_bound
-    if lower > most:
+    if most is not None and lower > most:
         reason = f"fill budget: at least {lower} fill edges are needed, {most} are allowed"
         return Found(Verdict.OVER_FILL, None, None, None, structure, reason)
     reason = f"fill budget: {structure.fill} fill edges were found, {most} are allowed, at least {lower} are needed"
+    if task.stop is Stop.SECONDS:
+        reason += "; seconds ran out in the search for fewer"
     chosen, bound = bounds.cover_pair(structure.ranking, task.weights)
     return _close(task, chosen, bound, structure, reason)
+
+
+def _with_less_fill(task: Task, structure: Structure, found: Found) -> Found:
+    """A last resort where more fill than budgeted was used and the states did not suffice: search for less fill."""
+    other = search_less_fill(task.graph, structure, task.budget, task.gauge.monitor)
+    if task.stop is Stop.CANCEL:
+        return _cancelled(other)
+    fits = other.fitting(task.budget)
+    if not over_fill(other, task.budget) and fits.all():
+        swept = sweep(other, task.weights, fits, task.gauge.monitor)
+        if swept is not None and swept.chosen is not None:
+            return _proven(task, other, swept.bound, swept.chosen)
+    if other.fill != structure.fill:
+        other = replace(structure, plain=False, proven=other.fill_lower_bound)
+    return replace(found, structure=other)
 
 
 def _with_structure(task: Task, structure: Structure) -> Found:

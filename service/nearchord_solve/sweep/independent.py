@@ -8,7 +8,7 @@ from nearchord_solve.arrays import I64, U8, U32
 from nearchord_solve.kernels import sweep as kernels
 from nearchord_solve.kernels.layout import TABLE, Tries
 from nearchord_solve.monitor import Monitor, Phase
-from nearchord_solve.tree import Structure
+from nearchord_solve.structure import Structure
 
 
 @dataclass(frozen=True, eq=False)

@@ -5,6 +5,7 @@ import pytest
 from definition import heaviest_independent, is_independent
 from nearchord_solve import (
     Budget,
+    Fill,
     Graph,
     IndependentSet,
     Monitor,
@@ -29,6 +30,15 @@ EDGES = random_edges(N, 0.25, 1)
 WEIGHTS = np.random.default_rng(2).integers(1, 30, N)
 BEST = heaviest_independent(N, EDGES, WEIGHTS.tolist())
 SQUARE = [(0, 1), (1, 2), (2, 3), (0, 3)]
+QUEENS = (
+    25,
+    [
+        (u, v)
+        for v in range(25)
+        for u in range(v)
+        if u // 5 == v // 5 or u % 5 == v % 5 or abs(u // 5 - v // 5) == abs(u % 5 - v % 5)
+    ],
+)
 
 
 def run(budget: Budget, when_over: str, monitor: Monitor | None = None) -> Outcome:
@@ -116,13 +126,55 @@ def test_more_fill_than_budgeted_is_used_and_said() -> None:
     assert "more fill than the 0 budgeted" in outcome.reason
 
 
-def test_fill_between_lower_bound_and_budget_is_bounded_with_stop() -> None:
-    free = run(Budget(), "stop")
-    assert free.fill is not None
-    assert free.fill > free.fill_lower_bound
-    outcome = run(Budget(fill=free.fill_lower_bound), "stop")
-    assert_valid_pair(outcome)
+HARD_FILL = (14, random_edges(14, 0.3, 9))  # no greedy rule comes near its least fill
+
+
+def least_fill_found() -> int:
+    outcome = solve(Fill(), Graph.from_edges(*HARD_FILL), None, Budget(), "bound", Monitor())
+    assert outcome.verdict is Verdict.PROVEN
+    return outcome.value
+
+
+@pytest.mark.parametrize(("when_over", "states"), [("stop", 10**7), ("bound", 30)])
+def test_exact_search_meets_fill_budgets_that_heuristics_do_not(
+    when_over: str, states: int, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Before a job may end over its fill budget, or without a proof."""
+    least = least_fill_found()
+    graph = Graph.from_edges(*HARD_FILL)
+    greedy = tree_module.build_structure(graph, Budget(fill=least), Monitor())
+    assert greedy.fill > least
+    outcome = solve(IndependentSet(), graph, None, Budget(fill=least, states=states), when_over, Monitor())
+    if outcome.states <= states:
+        assert outcome.verdict is Verdict.PROVEN
+        assert outcome.fill == least
+    assert outcome.fill_lower_bound == least
+
+
+def test_exact_search_proves_that_a_fill_budget_is_too_small() -> None:
+    """Where the bounds of the heuristics leave it open."""
+    least = least_fill_found()
+    graph = Graph.from_edges(*HARD_FILL)
+    assert tree_module.build_structure(graph, Budget(fill=least - 1), Monitor()).fill_lower_bound < least
+    outcome = solve(IndependentSet(), graph, None, Budget(fill=least - 1), "stop", Monitor())
+    assert outcome.verdict is Verdict.OVER_FILL
+    assert outcome.reason == f"fill budget: at least {least} fill edges are needed, {least - 1} are allowed"
+
+
+def test_a_search_for_less_fill_that_is_stopped_is_bounded_with_stop() -> None:
+    """With what is known by then."""
+
+    def stop_there(phase: Phase) -> None:
+        if phase is Phase.IMPROVE:
+            monitor.cells[Monitor.STOP] = Stop.SECONDS
+
+    monitor = Monitor(on_phase=stop_there)
+    outcome = solve(IndependentSet(), Graph.from_edges(*QUEENS), None, Budget(fill=92), "stop", monitor)
+    assert outcome.verdict is Verdict.BOUNDED
+    assert outcome.value <= 5 <= outcome.bound
+    assert outcome.fill_lower_bound <= 93 <= outcome.fill
     assert outcome.reason.startswith("fill budget: ")
+    assert outcome.reason.endswith("seconds ran out in the search for fewer")
 
 
 def test_least_fill_is_taken_when_the_budget_asks_for_it() -> None:

@@ -288,3 +288,14 @@ def test_a_long_strip_in_natural_order_is_settled() -> None:
 def test_order_by_degree_gives_up_when_its_cliques_grow_too_large() -> None:
     edges = random_graph(60, 0.3, 1)
     assert rank_by_degree(Graph.from_edges(60, edges), 5, Monitor()) is Unfinished.TOO_LARGE
+
+
+def test_what_hangs_from_a_core_by_a_clique_stays_outside() -> None:
+    """A square with a long chain of triangles before and behind: the core is the square alone."""
+    chain = [(v, v + step) for v in range(40) for step in (1, 2)]
+    square = [(20, 50), (50, 51), (51, 52), (20, 52)]
+    tail = [(51, 60), *((v, v + 1) for v in range(60, 90))]
+    structure = structure_of(91, chain + square + tail)
+    assert structure.cores.place.size <= 4
+    assert structure.forest.slot_place.size <= 4
+    assert structure.fill == 1

@@ -1,0 +1,39 @@
+"""Calling every kernel of the exact search and of recognition once, so that nothing is left to compile."""
+
+from collections.abc import Iterator
+from itertools import product
+
+from nearchord_solve.budget import Budget
+from nearchord_solve.fill.exact.blocks import solve_blocks
+from nearchord_solve.fill.exact.core import Core
+from nearchord_solve.fill.exact.subsets import solve_subsets
+from nearchord_solve.fill.exact.whole import fill_of_graph
+from nearchord_solve.graph import Graph
+from nearchord_solve.monitor import Monitor
+from nearchord_solve.recognise import recognise_chordal, recognise_interval
+from nearchord_solve.structure import Structure
+from nearchord_solve.tree import build_structure
+
+MANY = 1000
+
+
+def rehearse() -> Iterator[None]:
+    """One step at a time; each yields when it is done.  About a minute when nothing is compiled yet."""
+    side = range(3)
+    right = [(3 * i + j, 3 * i + j + 1) for i, j in product(side, range(2))]
+    down = [(3 * i + j, 3 * i + j + 3) for i, j in product(range(2), side)]
+    grid = Graph.from_edges(9, right + down)
+    core = Core.from_rows(grid.ptr, grid.adj)
+    cells = Monitor().cells
+    recognise_chordal(grid, Monitor())
+    yield
+    recognise_interval(Graph.from_edges(3, [(0, 1), (1, 2)]), Monitor())
+    yield
+    solve_subsets(core, MANY, cells)
+    yield
+    solve_blocks(core, MANY, {}, 0, MANY, cells)
+    yield
+    structure = build_structure(grid, Budget(), Monitor())
+    assert isinstance(structure, Structure)
+    fill_of_graph(grid, structure, None, Monitor())
+    yield

@@ -1,0 +1,116 @@
+"""Cutting planes: a lower bound from the relaxation and fills guided by its point, until they meet or progress ends."""
+
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from nearchord_solve.arrays import F64
+from nearchord_solve.fill.exact.core import Core, Pair
+from nearchord_solve.fill.exact.cycles import Cycle, violated
+from nearchord_solve.fill.exact.greedy import completed, prices_of
+from nearchord_solve.fill.exact.kernels.greedy import BY_FILL
+from nearchord_solve.fill.exact.packing import exact_bound, rounded, sides_and_chords
+from nearchord_solve.fill.exact.relaxation import Relaxation
+from nearchord_solve.monitor import Monitor
+
+THRESHOLDS = (1e-6, 0.5, 0.99, 0.3, 0.7)
+MOST_ROUNDS = 400
+PATIENCE = 20
+LEAST_PROGRESS = 0.02
+CUTS_A_ROUND = 400
+CUTS_A_PAIR = 6
+
+
+@dataclass
+class Bounds:
+    """Where the search for one core stands.
+
+    ``best``: the cheapest fill found (pairs of classes), of cost ``upper``; every fill costs at least ``lower``, which
+    ``cycles`` with multipliers ``numerators`` prove when ``lower`` came from the relaxation.
+    """
+
+    best: list[Pair]
+    upper: int
+    lower: int = 0
+    cycles: list[Cycle] = field(default_factory=list)
+    numerators: list[int] = field(default_factory=list)
+
+    @property
+    def closed(self) -> bool:
+        """Whether the bounds meet."""
+        return self.lower >= self.upper
+
+    def offer(self, core: Core, pairs: list[Pair]) -> None:
+        """Keep a fill if it is cheaper."""
+        cost = core.cost(pairs)
+        if cost < self.upper:
+            self.best, self.upper = pairs, cost
+
+    def raise_to(self, core: Core, relaxation: Relaxation) -> None:
+        """Work out the bound of the relaxation's multipliers exactly and keep it if it is better."""
+        numerators = rounded(relaxation.duals().tolist())
+        bound = exact_bound(core, relaxation.cycles, numerators, {})
+        if bound > self.lower:
+            self.lower, self.numerators, self.cycles = bound, numerators, list(relaxation.cycles)
+
+
+def cut(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> Relaxation:
+    """Improve ``bounds`` by rounds of cuts until closed, over ``most``, out of cuts or of progress, or stopped."""
+    relaxation = Relaxation(core, monitor)
+    values: list[float] = []
+    relaxation.add(
+        selected(violated(core, np.zeros((core.n, core.n)), THRESHOLDS, 3 * CUTS_A_ROUND, monitor.cells), CUTS_A_ROUND)
+    )
+    for turn in range(MOST_ROUNDS):
+        value = relaxation.solve()
+        if value is None or monitor.stop:
+            break
+        values.append(value)
+        if np.ceil(value - 1e-6) > bounds.lower:
+            bounds.raise_to(core, relaxation)
+        point = relaxation.point()
+        if turn % 3 == 2:
+            guided(core, point, bounds, 1)
+        if bounds.closed or bounds.lower > most:
+            break
+        fresh = found_at(core, point, monitor)
+        relaxation.drop_idle(4)
+        stalled = len(values) > PATIENCE and value - values[-PATIENCE] < LEAST_PROGRESS
+        if stalled or not relaxation.add(fresh):
+            break
+    if not bounds.closed and relaxation.cycles and not monitor.stop and relaxation.solve() is not None:
+        guided(core, relaxation.point(), bounds, 24)
+    return relaxation
+
+
+def found_at(core: Core, point: F64, monitor: Monitor) -> list[Cycle]:
+    """A round of cuts violated at ``point``."""
+    return selected(violated(core, point, THRESHOLDS, 3 * CUTS_A_ROUND, monitor.cells), CUTS_A_ROUND)
+
+
+def selected(cycles: list[Cycle], most: int) -> list[Cycle]:
+    """The first ones, passing over those whose chords are all used often already."""
+    used: dict[Pair, int] = {}
+    kept = []
+    for cycle in cycles:
+        _, chords = sides_and_chords(cycle)
+        if all(used.get(pair, 0) >= CUTS_A_PAIR for pair in chords):
+            continue
+        for pair in chords:
+            used[pair] = used.get(pair, 0) + 1
+        kept.append(cycle)
+        if len(kept) == most:
+            break
+    return kept
+
+
+def guided(core: Core, x: F64, bounds: Bounds, tries: int) -> None:
+    """Greedy eliminations in which a fill edge is the cheaper the closer x is to 1 there."""
+    random = np.random.default_rng(tries)
+    for turn in range(tries):
+        floor = (0.001, 0.05, 0.2)[turn % 3]
+        noise = random.random(core.n) * 0.3 * (turn // 3)
+        price = prices_of(core) * (1.0 - x + floor)
+        bounds.offer(core, completed(core, BY_FILL, price, noise))
+        if bounds.closed:
+            break

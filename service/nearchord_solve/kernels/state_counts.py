@@ -1,0 +1,107 @@
+"""States of the dynamic programs over all bags of the fill cores."""
+
+import numpy as np
+
+from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.kernels.cliques import count_cliques, touched
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel
+from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest
+from nearchord_solve.kernels.states import count_classes, count_forests
+from nearchord_solve.kernels.sweep import link_bags
+
+ONE = np.uint64(1)
+
+
+@kernel
+def choices(n: int, k: int) -> int:
+    """C(n, k) for k <= 3; n below 2**20, or the product may overflow."""
+    if k == 0:
+        return 1
+    if k == 1:
+        return n
+    if k == 2:
+        return n * (n - 1) // 2
+    return n * (n - 1) * (n - 2) // 6
+
+
+@kernel
+def class_states(found: I64, others: int, colours: int) -> int:
+    """Sum over j <= q of C(others, j) (N_0 + ... + N_{q-j}), see :mod:`.states`."""
+    total = 0
+    for j in range(colours + 1):
+        inside = 0
+        for i in range(colours - j + 1):
+            inside += found[i]
+        total += choices(others, j) * inside
+    return total
+
+
+@kernel
+def colour_states(forest: Forest, colours: int, most: int, cells: I64) -> int:
+    """States of ``colours`` (1 to 3) disjoint independent sets in all bags; about ``most`` or more if above it."""
+    total = 0
+    where = np.full(forest.slot_place.shape[0], -1, np.int32)
+    for b in range(forest.bag_kind.shape[0]):
+        begin, end = forest.bag_ptr[b], forest.bag_ptr[b + 1]
+        found = np.zeros(colours + 1, np.int64)
+        found[0] = 1
+        inside = 0
+        if forest.bag_kind[b] & BAG_FILL:
+            slots, rows, edges = touched(forest.bag_slot, begin, end, forest.slot_fill_ptr, forest.slot_fill, where)
+            found = count_classes(rows, edges, colours, most - total, cells)
+            inside = slots.shape[0]
+        total += class_states(found, end - begin - inside, colours)
+        if total > most or cells[STOP] != 0:
+            break
+    return total
+
+
+@kernel
+def reached_below(bag: int, slots: I32, first: I32, following: I32, forest: Forest, where: I32) -> tuple[U64, bool]:
+    """Which touched slots of a bag lie in an adhesion with fill to a bag below; whether there is any.
+
+    ``where`` int32[slots] must be -1 everywhere and is so again on return.
+    """
+    outside = np.zeros((slots.shape[0] + 63) >> 6, np.uint64)
+    found = False
+    for i in range(slots.shape[0]):
+        where[slots[i]] = i
+    child = first[bag]
+    while child >= 0:
+        begin = forest.bag_ptr[child]
+        for e in range(begin, begin + forest.bag_adhesion[child]):
+            i = where[forest.bag_slot[e]]
+            if i >= 0:
+                outside[i >> 6] |= ONE << np.uint64(i & 63)
+                found = True
+        child = following[child]
+    for i in range(slots.shape[0]):
+        where[slots[i]] = -1
+    return outside, found
+
+
+@kernel
+def forest_states(forest: Forest, most: int, cells: I64) -> int:
+    """States of the forest program in all bags; about ``most`` or more if above it."""
+    total = 0
+    where = np.full(forest.slot_place.shape[0], -1, np.int32)
+    first, following = link_bags(forest.bag_above, forest.bag_kind)
+    for b in range(forest.bag_kind.shape[0]):
+        begin, end = forest.bag_ptr[b], forest.bag_ptr[b + 1]
+        if not forest.bag_kind[b] & BAG_FILL:
+            total += 1 + end - begin + choices(end - begin, 2)
+            continue
+        slots, rows, edges = touched(forest.bag_slot, begin, end, forest.slot_fill_ptr, forest.slot_fill, where)
+        t = slots.shape[0]
+        lead = 0
+        while lead < t and slots[lead] <= forest.bag_slot[begin + forest.bag_adhesion[b] - 1]:
+            lead += 1
+        outside, found = reached_below(b, slots, first, following, forest, where)
+        joined = found and forest.bag_kind[b] & ADHESION_FILL != 0
+        others = end - begin - t
+        total += choices(others, 2)
+        total += others * (1 + t + count_cliques(rows, t, edges, most - total, cells))
+        total += count_forests(rows, edges, lead, outside, joined, most - total, cells)
+        if total > most or cells[STOP] != 0:
+            break
+    return total

@@ -1,0 +1,75 @@
+"""What an exact answer to each question would take on a graph of known structure.
+
+States are those that count against the state budget.  A dynamic program over colour classes or forests keeps a table in
+every bag; the one over independent sets needs none in bags without fill, so those cost it nothing.
+"""
+
+from collections.abc import Iterator
+from math import comb
+
+from nearchord_solve.arrays import I64
+from nearchord_solve.budget import Budget
+from nearchord_solve.kernels import elimination, state_counts
+from nearchord_solve.kernels.layout import STATES, TABLE
+from nearchord_solve.memory import state_bytes, table_bytes
+from nearchord_solve.monitor import Monitor
+from nearchord_solve.outcome import Prediction
+from nearchord_solve.structure import Structure
+
+COLOURS = (2, 3)
+
+
+def predict(structure: Structure, budget: Budget, monitor: Monitor) -> tuple[Prediction, ...]:
+    """States and memory of each question; counting ends above the budget, or when told to stop, with ``at_least``."""
+    return (_independent_set(structure, budget), *_tabled(structure, budget, monitor))
+
+
+def colour_states(size: int, colours: int) -> int:
+    """States of so many colour classes in a bag without fill: its vertices are pairwise adjacent."""
+    return sum(comb(size, i) for i in range(colours + 1))
+
+
+def forest_states(size: int) -> int:
+    """States of the forest program in a bag without fill: at most two vertices, in one tree."""
+    return 1 + size + comb(size, 2)
+
+
+def _plain_sizes(structure: Structure) -> list[tuple[int, int]]:
+    """(size, number) of the bags outside fill cores."""
+    nb = structure.numbering
+    counts: I64 = elimination.clique_sizes(nb.low_ptr, nb.parent, nb.fill_end, nb.core, structure.cores.largest)
+    return [(size, count) for size, count in enumerate(counts.tolist()) if count]
+
+
+def _independent_set(structure: Structure, budget: Budget) -> Prediction:
+    figures = structure.forest.figures
+    memory = structure.held_bytes + int(table_bytes(figures[:, TABLE]).sum())
+    return Prediction(
+        question="independent-set",
+        colours=0,
+        states=structure.states,
+        at_least=bool((figures[:, STATES] > budget.states).any()),
+        memory_bytes=memory,
+        fits=bool(structure.fitting(budget).all()),
+    )
+
+
+def _tabled(structure: Structure, budget: Budget, monitor: Monitor) -> Iterator[Prediction]:
+    """The questions that keep tables in all bags."""
+    sizes = _plain_sizes(structure)
+    for colours in COLOURS:
+        plain = sum(count * colour_states(size, colours) for size, count in sizes)
+        inside = state_counts.colour_states(structure.forest, colours, budget.states - plain, monitor.cells)
+        yield _prediction("colourable-subgraph", colours, plain + int(inside), structure, budget, monitor)
+    plain = sum(count * forest_states(size) for size, count in sizes)
+    inside = state_counts.forest_states(structure.forest, budget.states - plain, monitor.cells)
+    yield _prediction("induced-forest", 0, plain + int(inside), structure, budget, monitor)
+
+
+def _prediction(
+    question: str, colours: int, states: int, structure: Structure, budget: Budget, monitor: Monitor
+) -> Prediction:
+    within = states <= budget.states
+    memory = structure.held_bytes + state_bytes(states)
+    partial = structure.forest.bag_kind.size > 0 and (not within or bool(monitor.stop))
+    return Prediction(question, colours, states, partial, memory, within and not partial and memory <= budget.memory)

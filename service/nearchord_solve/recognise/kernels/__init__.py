@@ -1,0 +1,1 @@
+"""Compiled kernels of recognition: flat numpy arrays in and out, no recursion."""

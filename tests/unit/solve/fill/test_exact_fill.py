@@ -1,0 +1,131 @@
+"""Exact fill of parts: answers, limits, stops, proofs."""
+
+import networkx as nx
+import numpy as np
+import pytest
+from definition import least_fill
+from fill_proof import confirm
+from hypothesis import given, settings
+from nearchord_solve import Graph, Monitor
+from nearchord_solve.fill.exact import FillResult, ProofKind, fill_of_parts, minimum_fill
+from strategies import arbitrary_graphs, graphs
+
+
+def rows(graph: nx.Graph) -> Graph:
+    return Graph.from_edges(graph.number_of_nodes(), list(graph.edges))
+
+
+def fill_of(graph: nx.Graph, limit: int | None = None, monitor: Monitor | None = None) -> FillResult:
+    part = rows(graph)
+    return minimum_fill(part.ptr, part.adj, limit, monitor or Monitor())
+
+
+def plain(graph: nx.Graph) -> nx.Graph:
+    return nx.convert_node_labels_to_integers(graph)
+
+
+def drawn(edges: tuple[int, list[tuple[int, int]]]) -> nx.Graph:
+    graph = nx.empty_graph(edges[0])
+    graph.add_edges_from(edges[1])
+    return graph
+
+
+@settings(deadline=None)
+@given(arbitrary_graphs(most=10))
+def test_fill_of_any_graph_is_least(edges: tuple[int, list[tuple[int, int]]]) -> None:
+    """Against a dynamic program over all elimination orders."""
+    result = fill_of(drawn(edges))
+    assert result.lower_bound == result.upper_bound == least_fill(*edges)
+    confirm(drawn(edges), result)
+
+
+@settings(deadline=None)
+@given(graphs())
+def test_every_answer_is_confirmed_from_the_definitions(edges: tuple[int, list[tuple[int, int]]]) -> None:
+    """Chordal after the fill, no part of it to spare, each bound as its proof says."""
+    result = fill_of(drawn(edges))
+    assert not result.over
+    confirm(drawn(edges), result)
+
+
+@pytest.mark.parametrize("graph", [nx.empty_graph(0), nx.empty_graph(5), nx.path_graph(9), nx.complete_graph(6)])
+def test_chordal_graphs_need_nothing(graph: nx.Graph) -> None:
+    """No fill, no pieces, proven."""
+    result = fill_of(graph)
+    assert result.edges.shape == (0, 2)
+    assert result.edges.dtype == np.int32
+    assert (result.lower_bound, result.upper_bound, result.proof, result.pieces) == (0, 0, ProofKind.PACKING, ())
+
+
+def test_a_square_is_proven_by_its_own_cycle() -> None:
+    """The packing of C4 is C4."""
+    result = fill_of(nx.cycle_graph(4))
+    (piece,) = result.pieces
+    assert piece.packing is not None
+    assert sorted(v for group in piece.packing.rings[0] for v in group) == [0, 1, 2, 3]
+    assert piece.kind is ProofKind.PACKING
+
+
+def test_true_twins_stay_together_in_the_packing() -> None:
+    """A square of cliques of 2, 3, 2, 4 vertices: the cheaper diagonal costs 2 * 2."""
+    sizes = (2, 3, 2, 4)
+    graph = nx.lexicographic_product(nx.cycle_graph(4), nx.complete_graph(4))
+    graph.remove_nodes_from([(i, j) for i, j in graph if j >= sizes[i]])
+    result = fill_of(plain(graph))
+    assert result.upper_bound == result.lower_bound == 4
+    confirm(plain(graph), result)
+
+
+def test_a_limit_below_the_fill_number_ends_over_with_a_bound_above_it() -> None:
+    """And a limit that suffices does not."""
+    graph = plain(nx.grid_2d_graph(4, 4))
+    for limit in (0, 5, 16, 17):
+        result = fill_of(graph, limit)
+        assert result.over
+        assert limit < result.lower_bound <= 18
+    for limit in (18, 30):
+        result = fill_of(graph, limit)
+        assert not result.over
+        assert result.lower_bound == result.upper_bound == 18
+
+
+def test_the_limit_is_for_all_parts_together() -> None:
+    """Two hexagons need six."""
+    part = rows(nx.cycle_graph(6))
+    both = [(part.ptr, part.adj)] * 2
+    assert all(result.over for result in fill_of_parts(both, 5, Monitor()))
+    assert [result.upper_bound for result in fill_of_parts(both, 6, Monitor())] == [3, 3]
+
+
+def test_a_stop_leaves_a_minimal_fill_and_a_valid_interval() -> None:
+    """Told to stop before it begins."""
+    monitor = Monitor()
+    monitor.cells[Monitor.STOP] = 1
+    graph = plain(nx.grid_2d_graph(5, 5))
+    result = fill_of(graph, None, monitor)
+    assert result.lower_bound <= 37 <= result.upper_bound
+    assert result.proof is ProofKind.NONE
+    confirm(graph, result)
+
+
+def test_the_same_part_gives_the_same_answer() -> None:
+    """Bit for bit, proofs included."""
+    graph = plain(nx.grid_2d_graph(4, 5))
+    one, other = fill_of(graph), fill_of(graph)
+    assert one.edges.tobytes() == other.edges.tobytes()
+    assert one.pieces == other.pieces
+
+
+def test_a_few_cases_are_given_as_a_tree() -> None:
+    """The 4 x 4 grid leaves a gap of one to its best packing; cases close it, and their tree is the proof."""
+    graph = plain(nx.grid_2d_graph(4, 4))
+    result = fill_of(graph)
+    assert result.proof is ProofKind.BRANCH
+    confirm(graph, result)
+
+
+def test_the_monitor_learns_the_lower_bound() -> None:
+    """After the last part."""
+    monitor = Monitor()
+    fill_of(plain(nx.grid_2d_graph(4, 4)), None, monitor)
+    assert monitor.cells[Monitor.FILL_LOWER] == 18
