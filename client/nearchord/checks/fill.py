@@ -154,4 +154,4 @@ class _FillCheck:
             return
         others = sorted(set(self._answer.proof_kinds) - {ProofKind.PACKING, ProofKind.NONE})
         rest = f"rests on {' and '.join(others)}" if others else "has no witness in the answer"
-        self._found.leave_open(f"the bound {bound:,}: packings give {proven:,} of it, the rest {rest}")
+        self._found.leave_open(f"the bound {bound:,}: the packing proves {proven:,} of it, what is missing {rest}")

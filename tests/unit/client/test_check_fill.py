@@ -277,7 +277,9 @@ def test_bounds_beyond_the_packing_are_open_and_say_what_they_rest_on(kinds, res
     """Calling a core's proof a packing does not make up for a packing that is not there."""
     answer = replace(fill_answer_of_two_squares(), proof_kinds=kinds)
     answer = replace(answer, columns={**answer.columns, **packing([[0, 1, 2, 3]])})
-    assert check(TWO_SQUARES, answer).not_confirmed == (f"the bound 2: packings give 1 of it, the rest {rest}",)
+    assert check(TWO_SQUARES, answer).not_confirmed == (
+        f"the bound 2: the packing proves 1 of it, what is missing {rest}",
+    )
 
 
 @pytest.mark.parametrize("value", [None, 2])
