@@ -7,6 +7,7 @@ monitor's STOP cell.
 from nearchord_solve.budget import Budget
 from nearchord_solve.errors import GraphError, SolverError
 from nearchord_solve.graph import Graph
+from nearchord_solve.kept import Kept
 from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Monitor, Phase, Stop
 from nearchord_solve.outcome import Outcome, Prediction, Recognition, StructureReport, Verdict
@@ -24,6 +25,7 @@ __all__ = [
     "Graph",
     "GraphError",
     "IndependentSet",
+    "Kept",
     "Monitor",
     "Outcome",
     "Phase",

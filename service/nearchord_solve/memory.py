@@ -7,6 +7,7 @@ from nearchord_solve.arrays import I64
 PER_EDGE = 20  # rows as read 4, symmetric rows 8, elimination lists 4, their twin while an index is taken 4
 PER_VERTEX = 120
 ALWAYS = 2**20
+FILL_ROOM = 10**7  # H = G + fill may have 3m + this many edges
 
 
 def predicted_bytes(n: int, m: int) -> int:
@@ -31,3 +32,8 @@ def table_bytes(entries: I64) -> I64:
 def state_bytes(states: int) -> int:
     """Memory of states kept with their way back: value 8, origin 8 and set 8 bytes."""
     return states * 24
+
+
+def most_fill(n: int, m: int, memory: int) -> int:
+    """Fill edges that an elimination order of the whole graph may have within ``memory`` bytes."""
+    return min(2 * m + FILL_ROOM, max(0, memory - predicted_bytes(n, m)) // 12)

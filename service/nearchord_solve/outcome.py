@@ -5,6 +5,7 @@ from dataclasses import dataclass, field
 from enum import Enum
 
 from nearchord_solve.arrays import I64, U32
+from nearchord_solve.kept import Kept
 
 
 class Verdict(Enum):
@@ -60,12 +61,12 @@ class Outcome:
     ``value``, ``bound``: int or None where there is none; ``bound`` is an upper bound when maximising, a lower
     bound when minimising.  ``chosen`` uint32, ascending, None for questions that choose no vertices.
     ``fill``: fill edges used, None if no triangulation was finished; ``fill_lower_bound``: no triangulation has fewer.
-    ``states``: states in bags that hold fill
-    (bags without fill need no table), None if not counted.  ``parts``: what remains when the tree of bags is
-    cut at adhesions without fill; ``fill_cores``: parts that hold fill.  ``proof``: "search" if the bound can
-    be recomputed only, "certificate" if a checker can confirm it, "none" if nothing is proven;
-    ``proof_kinds``: one per fill core.  ``reason``: in words, never empty.  ``columns``: further arrays by name,
-    uint32 (vertices) or int64.
+    ``states``: states in bags that hold fill (bags without fill need no table), None if not counted.  ``parts``: what
+    remains when the tree of bags is cut at adhesions without fill; ``fill_cores``: parts that hold fill.  ``proof``:
+    "search" if the bound can be recomputed only, "certificate" if a checker can confirm it, "none" if nothing is
+    proven; ``proof_kinds``: one per fill core.  ``reason``: in words, never empty.  ``columns``: further arrays by
+    name, uint32 (vertices) or int64.  ``kept``: the structure of the graph, if it is new, for later solves on the
+    same graph.
     """
 
     verdict: Verdict
@@ -85,3 +86,4 @@ class Outcome:
     columns: Mapping[str, U32 | I64] = field(default_factory=dict)
     recognition: Recognition | None = None
     report: StructureReport | None = None
+    kept: Kept | None = None

@@ -6,18 +6,12 @@ from nearchord_solve.arrays import I32
 from nearchord_solve.budget import Budget
 from nearchord_solve.fill import Cores, find_cores, triangulate
 from nearchord_solve.graph import Graph
+from nearchord_solve.kept import Kept, Reuse
 from nearchord_solve.kernels.layout import Numbering
-from nearchord_solve.memory import predicted_bytes, quotient_bytes
+from nearchord_solve.memory import most_fill, predicted_bytes, quotient_bytes
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.order import Ranking, Unfinished, eliminate, rank, rank_by_degree
 from nearchord_solve.structure import Structure
-
-FILL_ROOM = 10**7  # H = G + fill may have 3m + this many edges
-
-
-def most_fill(n: int, m: int, memory: int) -> int:
-    """Fill edges of the elimination order of the whole graph for which there is room."""
-    return min(2 * m + FILL_ROOM, max(0, memory - predicted_bytes(n, m)) // 12)
 
 
 @dataclass(frozen=True, eq=False)
@@ -35,12 +29,25 @@ class Partial:
         return f"seconds ran out while {'ordering' if self.ranking is None else 'triangulating'} the graph"
 
 
-def build_structure(graph: Graph, budget: Budget, monitor: Monitor) -> Structure | Partial:
+def build_structure(graph: Graph, budget: Budget, monitor: Monitor, reuse: Reuse | None = None) -> Structure | Partial:
     """Number the graph, find its cores and triangulate them; records fill, bags and states in the monitor.
 
     If the fill exceeds the fill budget, the cores are triangulated again for least fill, and that is taken
-    if it meets the budget.
+    if it meets the budget.  ``reuse``: a structure kept from an earlier solve is taken if it serves, a new one is
+    left there.
     """
+    known = reuse.serving(budget) if reuse is not None else None
+    if known is not None:
+        monitor.enter(Phase.TREE)
+        _show(known, monitor)
+        return known
+    built = _new_structure(graph, budget, monitor)
+    if reuse is not None and isinstance(built, Structure):
+        reuse.made = Kept(graph.n, graph.m, budget, built)
+    return built
+
+
+def _new_structure(graph: Graph, budget: Budget, monitor: Monitor) -> Structure | Partial:
     ranking = rank(graph, monitor)
     if isinstance(ranking, Unfinished):
         return Partial(ranking, None)
@@ -105,9 +112,13 @@ def _triangulated(
     if isinstance(forest, Unfinished):
         return forest
     structure = Structure(numbering, cores, forest)
+    _show(structure, monitor)
+    return structure
+
+
+def _show(structure: Structure, monitor: Monitor) -> None:
     cells = monitor.cells
     cells[Monitor.FILL] = structure.fill
     cells[Monitor.FILL_LOWER] = structure.fill_lower_bound
     cells[Monitor.BAGS] = structure.bags
     cells[Monitor.STATES] = structure.states
-    return structure

@@ -12,6 +12,7 @@ from nearchord_solve.budget import Budget
 from nearchord_solve.fill.exact import GraphFill, PartFill, ProofKind, fill_of_graph
 from nearchord_solve.fill.exact.witness import packing_columns
 from nearchord_solve.graph import Graph
+from nearchord_solve.kept import Reuse
 from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Monitor, Stop
 from nearchord_solve.order import Unfinished, eliminate, rank_along
@@ -26,7 +27,9 @@ from nearchord_solve.tree import Partial, build_structure, with_fill
 class Fill:
     """Takes neither weights nor pins."""
 
-    def answer(self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor) -> Outcome:
+    def answer(
+        self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor, reuse: Reuse
+    ) -> Outcome:
         """Answer for checked arguments; see :func:`nearchord_solve.solve`.
 
         The fill budget is the limit of the proof: a lower bound above it ends the search as OVER_FILL.
@@ -34,7 +37,7 @@ class Fill:
         need = predicted_bytes(graph.n, graph.m)
         if need > budget.memory:
             return without_structure(monitor, f"memory budget: {need} bytes are needed")
-        structure = build_structure(graph, replace(budget, fill=None), monitor)
+        structure = build_structure(graph, replace(budget, fill=None), monitor, reuse)
         if isinstance(structure, Partial):
             return without_structure(monitor, structure.reason)
         recognition, columns = recognise(graph, structure, monitor)

@@ -8,6 +8,7 @@ from nearchord_solve import bounds
 from nearchord_solve.arrays import I32, I64, U8
 from nearchord_solve.budget import Budget
 from nearchord_solve.graph import Graph
+from nearchord_solve.kept import Reuse
 from nearchord_solve.kernels.layout import STATES
 from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Stop
@@ -35,13 +36,14 @@ class Found:
 
 @dataclass(frozen=True, eq=False)
 class Task:
-    """One graph to settle, within one budget."""
+    """One graph to settle, within one budget; ``reuse`` is about the structure of this graph."""
 
     graph: Graph
     weights: I64
     budget: Budget
     when_over: str
     gauge: Gauge
+    reuse: Reuse | None = None
 
     def weight(self, chosen: U8) -> int:
         """Weight of a set."""
@@ -61,7 +63,7 @@ def find_heaviest(task: Task) -> Found:
     if need > task.budget.memory:
         chosen, bound = bounds.quick_pair(task.graph, task.weights)
         return _close(task, chosen, bound, None, f"memory budget: {need} bytes are needed")
-    structure = build_structure(task.graph, task.budget, task.gauge.monitor)
+    structure = build_structure(task.graph, task.budget, task.gauge.monitor, task.reuse)
     if isinstance(structure, Partial):
         return _without_structure(task, structure)
     if task.when_over == "stop" and over_fill(structure, task.budget):

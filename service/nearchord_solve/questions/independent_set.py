@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from nearchord_solve.arrays import I64
 from nearchord_solve.budget import Budget
 from nearchord_solve.graph import Graph
+from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
 from nearchord_solve.questions.conclude import contradiction, outcome_of
@@ -24,7 +25,9 @@ class IndependentSet:
     must: Sequence[int] | I64 = ()
     never: Sequence[int] | I64 = ()
 
-    def answer(self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor) -> Outcome:
+    def answer(
+        self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor, reuse: Reuse
+    ) -> Outcome:
         """Answer for checked arguments; see :func:`nearchord_solve.solve`."""
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)
@@ -32,5 +35,6 @@ class IndependentSet:
         if isinstance(rest, Contradiction):
             return contradiction(rest, "must be chosen", "must not be chosen")
         gauge = Gauge(monitor, rest.taken_weight, 1)
-        found = find_heaviest(Task(rest.graph, rest.weights, budget, when_over, gauge))
+        whole = reuse if rest.graph is graph else None
+        found = find_heaviest(Task(rest.graph, rest.weights, budget, when_over, gauge, whole))
         return outcome_of(found, rest.taken_weight, 1, lambda chosen: lift(rest, chosen))

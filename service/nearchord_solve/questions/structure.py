@@ -10,6 +10,7 @@ import numpy as np
 from nearchord_solve.arrays import I64
 from nearchord_solve.budget import Budget
 from nearchord_solve.graph import Graph
+from nearchord_solve.kept import Reuse
 from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Monitor, Stop
 from nearchord_solve.outcome import Outcome, Prediction, StructureReport, Verdict
@@ -23,12 +24,14 @@ from nearchord_solve.tree import Partial, build_structure
 class Structure:
     """Takes neither weights nor pins."""
 
-    def answer(self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor) -> Outcome:
+    def answer(
+        self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor, reuse: Reuse
+    ) -> Outcome:
         """Answer for checked arguments; see :func:`nearchord_solve.solve`."""
         need = predicted_bytes(graph.n, graph.m)
         if need > budget.memory:
             return without_structure(monitor, f"memory budget: {need} bytes are needed")
-        structure = build_structure(graph, budget, monitor)
+        structure = build_structure(graph, budget, monitor, reuse)
         if isinstance(structure, Partial):
             return without_structure(monitor, structure.reason)
         predictions = predict(structure, budget, monitor)

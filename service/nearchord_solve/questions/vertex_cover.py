@@ -12,6 +12,7 @@ import numpy as np
 from nearchord_solve.arrays import I64, U32
 from nearchord_solve.budget import Budget
 from nearchord_solve.graph import Graph
+from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
 from nearchord_solve.questions.conclude import contradiction, outcome_of
@@ -27,7 +28,9 @@ class VertexCover:
     must: Sequence[int] | I64 = ()
     never: Sequence[int] | I64 = ()
 
-    def answer(self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor) -> Outcome:
+    def answer(
+        self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor, reuse: Reuse
+    ) -> Outcome:
         """Answer for checked arguments; see :func:`nearchord_solve.solve`."""
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)
@@ -35,7 +38,8 @@ class VertexCover:
         if isinstance(rest, Contradiction):
             return contradiction(rest, "must stay out of the cover", "must be in the cover")
         offset = int(weights.sum()) - rest.taken_weight
-        found = find_heaviest(Task(rest.graph, rest.weights, budget, when_over, Gauge(monitor, offset, -1)))
+        whole = reuse if rest.graph is graph else None
+        found = find_heaviest(Task(rest.graph, rest.weights, budget, when_over, Gauge(monitor, offset, -1), whole))
 
         def complement(chosen: U32) -> U32:
             outside = np.ones(graph.n, bool)

@@ -16,6 +16,7 @@ from nearchord_solve import (
     predicted_bytes,
     solve,
 )
+from nearchord_solve import memory as memory_module
 from nearchord_solve import tree as tree_module
 
 
@@ -85,7 +86,7 @@ def test_too_little_memory_ends_with_an_interval(when_over: str) -> None:
 
 @pytest.mark.parametrize("when_over", ["bound", "stop"])
 def test_fill_beyond_all_room_ends_with_an_interval(when_over: str, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(tree_module, "FILL_ROOM", -2 * len(EDGES))
+    monkeypatch.setattr(memory_module, "FILL_ROOM", -2 * len(EDGES))
     outcome = run(Budget(), when_over)
     assert_valid_pair(outcome)
     assert outcome.fill is None

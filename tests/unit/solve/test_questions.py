@@ -2,7 +2,18 @@
 
 import numpy as np
 import pytest
-from nearchord_solve import QUESTIONS, Budget, Graph, IndependentSet, Monitor, SolverError, Verdict, VertexCover
+from nearchord_solve import (
+    QUESTIONS,
+    Budget,
+    Fill,
+    Graph,
+    IndependentSet,
+    Monitor,
+    SolverError,
+    Structure,
+    Verdict,
+    VertexCover,
+)
 from nearchord_solve import solve as solve_question
 
 PATH = [(0, 1), (1, 2), (2, 3), (3, 4)]
@@ -15,7 +26,12 @@ def solve(question, graph, weights=None, budget=None, when_over="bound"):  # typ
 
 
 def test_questions_are_found_by_their_wire_names() -> None:
-    assert {"independent-set": IndependentSet, "vertex-cover": VertexCover} == QUESTIONS
+    assert {
+        "independent-set": IndependentSet,
+        "vertex-cover": VertexCover,
+        "fill": Fill,
+        "structure": Structure,
+    } == QUESTIONS
 
 
 def test_independent_set_of_a_path() -> None:
