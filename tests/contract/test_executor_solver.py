@@ -9,7 +9,6 @@ import numpy as np
 import pytest
 from contract.executor_stage import Stage
 from nearchord_service.model.answer import ElementType, ProofKind, Recognition
-from nearchord_service.model.answer import ElementType
 from nearchord_service.model.content import Bytes
 from nearchord_service.model.event import Phase
 from nearchord_service.model.question import Budget, Question, QuestionName, WhenOver
