@@ -13,13 +13,14 @@ from nearchord_solve.monitor import Monitor, Phase, Stop
 from nearchord_solve.outcome import Outcome, Prediction, Recognition, StructureReport, Verdict
 from nearchord_solve.questions import QUESTIONS, Fill, IndependentSet, Structure, VertexCover
 from nearchord_solve.solving import solve
-from nearchord_solve.warm import warm_up
+from nearchord_solve.warm import WARM_PARTS, warm_up
 
 VERSION = "0.1.0"
 
 __all__ = [
     "QUESTIONS",
     "VERSION",
+    "WARM_PARTS",
     "Budget",
     "Fill",
     "Graph",

@@ -9,6 +9,7 @@ import numpy as np
 import pytest
 from bench.generators import time_windows
 from contract.executor_stage import Stage
+from nearchord_service.model.answer import ElementType, ProofKind, Recognition
 from nearchord_service.model.content import Bytes
 from nearchord_service.model.event import Phase
 from nearchord_service.model.question import Budget, Question, QuestionName, WhenOver
@@ -88,10 +89,40 @@ def test_pins_reach_the_solver(stage):
 
 @pytest.mark.parametrize("name", list(QuestionName))
 def test_empty_graph(stage, name):
-    """Nothing to choose from is proven at once."""
+    """Nothing to choose from, and nothing to fill, is proven at once."""
     answer = solved(stage, 0, [], name=name)
     assert (answer.verdict, answer.value) == (Verdict.PROVEN, (0, 1))
-    assert not any(column.data for column in answer.columns if column.name.endswith(("chosen", "edge", "vertex")))
+    columns = {column.name: column.data for column in answer.columns}
+    assert ("chosen" in columns) is name.chooses
+    assert all(set(data) <= {0} for data in columns.values())
+
+
+def test_pentagon_filled(stage):
+    """A cycle on five vertices needs two chords, as it shows itself; to be split, three of its vertices lack one edge
+    among them and the other two have one too many."""
+    answer = solved(stage, 5, PENTAGON, name=QuestionName.FILL)
+    assert (answer.verdict, answer.value, answer.bound) == (Verdict.PROVEN, (2, 1), (2, 1))
+    assert (answer.proof, answer.proof_kinds) == (ProofKind.CERTIFICATE, (ProofKind.PACKING,))
+    assert answer.recognition == Recognition(chordal=False, interval=False, split=False, splittance=2)
+    columns = {column.name: column for column in answer.columns}
+    assert len(np.frombuffer(columns["fill_edge"].data, "<u4")) == 4
+    assert sorted(np.frombuffer(columns["packing_vertex"].data, "<u4")) == [0, 1, 2, 3, 4]
+    assert columns["packing_start"].type is ElementType.INT64
+    assert "chosen" not in columns
+
+
+def test_pentagon_reported(stage):
+    """One component, one core, and a prediction for each question."""
+    answer = solved(stage, 5, PENTAGON, name=QuestionName.STRUCTURE)
+    assert (answer.verdict, answer.value, answer.fill_cores) == (Verdict.PROVEN, (2, 1), 1)
+    assert (answer.structure.components, answer.structure.largest_core) == (1, 5)
+    assert {(one.question, one.colours) for one in answer.structure.predictions} == {
+        ("independent-set", 0),
+        ("colourable-subgraph", 2),
+        ("colourable-subgraph", 3),
+        ("induced-forest", 0),
+    }
+    assert answer.recognition is None
 
 
 def test_a_hard_graph_ends_at_its_seconds(stage):

@@ -25,7 +25,7 @@ from pathlib import Path
 from typing import Any, NoReturn
 
 from nearchord_service.work.kept import Shelf, fingerprint
-from nearchord_service.work.local import guard, wire, worker
+from nearchord_service.work.local import compiling, guard, wire, worker
 from nearchord_service.work.local.messages import Exited, Failed, Fork, Forked, Kill, Warm, Warming
 
 _LOG = logging.getLogger(__name__)
@@ -68,6 +68,7 @@ def _warm(control: socket.socket, name: str) -> Any:
     """Import the solver and call its kernels once; None when that failed (the server is told why)."""
     try:
         solver = importlib.import_module(name)
+        compiling.compile_ahead(solver, lambda share: wire.send(control, Warming(share)))
         solver.warm_up(lambda done, total: wire.send(control, Warming(done / total if total else 1.0)))
     except ConnectionError:
         return None
