@@ -38,7 +38,10 @@ class Shelf:
     """The folder, as one worker uses it. `offer` only notes what is to be kept; `store` writes it, after the answer."""
 
     def __init__(self, folder: Path, most_bytes: int, solver: str) -> None:
-        """Keep at most `most_bytes` in `folder`, made when needed; `solver` identifies the solver's code."""
+        """Keep at most `most_bytes` in `folder`, made when needed; `solver` identifies the solver's code.
+
+        Whatever changes the structures that are built has to change `solver`.
+        """
         self._folder = folder
         self._most_bytes = most_bytes
         self._solver = solver
@@ -107,16 +110,6 @@ class Shelf:
     def _name(self, task: Task) -> str:
         words = json.dumps([self._solver, task.owner, task.graph_address])
         return hashlib.blake2b(words.encode(), digest_size=_DIGEST_BYTES).hexdigest()
-
-
-def fingerprint(solver: Any) -> str:
-    """Identify a solver by its version and its source, so that nothing kept by other code is believed."""
-    digest = hashlib.blake2b(str(solver.VERSION).encode(), digest_size=_DIGEST_BYTES)
-    folder = Path(str(solver.__file__)).parent
-    for path in sorted(folder.rglob("*.py")):
-        digest.update(f"\n{path.relative_to(folder)}\n".encode())
-        digest.update(path.read_bytes())
-    return digest.hexdigest()
 
 
 def _packed(name: str, arrays: Arrays) -> list[bytes | memoryview]:

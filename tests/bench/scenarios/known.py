@@ -14,7 +14,7 @@ import numpy as np
 from nearchord_service.model.content import Bytes
 from nearchord_service.model.question import Budget, Question, QuestionName, WhenOver
 from nearchord_service.work import runner
-from nearchord_service.work.kept import Shelf, fingerprint
+from nearchord_service.work.kept import Shelf
 from nearchord_service.work.port import Task, TaskKey
 
 from bench import fresh, worker
@@ -64,7 +64,7 @@ def run_jobs(folder: Path) -> tuple[float, float, float, int]:
     problem = Problem.load(folder)
     graph = _stored(problem, folder / "graph")
     first = [runner.answer(_task(graph, problem, turn), ns, _cells()) for turn in range(REPEATS)]
-    shelf = Shelf(folder / "kept", 2**40, fingerprint(ns))
+    shelf = Shelf(folder / "kept", 2**40, ns.VERSION)
     runner.answer(_task(graph, problem, 0), ns, _cells(), shelf=shelf)
     begun = perf_counter()
     shelf.store()

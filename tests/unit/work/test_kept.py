@@ -5,7 +5,6 @@ from __future__ import annotations
 import os
 import shutil
 from dataclasses import replace
-from types import SimpleNamespace
 
 import nearchord_solve
 import numpy as np
@@ -17,7 +16,7 @@ from nearchord_service.model.content import Bytes
 from nearchord_service.model.event import Phase
 from nearchord_service.model.question import Question, QuestionName
 from nearchord_service.work import runner
-from nearchord_service.work.kept import Shelf, fingerprint
+from nearchord_service.work.kept import Shelf
 
 ARRAYS = {
     "one": np.arange(5),
@@ -154,22 +153,6 @@ def test_a_folder_that_cannot_be_written_harms_nothing(tmp_path):
     blocked.write_text("in the way")
     shelf = kept(blocked)
     assert shelf.find(owned()) is None
-
-
-def test_the_fingerprint_changes_with_the_source(tmp_path):
-    """A changed solver may build other structures."""
-    package = tmp_path / "solver"
-    package.mkdir()
-    module = package / "__init__.py"
-    module.write_text("A = 1\n")
-    solver = SimpleNamespace(VERSION="1", __file__=str(module))
-    before = fingerprint(solver)
-    assert before == fingerprint(solver)
-    module.write_text("A = 2\n")
-    assert before != fingerprint(solver)
-    module.write_text("A = 1\n")
-    assert before == fingerprint(solver)
-    assert before != fingerprint(SimpleNamespace(VERSION="2", __file__=str(module)))
 
 
 WINDOWS = time_windows(300, 8.0, 20, 1)

@@ -24,8 +24,8 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Any, NoReturn
 
-from nearchord_service.work.kept import Shelf, fingerprint
-from nearchord_service.work.local import compiling, guard, wire, worker
+from nearchord_service.work.kept import Shelf
+from nearchord_service.work.local import compiling, guard, kernel_cache, wire, worker
 from nearchord_service.work.local.messages import Exited, Failed, Fork, Forked, Kill, Warm, Warming
 
 _LOG = logging.getLogger(__name__)
@@ -61,7 +61,8 @@ def main(orders: str) -> None:
 def _shelf(given: Orders, solver: Any) -> Shelf | None:
     if given.keep_folder is None:
         return None
-    return Shelf(Path(given.keep_folder), given.keep_bytes, fingerprint(solver))
+    sources = kernel_cache.digest(Path(solver.__file__).parent)
+    return Shelf(Path(given.keep_folder), given.keep_bytes, f"{solver.VERSION} {sources}")
 
 
 def _warm(control: socket.socket, name: str) -> Any:
