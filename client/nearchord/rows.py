@@ -1,8 +1,8 @@
 """From two columns of endpoints to the rows of the canonical form, in numpy only.
 
-Edges in the order of the canonical form are taken over in one pass. Others become keys, u * 2^32 + v for an edge {u, v}
-with u < v, which are sorted. Both go block by block, so that what lies between stays in the processor's cache: beside the
-result the first takes some hundred KiB, the second 8 bytes an edge.
+Edges in the order of the canonical form are taken over in one pass. Others become keys, u * 2^32 + v for an edge
+{u, v} with u < v, which are sorted. Both go block by block, so that what lies between stays in the processor's cache:
+beside the result the first takes some hundred KiB, the second 8 bytes an edge.
 """
 
 from __future__ import annotations

@@ -45,6 +45,18 @@ class Content:
                 yield bytes(part[begin : begin + piece_bytes])
 
 
+@dataclass(frozen=True, eq=False)
+class GraphContent(Content):
+    """A graph, which remembers its address."""
+
+    graph: Graph
+
+    @cached_property
+    def address(self) -> str:
+        """See `Graph.address`."""
+        return self.graph.address
+
+
 @dataclass(frozen=True)
 class InputContent:
     """Everything of a graph that a job can carry."""
@@ -71,7 +83,7 @@ def content_of(graph: Graph) -> InputContent:
         weights = Content(content_pb2.CONTENT_KIND_WEIGHTS, [little_endian(graph.weights)])
     if graph.names is not None:
         names = Content(content_pb2.CONTENT_KIND_NAMES, [memoryview(names_bytes(graph.names))])
-    return InputContent(Content(content_pb2.CONTENT_KIND_GRAPH, graph.canonical()), weights, names)
+    return InputContent(GraphContent(content_pb2.CONTENT_KIND_GRAPH, graph.canonical(), graph), weights, names)
 
 
 def names_bytes(names: Sequence[str]) -> bytes:

@@ -81,7 +81,7 @@ class Disk:
         os.lseek(descriptor, keep, os.SEEK_SET)
         return descriptor
 
-    def write(self, descriptor: int, piece: bytes) -> None:
+    def write(self, descriptor: int, piece: bytes | memoryview) -> None:
         """Write all of a piece."""
         view = memoryview(piece)
         while view:

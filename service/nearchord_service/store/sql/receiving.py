@@ -12,6 +12,7 @@ import logging
 import mmap
 import os
 from collections.abc import Callable
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 from functools import partial
 
@@ -86,7 +87,7 @@ class FileUpload:
         for begin in range(0, offset, _READ_AGAIN):
             self._digest.update(os.pread(self._descriptor, min(_READ_AGAIN, offset - begin), begin))
 
-    def write(self, piece: bytes) -> None:
+    def write(self, piece: bytes | memoryview) -> None:
         """Append a piece."""
         descriptor = self._held()
         size = self._announced.size_bytes
@@ -107,15 +108,19 @@ class FileUpload:
         os.lseek(descriptor, self.committed, os.SEEK_SET)
 
     def publish(self, check: Callable[[memoryview], tuple[int, int]]) -> Content:
-        """Check the bytes and turn the upload into content."""
+        """Turn the upload into content; the disk is kept busy while the bytes are checked."""
         descriptor = self._held()
         try:
             self._check_bytes()
-            vertices, edges = check(self._view(descriptor))
+            with ThreadPoolExecutor(1, thread_name_prefix="content-sync") as aside:
+                kept = aside.submit(self._keep, descriptor)
+                vertices, edges = check(self._view(descriptor))
         except ServiceError:
             self._drop()
             raise
-        content = self._publish(descriptor, vertices, edges)
+        data = kept.result()
+        content = self._write(lambda transaction: self._turn(transaction, data, vertices, edges))
+        assert isinstance(content, Content)
         self._close()
         return content
 
@@ -133,19 +138,15 @@ class FileUpload:
         size = self._announced.size_bytes
         return memoryview(mmap.mmap(descriptor, size, prot=mmap.PROT_READ)) if size else memoryview(b"")
 
-    def _publish(self, descriptor: int, vertices: int, edges: int) -> Content:
-        small = self._announced.size_bytes < SMALL_BYTES
-        data = None
+    def _keep(self, descriptor: int) -> bytes | None:
+        """Return the bytes when they are few and go into the database, otherwise make the file durable."""
         try:
-            if small:
-                data = os.pread(descriptor, SMALL_BYTES, 0)
-            else:
-                self._disk.sync(descriptor)
+            if self._announced.size_bytes < SMALL_BYTES:
+                return os.pread(descriptor, SMALL_BYTES, 0)
+            self._disk.sync(descriptor)
         except OSError as fault:
             raise disk_trouble(self._disk.content, fault) from fault
-        content = self._write(lambda transaction: self._turn(transaction, data, vertices, edges))
-        assert isinstance(content, Content)
-        return content
+        return None
 
     def _turn(self, transaction: Transaction, data: bytes | None, vertices: int, edges: int) -> Content:
         """Turn the upload into content, unless a submission has brought the same content meanwhile."""
