@@ -37,12 +37,12 @@ class Content:
         """All bytes in one."""
         return b"".join(self.parts)
 
-    def pieces(self, offset: int, piece_bytes: int) -> Iterator[bytes]:
-        """The bytes from `offset` on, at most `piece_bytes` at a time; one copy of each byte."""
+    def pieces(self, offset: int, piece_bytes: int) -> Iterator[memoryview]:
+        """The bytes from `offset` on, at most `piece_bytes` at a time, where they lie."""
         for part in self.parts:
             start, offset = min(offset, part.nbytes), max(0, offset - part.nbytes)
             for begin in range(start, part.nbytes, piece_bytes):
-                yield bytes(part[begin : begin + piece_bytes])
+                yield part[begin : begin + piece_bytes]
 
 
 @dataclass(frozen=True, eq=False)

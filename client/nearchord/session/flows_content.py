@@ -16,6 +16,7 @@ from nearchord.session.caller import Caller
 from nearchord.session.content import Content, InputContent, content_of
 from nearchord.session.retry import Retry
 from nearchord.session.steps import Call, Finish, Flow, Method, Now, Pause, Start
+from nearchord.session.wire import piece_message
 from nearchord.v1 import graph_service_pb2, load_service_pb2
 
 PIECE_BYTES = 1 << 20
@@ -101,17 +102,17 @@ class Storing:
             yield from self.begin()
 
 
-def upload_stream(content: Content, offset: int, piece_bytes: int) -> Callable[[], Iterator[Message]]:
+def upload_stream(content: Content, offset: int, piece_bytes: int) -> Callable[[], Iterator[Message | bytes]]:
     """The messages of one upload stream that begins at `offset`."""
 
-    def messages() -> Iterator[Message]:
+    def messages() -> Iterator[Message | bytes]:
         yield graph_service_pb2.StoreContentRequest(
             opening=graph_service_pb2.UploadOpening(
                 kind=content.kind, address=content.address, size_bytes=content.size, offset=offset
             )
         )
         for piece in content.pieces(offset, piece_bytes):
-            yield graph_service_pb2.StoreContentRequest(piece=piece)
+            yield piece_message(piece)
 
     return messages
 

@@ -63,10 +63,11 @@ class Send:
 
 @dataclass(frozen=True)
 class Start:
-    """Like `Send`, but the stream is sent while the flow goes on: gives a handle for `Finish`."""
+    """Like `Send`, but the stream is sent while the flow goes on: gives a handle for `Finish`.
+    A request may be given as its bytes where the stub takes that (see `stubs`)."""
 
     method: Method
-    requests: Callable[[], Iterator[Message]]
+    requests: Callable[[], Iterator[Message | bytes]]
 
 
 @dataclass(frozen=True)
