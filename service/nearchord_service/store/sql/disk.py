@@ -87,6 +87,10 @@ class Disk:
         while view:
             view = view[os.write(descriptor, view) :]
 
+    def flush(self, descriptor: int) -> None:
+        """Bring the bytes of a content file that were written so far to the disk."""
+        os.fdatasync(descriptor)
+
     def sync(self, descriptor: int) -> None:
         """Make a content file and its name durable."""
         os.fsync(descriptor)

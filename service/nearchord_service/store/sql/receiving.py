@@ -12,7 +12,7 @@ import logging
 import mmap
 import os
 from collections.abc import Callable
-from concurrent.futures import ThreadPoolExecutor
+from concurrent.futures import Future
 from dataclasses import dataclass
 from functools import partial
 
@@ -26,6 +26,7 @@ from nearchord_service.model.errors import (
     ServiceError,
     StoreUnavailable,
 )
+from nearchord_service.store.sql.behind import Behind
 from nearchord_service.store.sql.content import (
     ADD_USE,
     INSERT_BLOB,
@@ -84,6 +85,7 @@ class FileUpload:
         self._let_go = let_go
         self._digest = hashlib.sha256()
         self._descriptor: int | None = disk.open(announced.file, keep=offset)
+        self._behind = Behind(disk, self._descriptor)
         for begin in range(0, offset, _READ_AGAIN):
             self._digest.update(os.pread(self._descriptor, min(_READ_AGAIN, offset - begin), begin))
 
@@ -99,6 +101,7 @@ class FileUpload:
         except OSError as fault:
             self._cut(descriptor)
             raise disk_trouble(self._disk.content, fault) from fault
+        self._behind.wrote(len(piece))
         self._digest.update(piece)
         self.committed += len(piece)
 
@@ -112,13 +115,12 @@ class FileUpload:
         descriptor = self._held()
         try:
             self._check_bytes()
-            with ThreadPoolExecutor(1, thread_name_prefix="content-sync") as aside:
-                kept = aside.submit(self._keep, descriptor)
-                vertices, edges = check(self._view(descriptor))
+            synced = None if self._small else self._behind.sync()
+            vertices, edges = check(self._view(descriptor))
         except ServiceError:
             self._drop()
             raise
-        data = kept.result()
+        data = self._keep(descriptor, synced)
         content = self._write(lambda transaction: self._turn(transaction, data, vertices, edges))
         assert isinstance(content, Content)
         self._close()
@@ -138,12 +140,16 @@ class FileUpload:
         size = self._announced.size_bytes
         return memoryview(mmap.mmap(descriptor, size, prot=mmap.PROT_READ)) if size else memoryview(b"")
 
-    def _keep(self, descriptor: int) -> bytes | None:
-        """Return the bytes when they are few and go into the database, otherwise make the file durable."""
+    @property
+    def _small(self) -> bool:
+        return self._announced.size_bytes < SMALL_BYTES
+
+    def _keep(self, descriptor: int, synced: Future[None] | None) -> bytes | None:
+        """Wait until the file is durable, or return the bytes that go into the database because they are few."""
         try:
-            if self._announced.size_bytes < SMALL_BYTES:
+            if synced is None:
                 return os.pread(descriptor, SMALL_BYTES, 0)
-            self._disk.sync(descriptor)
+            synced.result()
         except OSError as fault:
             raise disk_trouble(self._disk.content, fault) from fault
         return None
@@ -181,7 +187,7 @@ class FileUpload:
             return
         names = {"of_owner": self._announced.owner, "of_address": self._announced.address}
         try:
-            self._disk.sync(self._descriptor)
+            self._behind.sync().result()
             self._write(lambda transaction: transaction.run(_TOUCH, **names, now=transaction.now))
         except (OSError, StoreUnavailable) as fault:
             _log.warning("upload %s was let go, but when could not be noted: %s", self._announced.address, fault)
@@ -201,6 +207,7 @@ class FileUpload:
 
     def _close(self) -> None:
         if self._descriptor is not None:
+            self._behind.close()
             os.close(self._descriptor)
             self._descriptor = None
             self._let_go()
