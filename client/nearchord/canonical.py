@@ -65,7 +65,7 @@ def weight_vector(n: int, weights: Any) -> NDArray[np.int64]:
     if n and int(whole.min()) < 0:
         place = int((whole < 0).argmax())
         raise BadInput(f"weight {place} is {whole[place]}, which is negative", "give weights of at least 0")
-    if weight_sum(whole) >= WEIGHT_LIMIT:
+    if n and int(whole.max()) * n >= WEIGHT_LIMIT and weight_sum(whole) >= WEIGHT_LIMIT:
         raise BadInput("the weights add up to 2^62 or more", "count in a larger unit: divide all weights")
     result = np.array(whole, np.int64)
     result.flags.writeable = False
