@@ -2,9 +2,9 @@
 
 F is the graph of the fill edges inside a bag of b vertices; T are the vertices that touch fill, u = b - |T| the
 others, which are adjacent in G to everything in the bag.  A state is a set X with no cycle of G inside, with a
-partition of those components of X that meet the adhesion: how they are connected outside.  With a vertex outside T, X is a star
-or a single edge, hence connected, and its partition trivial: there are u (1 + N) + C(u, 2) of these, N being the number
-of non-empty cliques of F.  Here the sets inside T are counted.
+partition of those components of X that meet the adhesion: how they are connected outside.  With a vertex outside T, X
+is a star or a single edge, hence connected, and its partition trivial: there are u (1 + N) + C(u, 2) of these, N being
+the number of non-empty cliques of F.  Here the sets inside T are counted.
 """
 
 import numpy as np
