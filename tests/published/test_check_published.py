@@ -9,7 +9,9 @@ from pathlib import Path
 import nearchord
 import nearchord_solve
 import networkx as nx
+import numpy as np
 import pytest
+from definition import least_fill
 from nearchord.checks.classes import splittance
 from nearchord.checks.edges import Edges
 from nearchord.checks.packing import Packing
@@ -64,3 +66,29 @@ def test_certificates_of_colouring_graphs_are_confirmed(name: str) -> None:
     outcome = fill_outcome(graph)
     assert outcome.proof == "certificate"
     assert confirmed_bound(graph, outcome) == outcome.value
+
+
+def test_spoilt_packings_prove_no_more_than_the_least_fill() -> None:
+    """Every single change of a number of the columns, over a part of the atlas: refused, or still a bound."""
+    refused = lowered = 0
+    for source in nx.graph_atlas_g()[100:1253:60]:
+        edges = [tuple(sorted(edge)) for edge in source.edges]
+        graph = nearchord.Graph.from_edges(len(source), edges)
+        outcome, least = fill_outcome(graph), least_fill(len(source), edges)
+        for name in ("ring", "group", "vertex", "numerator", "denominator"):
+            column = np.asarray(outcome.columns[f"packing_{name}"])
+            for at in range(column.size):
+                for value in {0, 1, 2, 5, int(column[at]) + 1, 2 * int(column[at])} - {int(column[at])}:
+                    spoilt = column.copy()
+                    spoilt[at] = value
+                    try:
+                        proven = Packing(graph, {**outcome.columns, f"packing_{name}": spoilt}).bound(
+                            Edges(graph.n, *graph.edges())
+                        )
+                    except nearchord.CheckFailed:
+                        refused += 1
+                        continue
+                    assert proven <= least
+                    lowered += proven < least
+    assert refused > 100
+    assert lowered > 10

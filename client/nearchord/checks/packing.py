@@ -138,8 +138,8 @@ class Packing:
             fractions += [(p * factors[kind & 1], q * (kind >> 1)) for kind in kinds.tolist()]
         unit = math.lcm(*(q for _, q in self._shares), *{q for _, q in fractions})
         order = np.argsort(np.concatenate(keys), kind="stable")
-        columns = (np.concatenate(parts)[order] for parts in (keys, whose, what))
-        return _Loads(*columns, [p * (unit // q) for p, q in fractions]), unit
+        sorted_keys, sorted_rings, sorted_what = (np.concatenate(parts)[order] for parts in (keys, whose, what))
+        return _Loads(sorted_keys, sorted_rings, sorted_what, [p * (unit // q) for p, q in fractions]), unit
 
     def _clusters(self, loads: _Loads, unit: int) -> tuple[list[int], list[int]]:
         """For each ring the lowest one of its cluster; and what loads above 1 cost, at one of the rings they are of."""

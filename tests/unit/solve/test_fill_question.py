@@ -111,7 +111,7 @@ def confirm_packing(graph: nx.Graph, outcome: Outcome) -> None:
 def packing_rings(outcome: Outcome) -> list[list[list[int]]]:
     """Groups of vertices, ring by ring."""
     groups, ring = rows(outcome, "packing_group", "packing_vertex"), outcome.columns["packing_ring"].tolist()
-    return [groups[a:b] for a, b in zip(ring, ring[1:], strict=False)]
+    return [groups[a:b] for a, b in pairwise(ring)]
 
 
 @settings(deadline=None)
