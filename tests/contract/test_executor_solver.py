@@ -107,7 +107,7 @@ def test_pentagon_filled(stage):
     columns = {column.name: column for column in answer.columns}
     assert len(np.frombuffer(columns["fill_edge"].data, "<u4")) == 4
     assert sorted(np.frombuffer(columns["packing_vertex"].data, "<u4")) == [0, 1, 2, 3, 4]
-    assert columns["packing_start"].type is ElementType.INT64
+    assert columns["packing_ring"].type is ElementType.INT64
     assert "chosen" not in columns
 
 
