@@ -25,7 +25,9 @@ def answered(
     u, v = graph.edges()
     pairs = list(zip(u.tolist(), v.tolist(), strict=True))
     weights = None if graph.weights is None else graph.weights.astype(np.int64)
-    outcome = ns.solve(asked, ns.Graph.from_edges(graph.n, pairs), weights, budget or ns.Budget(), "bound", ns.Monitor())
+    outcome = ns.solve(
+        asked, ns.Graph.from_edges(graph.n, pairs), weights, budget or ns.Budget(), "bound", ns.Monitor()
+    )
     address = "" if weights is None else hashlib.sha256(weights.astype("<i8").tobytes()).hexdigest()
     origin = nearchord.Provenance(
         graph.address, address, "1", 1, nearchord.Budget(), WhenOver.BOUND, 1, (), 0.0, 0.0, 0, None

@@ -10,12 +10,11 @@ import nearchord_solve as ns
 import networkx as nx
 import numpy as np
 import pytest
+import strategies
 from certified import answered, bounded, confirmed, mutated
 from definition import heaviest_independent
 from hypothesis import given, settings
 from hypothesis import strategies as st
-
-import strategies
 from nearchord.checks import splitting
 
 BUDGETS = (ns.Budget(), ns.Budget(states=1), ns.Budget(states=12), ns.Budget(fill=0))
