@@ -16,7 +16,7 @@ MOST_BYTES = 1 << 30
 
 
 def write(file: str, answer: nearchord.Answer) -> bool:
-    """Write the proof of `answer`; False, and no file, if it carries none. FileProblem if the file cannot be written."""
+    """Write the proof of `answer`; False, and no file, without one. FileProblem if it cannot be written."""
     columns = {name: column for name, column in answer.columns.items() if name.startswith(PREFIX)}
     if not columns:
         return False

@@ -129,8 +129,9 @@ def inward(
 
     ``residual`` int64[n] holds the weights by place and is overwritten with what each place is worth when its
     turn comes; ``tries`` are overwritten.  Cores with ``fits`` 0 are bounded by cliques, which go to ``cover``.
-    ``share`` int64[slots], of the other cores, receives what a home is worth before its core is settled, and what the
-    core takes from an anchor.  Returns (False if stopped, base): base is the optimum, or an upper bound of it if some core does not fit.
+    ``share`` int64[slots], of the other cores, receives what a home is worth before its core is settled, and what
+    the core takes from an anchor.  Returns (False if stopped, base): base is the optimum, or an upper bound of it
+    if some core does not fit.
     """
     n = residual.shape[0]
     low_ptr = numbering.low_ptr
