@@ -9,6 +9,7 @@ from nearchord_solve.graph import Graph
 from nearchord_solve.kernels import cover, local_search, quick
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.order import Ranking
+from nearchord_solve.proof import Certificate, certify_cover, room_for_cover
 
 ROUNDS = 4096  # kicks between two looks at the result
 KICKS_PER_VERTEX = 1000
@@ -29,22 +30,23 @@ def quick_pair(graph: Graph, weights: I64) -> tuple[U8, int]:
     return chosen, int(quick.split_over_edges(graph.ptr, graph.adj, weights.copy()))
 
 
-def cover_pair(ranking: Ranking, weights: I64) -> tuple[U8, int]:
-    """An independent set (uint8[n]) and an upper bound by a weighted clique cover along a numbering.
+def cover_pair(ranking: Ranking, weights: I64) -> tuple[U8, Certificate]:
+    """An independent set (uint8[n]) and an upper bound with its proof, a weighted clique cover along a numbering.
 
     Time O(sum over the cliques' members of their degrees), without looking at the clock.
     """
     n = weights.size
     homes = np.arange(n, dtype=np.int32)
     residual = weights[ranking.order]
-    bound = cover.cover_core(homes, ranking.low_ptr, ranking.low, residual, np.zeros(n, np.int32))
+    cliques = room_for_cover(n, ranking.low.size)
+    bound = cover.cover_core(homes, ranking.low_ptr, ranking.low, residual, np.zeros(n, np.int32), cliques)
     by_place = np.zeros(n, np.uint8)
     blocked = np.zeros(n, np.uint8)
     by_weight = weights[ranking.order]
     cover.choose_greedily(homes, ranking.low_ptr, ranking.low, by_weight, by_place, blocked)
     chosen = np.empty(n, np.uint8)
     chosen[ranking.order] = by_place
-    return chosen, int(bound)
+    return chosen, certify_cover(int(bound), ranking.order, cliques)
 
 
 def improve(

@@ -10,10 +10,13 @@ from numpy.typing import NDArray
 from nearchord.answer import Answer
 from nearchord.canonical import weight_sum
 from nearchord.checks.confirmed import Confirmed, check_sides, check_unanswered
+from nearchord.checks.edges import Edges
+from nearchord.checks.splitting import Splitting, has_splitting
+from nearchord.checks.states import TooManyStates
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph
 from nearchord.question import Choice, IndependentSet, Pin, VertexCover
-from nearchord.stages import Verdict
+from nearchord.stages import ProofKind, Verdict
 
 Mask = NDArray[np.bool_]
 
@@ -27,9 +30,40 @@ def check_choice(graph: Graph, answer: Answer, question: Choice) -> Confirmed:
     chosen = _chosen_mask(graph, answer)
     done = [_check_definition(graph, question, chosen), _check_value(graph, answer, chosen)]
     plain = _check_bound(graph, answer, question)
+    if plain is None and has_splitting(answer.columns):
+        try:
+            plain = _check_splitting(graph, answer, question)
+        except TooManyStates:
+            return Confirmed(tuple(done), (f"the bound {answer.bound}: checking its proof would take too long",))
     if plain is not None:
         return Confirmed((*done, plain), ())
+    if ProofKind.SEARCH in (answer.proof, *answer.proof_kinds):
+        return Confirmed(tuple(done), (f"the bound {answer.bound}: it rests on a search, which leaves no proof",))
     return Confirmed(tuple(done), (f"the bound {answer.bound}: the answer carries no proof of it",))
+
+
+def _check_splitting(graph: Graph, answer: Answer, question: Choice) -> str:
+    """Words for a bound that the proof in the answer confirms; CheckFailed where it does not.
+
+    What must be in, or out, is decided before: a vertex that must be in a set counts in full, its neighbours and what
+    may not be in count for nothing. A cover is what an independent set leaves, with the pins the other way round.
+    """
+    must, never = (_mask(graph, pins, "pins") for pins in (question.must, question.never))
+    if isinstance(question, VertexCover):
+        must, never = never, must
+    weights = weights_of(graph)
+    u, v = graph.edges()
+    out = must | never
+    out[v[must[u]]] = True
+    out[u[must[v]]] = True
+    proof = Splitting(graph.n, answer.columns)
+    most = weight_sum(weights[must]) + proof.bound(Edges(graph.n, u, v), np.where(out, 0, weights))
+    bound = answer.bound
+    assert bound is not None, "check_sides refuses its absence"
+    proven = most if question.maximises else weight_sum(weights) - most
+    if (proven > bound) if question.maximises else (proven < bound):
+        raise CheckFailed(f"the bound is given as {bound}, but the proof comes to {proven}")
+    return f"the bound {bound}: {proof.summary}"
 
 
 def _check_infeasible(graph: Graph, question: Choice) -> Confirmed:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import click
 
-from nearchord.cli import options
+from nearchord.cli import options, proof_file
 from nearchord.cli.connection import detaching, remote_or_private
 from nearchord.cli.exits import of_verdict
 from nearchord.cli.follow import follow
@@ -21,7 +21,8 @@ from nearchord.cli.record import record, show
 @options.reads
 @options.server
 @options.as_json
-def solve(file: str, ask: Ask, source: Source, server: str | None, as_json: bool) -> int:
+@click.option("--proof", "proof", metavar="FILE", help="Write the proof of the bound to FILE, for `check`.")
+def solve(file: str, ask: Ask, source: Source, server: str | None, as_json: bool, proof: str | None) -> int:
     """Answer a question about the graph in FILE (- for stdin).
 
     Without --server a private service is started for this one answer. Ctrl-C leaves a job on a server running and says
@@ -32,6 +33,8 @@ def solve(file: str, ask: Ask, source: Source, server: str | None, as_json: bool
         job = ask.submit(service, graph)
         with detaching("job", job.id, server):
             answer = follow(service, job, display)
+    if proof is not None and not proof_file.write(proof, answer):
+        click.echo(f"note: no proof was written to {proof}, as the answer carries none ({answer.proof})", err=True)
     if as_json:
         print_json(record(answer, graph.names))
     else:

@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
 REASON_LENGTH = 2000
+PROOF_FORMAT = 1  # of the columns proof_*, as the contract describes them
 
 
 def recorded(outcome: Any, vertices: int) -> Answer:
@@ -35,6 +36,7 @@ def recorded(outcome: Any, vertices: int) -> Answer:
     """
     verdict = Verdict(outcome.verdict.value)
     kept = verdict is not Verdict.CANCELLED
+    proven = any(name.startswith("proof_") for name in outcome.columns)
     return Answer(
         verdict=verdict,
         reason=str(outcome.reason)[:REASON_LENGTH] or f"the solver gave no reason for {verdict}",
@@ -49,6 +51,7 @@ def recorded(outcome: Any, vertices: int) -> Answer:
         fill_cores=_count(outcome.fill_cores),
         proof=ProofKind(outcome.proof),
         proof_kinds=tuple(ProofKind(kind) for kind in outcome.proof_kinds),
+        proof_format=PROOF_FORMAT if kept and proven else 0,
         columns=_columns(outcome, vertices) if kept else (),
         recognition=_recognition(outcome.recognition) if kept else None,
         structure=_structure(outcome.report) if kept else None,

@@ -50,6 +50,15 @@ class Tries(NamedTuple):
     delta: I64
 
 
+class Cover(NamedTuple):
+    """Cliques with weights, written one behind the other: clique k is ``place[ptr[k]:ptr[k+1]]``."""
+
+    cliques: I64  # [1] how many there are
+    ptr: I64
+    place: I32
+    weight: I64
+
+
 FILL_EDGES, FILL_LOWER, STATES, TABLE, PARTS_FILL, PARTS_PLAIN = 0, 1, 2, 3, 4, 5
 BAG_FILL, ADHESION_FILL = 1, 2
 EASY = 8  # states per vertex of a core that are taken without looking for fewer

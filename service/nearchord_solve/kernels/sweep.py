@@ -13,7 +13,7 @@ from nearchord_solve.kernels.cells import BAGS_DONE, POLL, STEP, STOP
 from nearchord_solve.kernels.cliques import touched
 from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
 from nearchord_solve.kernels.cover import choose_greedily, cover_core
-from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest, Numbering, Tries
+from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Cover, Forest, Numbering, Tries
 from nearchord_solve.kernels.tables import best_state, collect_messages, fill_table, settle_message
 
 
@@ -123,13 +123,15 @@ def settle_bag(
 @kernel
 def inward(
     numbering: Numbering, forest: Forest, core_ptr: I64, core_place: I32, fits: U8,
-    tries: Tries, residual: I64, cells: I64,
+    tries: Tries, residual: I64, share: I64, cover: Cover, cells: I64,
 ) -> tuple[bool, int]:  # fmt: skip
     """Collect the value from the high places to the low ones.
 
     ``residual`` int64[n] holds the weights by place and is overwritten with what each place is worth when its
-    turn comes; ``tries`` are overwritten.  Cores with ``fits`` 0 are bounded by cliques.  Returns (False if
-    stopped, base): base is the optimum, or an upper bound of it if some core does not fit.
+    turn comes; ``tries`` are overwritten.  Cores with ``fits`` 0 are bounded by cliques, which go to ``cover``.
+    ``share`` int64[slots], of the other cores, receives what a home is worth before its core is settled, and what
+    the core takes from an anchor.  Returns (False if stopped, base): base is the optimum, or an upper bound of it
+    if some core does not fit.
     """
     n = residual.shape[0]
     low_ptr = numbering.low_ptr
@@ -156,9 +158,11 @@ def inward(
         if forest.core_top[c] != i:
             continue
         if not fits[c]:
-            base += cover_core(core_place[core_ptr[c] : core_ptr[c + 1]], low_ptr, low, residual, seen)
+            base += cover_core(core_place[core_ptr[c] : core_ptr[c + 1]], low_ptr, low, residual, seen, cover)
             bags += forest.core_bag[c + 1] - forest.core_bag[c]
             continue
+        for s in range(forest.core_slot[c], forest.core_slot[c + 1]):
+            share[s] = residual[forest.slot_place[s]]
         for b in range(forest.core_bag[c + 1] - 1, forest.core_bag[c] - 1, -1):
             if cells[STOP] != 0:
                 return False, base
@@ -169,6 +173,8 @@ def inward(
                 base += settle_plain(b, forest, residual)
             bags += 1
             cells[BAGS_DONE] = bags
+        for s in range(forest.core_slot[c], forest.core_slot[c] + forest.core_anchors[c]):
+            share[s] -= residual[forest.slot_place[s]]
     return True, base
 
 

@@ -4,7 +4,7 @@ from collections.abc import Callable
 
 import numpy as np
 
-from nearchord_solve.arrays import U32
+from nearchord_solve.arrays import I64, U32
 from nearchord_solve.monitor import Monitor, Stop
 from nearchord_solve.outcome import Outcome, Verdict
 from nearchord_solve.questions.heaviest import Found
@@ -43,11 +43,16 @@ def without_structure(monitor: Monitor, reason: str) -> Outcome:
     )
 
 
-def outcome_of(found: Found, offset: int, sign: int, lift: Callable[[U32], U32]) -> Outcome:
-    """Outcome in the question's terms: its value is ``offset + sign * value``, its choice ``lift`` of ours."""
+def outcome_of(found: Found, offset: int, sign: int, lift: Callable[[U32], U32], vertices: I64) -> Outcome:
+    """Outcome in the question's terms: its value is ``offset + sign * value``, its choice ``lift`` of ours.
+
+    ``vertices`` int64: the number that each of our vertices has in the graph of the question.
+    """
     structure = found.structure
     proven = found.verdict is Verdict.PROVEN
     cores = structure.fill_cores if structure else 0
+    proof = found.proof if found.bound is not None and found.proof and found.proof.bound <= found.bound else None
+    kind = "certificate" if proof else "search" if proven else "none"
     return Outcome(
         verdict=found.verdict,
         value=None if found.value is None else offset + sign * found.value,
@@ -60,7 +65,8 @@ def outcome_of(found: Found, offset: int, sign: int, lift: Callable[[U32], U32])
         largest_bag=structure.largest_bag if structure else 0,
         parts=structure.parts if structure else 0,
         fill_cores=cores,
-        proof="search" if proven else "none",
-        proof_kinds=("search" if proven else "none",) * cores,
+        proof=kind,
+        proof_kinds=(kind,) * cores,
         reason=found.reason,
+        columns=proof.columns(vertices) if proof else {},
     )

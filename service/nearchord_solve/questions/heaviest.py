@@ -14,17 +14,21 @@ from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Stop
 from nearchord_solve.order import Unfinished
 from nearchord_solve.outcome import Verdict
+from nearchord_solve.proof import Certificate
 from nearchord_solve.questions.branching import Branching
 from nearchord_solve.questions.gauge import Gauge
 from nearchord_solve.refine import over_fill, search_less_fill
 from nearchord_solve.structure import Structure
-from nearchord_solve.sweep import sweep
+from nearchord_solve.sweep import Swept, sweep
 from nearchord_solve.tree import Partial, build_structure
 
 
 @dataclass(frozen=True, eq=False)
 class Found:
-    """An answer: ``chosen`` uint8[n] is None only with CANCELLED and OVER_FILL."""
+    """An answer: ``chosen`` uint8[n] is None only with CANCELLED and OVER_FILL.
+
+    ``proof``: a certificate, perhaps of a weaker bound; None where there is none.
+    """
 
     verdict: Verdict
     value: int | None
@@ -32,6 +36,7 @@ class Found:
     chosen: U8 | None
     structure: Structure | None
     reason: str
+    proof: Certificate | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -99,12 +104,14 @@ def _without_structure(task: Task, partial: Partial) -> Found:
         return _cancelled(None)
     if partial.ranking is None:
         chosen, bound = bounds.quick_pair(task.graph, task.weights)
+        proof = None
     else:
-        chosen, bound = bounds.cover_pair(partial.ranking, task.weights)
+        chosen, proof = bounds.cover_pair(partial.ranking, task.weights)
+        bound = proof.bound
     if partial.why is Unfinished.STOPPED:
-        return _close(task, chosen, bound, None, partial.reason)
+        return replace(_close(task, chosen, bound, None, partial.reason), proof=proof)
     everything = np.arange(task.graph.n, dtype=np.int32)
-    return _search_on(task, chosen, bound, everything, None, partial.reason)
+    return replace(_search_on(task, chosen, bound, everything, None, partial.reason), proof=proof)
 
 
 def _over_fill(task: Task, structure: Structure) -> Found:
@@ -119,8 +126,8 @@ def _over_fill(task: Task, structure: Structure) -> Found:
     reason = f"fill budget: {structure.fill} fill edges were found, {most} are allowed, at least {lower} are needed"
     if task.stop is Stop.SECONDS:
         reason += "; seconds ran out in the search for fewer"
-    chosen, bound = bounds.cover_pair(structure.ranking, task.weights)
-    return _close(task, chosen, bound, structure, reason)
+    chosen, proof = bounds.cover_pair(structure.ranking, task.weights)
+    return replace(_close(task, chosen, proof.bound, structure, reason), proof=proof)
 
 
 def _with_less_fill(task: Task, structure: Structure, found: Found) -> Found:
@@ -132,7 +139,7 @@ def _with_less_fill(task: Task, structure: Structure, found: Found) -> Found:
     if not over_fill(other, task.budget) and fits.all():
         swept = sweep(other, task.weights, fits, task.gauge.monitor)
         if swept is not None and swept.chosen is not None:
-            return _proven(task, other, swept.bound, swept.chosen)
+            return _proven(task, other, swept)
     if other.fill != structure.fill:
         other = replace(structure, plain=False, proven=other.fill_lower_bound)
     return replace(found, structure=other)
@@ -144,16 +151,21 @@ def _with_structure(task: Task, structure: Structure) -> Found:
     if task.stop is Stop.CANCEL:
         return _cancelled(structure)
     if swept is None or swept.chosen is None:
-        chosen, bound = bounds.cover_pair(structure.ranking, task.weights)
-        bound = bound if swept is None else min(bound, swept.bound)
-        return _close(task, chosen, bound, structure, "seconds ran out while sweeping the tree of bags")
+        chosen, proof = bounds.cover_pair(structure.ranking, task.weights)
+        if swept is not None and swept.bound < proof.bound:
+            proof = swept.certify()
+        found = _close(task, chosen, proof.bound, structure, "seconds ran out while sweeping the tree of bags")
+        return replace(found, proof=proof)
     if fits.all():
-        return _proven(task, structure, swept.bound, swept.chosen)
+        return _proven(task, structure, swept)
+    proof = swept.certify()
     reason = _too_many_states(task, structure, fits)
-    return _search_on(task, swept.chosen, swept.bound, _homes(structure, fits), structure, reason)
+    found = _search_on(task, swept.chosen, swept.bound, _homes(structure, fits), structure, reason)
+    return replace(found, proof=proof)
 
 
-def _proven(task: Task, structure: Structure, value: int, chosen: U8) -> Found:
+def _proven(task: Task, structure: Structure, swept: Swept) -> Found:
+    value, chosen = swept.bound, swept.chosen
     task.gauge.incumbent(value)
     task.gauge.bound(value)
     if structure.fill == 0:
@@ -163,7 +175,7 @@ def _proven(task: Task, structure: Structure, value: int, chosen: U8) -> Found:
     most = task.budget.fill
     if most is not None and structure.fill > most:
         reason += f" (more fill than the {most} budgeted, as the states allowed it)"
-    return Found(Verdict.PROVEN, value, value, chosen, structure, reason)
+    return Found(Verdict.PROVEN, value, value, chosen, structure, reason, swept.certify())
 
 
 def _too_many_states(task: Task, structure: Structure, fits: U8) -> str:

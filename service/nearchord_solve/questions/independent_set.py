@@ -37,4 +37,4 @@ class IndependentSet:
         gauge = Gauge(monitor, rest.taken_weight, 1)
         whole = reuse if rest.graph is graph else None
         found = find_heaviest(Task(rest.graph, rest.weights, budget, when_over, gauge, whole))
-        return outcome_of(found, rest.taken_weight, 1, lambda chosen: lift(rest, chosen))
+        return outcome_of(found, rest.taken_weight, 1, lambda chosen: lift(rest, chosen), rest.vertices)

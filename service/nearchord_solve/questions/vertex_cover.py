@@ -46,4 +46,4 @@ class VertexCover:
             outside[lift(rest, chosen)] = False
             return np.flatnonzero(outside).astype(np.uint32)
 
-        return outcome_of(found, offset, -1, complement)
+        return outcome_of(found, offset, -1, complement, rest.vertices)

@@ -1,13 +1,15 @@
 """The heaviest independent set of a graph of known structure."""
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 
 from nearchord_solve.arrays import I64, U8, U32
 from nearchord_solve.kernels import sweep as kernels
-from nearchord_solve.kernels.layout import TABLE, Tries
+from nearchord_solve.kernels.layout import TABLE, Cover, Tries
 from nearchord_solve.monitor import Monitor, Phase
+from nearchord_solve.proof import Certificate, certify_sweep, room_for_cover
 from nearchord_solve.structure import Structure
 
 
@@ -15,11 +17,13 @@ from nearchord_solve.structure import Structure
 class Swept:
     """``bound`` is the optimum if all cores were settled exactly, else an upper bound; ``chosen`` uint8[n].
 
-    ``chosen`` is None if the sweep was stopped before the choice was complete.
+    ``chosen`` is None if the sweep was stopped before the choice was complete.  ``certify`` writes the proof of the
+    bound, once.
     """
 
     bound: int
     chosen: U8 | None
+    certify: Callable[[], Certificate]
 
 
 def sweep(structure: Structure, weights: I64, fits: U8, monitor: Monitor) -> Swept | None:
@@ -33,16 +37,24 @@ def sweep(structure: Structure, weights: I64, fits: U8, monitor: Monitor) -> Swe
     monitor.enter(Phase.SWEEP, n)
     residual = weights[numbering.order]
     tries = _empty_tries(structure, fits)
-    done, bound = kernels.inward(numbering, forest, cores.ptr, cores.place, fits, tries, residual, monitor.cells)
+    share = np.empty(forest.slot_place.size, np.int64)
+    cover = _empty_cover(structure, fits)
+    done, bound = kernels.inward(
+        numbering, forest, cores.ptr, cores.place, fits, tries, residual, share, cover, monitor.cells
+    )
     if not done:
         return None
+
+    def certify() -> Certificate:
+        return certify_sweep(int(bound), structure, weights, fits, residual, share, cover)
+
     by_place = np.empty(n, np.uint8)
     done = kernels.outward(numbering, forest, cores.ptr, cores.place, fits, tries, residual, by_place, monitor.cells)
     if not done:
-        return Swept(int(bound), None)
+        return Swept(int(bound), None, certify)
     chosen = np.empty(n, np.uint8)
     chosen[numbering.order] = by_place
-    return Swept(int(bound), chosen)
+    return Swept(int(bound), chosen, certify)
 
 
 def _empty_tries(structure: Structure, fits: U8) -> Tries:
@@ -56,6 +68,12 @@ def _empty_tries(structure: Structure, fits: U8) -> Tries:
         np.empty(room, np.int64),
         np.empty(room, np.int64),
     )
+
+
+def _empty_cover(structure: Structure, fits: U8) -> Cover:
+    cores, low_ptr = structure.cores, structure.numbering.low_ptr
+    homes = cores.place[np.repeat(fits == 0, np.diff(cores.ptr))]
+    return room_for_cover(homes.size, int((low_ptr[homes + 1] - low_ptr[homes]).sum()))
 
 
 def as_vertices(chosen: U8) -> U32:

@@ -29,6 +29,7 @@ from nearchord import CheckFailed, Graph, ProofKind, Recognition, Verdict, check
 from nearchord.checks.chordal import check_chordless_cycle, check_elimination_order
 from nearchord.checks.classes import check_cliques, check_split, splittance
 from nearchord.checks.edges import Edges
+from nearchord.checks import splitting
 from nearchord.checks.packing import MOST_PAIRS, Packing
 from strategies import arbitrary_graphs
 
@@ -456,12 +457,13 @@ def test_open_sides_take_their_part_of_a_load():
 def test_the_contract_names_every_column_that_is_checked():
     """The names here are those of the wire contract."""
     names = set(fill_answer(SQUARE).columns) | set(fill_answer(Graph.from_edges(3, [(0, 1), (1, 2)])).columns)
+    names |= {f"proof_{name}" for name in splitting.TYPES}
     assert names == nearchord_columns() - {"chosen"}
 
 
 def nearchord_columns():
     text = (Path(__file__).parents[3] / "proto" / "nearchord" / "v1" / "answer.proto").read_text(encoding="utf-8")
-    return set(re.findall(r"`(\w+)` \((?:UINT32|INT64)\)", text.replace("\n// ", " ")))
+    return set(re.findall(r"`(\w+)` \((?:UINT32|INT64)[,)]", text.replace("\n// ", " ")))
 
 
 def test_the_checker_of_fills_uses_nothing_of_the_solver():

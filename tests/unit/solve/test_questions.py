@@ -145,7 +145,7 @@ def test_components_add_up() -> None:
     squares = [(4 * i + a, 4 * i + b) for i in range(5) for a, b in [(0, 1), (1, 2), (2, 3), (0, 3)]]
     outcome = solve(IndependentSet(), Graph.from_edges(23, squares))
     assert (outcome.value, outcome.fill_cores, outcome.fill) == (13, 5, 5)
-    assert outcome.proof_kinds == ("search",) * 5
+    assert outcome.proof_kinds == ("certificate",) * 5
 
 
 def test_the_same_question_has_the_same_answer() -> None:

@@ -1,0 +1,78 @@
+"""Certificates: what writing them adds to a solve, how large they are, and how long the checker takes.
+
+The solve is timed as a worker runs it, warmed up, and the certificate within it; the checker runs on what came out.
+"""
+
+from statistics import median
+from time import perf_counter
+from typing import Any
+
+import nearchord
+import nearchord_solve as ns
+import nearchord_solve.sweep.independent as passes
+from nearchord.checks.edges import Edges
+from nearchord.checks.splitting import Splitting
+
+from bench import fresh, worker
+from bench.options import Options
+from bench.problem import Problem, windows
+from bench.report import Report, Row, Target
+
+SIZES = ((1_000, 20), (100_000, 500))
+QUICK = ((1_000, 20),)
+REPEATS = 9
+SECONDS = 60.0
+
+
+def measure(options: Options) -> Report:
+    """Run the scenario."""
+    limit = options.seconds or SECONDS
+    report = Report("proofs", {"limit_seconds": limit, "seed": options.seed})
+    problems = [windows(n, 20, removed, options.seed) for n, removed in (QUICK if options.quick else SIZES)]
+    rows = fresh.run(prove_all, problems, limit).result
+    report.tables["certificates of time windows"] = rows
+    if not options.quick:
+        last = rows[-1]
+        report.targets = [
+            Target("writing the certificate, share of the solve, n = 10^5", "<=", 15, last["share %"], "%"),
+            Target("size, n = 10^5", "<=", 64, last["bytes a vertex"], "bytes a vertex"),
+            Target("checker, n = 10^5", "<=", 15, last["check s"]),
+        ]
+    return report
+
+
+def prove_all(problems: list[Problem], limit: float) -> list[Row]:
+    """Solve and check each, after the warm-up."""
+    worker.warm_up()
+    return [_prove(problem, limit) for problem in problems]
+
+
+def _prove(problem: Problem, limit: float) -> Row:
+    spent: list[float] = []
+    write = passes.certify_sweep
+
+    def timed(*arguments: Any) -> Any:
+        begun = perf_counter()
+        made = write(*arguments)
+        spent.append(perf_counter() - begun)
+        return made
+
+    setattr(passes, "certify_sweep", timed)
+    runs = [worker.solve(problem, ns.Budget(), limit) for _ in range(REPEATS)]
+    setattr(passes, "certify_sweep", write)
+    outcome = runs[-1].outcome
+    graph = nearchord.Graph.from_arrays(problem.n, problem.low, problem.high, weights=problem.weights)
+    begun = perf_counter()
+    bound = Splitting(graph.n, outcome.columns).bound(Edges(graph.n, *graph.edges()), problem.weights)
+    checked = perf_counter() - begun
+    solve, writing = median(run.seconds for run in runs), median(spent)
+    return {
+        "n": problem.n,
+        "m": problem.m,
+        "solve s": solve,
+        "certificate s": writing,
+        "share %": 100 * writing / (solve - writing),
+        "bytes a vertex": sum(column.nbytes for column in outcome.columns.values()) / problem.n,
+        "check s": checked,
+        "confirmed": "yes" if bound == outcome.bound else "NO",
+    }

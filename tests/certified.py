@@ -1,0 +1,103 @@
+"""Answers with certificates, straight from the solver, and faults put into them."""
+
+from __future__ import annotations
+
+import hashlib
+import random
+from dataclasses import replace
+from typing import Any
+
+import nearchord
+import nearchord_solve as ns
+import numpy as np
+from nearchord.stages import WhenOver
+
+Columns = dict[str, np.ndarray]
+
+
+def answered(
+    graph: nearchord.Graph, question: nearchord.Question | None = None, budget: ns.Budget | None = None
+) -> nearchord.Answer:
+    """What the solver says, as a session would give it; pins are vertex numbers."""
+    question = question or nearchord.IndependentSet()
+    kind = ns.QUESTIONS[question.name]
+    asked = kind(must=list(question.must), never=list(question.never))
+    u, v = graph.edges()
+    pairs = list(zip(u.tolist(), v.tolist(), strict=True))
+    weights = None if graph.weights is None else graph.weights.astype(np.int64)
+    outcome = ns.solve(
+        asked, ns.Graph.from_edges(graph.n, pairs), weights, budget or ns.Budget(), "bound", ns.Monitor()
+    )
+    address = "" if weights is None else hashlib.sha256(weights.astype("<i8").tobytes()).hexdigest()
+    origin = nearchord.Provenance(
+        graph.address, address, "1", 1, nearchord.Budget(), WhenOver.BOUND, 1, (), 0.0, 0.0, 0, None
+    )
+    return nearchord.Answer(
+        "j", 0, "", question, nearchord.Verdict(outcome.verdict.value), outcome.value, outcome.bound,
+        outcome.chosen, outcome.reason, outcome.fill, outcome.fill_lower_bound, outcome.states, outcome.bags,
+        outcome.largest_bag, outcome.parts, outcome.fill_cores, nearchord.ProofKind(outcome.proof),
+        tuple(map(nearchord.ProofKind, outcome.proof_kinds)), 0.0, graph.n, "", origin, outcome.columns,
+    )  # fmt: skip
+
+
+def confirmed(graph: nearchord.Graph, answer: nearchord.Answer) -> bool:
+    """Whether everything is confirmed, the bound included; CheckFailed counts as no."""
+    try:
+        return not nearchord.check(graph, answer).not_confirmed
+    except nearchord.CheckFailed:
+        return False
+
+
+def bounded(answer: nearchord.Answer, bound: int, **columns: Any) -> nearchord.Answer:
+    """The same choice with another bound and other columns."""
+    return replace(answer, verdict=nearchord.Verdict.BOUNDED, bound=bound, columns={**answer.columns, **columns})
+
+
+def mutated(columns: Columns, rng: random.Random, n: int) -> Columns:
+    """One fault: a number changed, two entries swapped, a clique or a bag dropped."""
+    fault = rng.choice((_change, _swap, _drop_clique, _drop_bag))
+    return fault({name: column.copy() for name, column in columns.items()}, rng, n)
+
+
+def _change(columns: Columns, rng: random.Random, n: int) -> Columns:
+    column = columns[rng.choice([name for name in columns if columns[name].size])]
+    at = rng.randrange(column.size)
+    column[at] = rng.randrange(n) if column.dtype == np.uint32 else int(column[at]) + rng.choice((-2, -1, 1, 2))
+    return columns
+
+
+def _swap(columns: Columns, rng: random.Random, n: int) -> Columns:
+    column = columns[rng.choice([name for name in columns if columns[name].size])]
+    i, j = rng.randrange(column.size), rng.randrange(column.size)
+    column[[i, j]] = column[[j, i]]
+    return columns
+
+
+def _drop_clique(columns: Columns, rng: random.Random, n: int) -> Columns:
+    if columns["proof_clique_weight"].size:
+        _cut(columns, "clique", rng.randrange(columns["proof_clique_weight"].size), ("weight",))
+    return columns
+
+
+def _drop_bag(columns: Columns, rng: random.Random, n: int) -> Columns:
+    """Drop a bag with its homes; what hung from it becomes a root with all its vertices at home."""
+    above = columns["proof_bag_above"]
+    if not above.size:
+        return columns
+    gone = rng.randrange(above.size)
+    sizes = np.diff(columns["proof_bag_start"]) - columns["proof_bag_adhesion"]
+    owner = np.repeat(np.arange(above.size), sizes)
+    columns["proof_home_weight"] = columns["proof_home_weight"][owner != gone]
+    columns["proof_bag_above"] = np.where(above == gone, above[gone], above - (above > gone))
+    _cut(columns, "bag", gone, ("adhesion", "above"))
+    return columns
+
+
+def _cut(columns: Columns, what: str, gone: int, others: tuple[str, ...]) -> None:
+    start = columns[f"proof_{what}_start"]
+    sizes = np.diff(start)
+    kept = np.repeat(np.arange(sizes.size) != gone, sizes)
+    columns[f"proof_{what}_vertex"] = columns[f"proof_{what}_vertex"][kept]
+    columns[f"proof_{what}_start"] = np.concatenate((np.zeros(1, np.int64), np.cumsum(np.delete(sizes, gone))))
+    for name in others:
+        columns[f"proof_{what}_{name}"] = np.delete(columns[f"proof_{what}_{name}"], gone)
