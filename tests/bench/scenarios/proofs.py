@@ -57,9 +57,9 @@ def _prove(problem: Problem, limit: float) -> Row:
         spent.append(perf_counter() - begun)
         return made
 
-    setattr(passes, "certify_sweep", timed)
+    passes.certify_sweep = timed
     runs = [worker.solve(problem, ns.Budget(), limit) for _ in range(REPEATS)]
-    setattr(passes, "certify_sweep", write)
+    passes.certify_sweep = write
     outcome = runs[-1].outcome
     graph = nearchord.Graph.from_arrays(problem.n, problem.low, problem.high, weights=problem.weights)
     begun = perf_counter()

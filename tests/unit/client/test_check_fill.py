@@ -26,10 +26,10 @@ from fill_answers import (
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from nearchord import CheckFailed, Graph, ProofKind, Recognition, Verdict, check
+from nearchord.checks import splitting
 from nearchord.checks.chordal import check_chordless_cycle, check_elimination_order
 from nearchord.checks.classes import check_cliques, check_split, splittance
 from nearchord.checks.edges import Edges
-from nearchord.checks import splitting
 from nearchord.checks.packing import MOST_PAIRS, Packing
 from strategies import arbitrary_graphs
 

@@ -223,8 +223,8 @@ def test_a_wrong_fill_is_never_answered(monkeypatch: pytest.MonkeyPatch) -> None
 
 
 def test_other_questions_are_not_disturbed() -> None:
-    """A choice and no columns."""
+    """A choice and its certificate."""
     outcome = solve(IndependentSet(), Graph.from_edges(*RING), None, Budget(), "bound", Monitor())
     assert outcome.chosen.size == 3
-    assert outcome.columns == {}
+    assert all(name.startswith("proof_") for name in outcome.columns)
     assert outcome.recognition is None

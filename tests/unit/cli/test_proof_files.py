@@ -1,0 +1,56 @@
+"""`solve --proof` and `check --proof`: what is written is what is read, and only for its own graph."""
+
+from __future__ import annotations
+
+import json
+from dataclasses import replace
+from pathlib import Path
+
+import nearchord
+import pytest
+from certified import answered
+from nearchord.cli import proof_file
+
+SQUARE = nearchord.Graph.from_edges(4, [(0, 1), (1, 2), (2, 3), (0, 3)], weights=[3, 1, 4, 1])
+
+
+def proven() -> nearchord.Answer:
+    """An answer with the format of its proof told."""
+    answer = answered(SQUARE)
+    return replace(answer, provenance=replace(answer.provenance, proof_format=1))
+
+
+def test_a_proof_that_was_written_confirms_the_bound(tmp_path: Path) -> None:
+    """And without it the bound stays open."""
+    answer, file = proven(), str(tmp_path / "p")
+    assert proof_file.write(file, answer)
+    bare = replace(answer, columns={})
+    assert nearchord.check(SQUARE, bare).not_confirmed
+    whole = replace(bare, columns=proof_file.read(file, SQUARE))
+    assert not nearchord.check(SQUARE, whole).not_confirmed
+
+
+def test_no_file_is_written_without_a_proof(tmp_path: Path) -> None:
+    """So that none is mistaken for one."""
+    assert not proof_file.write(str(tmp_path / "p"), replace(proven(), columns={}))
+    assert not (tmp_path / "p").exists()
+
+
+@pytest.mark.parametrize(
+    ("change", "word"),
+    [
+        ({"graph_address": "f" * 64}, "not about this one"),
+        ({"proof_format": 2}, "format"),
+        ({"columns": {"proof_bag_above": {"type": "object", "data": []}}}, "type"),
+        ({"columns": {"proof_bag_above": {"type": "int64", "data": [2**70]}}}, "proof"),
+        ({"columns": {"proof_bag_above": {"type": "int64", "data": [1.5]}}}, "whole"),
+        ({"columns": []}, "proof"),
+    ],
+)
+def test_other_files_are_refused(tmp_path: Path, change: dict[str, object], word: str) -> None:
+    """The message names the file and what is wrong."""
+    file = tmp_path / "p"
+    proof_file.write(str(file), proven())
+    file.write_text(json.dumps({**json.loads(file.read_text()), **change}))
+    with pytest.raises(nearchord.FileProblem, match=word):
+        proof_file.read(str(file), SQUARE)
