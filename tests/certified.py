@@ -54,8 +54,8 @@ def bounded(answer: nearchord.Answer, bound: int, **columns: Any) -> nearchord.A
 
 
 def mutated(columns: Columns, rng: random.Random, n: int) -> Columns:
-    """One fault: a number changed, two entries swapped, a clique or a bag dropped."""
-    fault = rng.choice((_change, _swap, _drop_clique, _drop_bag))
+    """One fault: a number changed, two entries swapped, a clique or a bag dropped, two cliques joined."""
+    fault = rng.choice((_change, _swap, _drop_clique, _drop_bag, _join_cliques))
     return fault({name: column.copy() for name, column in columns.items()}, rng, n)
 
 
@@ -76,6 +76,23 @@ def _swap(columns: Columns, rng: random.Random, n: int) -> Columns:
 def _drop_clique(columns: Columns, rng: random.Random, n: int) -> Columns:
     if columns["proof_clique_weight"].size:
         _cut(columns, "clique", rng.randrange(columns["proof_clique_weight"].size), ("weight",))
+    return columns
+
+
+def _join_cliques(columns: Columns, rng: random.Random, n: int) -> Columns:
+    """Two cliques as one of the larger weight: all vertices stay covered, and the bound gets better."""
+    start, weight = columns["proof_clique_start"], columns["proof_clique_weight"]
+    if weight.size < 2:
+        return columns
+    k = rng.randrange(weight.size - 1)
+    joined = np.unique(columns["proof_clique_vertex"][start[k] : start[k + 2]])
+    sizes = np.delete(np.diff(start), k)
+    sizes[k] = joined.size
+    old = columns["proof_clique_vertex"]
+    columns["proof_clique_vertex"] = np.concatenate((old[: start[k]], joined, old[start[k + 2] :]))
+    columns["proof_clique_start"] = np.concatenate((np.zeros(1, np.int64), np.cumsum(sizes)))
+    columns["proof_clique_weight"] = np.delete(weight, k)
+    columns["proof_clique_weight"][k] = max(weight[k], weight[k + 1])
     return columns
 
 

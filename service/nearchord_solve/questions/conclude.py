@@ -52,7 +52,8 @@ def outcome_of(found: Found, offset: int, sign: int, lift: Callable[[U32], U32],
     proven = found.verdict is Verdict.PROVEN
     cores = structure.fill_cores if structure else 0
     proof = found.proof if found.bound is not None and found.proof and found.proof.bound <= found.bound else None
-    kind = "certificate" if proof else "search" if proven else "none"
+    searched = proven or (found.proof is not None and found.bound is not None)
+    kind = "certificate" if proof else "search" if searched else "none"
     return Outcome(
         verdict=found.verdict,
         value=None if found.value is None else offset + sign * found.value,
