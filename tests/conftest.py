@@ -1,10 +1,13 @@
-"""What holds for the whole suite: how often tests that kill processes are run."""
+"""What holds for the whole suite: where compiled kernels are kept, how often tests that kill processes are run."""
 
 from __future__ import annotations
 
 import os
 
 import pytest
+from nearchord_service.work.local import kernel_cache
+
+os.environ.update(kernel_cache.prepare("nearchord_solve", os.environ))  # before anything imports numba
 
 
 def pytest_generate_tests(metafunc: pytest.Metafunc) -> None:

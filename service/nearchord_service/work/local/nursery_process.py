@@ -8,7 +8,7 @@ import socket
 import subprocess
 import sys
 
-from nearchord_service.work.local import wire
+from nearchord_service.work.local import kernel_cache, wire
 from nearchord_service.work.local.messages import Fork, Kill
 
 _PROGRAM = """\
@@ -33,7 +33,7 @@ class NurseryProcess:
         try:
             self._process = subprocess.Popen(
                 [sys.executable, "-c", _PROGRAM, json.dumps(sys.path), json.dumps({**inherited, "solver": solver})],
-                env={**os.environ, **_ONE_THREAD},
+                env={**os.environ, **_ONE_THREAD, **kernel_cache.prepare(solver, os.environ)},
                 stdin=subprocess.DEVNULL,
                 stdout=subprocess.DEVNULL,
                 pass_fds=tuple(inherited.values()),
