@@ -68,6 +68,13 @@ class VertexCover(Choice):
 
 
 @dataclass(frozen=True)
+class Clique(Choice):
+    """Heaviest set of pairwise adjacent vertices: the tightest bottleneck."""
+
+    name: ClassVar[str] = "clique"
+
+
+@dataclass(frozen=True)
 class Fill(Question):
     """Fewest edges whose addition makes the graph chordal: how far the conflict data is from well-behaved, and which
     pairs break it. The answer has `fill_edges` and the classes that the graph belongs to (`recognition`)."""
@@ -85,7 +92,9 @@ class Structure(Question):
     maximises: ClassVar[bool] = False
 
 
-QUESTIONS: dict[str, type[Question]] = {kind.name: kind for kind in (IndependentSet, VertexCover, Fill, Structure)}
+QUESTIONS: dict[str, type[Question]] = {
+    kind.name: kind for kind in (IndependentSet, VertexCover, Clique, Fill, Structure)
+}
 """Every question by its name on the command line and in metrics."""
 
 

@@ -11,7 +11,7 @@ from nearchord_solve.kept import Kept
 from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Monitor, Phase, Stop
 from nearchord_solve.outcome import Outcome, Prediction, Recognition, StructureReport, Verdict
-from nearchord_solve.questions import QUESTIONS, Fill, IndependentSet, Structure, VertexCover
+from nearchord_solve.questions import QUESTIONS, Clique, Fill, IndependentSet, Structure, VertexCover
 from nearchord_solve.solving import solve
 from nearchord_solve.warm import warm_up
 
@@ -21,6 +21,7 @@ __all__ = [
     "QUESTIONS",
     "VERSION",
     "Budget",
+    "Clique",
     "Fill",
     "Graph",
     "GraphError",

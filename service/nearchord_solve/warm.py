@@ -11,12 +11,12 @@ from nearchord_solve.graph import Graph
 from nearchord_solve.kernels.triangulate import best_triangulation
 from nearchord_solve.monitor import Monitor, Phase, Stop
 from nearchord_solve.order import Unfinished, eliminate, rank, rank_by_degree
-from nearchord_solve.questions import Fill, IndependentSet, Structure, VertexCover
+from nearchord_solve.questions import Clique, Fill, IndependentSet, Structure, VertexCover
 from nearchord_solve.solving import solve
 
 Report = Callable[[int, int], None]
 
-STAGES = 18  # what _compile yields
+STAGES = 19  # what _compile yields
 
 
 def warm_up(report: Report | None = None) -> None:
@@ -61,6 +61,9 @@ def _compile() -> Iterator[None]:
     solve(IndependentSet(), square, None, Budget(memory=1), "bound", monitor)
     monitor = Monitor(on_phase=lambda phase: _stop_in_fill(monitor, phase))
     solve(IndependentSet(), square, None, Budget(), "bound", monitor)
+    yield
+    solve(Clique(), square, None, Budget(), "bound", Monitor())
+    solve(Clique(), square, None, Budget(memory=1), "bound", Monitor())
     yield
     solve(Fill(), square, None, Budget(), "bound", Monitor())
     yield

@@ -186,7 +186,8 @@ def _question(name: str, must: tuple[str, ...], never: tuple[str, ...], weights:
 
 
 def _choices() -> str:
-    return " or ".join(name for name, kind in nearchord.QUESTIONS.items() if issubclass(kind, Choice))
+    *names, last = [name for name, kind in nearchord.QUESTIONS.items() if issubclass(kind, Choice)]
+    return f"{', '.join(names)} or {last}"
 
 
 def reads(command: Command) -> Command:

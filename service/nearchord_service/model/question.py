@@ -11,13 +11,14 @@ class QuestionName(StrEnum):
 
     INDEPENDENT_SET = "independent-set"
     VERTEX_COVER = "vertex-cover"
+    CLIQUE = "clique"
     FILL = "fill"
     STRUCTURE = "structure"
 
     @property
     def chooses(self) -> bool:
         """Whether its answer is a set of vertices: only then does it take weights and pins."""
-        return self in (QuestionName.INDEPENDENT_SET, QuestionName.VERTEX_COVER)
+        return self not in (QuestionName.FILL, QuestionName.STRUCTURE)
 
 
 class WhenOver(StrEnum):

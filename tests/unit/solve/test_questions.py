@@ -5,6 +5,7 @@ import pytest
 from nearchord_solve import (
     QUESTIONS,
     Budget,
+    Clique,
     Fill,
     Graph,
     IndependentSet,
@@ -29,6 +30,7 @@ def test_questions_are_found_by_their_wire_names() -> None:
     assert {
         "independent-set": IndependentSet,
         "vertex-cover": VertexCover,
+        "clique": Clique,
         "fill": Fill,
         "structure": Structure,
     } == QUESTIONS
