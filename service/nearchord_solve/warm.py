@@ -11,12 +11,20 @@ from nearchord_solve.graph import Graph
 from nearchord_solve.kernels.triangulate import best_triangulation
 from nearchord_solve.monitor import Monitor, Phase, Stop
 from nearchord_solve.order import Unfinished, eliminate, rank, rank_by_degree
-from nearchord_solve.questions import Clique, Fill, IndependentSet, Structure, VertexCover
+from nearchord_solve.questions import (
+    Clique,
+    ColourableSubgraph,
+    Fill,
+    IndependentSet,
+    InducedForest,
+    Structure,
+    VertexCover,
+)
 from nearchord_solve.solving import solve
 
 Report = Callable[[int, int], None]
 
-STAGES = 19  # what _compile yields
+STAGES = 22  # what _compile yields
 
 
 def warm_up(report: Report | None = None) -> None:
@@ -65,6 +73,10 @@ def _compile() -> Iterator[None]:
     solve(Clique(), square, None, Budget(), "bound", Monitor())
     solve(Clique(), square, None, Budget(memory=1), "bound", Monitor())
     yield
+    for question in (InducedForest(), ColourableSubgraph(2), ColourableSubgraph(3)):
+        solve(question, _braced_ring(7), None, Budget(), "bound", Monitor())
+        solve(question, square, None, Budget(memory=1), "bound", Monitor())
+        yield
     solve(Fill(), square, None, Budget(), "bound", Monitor())
     yield
     solve(Structure(), square, None, Budget(), "bound", Monitor())

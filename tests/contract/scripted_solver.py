@@ -89,6 +89,19 @@ class Clique:
 
 
 @dataclass(frozen=True)
+class ColourableSubgraph:
+    colours: int = 2
+    must: tuple[int, ...] = ()
+    never: tuple[int, ...] = ()
+
+
+@dataclass(frozen=True)
+class InducedForest:
+    must: tuple[int, ...] = ()
+    never: tuple[int, ...] = ()
+
+
+@dataclass(frozen=True)
 class Fill:
     pass
 
@@ -102,6 +115,8 @@ QUESTIONS = {
     "independent-set": IndependentSet,
     "vertex-cover": VertexCover,
     "clique": Clique,
+    "colourable-subgraph": ColourableSubgraph,
+    "induced-forest": InducedForest,
     "fill": Fill,
     "structure": Structure,
 }

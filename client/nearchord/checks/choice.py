@@ -9,10 +9,11 @@ from numpy.typing import NDArray
 
 from nearchord.answer import Answer
 from nearchord.canonical import weight_sum
+from nearchord.checks.classes_of_choice import check_colours, check_forest
 from nearchord.checks.confirmed import Confirmed, check_sides, check_unanswered
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph
-from nearchord.question import Choice, Clique, IndependentSet, Pin, VertexCover
+from nearchord.question import Choice, Clique, ColourableSubgraph, IndependentSet, InducedForest, Pin, VertexCover
 from nearchord.stages import Verdict
 
 Mask = NDArray[np.bool_]
@@ -25,7 +26,7 @@ def check_choice(graph: Graph, answer: Answer, question: Choice) -> Confirmed:
     if answer.value is None:
         return check_unanswered(answer)
     chosen = _chosen_mask(graph, answer)
-    done = [_check_definition(graph, question, chosen), _check_value(graph, answer, chosen)]
+    done = [_check_definition(graph, question, chosen, answer.colour), _check_value(graph, answer, chosen)]
     plain = _check_bound(graph, answer, question)
     if plain is not None:
         return Confirmed((*done, plain), ())
@@ -42,6 +43,8 @@ def _check_infeasible(graph: Graph, question: Choice) -> Confirmed:
         pair = _no_edge_inside(graph, must)
         if pair is not None:
             return Confirmed((f"the pins contradict each other: {pair} is no edge",), ())
+    if isinstance(question, ColourableSubgraph | InducedForest):
+        return Confirmed((), ("that the pins contradict each other: the answer carries no proof of it",))
     clash = None if isinstance(question, Clique) else _edge_inside(graph, _forced(question, must, never))
     if clash is None:
         raise CheckFailed("the verdict is INFEASIBLE, but the pins do not contradict each other")
@@ -99,9 +102,13 @@ def _no_edge_inside(graph: Graph, mask: Mask) -> str | None:
     return f"{{{graph.label(one)}, {graph.label(int(np.flatnonzero(far)[0]))}}}"
 
 
-def _check_definition(graph: Graph, question: Choice, chosen: Mask) -> str:
+def _check_definition(graph: Graph, question: Choice, chosen: Mask, colour: NDArray[np.uint32]) -> str:
     """The choice meets the definition of the question and its pins."""
     _check_pins(graph, question, chosen)
+    if isinstance(question, ColourableSubgraph):
+        return check_colours(graph, chosen, colour, question.colours)
+    if isinstance(question, InducedForest):
+        return check_forest(graph, chosen)
     if isinstance(question, IndependentSet):
         clash = _edge_inside(graph, chosen)
         if clash is not None:
