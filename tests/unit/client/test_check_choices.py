@@ -19,9 +19,9 @@ def coloured(chosen, colours, value, q=2):  # type: ignore[no-untyped-def]
 
 
 def test_right_choices_are_confirmed() -> None:
-    assert "pairwise adjacent" in check(KITE, answer(KITE, Clique(), [0, 1, 2], 8)).confirmed[0]
-    assert "no cycle" in check(KITE, answer(KITE, InducedForest(), [0, 2, 3, 4], 13)).confirmed[0]
-    assert "2 colours" in check(KITE, coloured([0, 2, 3, 4], [1, 2, 1, 2], 13)).confirmed[0]
+    assert "pairwise adjacent" in check(KITE, answer(KITE, Clique(), [0, 1, 2], 8)).what[0]
+    assert "no cycle" in check(KITE, answer(KITE, InducedForest(), [0, 2, 3, 4], 13)).what[0]
+    assert "2 colours" in check(KITE, coloured([0, 2, 3, 4], [1, 2, 1, 2], 13)).what[0]
 
 
 @pytest.mark.parametrize(
@@ -41,7 +41,7 @@ def test_wrong_choices_are_named(given, message) -> None:  # type: ignore[no-unt
 
 def test_infeasible_cliques_rest_on_a_pair_without_an_edge() -> None:
     given = replace(answer(KITE, Clique(must=[0, 3]), [], None, None, Verdict.INFEASIBLE), bound=None)
-    assert "{0, 3} is no edge" in check(KITE, given).confirmed[0]
+    assert "{0, 3} is no edge" in check(KITE, given).what[0]
     wrong = replace(answer(KITE, Clique(must=[0, 1]), [], None, None, Verdict.INFEASIBLE), bound=None)
     with pytest.raises(CheckFailed, match="do not contradict"):
         check(KITE, wrong)
