@@ -78,7 +78,8 @@ def columns(source: nx.Graph, order: list[int], fill: list[Pair], cycles: list[l
     clique = split_clique(source)
     if clique is not None:
         found["split_clique"] = vertices(clique)
-    found["packing_start"], found["packing_vertex"] = cut(cycles)
+    found["packing_ring"], found["packing_vertex"] = cut(cycles)
+    found["packing_group"] = np.arange(found["packing_vertex"].size + 1)
     found["packing_numerator"] = found["packing_denominator"] = np.ones(len(cycles), np.int64)
     found["core_start"], found["core_vertex"] = cut([sorted(source)] if fill else [])
     return found

@@ -1,8 +1,4 @@
-"""From two columns of endpoints to the canonical form of a graph, in numpy only.
-
-An edge {u, v} with u < v becomes the key u * 2^32 + v. Keys that ascend strictly are canonical already, which one
-linear pass finds out; otherwise they are sorted. Time O(n + m) or O(n + m log m), memory 24 bytes an edge.
-"""
+"""What callers give for a graph, checked: pairs, columns of endpoints, weights, names; and arrays as bytes."""
 
 from __future__ import annotations
 
@@ -31,8 +27,8 @@ def pair_array(edges: Any) -> NDArray[Any]:
     return pairs
 
 
-def endpoint_column(column: Any, name: str) -> Ints:
-    """`column` as int64[m]; BadInput when it is not one-dimensional or not of whole numbers below 2^63."""
+def endpoint_column(column: Any, name: str) -> NDArray[Any]:
+    """`column` as integers[m]; BadInput when it is not one-dimensional or not of whole numbers below 2^63."""
     array = np.asarray(column)
     if array.size == 0:
         return np.zeros(0, np.int64)
@@ -41,11 +37,11 @@ def endpoint_column(column: Any, name: str) -> Ints:
             f"{name} is not a one-dimensional array of whole numbers (dtype {array.dtype}, {array.ndim} dimensions)",
             "give vertex numbers from 0; for named vertices use from_networkx, or map the names to numbers first",
         )
-    return _as_int64(array, name)
+    return _as_int64(array, name) if array.dtype == np.uint64 else array
 
 
 def _as_int64(array: NDArray[Any], name: str) -> Ints:
-    if array.dtype == np.uint64 and int(array.max()) >= 2**63:
+    if int(array.max()) >= 2**63:
         place = int(array.argmax())
         raise BadInput(
             f"{name}[{place}] is {array[place]}, which is out of range", "give vertex numbers from 0 to n - 1"
@@ -60,62 +56,6 @@ def vertex_count(n: Any) -> int:
     return int(n)
 
 
-def edge_keys(n: int, u: Ints, v: Ints) -> NDArray[np.uint64]:
-    """Keys of the edges in the order given; BadInput naming the first edge that leaves the range or is a loop."""
-    low, high = np.minimum(u, v), np.maximum(u, v)
-    if len(low) and (int(low.min()) < 0 or int(high.max()) >= n):
-        place = int(np.flatnonzero((low < 0) | (high >= n))[0])
-        raise BadInput(f"edge {place} ({u[place]}, {v[place]}) leaves the range", _range_remedy(n))
-    keys = low.view(np.uint64) << np.uint64(32)
-    keys |= high.view(np.uint64)
-    loops = low == high
-    if loops.any():
-        place = int(loops.argmax())
-        raise BadInput(
-            f"edge {place} ({u[place]}, {v[place]}) is a self-loop", "leave it out: no vertex excludes itself"
-        )
-    return keys
-
-
-def _range_remedy(n: int) -> str:
-    return (
-        f"the graph has vertices 0 to {n - 1}: correct the edge or raise n"
-        if n
-        else "the graph has no vertices: raise n"
-    )
-
-
-def sorted_keys(keys: NDArray[np.uint64]) -> NDArray[np.uint64]:
-    """`keys` ascending (the same array when they ascend already); BadInput naming the first repeated edge."""
-    if bool((keys[1:] > keys[:-1]).all()):
-        return keys
-    ordered = np.sort(keys)
-    if bool((ordered[1:] == ordered[:-1]).any()):
-        _name_repeated(keys)
-    return ordered
-
-
-def _name_repeated(keys: NDArray[np.uint64]) -> None:
-    """Raise BadInput for the earliest edge that stood there before."""
-    order = np.argsort(keys, kind="stable")
-    again = order[1:][keys[order[1:]] == keys[order[:-1]]]
-    place = int(again.min())
-    first = int(np.flatnonzero(keys == keys[place])[0])
-    u, v = int(keys[place]) >> 32, int(keys[place]) & 0xFFFFFFFF
-    raise BadInput(f"edge {place} ({u}, {v}) repeats edge {first}", "give each edge once, in either direction")
-
-
-def rows(n: int, keys: NDArray[np.uint64]) -> tuple[NDArray[np.uint64], NDArray[np.uint32]]:
-    """Row pointers uint64[n + 1] and targets uint32[m] of ascending keys, both read-only."""
-    counts = np.bincount((keys >> np.uint64(32)).view(np.int64), minlength=n)
-    row_ptr = np.zeros(n + 1, np.uint64)
-    np.cumsum(counts, out=row_ptr[1:], dtype=np.uint64)
-    targets = keys.astype(np.uint32)  # keeps the lower half
-    row_ptr.flags.writeable = False
-    targets.flags.writeable = False
-    return row_ptr, targets
-
-
 def weight_vector(n: int, weights: Any) -> NDArray[np.int64]:
     """`weights` as read-only int64[n]; BadInput when one is negative or broken, or their sum reaches 2^62."""
     array = np.asarray(weights)
@@ -125,7 +65,7 @@ def weight_vector(n: int, weights: Any) -> NDArray[np.int64]:
     if n and int(whole.min()) < 0:
         place = int((whole < 0).argmax())
         raise BadInput(f"weight {place} is {whole[place]}, which is negative", "give weights of at least 0")
-    if weight_sum(whole) >= WEIGHT_LIMIT:
+    if n and int(whole.max()) * n >= WEIGHT_LIMIT and weight_sum(whole) >= WEIGHT_LIMIT:
         raise BadInput("the weights add up to 2^62 or more", "count in a larger unit: divide all weights")
     result = np.array(whole, np.int64)
     result.flags.writeable = False

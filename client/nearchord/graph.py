@@ -13,7 +13,7 @@ from typing import IO, TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
-from nearchord import canonical
+from nearchord import canonical, rows
 from nearchord.errors import BadInput
 
 if TYPE_CHECKING:
@@ -75,7 +75,7 @@ class Graph:
         first, second = canonical.endpoint_column(u, "u"), canonical.endpoint_column(v, "v")
         if len(first) != len(second):
             raise BadInput(f"u has {len(first)} entries and v has {len(second)}", "give one entry of each an edge")
-        row_ptr, targets = canonical.rows(n, canonical.sorted_keys(canonical.edge_keys(n, first, second)))
+        row_ptr, targets = rows.rows(n, first, second)
         return cls(n, len(targets), row_ptr, targets).with_weights(weights).with_names(names)
 
     @classmethod

@@ -34,6 +34,9 @@ _log = logging.getLogger(__name__)
 HOLDER = "server"
 """Who holds the leases. A data folder belongs to one server, so whatever is leased at a start is its own."""
 
+KEPT = "kept"
+"""Folder in the data folder for what speeds up later jobs; it may be deleted at any time."""
+
 EXIT_FAILED = 1
 _STDIN = 0
 
@@ -45,7 +48,11 @@ class Server:
         self._settings = settings
         self._metrics = Metrics(CollectorRegistry())
         self._store = SqlStore(settings.data, on_write=self._metrics.database_write, on_end=self._metrics.job_ended)
-        self._executor = LocalExecutor(settings.workers)
+        self._executor = LocalExecutor(
+            settings.workers,
+            keep_folder=settings.data / KEPT if settings.kept_bytes else None,
+            keep_bytes=settings.kept_bytes,
+        )
         self._dispatcher = Dispatcher(self._store, self._executor, holder=HOLDER, observer=self._metrics)
         self._upkeep = Upkeep(self._store, retention=settings.retention, observer=self._metrics)
         self._versions = Versions(service_version(), solver_version())

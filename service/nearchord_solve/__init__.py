@@ -22,13 +22,14 @@ from nearchord_solve.questions import (
     VertexCover,
 )
 from nearchord_solve.solving import solve
-from nearchord_solve.warm import warm_up
+from nearchord_solve.warm import WARM_PARTS, warm_up
 
 VERSION = "0.1.0"
 
 __all__ = [
     "QUESTIONS",
     "VERSION",
+    "WARM_PARTS",
     "Budget",
     "Clique",
     "ColourableSubgraph",

@@ -15,7 +15,7 @@ from nearchord_solve.arrays import I64
 from nearchord_solve.budget import Budget
 from nearchord_solve.errors import SolverError
 from nearchord_solve.fill.cores import Cores
-from nearchord_solve.kernels.layout import STATES, Forest, Numbering
+from nearchord_solve.kernels.layout import EASY, STATES, Forest, Numbering
 from nearchord_solve.memory import most_fill
 from nearchord_solve.structure import Structure
 
@@ -38,17 +38,20 @@ class Kept:
         """Whether building within ``budget`` would give this structure.
 
         The same budget always does.  Otherwise the structure must come from the search order with the fewest
-        states, which any budget leads to that admits its fill and, core by core, its states, that leaves room for
-        the fill of the order, and in which no core is left that another order is tried for.
+        states, which any budget leads to that admits its fill and, core by core, its states and those that are taken
+        without looking for fewer, that leaves room for the fill of the order, and in which no core is left that
+        another order is tried for.
         """
         if budget == self.budget:
             return True
         structure = self.structure
-        states: I64 = structure.forest.figures[:, STATES]
+        forest = structure.forest
+        states: I64 = forest.figures[:, STATES]
+        least = max(int(states.max(initial=0)), EASY * int(np.diff(forest.core_slot).max(initial=0)))
         return (
             structure.plain
             and (budget.fill is None or structure.fill <= budget.fill)
-            and int(states.max(initial=0)) <= min(budget.states, self.budget.states)
+            and least <= min(budget.states, self.budget.states)
             and structure.numbering.fill.size <= most_fill(self.n, self.m, budget.memory)
             and not structure.coarse(budget)
         )

@@ -24,23 +24,26 @@ from nearchord_solve.solving import solve
 
 Report = Callable[[int, int], None]
 
-STAGES = 22  # what _compile yields
 
+def warm_up(report: Report | None = None, part: str | None = None) -> None:
+    """Run tiny solves that together call every kernel with the production types; only one ``part`` of them if named.
 
-def warm_up(report: Report | None = None) -> None:
-    """Run tiny solves that together call every kernel with the production types.
-
-    Afterwards nothing is compiled any more, in this process or, through numba's disk cache, in later ones.  Cold,
-    that takes a minute of processor time.  ``report(done, total)`` hears of each stage.
+    Afterwards nothing of it is compiled any more, in this process or, through numba's disk cache, in later ones.  Cold,
+    all parts take a minute of processor time.  ``report(done, total)`` hears of each stage.
     """
     heard = report if report is not None else lambda done, total: None
-    heard(0, STAGES)
-    for done, _ in enumerate(_compile(), start=1):
-        heard(done, STAGES)
+    wanted = WARM_PARTS if part is None else (part,)
+    total = sum(PARTS[name][1] for name in wanted)
+    heard(0, total)
+    done = 0
+    for name in wanted:
+        for _ in PARTS[name][0]():
+            done += 1
+            heard(done, total)
 
 
-def _compile() -> Iterator[None]:
-    """Compile stage by stage, so that whoever waits sees it go on."""
+def _choosing() -> Iterator[None]:
+    """Everything about choices, stage by stage, so that whoever waits sees it go on."""
     square = Graph.from_edges(5, [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4)])
     monitor = Monitor()
     yield
@@ -70,6 +73,11 @@ def _compile() -> Iterator[None]:
     monitor = Monitor(on_phase=lambda phase: _stop_in_fill(monitor, phase))
     solve(IndependentSet(), square, None, Budget(), "bound", monitor)
     yield
+
+
+def _labelling() -> Iterator[None]:
+    """Cliques, colours and forests."""
+    square = Graph.from_edges(5, [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4)])
     solve(Clique(), square, None, Budget(), "bound", Monitor())
     solve(Clique(), square, None, Budget(memory=1), "bound", Monitor())
     yield
@@ -77,11 +85,16 @@ def _compile() -> Iterator[None]:
         solve(question, _braced_ring(7), None, Budget(), "bound", Monitor())
         solve(question, square, None, Budget(memory=1), "bound", Monitor())
         yield
+
+
+def _filling() -> Iterator[None]:
+    """Everything about the graph alone."""
+    square = Graph.from_edges(5, [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4)])
+    yield from rehearse()
     solve(Fill(), square, None, Budget(), "bound", Monitor())
     yield
     solve(Structure(), square, None, Budget(), "bound", Monitor())
     yield
-    yield from rehearse()
 
 
 def _stop_in_fill(monitor: Monitor, phase: Phase) -> None:
@@ -93,3 +106,13 @@ def _braced_ring(n: int) -> Graph:
     """A cycle in which also every second vertex is linked, and a tail."""
     pairs = {(min(v, u), max(v, u)) for v in range(n) for u in ((v + 1) % n, (v + 2) % n)}
     return Graph.from_edges(n + 1, [*sorted(pairs), (n - 1, n)])
+
+
+PARTS: dict[str, tuple[Callable[[], Iterator[None]], int]] = {
+    "choosing": (_choosing, 11),
+    "filling": (_filling, 7),
+    "labelling": (_labelling, 4),
+}
+"""Name of a part: its stages one by one, and how many they are."""
+WARM_PARTS = tuple(PARTS)
+"""Parts of the warm-up that can be compiled side by side; what they share is compiled by whoever comes first."""

@@ -1,6 +1,6 @@
 """Times the project's own solver the way a worker process runs it: warmed up, one job at a time, no service."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from threading import Timer
 from time import perf_counter
@@ -49,8 +49,8 @@ def warm_up() -> float:
     return perf_counter() - begun
 
 
-def solve(problem: Problem, budget: ns.Budget, seconds: float) -> Timing:
-    """Solve the heaviest independent set on a graph not known before; stops at ``seconds``."""
+def solve(problem: Problem, budget: ns.Budget, seconds: float, question: Any = None) -> Timing:
+    """Answer a question (None: the heaviest independent set) about a graph not known before; stops at ``seconds``."""
     row_ptr, targets = problem.canonical()
     cells = np.zeros(ns.Monitor.CELLS, np.int64)
     timer = Timer(seconds, cells.__setitem__, (ns.Monitor.STOP, int(ns.Stop.SECONDS)))
@@ -60,10 +60,10 @@ def solve(problem: Problem, budget: ns.Budget, seconds: float) -> Timing:
     watch = Watch()
     graph = ns.Graph.from_canonical(problem.n, row_ptr, targets)
     monitor = ns.Monitor(cells, phases.enter)
-    outcome = ns.solve(ns.IndependentSet(), graph, problem.weights, budget, "bound", monitor)
+    outcome = ns.solve(question or ns.IndependentSet(), graph, problem.weights, budget, "bound", monitor)
     spent = watch.read()
     timer.cancel()
-    return Timing(spent, phases.seconds, outcome)
+    return Timing(spent, phases.seconds, replace(outcome, kept=None))
 
 
 def solve_stored(folder: Path, repeats: int, memory: int, seconds: float) -> list[Timing]:

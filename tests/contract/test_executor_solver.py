@@ -7,7 +7,9 @@ import struct
 
 import numpy as np
 import pytest
+from bench.generators import time_windows
 from contract.executor_stage import Stage
+from nearchord_service.model.answer import ElementType, ProofKind, Recognition
 from nearchord_service.model.content import Bytes
 from nearchord_service.model.event import Phase
 from nearchord_service.model.question import Budget, Question, QuestionName, WhenOver
@@ -21,7 +23,9 @@ COLD_SECONDS = 280.0
 
 def canonical(n, edges):
     """Canonical bytes of a graph, from the definition in the wire contract."""
-    rows = [sorted({max(u, v) for u, v in edges if min(u, v) == low}) for low in range(n)]
+    rows = [[] for _ in range(n)]
+    for low, high in sorted({(min(edge), max(edge)) for edge in edges}):
+        rows[low].append(high)
     pointers = np.concatenate([[0], np.cumsum([len(row) for row in rows])]).astype("<u8")
     targets = np.array([target for row in rows for target in row], "<u4")
     return struct.pack("<IQ", n, targets.size) + pointers.tobytes() + targets.tobytes()
@@ -36,7 +40,7 @@ def stage():
     made.executor.stop(0.0)
 
 
-def solved(stage, n, edges, *, name=QuestionName.INDEPENDENT_SET, weights=None, seconds=60.0, **pins):
+def solved(stage, n, edges, *, name=QuestionName.INDEPENDENT_SET, weights=None, seconds=60.0, named=None, **pins):
     data = canonical(n, edges)
     one = Task(
         key=TaskKey(f"{name}-{n}-{random.random()}", 1),
@@ -47,6 +51,7 @@ def solved(stage, n, edges, *, name=QuestionName.INDEPENDENT_SET, weights=None, 
         question=Question(name, **pins),
         budget=Budget(seconds=seconds),
         when_over=WhenOver.BOUND,
+        **(named or {}),
     )
     stage.executor.run(one)
     return stage.audience.end_of(one).answer
@@ -84,9 +89,40 @@ def test_pins_reach_the_solver(stage):
 
 @pytest.mark.parametrize("name", list(QuestionName))
 def test_empty_graph(stage, name):
-    """Nothing to choose from is proven at once."""
+    """Nothing to choose from, and nothing to fill, is proven at once."""
     answer = solved(stage, 0, [], name=name)
-    assert (answer.verdict, answer.value, chosen(answer)) == (Verdict.PROVEN, (0, 1), [])
+    assert (answer.verdict, answer.value) == (Verdict.PROVEN, (0, 1))
+    columns = {column.name: column.data for column in answer.columns}
+    assert ("chosen" in columns) is name.chooses
+    assert all(set(data) <= {0} for data in columns.values())
+
+
+def test_pentagon_filled(stage):
+    """A cycle on five vertices needs two chords, as it shows itself; to be split, three of its vertices lack one edge
+    among them and the other two have one too many."""
+    answer = solved(stage, 5, PENTAGON, name=QuestionName.FILL)
+    assert (answer.verdict, answer.value, answer.bound) == (Verdict.PROVEN, (2, 1), (2, 1))
+    assert (answer.proof, answer.proof_kinds) == (ProofKind.CERTIFICATE, (ProofKind.PACKING,))
+    assert answer.recognition == Recognition(chordal=False, interval=False, split=False, splittance=2)
+    columns = {column.name: column for column in answer.columns}
+    assert len(np.frombuffer(columns["fill_edge"].data, "<u4")) == 4
+    assert sorted(np.frombuffer(columns["packing_vertex"].data, "<u4")) == [0, 1, 2, 3, 4]
+    assert columns["packing_ring"].type is ElementType.INT64
+    assert "chosen" not in columns
+
+
+def test_pentagon_reported(stage):
+    """One component, one core, and a prediction for each question."""
+    answer = solved(stage, 5, PENTAGON, name=QuestionName.STRUCTURE)
+    assert (answer.verdict, answer.value, answer.fill_cores) == (Verdict.PROVEN, (2, 1), 1)
+    assert (answer.structure.components, answer.structure.largest_core) == (1, 5)
+    assert {(one.question, one.colours) for one in answer.structure.predictions} == {
+        ("independent-set", 0),
+        ("colourable-subgraph", 2),
+        ("colourable-subgraph", 3),
+        ("induced-forest", 0),
+    }
+    assert answer.recognition is None
 
 
 def test_a_hard_graph_ends_at_its_seconds(stage):
@@ -99,3 +135,26 @@ def test_a_hard_graph_ends_at_its_seconds(stage):
     picked = set(chosen(answer))
     assert not any(u in picked and v in picked for u, v in edges)
     assert answer.value == (len(picked), 1)
+
+
+def test_a_later_task_on_a_graph_finds_what_an_earlier_one_left(tmp_path):
+    """Across workers, through the folder; without ordering or triangulating again, and with the same answer."""
+    windows = time_windows(20_000, 20.0, 50, 1)
+    edges = list(zip(windows.low.tolist(), windows.high.tolist(), strict=True))
+    made = Stage(LocalExecutor(1, keep_folder=tmp_path / "kept"))
+    try:
+        with made.audience.changed:
+            assert made.audience.changed.wait_for(lambda: made.executor.free() == 1, COLD_SECONDS)
+        named = {"owner": "ann", "graph_address": "f" * 64}
+        first, second, other = (
+            solved(made, windows.n, edges, weights=weights, named=named)
+            for weights in (windows.weights.tolist(), windows.weights.tolist(), windows.weights[::-1].tolist())
+        )
+    finally:
+        made.executor.stop(0.0)
+    assert Phase.ORDER in dict(first.phase_seconds)
+    for later in (second, other):
+        assert Phase.ORDER not in dict(later.phase_seconds)
+    assert second.columns == first.columns
+    assert (second.value, second.fill, second.states) == (first.value, first.fill, first.states)
+    assert other.value != first.value

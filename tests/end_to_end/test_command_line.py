@@ -92,6 +92,64 @@ def test_solve_needs_no_server(tmp_path: Path) -> None:
     assert wrong.stderr.startswith("error: ")
 
 
+def test_a_fill_is_answered_and_confirmed_from_what_was_printed(server: str, tmp_path: Path) -> None:
+    """From file to confirmed over a real service: pairs by name, classes, and a bound that needs no trust.
+
+    The file has weights, which the question does not take and which therefore stay behind.
+    """
+    graph = GRAPHS / "windows-night.graphml"
+    solved = nearchord("solve", str(graph), "--question", "fill", "--fill", "50", "--json", "--server", server)
+    assert (solved.returncode, solved.stderr) == (0, "")
+    found = json.loads(solved.stdout)
+    assert (found["verdict"], found["fill"], found["fill_lower_bound"], found["proof"]) == (
+        "PROVEN",
+        2,
+        2,
+        "certificate",
+    )
+    assert (found["chordal"], found["interval"], found["split"]) == (False, False, False)
+    assert all(name.startswith("BO-") for pair in found["fill_edges"] for name in pair)
+    answer = tmp_path / "answer.json"
+    answer.write_text(solved.stdout, encoding="utf-8")
+    checked = nearchord("check", str(graph), str(answer))
+    assert (checked.returncode, checked.stderr) == (0, "")
+    assert "not confirmed" not in checked.stdout
+    answer.write_text(json.dumps({**found, "fill_edges": found["fill_edges"][::-1][:1] * 2}), encoding="utf-8")
+    assert nearchord("check", str(graph), str(answer)).returncode == 1
+
+
+def test_a_fill_budget_below_the_fill_is_refused_with_its_witness(server: str, tmp_path: Path) -> None:
+    """OVER_FILL whatever --when-over says, and the packing shows why."""
+    graph = GRAPHS / "windows-night.graphml"
+    solved = nearchord("solve", str(graph), "--question", "fill", "--fill", "1", "--json", "--server", server)
+    found = json.loads(solved.stdout)
+    assert (solved.returncode, found["verdict"], found["bound"]) == (1, "OVER_FILL", 2)
+    assert found["provenance"]["when_over"] == "bound"
+    answer = tmp_path / "answer.json"
+    answer.write_text(solved.stdout, encoding="utf-8")
+    checked = nearchord("check", str(graph), str(answer))
+    assert (checked.returncode, checked.stderr) == (0, "")
+    assert "confirmed: the bound 2" in checked.stdout
+
+
+def test_a_structure_says_what_each_question_would_take(server: str) -> None:
+    """States by question, as programs rely on them, and a table for people."""
+    graph = str(GRAPHS / "windows-night.graphml")
+    solved = nearchord("solve", graph, "--question", "structure", "--json", "--server", server)
+    found = json.loads(solved.stdout)
+    assert (solved.returncode, found["verdict"]) == (0, "PROVEN")
+    assert set(found["states"]) == {
+        "independent-set",
+        "colourable-subgraph",
+        "colourable-subgraph q=3",
+        "induced-forest",
+    }
+    assert all(states > 0 for states in found["states"].values())
+    assert (found["components"], found["fill_cores"], found["largest_core"]) == (1, 2, 10)
+    shown = nearchord("solve", graph, "--question", "structure", "--server", server).stdout
+    assert shown.count(" yes\n") == 4
+
+
 def test_submitted_job_is_found_again(server: str) -> None:
     """`submit` prints an id; `answer`, `watch`, `jobs` and `cancel` take it from there."""
     graph = GRAPHS / "windows-night.graphml"

@@ -150,8 +150,8 @@ class _FillCheck:
             self._found.leave_open(f"the bound {bound:,}: the packing is too large to be checked here")
             return
         if proven >= bound:
-            self._found.confirm(f"the bound {bound:,}: chordless cycles need as many fill edges")
+            self._found.confirm(f"the bound {bound:,}: rings of the packing need as many fill edges")
             return
         others = sorted(set(self._answer.proof_kinds) - {ProofKind.PACKING, ProofKind.NONE})
         rest = f"rests on {' and '.join(others)}" if others else "has no witness in the answer"
-        self._found.leave_open(f"the bound {bound:,}: packings give {proven:,} of it, the rest {rest}")
+        self._found.leave_open(f"the bound {bound:,}: the packing proves {proven:,} of it, what is missing {rest}")

@@ -1,122 +1,161 @@
-"""Lower bounds on the fill from chordless cycles with shares.
+"""Lower bounds on the fill from rings of vertex groups with shares.
 
-A set of fill edges makes every chordless cycle chordal, and a cycle on c vertices needs c - 3 chords for that: in a
-triangulation of a polygon with c corners there are as many, and fewer leave a chordless cycle of four or more. Let
-every cycle have a share of at least 0, so that for each pair of vertices the shares of the cycles of which it is a
-possible chord add up to at most 1. Then the number of fill edges is at least the sum of share times (c - 3): each
-fill edge counts at most once. Cycles that have no possible chord in common, directly or over others, need different
-fill edges, so that the sum of each such group may be rounded up before they are added.
+A *ring* is a cyclic sequence of c >= 4 groups of vertices, no vertex in two of them. Groups that do not follow each
+other have no edge between them. Of groups A, B that do, either every vertex of A is adjacent to every one of B, or none
+is: then the side between them is *open*. Let F be a set of fill edges, and x(e) = 1 for pairs e in F and 0 for others.
+
+One vertex of each group, in turn, gives c corners of a polygon. Its sides are edges, or pairs on open sides. If F has
+all of the latter, the polygon is a cycle of the filled graph, which has no chordless cycle, so that chords of F cut it
+into triangles; that takes c - 3, and none is an edge of the graph. Let p be the number of open sides, and D those of
+its chords and P those of its open pairs that F has. Then
+
+    D - (c - 3) P  >=  (c - 3) (1 - p)
+
+holds: for P = p it says D >= c - 3, and for P <= p - 1 its left side is at least - (c - 3) (p - 1). Take the mean over
+all polygons of the ring. A pair between groups A and B is in one of |A| |B| of them, which gives it the coefficient
+1 / (|A| |B|) as a chord, -(c - 3) / (|A| |B|) on an open side. Multiply by the share y >= 0 of the ring and add up all
+rings; the *load* L(e) is the sum of the coefficients of e. So the sum of L(e) over e in F is at least
+
+    N = sum over the rings of y (c - 3) (1 - p),
+
+and as each e in F counts 1 = L(e) + (1 - L(e)), where 1 - L(e) >= - max(0, L(e) - 1) and pairs outside F only lower
+the right side further,
+
+    |F|  >=  N - sum over all pairs e of max(0, L(e) - 1).
+
+Rings that have no pair with a coefficient in common, directly or over others, speak of different pairs. Each such
+cluster bounds the part of F on its own pairs, a whole number that is not negative, so each bound is rounded up before
+they are added.
 """
 
 from __future__ import annotations
 
 import math
 from collections.abc import Mapping
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from nearchord.checks.chordal import CycleCheck, check_known, pair_label
+from nearchord.checks.chordal import check_known
 from nearchord.checks.classes import check_starts
-from nearchord.checks.edges import Edges, Ints, Mask, Neighbours, pair_keys
+from nearchord.checks.edges import Edges, Ints, Mask, pair_keys
+from nearchord.checks.rings import Ring, RingCheck
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph
 
-MOST_PAIRS = 50_000_000
-"""Possible chords that may be looked at, which takes about 2 GiB; a packing with more is left unconfirmed."""
+MOST_PAIRS = 20_000_000
+"""Pairs that may be looked at, which takes about 2 GiB; a packing with more is left unconfirmed."""
 
 
 class TooLarge(Exception):
-    """The packing has more possible chords than this check takes in."""
+    """The packing has more pairs than this check takes in."""
+
+
+@dataclass(frozen=True)
+class _Loads:
+    """Coefficients of pairs, ascending by `keys`: of the ring `rings[i]`, worth `values[what[i]]`, in units."""
+
+    keys: Ints
+    rings: Ints
+    what: Ints
+    values: list[int]
 
 
 class Packing:
-    """Cycles with shares, from the columns `packing_*` of an answer; their form is checked here, not their claims."""
+    """Rings with shares, from the columns `packing_*` of an answer; their form is checked here, not their claims."""
 
     def __init__(self, graph: Graph, columns: Mapping[str, NDArray[Any]]) -> None:
-        start, vertex, numerator, denominator = (
+        ring, group, vertex, numerator, denominator = (
             columns.get(f"packing_{name}", np.zeros(0, np.int64)).astype(np.int64)
-            for name in ("start", "vertex", "numerator", "denominator")
+            for name in ("ring", "group", "vertex", "numerator", "denominator")
         )
-        if not start.size:
-            start = np.zeros(1, np.int64)
-        check_known(graph, vertex, "a cycle of the packing")
-        check_starts(start, vertex.size, "cycles of the packing")
-        if not start.size - 1 == numerator.size == denominator.size:
-            raise CheckFailed(f"the packing has {start.size - 1} cycles, but not as many shares")
+        ring, group = (start if start.size else np.zeros(1, np.int64) for start in (ring, group))
+        check_known(graph, vertex, "a ring of the packing")
+        check_starts(group, vertex.size, "groups of the packing")
+        check_starts(ring, group.size - 1, "rings of the packing")
+        if not ring.size - 1 == numerator.size == denominator.size:
+            raise CheckFailed(f"the packing has {ring.size - 1} rings, but not as many shares")
         if bool((numerator < 0).any()) or bool((denominator < 1).any()):
             raise CheckFailed("a share of the packing is negative, or has a denominator below 1")
         self._graph = graph
-        self.cycles = [vertex[a:b] for a, b in zip(start[:-1].tolist(), start[1:].tolist(), strict=True)]
-        self._unit = math.lcm(*denominator.tolist())
-        self._shares = [p * (self._unit // q) for p, q in zip(numerator.tolist(), denominator.tolist(), strict=True)]
+        self._ring, self._group, self._vertex = ring, group, vertex
+        self._shares = list(zip(numerator.tolist(), denominator.tolist(), strict=True))
 
     def bound(self, edges: Edges) -> int:
-        """How many fill edges the packing proves to be needed; CheckFailed where a cycle or a share is wrong.
+        """How many fill edges the packing proves to be needed; CheckFailed where a ring is none of this graph.
 
-        Time O(m + sum over the cycles of the degrees of their vertices + p log p), memory O(n + m + p), for p possible
-        chords between vertices that lie in several cycles; TooLarge when these are more than MOST_PAIRS.
+        Time O(m + sum over the rings of the degrees of their vertices + p log p), memory O(n + m + p), for p pairs of
+        vertices that lie in several rings; TooLarge when these are more than MOST_PAIRS.
         """
-        if not self.cycles:
+        if not self._shares:
             return 0
-        self._check_cycles(edges)
-        group = self._groups(*self._possible_chords())
+        rings = self._rings(edges)
+        kept = self._kept(rings)
+        loads, unit = self._loads(rings, kept)
+        cluster, excess = self._clusters(loads, unit)
         needs: dict[int, int] = {}
-        for number, cycle in enumerate(self.cycles):
-            root = group[number]
-            needs[root] = needs.get(root, 0) + self._shares[number] * (len(cycle) - 3)
-        return sum(-(-need // self._unit) for need in needs.values())
+        for number, (ring, (p, q)) in enumerate(zip(rings, self._shares, strict=True)):
+            home = cluster[number]
+            needs[home] = needs.get(home, 0) + ring.needs * p * (unit // q) - excess[number]
+        return sum(max(0, -(-need // unit)) for need in needs.values())
 
-    def _check_cycles(self, edges: Edges) -> None:
+    def _rings(self, edges: Edges) -> list[Ring]:
         inside = np.zeros(edges.n, np.bool_)
-        for cycle in self.cycles:
-            inside[cycle] = True
-        one = CycleCheck(self._graph, Neighbours(edges, inside))
-        for number, cycle in enumerate(self.cycles):
-            one.check(cycle, f"cycle {number} of the packing")
-            if self._shares[number] > self._unit:
-                raise CheckFailed(f"the share of cycle {number} of the packing is above 1")
+        inside[self._vertex] = True
+        one = RingCheck(self._graph, edges, inside)
+        found = []
+        for number in range(len(self._shares)):
+            cuts = self._group[self._ring[number] : self._ring[number + 1] + 1]
+            what = f"ring {number} of the packing"
+            found.append(one.ring(self._vertex[cuts[0] : cuts[-1]], np.diff(cuts), what))
+        return found
 
-    def _possible_chords(self) -> tuple[Ints, Ints]:
-        """Keys of the possible chords that may lie in several cycles, and the cycle of each, ascending by key."""
-        several = np.bincount(np.concatenate(self.cycles), minlength=self._graph.n) > 1
-        self._check_size(several)
-        found = [_chords(cycle, several[cycle]) for cycle in self.cycles]
-        keys = np.concatenate(found)
-        cycles = np.repeat(np.arange(len(found)), [part.size for part in found])
-        order = np.argsort(keys, kind="stable")
-        return keys[order], cycles[order]
-
-    def _check_size(self, several: Mask) -> None:
-        counts = [int(several[cycle].sum()) for cycle in self.cycles]
-        if sum(count * (count - 1) // 2 for count in counts) > MOST_PAIRS:
+    def _kept(self, rings: list[Ring]) -> list[Mask]:
+        """Of each ring the vertices whose pairs matter: a pair in one ring of a share up to 1 has a load up to 1, and
+        is common to no others."""
+        several = np.bincount(self._vertex, minlength=self._graph.n) > 1
+        kept = [
+            several[ring.vertices] if p <= q else np.ones(ring.vertices.size, np.bool_)
+            for ring, (p, q) in zip(rings, self._shares, strict=True)
+        ]
+        if sum(count * (count - 1) // 2 for count in (int(mask.sum()) for mask in kept)) > MOST_PAIRS:
             raise TooLarge
+        return kept
 
-    def _groups(self, keys: Ints, cycles: Ints) -> list[int]:
-        """For each cycle the lowest one of its group; CheckFailed where the shares on a pair exceed 1."""
-        leader = list(range(len(self.cycles)))
-        begins = np.flatnonzero(np.concatenate(([True], keys[1:] != keys[:-1]))) if keys.size else keys
-        ends = np.concatenate((begins[1:], [keys.size]))[: begins.size]
-        for a, b in zip(begins[ends - begins > 1].tolist(), ends[ends - begins > 1].tolist(), strict=True):
-            sharing = cycles[a:b].tolist()
-            if sum(self._shares[number] for number in sharing) > self._unit:
-                raise CheckFailed(f"the pair {self._pair(int(keys[a]))} counts more than once in the packing")
+    def _loads(self, rings: list[Ring], kept: list[Mask]) -> tuple[_Loads, int]:
+        """The coefficients of the pairs kept, and the unit in which they and the shares are whole."""
+        keys, whose, what = [], [], []
+        fractions: list[tuple[int, int]] = []
+        for number, (ring, mask, (p, q)) in enumerate(zip(rings, kept, self._shares, strict=True)):
+            u, v, pairs, opened = ring.terms(mask)
+            kinds, which = np.unique(2 * pairs + opened, return_inverse=True)
+            keys.append(pair_keys(u, v))
+            whose.append(np.full(u.size, number))
+            what.append(which.reshape(-1) + len(fractions))
+            factors = (1, 3 - len(ring.sizes))
+            fractions += [(p * factors[kind & 1], q * (kind >> 1)) for kind in kinds.tolist()]
+        unit = math.lcm(*(q for _, q in self._shares), *{q for _, q in fractions})
+        order = np.argsort(np.concatenate(keys), kind="stable")
+        sorted_keys, sorted_rings, sorted_what = (np.concatenate(parts)[order] for parts in (keys, whose, what))
+        return _Loads(sorted_keys, sorted_rings, sorted_what, [p * (unit // q) for p, q in fractions]), unit
+
+    def _clusters(self, loads: _Loads, unit: int) -> tuple[list[int], list[int]]:
+        """For each ring the lowest one of its cluster; and what loads above 1 cost, at one of the rings they are of."""
+        leader = list(range(len(self._shares)))
+        excess = [0] * len(self._shares)
+        heavy = np.array([p > q for p, q in self._shares])
+        begins = np.flatnonzero(np.concatenate(([True], loads.keys[1:] != loads.keys[:-1])))[: loads.keys.size]
+        ends = np.concatenate((begins[1:], [loads.keys.size]))[: begins.size]
+        matters = (ends - begins > 1) | heavy[loads.rings[begins]]
+        for a, b in zip(begins[matters].tolist(), ends[matters].tolist(), strict=True):
+            sharing = loads.rings[a:b].tolist()
+            excess[sharing[0]] += max(0, sum(loads.values[kind] for kind in loads.what[a:b].tolist()) - unit)
             for number in sharing[1:]:
                 one, other = _root(leader, sharing[0]), _root(leader, number)
                 leader[max(one, other)] = min(one, other)
-        return [_root(leader, number) for number in range(len(leader))]
-
-    def _pair(self, key: int) -> str:
-        return pair_label(self._graph, key >> 32, key & 0xFFFFFFFF)
-
-
-def _chords(cycle: Ints, several: Mask) -> Ints:
-    """Keys of the pairs of `several` vertices of a cycle that do not follow each other on it."""
-    places = np.flatnonzero(several)
-    i, j = (places[side] for side in np.triu_indices(places.size, 1))
-    apart = (j - i != 1) & (j - i != len(cycle) - 1)
-    return pair_keys(cycle[i[apart]], cycle[j[apart]])
+        return [_root(leader, number) for number in range(len(leader))], excess
 
 
 def _root(leader: list[int], number: int) -> int:

@@ -2,6 +2,7 @@
 
 Lists of vertices stay lists of names; cliques in a consecutive order become one pair of positions a vertex, the first
 and the last clique that has it, because cliques overlap and their lists would repeat most names many times.
+A ring of a packing is a list of its groups.
 """
 
 from __future__ import annotations
@@ -28,10 +29,9 @@ def to_json(columns: Columns, labels: Labels, vertices: int) -> dict[str, Any]:
     }
     found["intervals"] = _intervals(columns, vertices)
     shares = zip(_numbers(columns, "packing_numerator"), _numbers(columns, "packing_denominator"), strict=True)
-    cycles = _cut(columns, "packing")
     found["packing"] = [
-        {"cycle": labels.of(cycle), "share": _share(Fraction(*share))}
-        for cycle, share in zip(cycles, shares, strict=True)
+        {"ring": [labels.of(group) for group in ring], "share": _share(Fraction(*share))}
+        for ring, share in zip(_rings(columns), shares, strict=True)
     ]
     found["cores"] = [labels.of(core) for core in _cut(columns, "core")]
     return found
@@ -44,6 +44,12 @@ def _numbers(columns: Columns, name: str) -> list[int]:
 def _cut(columns: Columns, name: str) -> list[list[int]]:
     start, vertex = _numbers(columns, f"{name}_start"), _numbers(columns, f"{name}_vertex")
     return [vertex[a:b] for a, b in pairwise(start)]
+
+
+def _rings(columns: Columns) -> list[list[list[int]]]:
+    vertex, group, ring = (_numbers(columns, f"packing_{name}") for name in ("vertex", "group", "ring"))
+    groups = [vertex[a:b] for a, b in pairwise(group)]
+    return [groups[a:b] for a, b in pairwise(ring)]
 
 
 def _share(share: Fraction) -> int | str:
@@ -74,7 +80,11 @@ def from_json(found: Mapping[str, Any], vertex: Callable[[object], int], vertice
         columns.update(_cliques(np.array(found["intervals"], np.int64).reshape(-1, 2), vertices))
     packing = found.get("packing") or []
     shares = [Fraction(one["share"]) for one in packing]
-    columns.update(_joined("packing", [[vertex(label) for label in one["cycle"]] for one in packing]))
+    rings = [[[vertex(label) for label in group] for group in one["ring"]] for one in packing]
+    groups = [group for ring in rings for group in ring]
+    columns["packing_ring"] = np.cumsum([0, *map(len, rings)]).astype(np.int64)
+    columns["packing_group"] = np.cumsum([0, *map(len, groups)]).astype(np.int64)
+    columns["packing_vertex"] = np.array([v for group in groups for v in group], np.uint32)
     columns["packing_numerator"] = np.array([share.numerator for share in shares], np.int64)
     columns["packing_denominator"] = np.array([share.denominator for share in shares], np.int64)
     columns.update(_joined("core", [[vertex(label) for label in core] for core in found.get("cores") or []]))

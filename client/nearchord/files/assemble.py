@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from nearchord import canonical
+from nearchord import canonical, rows
 from nearchord.errors import BadInput
 from nearchord.files.document import Document
 from nearchord.graph import Graph
@@ -32,7 +32,7 @@ def distinct_edges(u: canonical.Ints, v: canonical.Ints) -> Edges:
         u, v = u[~loop], v[~loop]
     keys = np.minimum(u, v).view(np.uint64) << np.uint64(32)
     keys |= np.maximum(u, v).view(np.uint64)
-    if bool((keys[1:] > keys[:-1]).all()):
+    if rows.ascends(keys):
         return Edges(keys, loops, 0)
     keys = np.sort(keys)
     first = np.ones(len(keys), np.bool_)
@@ -50,7 +50,7 @@ def build(
     notices: Sequence[str] = (),
 ) -> Graph:
     """The graph of a file; `notices` come before those about dropped edges."""
-    row_ptr, targets = canonical.rows(n, edges.keys)
+    row_ptr, targets = rows.rows_of_keys(n, edges.keys)
     dropped = [_count(edges.loops, "self-loop"), _count(edges.repeats, "repeated edge")]
     said = tuple(f"{document.name}: {notice}" for notice in (*notices, *dropped) if notice)
     graph = Graph(n, len(targets), row_ptr, targets, notices=said)

@@ -37,12 +37,24 @@ class Content:
         """All bytes in one."""
         return b"".join(self.parts)
 
-    def pieces(self, offset: int, piece_bytes: int) -> Iterator[bytes]:
-        """The bytes from `offset` on, at most `piece_bytes` at a time; one copy of each byte."""
+    def pieces(self, offset: int, piece_bytes: int) -> Iterator[memoryview]:
+        """The bytes from `offset` on, at most `piece_bytes` at a time, where they lie."""
         for part in self.parts:
             start, offset = min(offset, part.nbytes), max(0, offset - part.nbytes)
             for begin in range(start, part.nbytes, piece_bytes):
-                yield bytes(part[begin : begin + piece_bytes])
+                yield part[begin : begin + piece_bytes]
+
+
+@dataclass(frozen=True, eq=False)
+class GraphContent(Content):
+    """A graph, which remembers its address."""
+
+    graph: Graph
+
+    @cached_property
+    def address(self) -> str:
+        """See `Graph.address`."""
+        return self.graph.address
 
 
 @dataclass(frozen=True)
@@ -71,7 +83,7 @@ def content_of(graph: Graph) -> InputContent:
         weights = Content(content_pb2.CONTENT_KIND_WEIGHTS, [little_endian(graph.weights)])
     if graph.names is not None:
         names = Content(content_pb2.CONTENT_KIND_NAMES, [memoryview(names_bytes(graph.names))])
-    return InputContent(Content(content_pb2.CONTENT_KIND_GRAPH, graph.canonical()), weights, names)
+    return InputContent(GraphContent(content_pb2.CONTENT_KIND_GRAPH, graph.canonical(), graph), weights, names)
 
 
 def names_bytes(names: Sequence[str]) -> bytes:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
+from typing import Any
 
 from google.protobuf.message import Message
 
@@ -14,7 +15,8 @@ from nearchord.session import replies
 from nearchord.session.caller import Caller
 from nearchord.session.content import Content, InputContent, content_of
 from nearchord.session.retry import Retry
-from nearchord.session.steps import Call, Flow, Method, Now, Pause, Send
+from nearchord.session.steps import Call, Finish, Flow, Method, Now, Pause, Start
+from nearchord.session.wire import piece_message
 from nearchord.v1 import graph_service_pb2, load_service_pb2
 
 PIECE_BYTES = 1 << 20
@@ -40,11 +42,19 @@ def upload(caller: Caller, graph: Graph) -> Flow[Addresses]:
 
 
 def store_all(caller: Caller, content: InputContent) -> Flow[Addresses]:
-    """Stores all content of one job that is not known to be stored."""
-    for part in content.present:
+    """Stores all content of one job that is not known to be stored, in streams side by side.
+
+    What is small begins, so that it travels while the address of the rest is computed.
+    """
+    under_way = []
+    for part in sorted(content.present, key=lambda part: part.size):
         if part.address not in caller.stored:
-            yield from store(caller, part)
-            caller.stored.add(part.address)
+            storing = Storing(part, (yield from caps(caller)), Retry(caller.patience, (yield Now())))
+            yield from storing.begin()
+            under_way.append(storing)
+    for storing in under_way:
+        yield from storing.end()
+        caller.stored.add(storing.content.address)
     return Addresses(
         content.graph.address,
         "" if content.weights is None else content.weights.address,
@@ -52,36 +62,57 @@ def store_all(caller: Caller, content: InputContent) -> Flow[Addresses]:
     )
 
 
-def store(caller: Caller, content: Content) -> Flow[None]:
-    """Stores one piece of content, going on after a break where the server has got to."""
-    piece_bytes = min((yield from caps(caller)).piece_bytes or PIECE_BYTES, PIECE_BYTES)
-    retry = Retry(caller.patience, (yield Now()))
-    committed = -1
-    while True:
+class Storing:
+    """One piece of content on its way to a server."""
+
+    def __init__(self, content: Content, server: ServerInfo, retry: Retry) -> None:
+        self.content = content
+        self._piece_bytes = min(server.piece_bytes or PIECE_BYTES, PIECE_BYTES)
+        self._retry = retry
+        self._committed = -1
+        self._stream: Any = None
+        self._failure: NearchordError | None = None
+
+    def begin(self) -> Flow[None]:
+        """Starts to send what the server lacks, if anything; `end` deals with what prevents it."""
+        self._stream = self._failure = None
         try:
-            reply = yield Call(Method.GET_UPLOAD, graph_service_pb2.GetUploadRequest(address=content.address))
+            reply = yield Call(Method.GET_UPLOAD, graph_service_pb2.GetUploadRequest(address=self.content.address))
             if reply.stored:
                 return
-            if reply.committed_bytes > committed:
-                committed = reply.committed_bytes
-                retry.sign_of_life((yield Now()))
-            yield Send(Method.STORE_CONTENT, upload_stream(content, reply.committed_bytes, piece_bytes))
-            return
+            if reply.committed_bytes > self._committed:
+                self._committed = reply.committed_bytes
+                self._retry.sign_of_life((yield Now()))
+            messages = upload_stream(self.content, reply.committed_bytes, self._piece_bytes)
+            self._stream = yield Start(Method.STORE_CONTENT, messages)
         except NearchordError as error:
-            yield Pause(retry.pause_after(error, (yield Now())))
+            self._failure = error
+
+    def end(self) -> Flow[None]:
+        """Waits until the content is stored; after a break goes on where the server has got to."""
+        while True:
+            try:
+                if self._failure is not None:
+                    raise self._failure
+                if self._stream is not None:
+                    yield Finish(self._stream)
+                return
+            except NearchordError as error:
+                yield Pause(self._retry.pause_after(error, (yield Now())))
+            yield from self.begin()
 
 
-def upload_stream(content: Content, offset: int, piece_bytes: int) -> Callable[[], Iterator[Message]]:
+def upload_stream(content: Content, offset: int, piece_bytes: int) -> Callable[[], Iterator[Message | bytes]]:
     """The messages of one upload stream that begins at `offset`."""
 
-    def messages() -> Iterator[Message]:
+    def messages() -> Iterator[Message | bytes]:
         yield graph_service_pb2.StoreContentRequest(
             opening=graph_service_pb2.UploadOpening(
                 kind=content.kind, address=content.address, size_bytes=content.size, offset=offset
             )
         )
         for piece in content.pieces(offset, piece_bytes):
-            yield graph_service_pb2.StoreContentRequest(piece=piece)
+            yield piece_message(piece)
 
     return messages
 

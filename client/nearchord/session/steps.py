@@ -62,6 +62,22 @@ class Send:
 
 
 @dataclass(frozen=True)
+class Start:
+    """Like `Send`, but the stream is sent while the flow goes on: gives a handle for `Finish`.
+    A request may be given as its bytes where the stub takes that (see `stubs`)."""
+
+    method: Method
+    requests: Callable[[], Iterator[Message | bytes]]
+
+
+@dataclass(frozen=True)
+class Finish:
+    """Gives the response to a stream that was started, once there is one."""
+
+    stream: Any
+
+
+@dataclass(frozen=True)
 class Open:
     """One request, a stream of responses: gives a handle for `Next`. `seconds` ends the stream with TimeoutExceeded."""
 
@@ -96,7 +112,7 @@ class Emit:
     item: Any
 
 
-Step = Call | Send | Open | Next | Pause | Now | Emit
+Step = Call | Send | Start | Finish | Open | Next | Pause | Now | Emit
 
 
 class Walk:

@@ -19,7 +19,7 @@ from nearchord.question import Budget, Question
 from nearchord.session import channel as channels
 from nearchord.session import flows_content, flows_jobs, flows_watch, requests, status
 from nearchord.session.caller import PATIENCE, Caller
-from nearchord.session.steps import Call, Emit, Flow, Next, Now, Open, Pause, Send, Step, Walk
+from nearchord.session.steps import Call, Emit, Finish, Flow, Next, Now, Open, Pause, Send, Start, Step, Walk
 from nearchord.session.stubs import stubs_of
 from nearchord.stages import Stage, WhenOver
 
@@ -104,6 +104,11 @@ class Carrier:
                 return self._stubs[method](request, metadata=self._metadata)
             case Send(method, messages):
                 return self._stubs[method](messages(), metadata=self._metadata)
+            case Start(method, messages):
+                streams.append(self._stubs[method].future(messages(), metadata=self._metadata))
+                return streams[-1]
+            case Finish(stream):
+                return stream.result()
             case Open(method, request, seconds):
                 streams[:] = [self._stubs[method](request, timeout=seconds, metadata=self._metadata)]
                 return streams[0]

@@ -1,6 +1,7 @@
 """Checks that bytes are a graph, weights or names in canonical form, naming the first row that is not.
 
-Each check is one pass in pieces: time O(length), and a few MiB beside the bytes themselves whatever their length.
+Each check is one pass in pieces: time O(length), and less than a few MiB beside the bytes themselves whatever their
+length.
 Violations name `field`, the place of the bytes in the request.
 """
 
@@ -19,7 +20,8 @@ from nearchord_service.model.errors import ContentInvalid, FieldViolation
 
 HEADER_BYTES = 12
 WEIGHT_SUM_LIMIT = 2**62
-_PIECE = 2**20
+_PIECE = 2**14
+"""Elements or bytes at a time: what is computed from so many stays in the processor's cache."""
 
 Buffer = bytes | memoryview
 Array = NDArray[Any]
@@ -88,13 +90,23 @@ def _check_rows(pointers: Array, first: int, targets: Array, n: int, field: str)
     filled = np.flatnonzero(pointers[1:] > pointers[:-1])
     if not len(filled):
         return
-    low = targets[pointers[filled]] <= filled + first
-    high = targets[pointers[filled + 1] - 1] >= n
-    ends = filled[np.flatnonzero(low | high)[:1]]
+    begins, lasts = targets[pointers[filled]], targets[pointers[filled + 1] - 1]
+    wrong = (begins <= filled + first) | (lasts >= n)
+    # A target that does not exceed the one before is in order only where a row begins, so counting tells.
+    descents = _descents(targets, int(pointers[0]), int(pointers[-1]))
+    if not wrong.any() and descents == np.count_nonzero(begins[1:] <= lasts[:-1]):
+        return
+    ends = filled[np.flatnonzero(wrong)[:1]]
     bad = [*ends.tolist(), *_first_descent(pointers, targets)]
     if bad:
         row = min(bad)
         _refuse_row(first + row, targets, int(pointers[row]), int(pointers[row + 1]), n, field)
+
+
+def _descents(targets: Array, begin: int, end: int) -> int:
+    """Count the targets from `begin` + 1 to `end` - 1 that do not exceed the one before."""
+    pieces = (targets[start : min(end, start + _PIECE + 1)] for start in range(begin, end, _PIECE))
+    return sum(int(np.count_nonzero(piece[1:] <= piece[:-1])) for piece in pieces)
 
 
 def _first_descent(pointers: Array, targets: Array) -> list[int]:

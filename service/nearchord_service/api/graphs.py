@@ -10,7 +10,7 @@ from typing import BinaryIO
 from nearchord.v1 import graph_service_pb2 as pb
 from nearchord.v1 import graph_service_pb2_grpc
 
-from nearchord_service.api import canonical
+from nearchord_service.api import canonical, pieces
 from nearchord_service.api.auth import Context, owner
 from nearchord_service.api.calls import Calls
 from nearchord_service.api.convert.content import from_content, to_kind
@@ -32,17 +32,15 @@ class GraphServicer(graph_service_pb2_grpc.GraphServiceServicer):
         self._caps = caps
         self._uploads = Uploads(calls, metrics.upload_bytes)
 
-    async def StoreContent(
-        self, requests: AsyncIterator[pb.StoreContentRequest], context: Context
-    ) -> pb.StoreContentResponse:
+    async def StoreContent(self, requests: AsyncIterator[pieces.Received], context: Context) -> pb.StoreContentResponse:
         """Take an upload in; what was received before a break stays for a later call."""
-        opening = await anext(requests, None)
-        if opening is None or opening.WhichOneof("part") != "opening":
+        opening = pieces.opening_of(await anext(requests, None))
+        if opening is None:
             raise refuse("opening", "is missing: the first message of an upload is its opening")
-        kind = to_kind(opening.opening.kind, "opening.kind")
-        address = check_address(opening.opening.address, "opening.address")
-        size = check_content_size(opening.opening.size_bytes, self._caps, "opening.size_bytes")
-        offset = opening.opening.offset
+        kind = to_kind(opening.kind, "opening.kind")
+        address = check_address(opening.address, "opening.address")
+        size = check_content_size(opening.size_bytes, self._caps, "opening.size_bytes")
+        offset = opening.offset
         if not 0 <= offset <= size:
             raise refuse("opening.offset", f"is {offset}; it must be from 0 to size_bytes = {size}")
         begin = partial(self._store.begin_upload, owner(context), address, kind, size, offset, self._caps.owner)
@@ -51,10 +49,11 @@ class GraphServicer(graph_service_pb2_grpc.GraphServiceServicer):
             return pb.StoreContentResponse(content=from_content(held))
         try:
             async for request in requests:
-                if request.WhichOneof("part") != "piece":
+                piece = pieces.piece_of(request)
+                if piece is None:
                     raise refuse(PIECE_FIELD, "is missing: after the opening an upload has only pieces")
-                check_piece(request.piece, PIECE_FIELD)
-                await held.take(request.piece)
+                check_piece(piece, PIECE_FIELD)
+                await held.take(piece)
             content = await held.publish(lambda data: canonical.check(kind, data, PIECE_FIELD))
         finally:
             self._uploads.let_go(held)

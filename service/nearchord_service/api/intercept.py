@@ -9,6 +9,7 @@ from typing import Any, TypeAlias
 
 import grpc
 
+from nearchord_service.api import pieces
 from nearchord_service.api.errors import to_status
 from nearchord_service.metrics import Metrics
 from nearchord_service.model.errors import ServiceError
@@ -25,6 +26,9 @@ _MAKERS: dict[tuple[bool, bool], Callable[..., Any]] = {
     (False, True): grpc.unary_stream_rpc_method_handler,
     (True, False): grpc.stream_unary_rpc_method_handler,
 }
+
+_READERS = {"GraphService/StoreContent": pieces.read}
+"""Methods whose requests are read in another way than the generated one."""
 
 
 class Interceptor(grpc.aio.ServerInterceptor):
@@ -59,7 +63,7 @@ class Interceptor(grpc.aio.ServerInterceptor):
         make = _MAKERS[streams]
         wrapped: Handler = make(
             self._guard(method, behaviour),
-            request_deserializer=handler.request_deserializer,
+            request_deserializer=_READERS.get(method, handler.request_deserializer),
             response_serializer=handler.response_serializer,
         )
         return wrapped

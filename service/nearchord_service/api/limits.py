@@ -102,7 +102,7 @@ def check_label(label: str, field: str) -> str:
     return label
 
 
-def check_piece(piece: bytes, field: str) -> None:
+def check_piece(piece: bytes | memoryview, field: str) -> None:
     """Raise QuotaExceeded for a piece that is too large."""
     if len(piece) > PIECE_BYTES:
         raise QuotaExceeded(field, f"has {len(piece)} bytes; send pieces of at most {PIECE_BYTES}", None)

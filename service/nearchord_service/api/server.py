@@ -41,7 +41,7 @@ OPTIONS: tuple[tuple[str, int], ...] = (
     ("grpc.max_receive_message_length", MESSAGE_BYTES),
     ("grpc.max_send_message_length", MESSAGE_BYTES),
     # Clients ping every minute; a ping more often than every half minute is a fault of the client.
-    ("grpc.http2.min_recv_ping_interval_without_data_ms", 30_000),
+    ("grpc.http2.min_ping_interval_without_data_ms", 30_000),
     ("grpc.keepalive_permit_without_calls", 1),
     # Our own pings find watchers whose machine is gone.
     ("grpc.keepalive_time_ms", 60_000),

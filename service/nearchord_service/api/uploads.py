@@ -12,6 +12,7 @@ from nearchord_service.model.content import Content
 from nearchord_service.model.errors import ServiceError
 from nearchord_service.store.port import Upload
 
+Piece = bytes | memoryview
 _PIECES_IN_FLIGHT = 4
 
 
@@ -22,11 +23,11 @@ class Writing:
         self._upload = upload
         self._calls = calls
         self._count = count
-        self._pieces: asyncio.Queue[bytes | None] = asyncio.Queue(_PIECES_IN_FLIGHT)
+        self._pieces: asyncio.Queue[Piece | None] = asyncio.Queue(_PIECES_IN_FLIGHT)
         self._failure: Exception | None = None
         self._work: asyncio.Future[Any] = asyncio.ensure_future(self._write())
 
-    async def take(self, piece: bytes) -> None:
+    async def take(self, piece: Piece) -> None:
         """Hand a piece over; waits while others are on their way, and raises what an earlier one met."""
         self._settle()
         await self._pieces.put(piece)

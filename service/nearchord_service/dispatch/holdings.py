@@ -47,6 +47,8 @@ class Held:
             question=job.question,
             budget=job.budget,
             when_over=job.when_over,
+            owner=job.owner,
+            graph_address=job.graph_address,
         )
 
 

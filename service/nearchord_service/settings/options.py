@@ -71,6 +71,7 @@ _OPTIONS: dict[str, _Option] = {
     "content_age": _Option(optional(span), "TIME|none", "how long content that no job needs is kept"),
     "retained_content_bytes": _Option(optional(size), "BYTES|none", "bytes of content that are kept"),
     "upload_age": _Option(span, "TIME", "how long an upload may lie before it is continued"),
+    "kept_bytes": _Option(size, "BYTES", "disk for triangulations kept to speed up later jobs on a graph; 0: none"),
 }
 
 _MOST_INLINE = 3 * 2**20

@@ -65,6 +65,7 @@ class Settings:
     content_age: float | None = 90 * 86_400.0
     retained_content_bytes: int | None = None
     upload_age: float = 86_400.0
+    kept_bytes: int = 2**32
 
     @property
     def default_budget(self) -> Budget:

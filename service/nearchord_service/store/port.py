@@ -115,7 +115,7 @@ class Upload(Protocol):
     committed: int
     """Bytes received so far."""
 
-    def write(self, piece: bytes) -> None:
+    def write(self, piece: bytes | memoryview) -> None:
         """Append a piece; ContentInvalid (field `piece`) when it exceeds the announced size."""
 
     def publish(self, check: Callable[[memoryview], tuple[int, int]]) -> Content:

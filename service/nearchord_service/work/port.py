@@ -25,7 +25,10 @@ class TaskKey:
 
 @dataclass(frozen=True)
 class Task:
-    """Everything a solve needs. `graph` and `weights` are canonical bytes; `weights` None means all ones."""
+    """Everything a solve needs. `graph` and `weights` are canonical bytes; `weights` None means all ones.
+
+    `owner` and `graph_address` say whose graph it is; without an address nothing is kept about it for later tasks.
+    """
 
     key: TaskKey
     graph: Bytes
@@ -35,6 +38,8 @@ class Task:
     question: Question
     budget: Budget
     when_over: WhenOver
+    owner: str = ""
+    graph_address: str = ""
 
 
 class LossCause(StrEnum):

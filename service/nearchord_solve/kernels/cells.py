@@ -4,6 +4,5 @@ STOP = 0
 STEP = 2
 FILL = 4
 BAGS_DONE = 6
-SCRATCH = 15  # means nothing
 
 POLL = 16383  # a loop over vertices looks at STOP whenever (index & POLL) == 0

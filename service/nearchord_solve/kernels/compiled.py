@@ -8,8 +8,9 @@ from collections.abc import Callable
 from typing import Any, TypeVar, cast
 
 import numba
-from numba.core import types
+from numba.core import cgutils, types
 from numba.extending import intrinsic
+from numba.np.arrayobj import make_array
 from numpy.typing import NDArray
 
 F = TypeVar("F", bound=Callable[..., Any])
@@ -40,6 +41,28 @@ def _lowest(_context: Any, _word: Any) -> Any:
 
     return types.int64(types.uint64), generate
 
+
+def _prefetch(_context: Any, array: Any, index: Any) -> Any:
+    layout: Any = make_array
+    forms: Any = cgutils
+
+    def generate(target: Any, builder: Any, signature: Any, arguments: Any) -> Any:
+        begin = layout(signature.args[0])(target, builder, arguments[0]).data
+        byte = builder.bitcast(builder.gep(begin, [arguments[1]]), forms.voidptr_t)
+        word = forms.int32_t
+        wanted = forms.ir.FunctionType(forms.ir.VoidType(), [byte.type, word, word, word])
+        instruction = builder.module.declare_intrinsic("llvm.prefetch", [byte.type], wanted)
+        builder.call(instruction, [byte, word(0), word(3), word(1)])  # to be read, all cache levels, data
+        return target.get_dummy_value()
+
+    return types.none(array, types.int64), generate
+
+
+prefetch: Callable[[Any, int], None] = cast(Any, intrinsic(_prefetch))
+"""Bring the cache line of the element at an index, counted in row-major order, without waiting for it.
+
+Changes nothing; an index outside the array is harmless.
+"""
 
 ones: Callable[[Any], int] = cast(Any, intrinsic(_ones))
 """Number of set bits of a uint64 word."""

@@ -11,6 +11,7 @@ from nearchord_solve.kernels.core_lists import core_vertices, dense_lists, dense
 from nearchord_solve.kernels.dense import list_fill, number_from, set_pair
 from nearchord_solve.kernels.grow import grown8, grown32, grown64
 from nearchord_solve.kernels.layout import (
+    EASY,
     FILL_EDGES,
     FILL_LOWER,
     PARTS_FILL,
@@ -78,7 +79,7 @@ def plan_core(
         lists = sparse_lists(places, anchors, nb.low_ptr, nb.low, nb.fill_end, nb.fill, local)
         return Plan(places, lists[0], lists[1], lists[2], lists[3], 0, False)
     real, full = dense_rows(places, anchors, nb.low_ptr, nb.low, nb.fill_end, nb.fill, local)
-    easy = 8 * places.shape[0]
+    easy = EASY * places.shape[0]
     full, order, minimal = best_triangulation(real, full, anchors, easy, most, least_fill, cells)
     lower = pack_cycles(real, list_fill(real, full), minimal, cells)
     lists = dense_lists(real, full, anchors, order)

@@ -6,8 +6,9 @@ Symmetric form: rows of all neighbours, ascending.
 
 import numpy as np
 
-from nearchord_solve.kernels.compiled import I32, I64, U32, kernel
+from nearchord_solve.kernels.compiled import I32, I64, U32, kernel, prefetch
 
+AHEAD = 16  # edges
 FINE, BAD_POINTER, BAD_RANGE, BAD_ORDER = 0, 1, 2, 3
 
 
@@ -48,8 +49,9 @@ def mirror(n: int, row_ptr: I64, targets: U32, smaller: I64, ptr: I64, adj: I32)
 
     ``smaller`` int64[n] holds counts of smaller neighbours and is overwritten with write positions; ``ptr``
     int64[n+1] and ``adj`` int32[2m] are overwritten.  Rows ascend because rows are read in ascending order:
-    smaller neighbours arrive in order, larger ones follow them.  O(n + m).
+    smaller neighbours arrive in order, larger ones follow them.  Where the next edges go is fetched ahead.  O(n + m).
     """
+    m = targets.shape[0]
     total = 0
     for v in range(n):
         ptr[v] = total
@@ -60,6 +62,9 @@ def mirror(n: int, row_ptr: I64, targets: U32, smaller: I64, ptr: I64, adj: I32)
         write = smaller[u]
         for e in range(row_ptr[u], row_ptr[u + 1]):
             v = targets[e]
+            if e + 2 * AHEAD < m:
+                prefetch(smaller, targets[e + 2 * AHEAD])
+                prefetch(adj, smaller[targets[e + AHEAD]])
             adj[write] = np.int32(v)
             write += 1
             adj[smaller[v]] = np.int32(u)

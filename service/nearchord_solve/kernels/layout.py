@@ -52,3 +52,4 @@ class Tries(NamedTuple):
 
 FILL_EDGES, FILL_LOWER, STATES, TABLE, PARTS_FILL, PARTS_PLAIN = 0, 1, 2, 3, 4, 5
 BAG_FILL, ADHESION_FILL = 1, 2
+EASY = 8  # states per vertex of a core that are taken without looking for fewer

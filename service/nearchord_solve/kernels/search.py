@@ -6,10 +6,12 @@ order is a perfect elimination order (Tarjan and Yannakakis, SIAM J. Comput. 13 
 
 import numpy as np
 
-from nearchord_solve.kernels.cells import POLL, SCRATCH, STEP, STOP
-from nearchord_solve.kernels.compiled import I32, I64, kernel
+from nearchord_solve.kernels.cells import POLL, STEP, STOP
+from nearchord_solve.kernels.compiled import I32, I64, kernel, prefetch
 
 NEXT, PREV, COUNT, PLACE = 0, 1, 2, 3
+SOON = 3  # a vertex with so many visited neighbours is likely to be visited soon
+LINE = 16  # entries of a row in a cache line
 
 
 @kernel
@@ -37,7 +39,6 @@ def cardinality_search(ptr: I64, adj: I32, order: I32, low_ptr: I64, low: I32, c
     head: I32 = np.full(longest + 2, -1, np.int32)
     top = 0
     fresh = 0
-    touched = 0
     write = 0
     for place in range(n):
         if (place & POLL) == 0:
@@ -60,8 +61,7 @@ def cardinality_search(ptr: I64, adj: I32, order: I32, low_ptr: I64, low: I32, c
         order[place] = v
         low_ptr[place] = write
         for e in range(ptr[v], ptr[v + 1]):
-            if record[adj[e], COUNT] == 0:
-                touched += ptr[adj[e]]
+            prefetch(record, 4 * adj[e])
         for e in range(ptr[v], ptr[v + 1]):
             u = adj[e]
             if record[u, PLACE] >= 0:
@@ -80,6 +80,11 @@ def cardinality_search(ptr: I64, adj: I32, order: I32, low_ptr: I64, low: I32, c
                     record[after, PREV] = before
             count += 1
             record[u, COUNT] = count
+            if count == 1:
+                prefetch(ptr, u)
+            elif count == SOON:
+                prefetch(adj, ptr[u])
+                prefetch(adj, ptr[u] + LINE)
             first = head[count]
             record[u, PREV] = -1
             record[u, NEXT] = first
@@ -88,5 +93,4 @@ def cardinality_search(ptr: I64, adj: I32, order: I32, low_ptr: I64, low: I32, c
             head[count] = u
         top += 1
     low_ptr[n] = write
-    cells[SCRATCH] = touched
     return True

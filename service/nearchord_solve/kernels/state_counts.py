@@ -3,10 +3,11 @@
 import numpy as np
 
 from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.kernels.classes import count_classes
 from nearchord_solve.kernels.cliques import count_cliques, touched
 from nearchord_solve.kernels.compiled import I32, I64, U64, kernel
+from nearchord_solve.kernels.forests import count_forests
 from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest
-from nearchord_solve.kernels.states import count_classes, count_forests
 from nearchord_solve.kernels.sweep import link_bags
 
 ONE = np.uint64(1)
@@ -28,7 +29,7 @@ def choices(n: int, k: int) -> int:
 
 @kernel
 def class_states(found: I64, others: int, colours: int) -> int:
-    """Sum over j <= q of C(others, j) (N_0 + ... + N_{q-j}), see :mod:`.states`."""
+    """Sum over j <= q of C(others, j) (N_0 + ... + N_{q-j}), see :mod:`.classes`."""
     total = 0
     for j in range(colours + 1):
         inside = 0

@@ -31,8 +31,8 @@ def best_triangulation(
     Candidates: the given ``full`` (overwritten by its thinning), least degree, least missing pairs, each
     thinned.  Fewest states wins (fewest fill edges if ``least_fill``), then the other of the two, then the
     first.  If the first has at most ``easy`` states and ``least_fill`` is off, it is taken at once.  Each
-    candidate may cost ``EFFORT`` words; beyond it is left out, or left unthinned.  Any ``most`` that is not below the
-    states of the result gives the same result.
+    candidate may cost ``EFFORT`` words; beyond it is left out, or left unthinned.  Any ``most`` that is neither
+    below ``easy`` nor below the states of the result gives the same result.
     """
     effort = np.array([EFFORT])
     _, minimal = thin(full, list_fill(real, full), effort, cells)

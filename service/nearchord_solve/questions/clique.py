@@ -16,7 +16,6 @@ from nearchord_solve.budget import Budget
 from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
 from nearchord_solve.kernels import bag_cliques
-from nearchord_solve.kernels.cells import SCRATCH
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.order import Ranking
 from nearchord_solve.outcome import Outcome
@@ -136,7 +135,7 @@ def _greedy(graph: Graph, weights: I64) -> U8:
 def _bound_along(ranking: Ranking, weights: I64) -> int:
     """Each clique lies in K(i) of its highest place."""
     outside = np.full(weights.size, -1, np.int32)
-    cells = np.zeros(SCRATCH + 1, np.int64)
+    cells = np.zeros(Monitor.CELLS, np.int64)
     by_place = weights[ranking.order]
     _, bound, _ = bag_cliques.heaviest_row(ranking.low_ptr, ranking.low, outside, by_place, cells)
     return int(bound)

@@ -67,11 +67,12 @@ def _conclude(
     proven = found.lower_bound == found.upper_bound
     monitor.incumbent(found.upper_bound)
     monitor.bound(found.lower_bound)
+    witness, complete = packing_columns(found.parts)
     columns: Columns = {
         "fill_edge": found.edges.ravel().astype(np.uint32),
         "elimination_order": order.astype(np.uint32),
         **classes,
-        **packing_columns(graph, found.parts),
+        **witness,
         **core_columns([core.vertices for core in cores]),
     }
     return Outcome(
@@ -86,7 +87,7 @@ def _conclude(
         largest_bag=final.largest_bag,
         parts=final.parts,
         fill_cores=len(cores),
-        proof=_proof(cores) if proven else "none",
+        proof=_proof(cores, complete) if proven else "none",
         proof_kinds=tuple(core.kind for core in cores),
         reason=_reason(found, budget, monitor),
         columns=columns,
@@ -130,9 +131,9 @@ def _cores(part: PartFill) -> list[_Core]:
     return found
 
 
-def _proof(cores: list[_Core]) -> str:
-    checkable = all(core.kind in (ProofKind.PACKING, ProofKind.BRANCH) for core in cores)
-    return "certificate" if checkable else "search"
+def _proof(cores: list[_Core], complete: bool) -> str:
+    """A certificate only if the columns prove the bound of every core; the trees of branch proofs are not in them."""
+    return "certificate" if complete and all(core.kind == ProofKind.PACKING for core in cores) else "search"
 
 
 def _reason(found: GraphFill, budget: Budget, monitor: Monitor) -> str:

@@ -4,7 +4,7 @@ from collections.abc import Callable
 
 from bench.options import Options
 from bench.report import Report
-from bench.scenarios import data, scale, service, upload, windows
+from bench.scenarios import data, fill, known, scale, service, upload, windows
 
 Scenario = Callable[[Options], Report]
 
@@ -14,4 +14,6 @@ SCENARIOS: dict[str, Scenario] = {
     "service": service.measure,
     "upload": upload.measure,
     "data": data.measure,
+    "fill": fill.measure,
+    "known-graph": known.measure,
 }

@@ -77,11 +77,16 @@ def _cases(folder: Path, seed: int) -> list[Case]:
 
 def _case(path: Path, values: dict[str, str], seed: int) -> Case:
     graph = nearchord.Graph.read(path)
-    low, high = graph.edges()
     column = "mis_unit" if graph.weights is None else "mis_file"
+    proved = int(values[column]) if values.get(f"{column}_proved") == "1" else None
+    return Case(path.stem, as_problem(graph).shuffled(seed), proved)
+
+
+def as_problem(graph: nearchord.Graph) -> Problem:
+    """A graph as it was read, with ones where it has no weights."""
+    low, high = graph.edges()
     weights = np.ones(graph.n, np.int64) if graph.weights is None else graph.weights
-    problem = Problem(graph.n, low.astype(np.uint32), high.astype(np.uint32), weights).shuffled(seed)
-    return Case(path.stem, problem, int(values[column]) if values.get(f"{column}_proved") == "1" else None)
+    return Problem(graph.n, low.astype(np.uint32), high.astype(np.uint32), weights)
 
 
 def _groups(problem: Problem) -> Groups:

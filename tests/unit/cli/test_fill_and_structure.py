@@ -62,7 +62,7 @@ def test_json_of_a_fill_has_the_promised_keys(service: FakeService, nearchord_co
         "chordless_cycle": [1, 2, 3, 4],
         "split_clique": None,
         "intervals": None,
-        "packing": [{"cycle": [1, 2, 3, 4], "share": 1}],
+        "packing": [{"ring": [[1], [2], [3], [4]], "share": 1}],
         "cores": [[1, 2, 3, 4]],
     }
     _, question, terms = service.submitted[0]
@@ -261,8 +261,8 @@ def test_a_structure_that_was_printed_is_checked_as_far_as_it_goes(
         ({"proof_kinds": ["hearsay"]}, ["proof_kinds", "hearsay"]),
         ({"witness": 3}, ["witness"]),
         ({"witness": {"elimination_order": [9]}}, ["witness", "9"]),
-        ({"witness": {"packing": [{"cycle": [1]}]}}, ["witness", "share"]),
-        ({"witness": {"packing": [{"cycle": [1], "share": "1/0"}]}}, ["witness"]),
+        ({"witness": {"packing": [{"ring": [[1]]}]}}, ["witness", "share"]),
+        ({"witness": {"packing": [{"ring": [[1]], "share": "1/0"}]}}, ["witness"]),
         ({"witness": {"intervals": [[0, 1]]}}, ["witness", "intervals"]),
         ({"witness": {"intervals": [[1, 0]] * 4}}, ["witness", "intervals"]),
     ],

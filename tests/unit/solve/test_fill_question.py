@@ -81,24 +81,37 @@ def confirm_classes(graph: nx.Graph, outcome: Outcome) -> None:
 
 
 def confirm_packing(graph: nx.Graph, outcome: Outcome) -> None:
-    """Chordless cycles; no pair is used more than once; their value per core, rounded up, is no more than the bound."""
+    """The bound of the rings core by core, from the inequality; a certificate reaches the bound of the answer."""
     cores = [set(core) for core in rows(outcome, "core_start", "core_vertex")]
-    load: dict[frozenset[int], Fraction] = {}
+    load: list[dict[frozenset[int], Fraction]] = [{} for _ in cores]
     value = [Fraction(0)] * len(cores)
-    cycles = rows(outcome, "packing_start", "packing_vertex")
     shares = zip(outcome.columns["packing_numerator"], outcome.columns["packing_denominator"], strict=True)
-    for ring, (numerator, denominator) in zip(cycles, shares, strict=True):
-        share = Fraction(int(numerator), int(denominator))
-        assert share > 0
-        assert nx.is_isomorphic(graph.subgraph(ring), nx.cycle_graph(len(ring)))
-        assert all(graph.has_edge(u, v) for u, v in zip(ring, ring[1:] + ring[:1], strict=True))
-        for pair in map(frozenset, combinations(ring, 2)):
-            if not graph.has_edge(*pair):
-                load[pair] = load.get(pair, Fraction(0)) + share
-        (home,) = (i for i, core in enumerate(cores) if set(ring) <= core)
-        value[home] += share * (len(ring) - 3)
-    assert all(total <= 1 for total in load.values())
-    assert sum(-(-v.numerator // v.denominator) for v in value) <= outcome.fill_lower_bound
+    for ring, (numerator, denominator) in zip(packing_rings(outcome), shares, strict=True):
+        share, c, opened = Fraction(int(numerator), int(denominator)), len(ring), 0
+        assert c >= 4
+        (home,) = (i for i, core in enumerate(cores) if {v for group in ring for v in group} <= core)
+        for i, j in combinations(range(c), 2):
+            pairs = {frozenset((u, v)) for u in ring[i] for v in ring[j]}
+            joined = {graph.has_edge(*pair) for pair in pairs}
+            side = j - i in (1, c - 1)
+            assert len(joined) == 1
+            assert side or joined == {False}
+            if joined == {False}:
+                opened += side
+                for pair in pairs:
+                    part = share * (3 - c if side else 1) / len(pairs)
+                    load[home][pair] = load[home].get(pair, Fraction(0)) + part
+        value[home] += share * (c - 3) * (1 - opened)
+    proven = [v - sum(max(Fraction(0), y - 1) for y in loads.values()) for v, loads in zip(value, load, strict=True)]
+    total = sum(max(0, -(-v.numerator // v.denominator)) for v in proven)
+    assert total <= outcome.fill_lower_bound
+    assert total == outcome.fill_lower_bound or outcome.proof != "certificate"
+
+
+def packing_rings(outcome: Outcome) -> list[list[list[int]]]:
+    """Groups of vertices, ring by ring."""
+    groups, ring = rows(outcome, "packing_group", "packing_vertex"), outcome.columns["packing_ring"].tolist()
+    return [groups[a:b] for a, b in pairwise(ring)]
 
 
 @settings(deadline=None)
@@ -131,7 +144,7 @@ def test_budget_below_the_lower_bound_ends_over_fill_with_a_witness() -> None:
         outcome = solve(Fill(), Graph.from_edges(*two), None, Budget(fill=7), when_over, Monitor())
         assert outcome.verdict is Verdict.OVER_FILL
         assert outcome.fill_lower_bound == 8
-        assert sum(len(ring) - 3 for ring in rows(outcome, "packing_start", "packing_vertex")) == 8
+        assert sum(len(ring) - 3 for ring in packing_rings(outcome)) == 8
         assert outcome.reason.startswith("fill budget: at least 8 fill edges are needed, 7 are allowed")
     assert asked(two, fill=8).verdict is Verdict.PROVEN
 

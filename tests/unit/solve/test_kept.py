@@ -77,12 +77,12 @@ def test_answers_are_the_same_with_what_another_budget_left(edges: Edges, first:
 
 
 def test_a_structure_serves_budgets_that_lead_to_it() -> None:
-    """One fill edge, 12 states."""
+    """One fill edge; four vertices, for which 32 states would be taken at once."""
     left = run(IndependentSet(), SQUARE).kept
     assert left.serves(Budget())
-    assert left.serves(Budget(fill=1, states=12, memory=2**29))
+    assert left.serves(Budget(fill=1, states=32, memory=2**29))
     assert not left.serves(Budget(fill=0))
-    assert not left.serves(Budget(states=7))
+    assert not left.serves(Budget(states=31))
     assert not left.serves(Budget(memory=predicted_bytes(4, 4)))
 
 

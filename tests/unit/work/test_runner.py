@@ -89,7 +89,7 @@ def test_a_fill_is_recorded_with_all_its_columns():
     columns = {column.name: column for column in answer.columns}
     assert list(columns) == list(scripted_solver.fill_outcome().columns)
     assert columns["fill_edge"] == Column("fill_edge", ElementType.UINT32, struct.pack("<2I", 0, 2))
-    assert columns["packing_start"] == Column("packing_start", ElementType.INT64, struct.pack("<2q", 0, 4))
+    assert columns["packing_ring"] == Column("packing_ring", ElementType.INT64, struct.pack("<2q", 0, 4))
     assert "chosen" not in columns
 
 

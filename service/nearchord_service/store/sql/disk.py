@@ -81,11 +81,15 @@ class Disk:
         os.lseek(descriptor, keep, os.SEEK_SET)
         return descriptor
 
-    def write(self, descriptor: int, piece: bytes) -> None:
+    def write(self, descriptor: int, piece: bytes | memoryview) -> None:
         """Write all of a piece."""
         view = memoryview(piece)
         while view:
             view = view[os.write(descriptor, view) :]
+
+    def flush(self, descriptor: int) -> None:
+        """Bring the bytes of a content file that were written so far to the disk."""
+        os.fdatasync(descriptor)
 
     def sync(self, descriptor: int) -> None:
         """Make a content file and its name durable."""

@@ -12,6 +12,7 @@ import logging
 import mmap
 import os
 from collections.abc import Callable
+from concurrent.futures import Future
 from dataclasses import dataclass
 from functools import partial
 
@@ -25,6 +26,7 @@ from nearchord_service.model.errors import (
     ServiceError,
     StoreUnavailable,
 )
+from nearchord_service.store.sql.behind import Behind
 from nearchord_service.store.sql.content import (
     ADD_USE,
     INSERT_BLOB,
@@ -83,10 +85,11 @@ class FileUpload:
         self._let_go = let_go
         self._digest = hashlib.sha256()
         self._descriptor: int | None = disk.open(announced.file, keep=offset)
+        self._behind = Behind(disk, self._descriptor)
         for begin in range(0, offset, _READ_AGAIN):
             self._digest.update(os.pread(self._descriptor, min(_READ_AGAIN, offset - begin), begin))
 
-    def write(self, piece: bytes) -> None:
+    def write(self, piece: bytes | memoryview) -> None:
         """Append a piece."""
         descriptor = self._held()
         size = self._announced.size_bytes
@@ -98,6 +101,7 @@ class FileUpload:
         except OSError as fault:
             self._cut(descriptor)
             raise disk_trouble(self._disk.content, fault) from fault
+        self._behind.wrote(len(piece))
         self._digest.update(piece)
         self.committed += len(piece)
 
@@ -107,15 +111,18 @@ class FileUpload:
         os.lseek(descriptor, self.committed, os.SEEK_SET)
 
     def publish(self, check: Callable[[memoryview], tuple[int, int]]) -> Content:
-        """Check the bytes and turn the upload into content."""
+        """Turn the upload into content; the disk is kept busy while the bytes are checked."""
         descriptor = self._held()
         try:
             self._check_bytes()
+            synced = None if self._small else self._behind.sync()
             vertices, edges = check(self._view(descriptor))
         except ServiceError:
             self._drop()
             raise
-        content = self._publish(descriptor, vertices, edges)
+        data = self._keep(descriptor, synced)
+        content = self._write(lambda transaction: self._turn(transaction, data, vertices, edges))
+        assert isinstance(content, Content)
         self._close()
         return content
 
@@ -133,19 +140,19 @@ class FileUpload:
         size = self._announced.size_bytes
         return memoryview(mmap.mmap(descriptor, size, prot=mmap.PROT_READ)) if size else memoryview(b"")
 
-    def _publish(self, descriptor: int, vertices: int, edges: int) -> Content:
-        small = self._announced.size_bytes < SMALL_BYTES
-        data = None
+    @property
+    def _small(self) -> bool:
+        return self._announced.size_bytes < SMALL_BYTES
+
+    def _keep(self, descriptor: int, synced: Future[None] | None) -> bytes | None:
+        """Wait until the file is durable, or return the bytes that go into the database because they are few."""
         try:
-            if small:
-                data = os.pread(descriptor, SMALL_BYTES, 0)
-            else:
-                self._disk.sync(descriptor)
+            if synced is None:
+                return os.pread(descriptor, SMALL_BYTES, 0)
+            synced.result()
         except OSError as fault:
             raise disk_trouble(self._disk.content, fault) from fault
-        content = self._write(lambda transaction: self._turn(transaction, data, vertices, edges))
-        assert isinstance(content, Content)
-        return content
+        return None
 
     def _turn(self, transaction: Transaction, data: bytes | None, vertices: int, edges: int) -> Content:
         """Turn the upload into content, unless a submission has brought the same content meanwhile."""
@@ -180,7 +187,7 @@ class FileUpload:
             return
         names = {"of_owner": self._announced.owner, "of_address": self._announced.address}
         try:
-            self._disk.sync(self._descriptor)
+            self._behind.sync().result()
             self._write(lambda transaction: transaction.run(_TOUCH, **names, now=transaction.now))
         except (OSError, StoreUnavailable) as fault:
             _log.warning("upload %s was let go, but when could not be noted: %s", self._announced.address, fault)
@@ -200,6 +207,7 @@ class FileUpload:
 
     def _close(self) -> None:
         if self._descriptor is not None:
+            self._behind.close()
             os.close(self._descriptor)
             self._descriptor = None
             self._let_go()

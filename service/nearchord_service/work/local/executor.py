@@ -14,6 +14,7 @@ import os
 import selectors
 import threading
 import time
+from pathlib import Path
 
 from nearchord_service.work.local.pool import Pool
 from nearchord_service.work.local.slot import SAMPLE_SECONDS
@@ -24,6 +25,9 @@ RESIDENT_LIMIT_BYTES = 512 * 2**20
 
 GRACE_SECONDS = 2.0
 """Time that a task told to stop has before its worker is killed."""
+
+KEEP_BYTES = 2**32
+"""Disk that what is kept for later solves may take."""
 
 _PAUSE_SECONDS = 1.0
 _LOG = logging.getLogger(__name__)
@@ -39,12 +43,18 @@ class LocalExecutor:
         resident_limit_bytes: int = RESIDENT_LIMIT_BYTES,
         grace_seconds: float = GRACE_SECONDS,
         solver: str = "nearchord_solve",
+        keep_folder: Path | None = None,
+        keep_bytes: int = KEEP_BYTES,
     ) -> None:
-        """Prepare `slots` slots; `solver` names the module that workers solve with (tests put others in)."""
+        """Prepare `slots` slots; `solver` names the module that workers solve with (tests put others in).
+
+        What solves leave for later ones on the same graph is kept in `keep_folder`, at most `keep_bytes` of it; the
+        folder may be deleted at any time.
+        """
         if slots < 1:
             raise ValueError(f"slots must be 1 or more, not {slots}")
         self._lock = threading.Lock()
-        self._pool = Pool(slots, resident_limit_bytes, grace_seconds, solver)
+        self._pool = Pool(slots, resident_limit_bytes, grace_seconds, solver, keep_folder, keep_bytes)
         self._bell = os.eventfd(0, os.EFD_NONBLOCK | os.EFD_CLOEXEC)
         self._wakes_at = -math.inf
         self._thread: threading.Thread | None = None

@@ -21,9 +21,11 @@ import socket
 import sys
 import traceback
 from dataclasses import dataclass
+from pathlib import Path
 from typing import Any, NoReturn
 
-from nearchord_service.work.local import guard, wire, worker
+from nearchord_service.work.kept import Shelf
+from nearchord_service.work.local import compiling, guard, kernel_cache, wire, worker
 from nearchord_service.work.local.messages import Exited, Failed, Fork, Forked, Kill, Warm, Warming
 
 _LOG = logging.getLogger(__name__)
@@ -31,12 +33,17 @@ _LOG = logging.getLogger(__name__)
 
 @dataclass(frozen=True)
 class Orders:
-    """What the server passes on the command line: descriptors to inherit, and the solver's module name."""
+    """What the server passes on the command line: descriptors to inherit, the solver's module name, what to keep where.
+
+    Without `keep_folder` nothing is kept.
+    """
 
     control: int
     lifeline: int
     cells: int
     solver: str
+    keep_folder: str | None = None
+    keep_bytes: int = 0
 
 
 def main(orders: str) -> None:
@@ -48,13 +55,21 @@ def main(orders: str) -> None:
     with socket.socket(fileno=given.control) as control:
         solver = _warm(control, given.solver)
         if solver is not None:
-            Nursery(control, mmap.mmap(given.cells, 0), solver).run()
+            Nursery(control, mmap.mmap(given.cells, 0), solver, _shelf(given, solver)).run()
+
+
+def _shelf(given: Orders, solver: Any) -> Shelf | None:
+    if given.keep_folder is None:
+        return None
+    sources = kernel_cache.digest(Path(solver.__file__).parent)
+    return Shelf(Path(given.keep_folder), given.keep_bytes, f"{solver.VERSION} {sources}")
 
 
 def _warm(control: socket.socket, name: str) -> Any:
     """Import the solver and call its kernels once; None when that failed (the server is told why)."""
     try:
         solver = importlib.import_module(name)
+        compiling.compile_ahead(solver, lambda share: wire.send(control, Warming(share)))
         solver.warm_up(lambda done, total: wire.send(control, Warming(done / total if total else 1.0)))
     except ConnectionError:
         return None
@@ -71,10 +86,11 @@ def _warm(control: socket.socket, name: str) -> Any:
 class Nursery:
     """Forks, kills and reaps workers by order of the server."""
 
-    def __init__(self, control: socket.socket, block: mmap.mmap, solver: Any) -> None:
+    def __init__(self, control: socket.socket, block: mmap.mmap, solver: Any, shelf: Shelf | None) -> None:
         self._control = control
         self._block = block
         self._solver = solver
+        self._shelf = shelf
         self._children: set[int] = set()
         self._bell, self._bell_end = os.pipe2(os.O_NONBLOCK | os.O_CLOEXEC)
 
@@ -129,7 +145,7 @@ class Nursery:
             self._control.close()
             os.close(self._bell)
             os.close(self._bell_end)
-            worker.serve(socket.socket(fileno=end), self._block, slot, self._solver)
+            worker.serve(socket.socket(fileno=end), self._block, slot, self._solver, self._shelf)
             status = 0
         except BaseException:
             traceback.print_exc()

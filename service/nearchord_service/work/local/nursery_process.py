@@ -7,6 +7,7 @@ import os
 import socket
 import subprocess
 import sys
+from pathlib import Path
 
 from nearchord_service.work.local import kernel_cache, wire
 from nearchord_service.work.local.messages import Fork, Kill
@@ -25,14 +26,19 @@ _END_SECONDS = 5.0
 class NurseryProcess:
     """A running nursery. Used under the executor's lock; `control` does not block."""
 
-    def __init__(self, cells: int, solver: str) -> None:
-        """Start the process; it maps the shared cells file `cells` and imports the module `solver`."""
+    def __init__(self, cells: int, solver: str, keep_folder: Path | None, keep_bytes: int) -> None:
+        """Start the process; it maps the shared cells file `cells` and imports the module `solver`.
+
+        Its workers keep at most `keep_bytes` in `keep_folder` for later tasks.
+        """
         self.control, control_end = wire.pair()
         lifeline_end, self._lifeline = os.pipe()
         inherited = {"control": control_end.fileno(), "lifeline": lifeline_end, "cells": cells}
+        keep = {"keep_folder": None if keep_folder is None else str(keep_folder), "keep_bytes": keep_bytes}
+        orders = json.dumps({**inherited, "solver": solver, **keep})
         try:
             self._process = subprocess.Popen(
-                [sys.executable, "-c", _PROGRAM, json.dumps(sys.path), json.dumps({**inherited, "solver": solver})],
+                [sys.executable, "-c", _PROGRAM, json.dumps(sys.path), orders],
                 env={**os.environ, **_ONE_THREAD, **kernel_cache.prepare(solver, os.environ)},
                 stdin=subprocess.DEVNULL,
                 stdout=subprocess.DEVNULL,

@@ -12,6 +12,8 @@ import selectors
 import socket
 from collections import deque
 from collections.abc import Callable, Iterator
+from functools import partial
+from pathlib import Path
 
 from nearchord_service.model.event import Progress
 from nearchord_service.work.local import endings, wire
@@ -30,13 +32,21 @@ _LOG = logging.getLogger(__name__)
 class Pool:
     """Slots, their nursery, and tasks that wait for a slot."""
 
-    def __init__(self, slots: int, resident_limit_bytes: int, grace_seconds: float, solver: str) -> None:
+    def __init__(
+        self,
+        slots: int,
+        resident_limit_bytes: int,
+        grace_seconds: float,
+        solver: str,
+        keep_folder: Path | None,
+        keep_bytes: int,
+    ) -> None:
         self.selector = selectors.DefaultSelector()
         self.news: list[News] = []
         self._cells = CellBlock(slots)
         self._slots = [Slot(i, self._cells, grace_seconds) for i in range(slots)]
         self._resident_limit_bytes = resident_limit_bytes
-        self._solver = solver
+        self._begin_nursery = partial(NurseryProcess, self._cells.file, solver, keep_folder, keep_bytes)
         self._pending: deque[Task] = deque()
         self._nursery: NurseryProcess | None = None
         self._warm = False
@@ -157,7 +167,7 @@ class Pool:
 
     def _start_nursery(self, now: float) -> None:
         try:
-            self._nursery = NurseryProcess(self._cells.file, self._solver)
+            self._nursery = self._begin_nursery()
         except OSError:
             _LOG.exception("cannot start the process that forks workers; trying again in %.1f s", self._delay)
             self._start_at = now + self._delay

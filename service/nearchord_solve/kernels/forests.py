@@ -1,14 +1,10 @@
-"""Counting the states that a bag has in each dynamic program.
+"""Counting the states that a bag has in the forest program.
 
 F is the graph of the fill edges inside a bag of b vertices; T are the vertices that touch fill, u = b - |T| the
-others, which are adjacent in G to everything in the bag.  A set without an edge of G inside is a clique of F.
-
-* *Colour classes.*  A state is a set of at most q disjoint non-empty cliques of F (names of colours are given in the
-  order of the lowest vertices).  With N_i such sets of exactly i cliques inside T there are
-  sum over j <= q of C(u, j) (N_0 + ... + N_{q-j}), as each vertex outside T is a class of its own.
-* *Forests.*  A state is a set X with no cycle of G inside, with a partition of those components of X that meet the
-  adhesion: how they are connected outside.  With a vertex outside T, X is a star or a single edge, hence connected.
-  Where the partition is trivial there are u (1 + N_1) + C(u, 2) states beside the sets X inside T.
+others, which are adjacent in G to everything in the bag.  A state is a set X with no cycle of G inside, with a
+partition of those components of X that meet the adhesion: how they are connected outside.  With a vertex outside T, X
+is a star or a single edge, hence connected, and its partition trivial: there are u (1 + N) + C(u, 2) of these, N being
+the number of non-empty cliques of F.  Here the sets inside T are counted.
 """
 
 import numpy as np
@@ -16,98 +12,10 @@ import numpy as np
 from nearchord_solve.kernels.cells import STOP
 from nearchord_solve.kernels.cliques import depth_limit
 from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest, ones
+from nearchord_solve.kernels.words import clear, full, holds
 
 ONE = np.uint64(1)
 MOST_TREES = 14  # more trees have over 10**9 partitions
-
-
-@kernel
-def _clear(words: U64, i: int) -> None:
-    words[i >> 6] &= ~(ONE << np.uint64(i & 63))
-
-
-@kernel
-def _holds(words: U64, i: int) -> bool:
-    return bool((words[i >> 6] >> np.uint64(i & 63)) & ONE)
-
-
-@kernel
-def _full(count: int, words: int) -> U64:
-    everything = np.zeros(words, np.uint64)
-    for i in range(count):
-        everything[i >> 6] |= ONE << np.uint64(i & 63)
-    return everything
-
-
-@kernel
-def count_classes(rows: U64, edges: int, colours: int, most: int, cells: I64) -> I64:
-    """Sets of exactly 1..``colours`` disjoint non-empty cliques: int64[colours + 1], the first entry is 1.
-
-    ``rows`` uint64[t, W] upper rows of F.  Stops counting when all together exceed ``most``, or when told to.  The
-    search adds one vertex at a time: to the last class, above its vertices, or as a new class, above the lowest
-    vertex of the last one; so each set is met once.  ``grow`` and ``open_`` hold the candidates for both.
-    Children are counted by popcount, so time is O(W) per state that has children.
-    """
-    t, words = rows.shape
-    found = np.zeros(colours + 1, np.int64)
-    found[0] = 1
-    deepest = min(t, colours * depth_limit(t, edges)) + 2
-    grow = np.zeros((deepest, words), np.uint64)
-    open_ = np.zeros((deepest, words), np.uint64)
-    spare = np.zeros((deepest, words), np.uint64)  # vertices in no class, above the lowest of the last
-    classes = np.zeros(deepest, np.int64)
-    spare[0] = _full(t, words)
-    open_[0] = spare[0]
-    found[1] = t
-    total = t
-    depth = 0
-    while depth >= 0:
-        if total > most or cells[STOP] != 0:
-            break
-        level = classes[depth]
-        w = 0
-        fresh = False
-        while w < words and grow[depth, w] == 0:
-            w += 1
-        if w == words:
-            fresh = True
-            w = 0
-            while w < words and open_[depth, w] == 0:
-                w += 1
-        if w == words:
-            depth -= 1
-            continue
-        v = (w << 6) + lowest(open_[depth, w] if fresh else grow[depth, w])
-        below = depth + 1
-        if fresh:
-            _clear(open_[depth], v)
-            level += 1
-        else:
-            _clear(grow[depth], v)
-        more = 0
-        opened = 0
-        for y in range(words):
-            rest = spare[depth, y]
-            if fresh:  # only vertices above v stay of interest
-                if y < v >> 6:
-                    rest = np.uint64(0)
-                elif y == v >> 6:
-                    rest &= ~((ONE << np.uint64(v & 63)) - ONE)
-            spare[below, y] = rest
-            grow[below, y] = (rest if fresh else grow[depth, y]) & rows[v, y]
-            more += ones(grow[below, y])
-        _clear(spare[below], v)
-        for y in range(words):
-            open_[below, y] = spare[below, y] if level < colours else np.uint64(0)
-            opened += ones(open_[below, y])
-        found[level] += more
-        if opened > 0:
-            found[level + 1] += opened
-        total += more + opened
-        classes[below] = level
-        if (more > 0 and (more > 1 or level < colours)) or opened > 0:
-            depth = below
-    return found
 
 
 @kernel
@@ -117,7 +25,7 @@ def symmetric(rows: U64) -> U64:
     both = rows.copy()
     for i in range(t):
         for j in range(i + 1, t):
-            if _holds(rows[i], j):
+            if holds(rows[i], j):
                 both[j, i >> 6] |= ONE << np.uint64(i & 63)
     return both
 
@@ -187,7 +95,7 @@ def _partitions(chosen: I32, size: int, tree: I32, near: U64, lead: int, outside
     group = np.arange(size)
     for i in range(size):
         for j in range(i):
-            if chosen[i] >= lead and not _holds(near[chosen[i]], chosen[j]) and group[i] != group[j]:
+            if chosen[i] >= lead and not holds(near[chosen[i]], chosen[j]) and group[i] != group[j]:
                 old = group[i]
                 for k in range(size):
                     if group[k] == old:
@@ -200,7 +108,7 @@ def _partitions(chosen: I32, size: int, tree: I32, near: U64, lead: int, outside
         for i in range(size):
             if group[i] == g:
                 meets |= chosen[i] < lead
-                reaches |= _holds(outside, chosen[i])
+                reaches |= holds(outside, chosen[i])
                 owner = tree[i]
         if meets and reaches:
             ports[owner] += 1
@@ -227,7 +135,7 @@ def count_forests(rows: U64, edges: int, lead: int, outside: U64, joined: bool, 
     tree = np.zeros((deepest, deepest), np.int32)
     chosen = np.zeros(deepest, np.int32)
     merged = np.zeros(words, np.uint64)
-    open_[0] = _full(t, words)
+    open_[0] = full(t, words)
     total = 1 if joined else 1 + t
     depth = 0
     while depth >= 0:
@@ -240,7 +148,7 @@ def count_forests(rows: U64, edges: int, lead: int, outside: U64, joined: bool, 
             depth -= 1
             continue
         v = (w << 6) + lowest(open_[depth, w])
-        _clear(open_[depth], v)
+        clear(open_[depth], v)
         below = depth + 1
         chosen[depth] = v
         merged[:] = 0
@@ -249,7 +157,7 @@ def count_forests(rows: U64, edges: int, lead: int, outside: U64, joined: bool, 
             tree[below, i] = tree[depth, i]
         tree[below, depth] = depth
         for i in range(depth):
-            if not _holds(near[v], chosen[i]) and tree[below, i] != depth:
+            if not holds(near[v], chosen[i]) and tree[below, i] != depth:
                 old = tree[below, i]
                 for k in range(depth):
                     if tree[below, k] == old:

@@ -1,0 +1,94 @@
+"""The checker against values from outside the project."""
+
+from __future__ import annotations
+
+import os
+from collections import Counter
+from pathlib import Path
+
+import nearchord
+import nearchord_solve
+import networkx as nx
+import numpy as np
+import pytest
+from definition import least_fill
+from nearchord.checks.classes import splittance
+from nearchord.checks.edges import Edges
+from nearchord.checks.packing import Packing
+
+
+def test_split_graphs_are_as_many_as_published() -> None:
+    """Graphs of splittance 0 on 1 to 7 vertices: OEIS A048194 (split graphs), over Read and Wilson's atlas."""
+    counts: Counter[int] = Counter()
+    for source in nx.graph_atlas_g()[1:]:
+        graph = nearchord.Graph.from_edges(len(source), [tuple(sorted(edge)) for edge in source.edges])
+        counts[graph.n] += splittance(Edges(graph.n, *graph.edges())) == 0
+    assert [counts[n] for n in range(1, 8)] == [1, 2, 4, 9, 21, 56, 164]
+
+
+SHARED = Path(os.environ.get("NEARCHORD_SHARED_DATA", Path(__file__).resolve().parents[2] / ".." / "shared" / "data"))
+COLOURING = ("huck", "jean", "anna", "miles250", "david", "mulsol.i.1", "zeroin.i.1", "fpsol2.i.1")
+
+
+def fill_outcome(graph: nearchord.Graph) -> nearchord_solve.Outcome:
+    ours = nearchord_solve.Graph.from_canonical(graph.n, graph.row_ptr, graph.targets)
+    budget, monitor = nearchord_solve.Budget(), nearchord_solve.Monitor()
+    return nearchord_solve.solve(nearchord_solve.Fill(), ours, None, budget, "bound", monitor)
+
+
+def confirmed_bound(graph: nearchord.Graph, outcome: nearchord_solve.Outcome) -> int:
+    return Packing(graph, outcome.columns).bound(Edges(graph.n, *graph.edges()))
+
+
+def test_certificates_of_atlas_graphs_are_confirmed() -> None:
+    """Read and Wilson's atlas: a certificate proves the bound, and nothing proves more than the fill."""
+    certified = 0
+    for source in nx.graph_atlas_g()[1:]:
+        graph = nearchord.Graph.from_edges(len(source), [tuple(sorted(edge)) for edge in source.edges])
+        outcome = fill_outcome(graph)
+        proven = confirmed_bound(graph, outcome)
+        assert proven <= outcome.value
+        if outcome.proof == "certificate":
+            certified += 1
+            assert proven == outcome.value, source.name
+        else:
+            assert set(outcome.proof_kinds) - {"packing"}, source.name
+    assert certified > 1000
+
+
+@pytest.mark.parametrize("name", COLOURING)
+def test_certificates_of_colouring_graphs_are_confirmed(name: str) -> None:
+    """Graphs of the Second DIMACS Challenge on colouring."""
+    path = SHARED / "graphs" / f"{name}.col"
+    if not path.exists() and os.environ.get("CI") != "true":
+        pytest.skip(f"{path} is not there; set NEARCHORD_SHARED_DATA to the folder that holds it")
+    graph = nearchord.Graph.read(path)
+    outcome = fill_outcome(graph)
+    assert outcome.proof == "certificate"
+    assert confirmed_bound(graph, outcome) == outcome.value
+
+
+def test_spoilt_packings_prove_no_more_than_the_least_fill() -> None:
+    """Every single change of a number of the columns, over a part of the atlas: refused, or still a bound."""
+    refused = lowered = 0
+    for source in nx.graph_atlas_g()[100:1253:60]:
+        edges = [tuple(sorted(edge)) for edge in source.edges]
+        graph = nearchord.Graph.from_edges(len(source), edges)
+        outcome, least = fill_outcome(graph), least_fill(len(source), edges)
+        for name in ("ring", "group", "vertex", "numerator", "denominator"):
+            column = np.asarray(outcome.columns[f"packing_{name}"])
+            for at in range(column.size):
+                for value in {0, 1, 2, 5, int(column[at]) + 1, 2 * int(column[at])} - {int(column[at])}:
+                    spoilt = column.copy()
+                    spoilt[at] = value
+                    try:
+                        proven = Packing(graph, {**outcome.columns, f"packing_{name}": spoilt}).bound(
+                            Edges(graph.n, *graph.edges())
+                        )
+                    except nearchord.CheckFailed:
+                        refused += 1
+                        continue
+                    assert proven <= least
+                    lowered += proven < least
+    assert refused > 100
+    assert lowered > 10
