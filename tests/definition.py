@@ -1,6 +1,6 @@
 """Oracles written from the definitions, slow and plain.  They share no code with the solver."""
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from itertools import combinations
 
 import networkx as nx
@@ -91,3 +91,66 @@ def cliques_of_two_or_more(n: int, edges: Pairs) -> int:
         for size in range(2, n + 1)
         for subset in combinations(range(n), size)
     )
+
+
+def is_clique(edges: Pairs, chosen: Iterable[int]) -> bool:
+    """All pairs of ``chosen`` are edges."""
+    pairs = {frozenset(pair) for pair in edges}
+    return all(frozenset(pair) in pairs for pair in combinations(chosen, 2))
+
+
+def is_forest(edges: Pairs, chosen: Iterable[int]) -> bool:
+    """No cycle of G lies inside ``chosen``."""
+    root = {v: v for v in chosen}
+
+    def find(v: int) -> int:
+        while root[v] != v:
+            v = root[v]
+        return v
+
+    for u, v in edges:
+        if u in root and v in root:
+            if find(u) == find(v):
+                return False
+            root[find(u)] = find(v)
+    return True
+
+
+def is_colourable(edges: Pairs, chosen: Iterable[int], colours: int) -> bool:
+    """``chosen`` splits into so many sets without an edge inside; tries all ways."""
+    rows = networkx_graph(max(chosen, default=-1) + 1, [])
+    rows.add_edges_from(edges)
+    vertices = list(chosen)
+
+    def extends(place: int, given: dict[int, int]) -> bool:
+        if place == len(vertices):
+            return True
+        v = vertices[place]
+        used = max(given.values(), default=-1)
+        taken = {given[u] for u in rows[v] if u in given}
+        return any(
+            extends(place + 1, {**given, v: colour}) for colour in range(min(colours, used + 2)) if colour not in taken
+        )
+
+    return extends(0, {})
+
+
+def largest_by_trial(
+    n: int, edges: Pairs, weights: Sequence[int], holds: Callable[[Pairs, Sequence[int]], bool],
+    must: Iterable[int] = (), never: Iterable[int] = (),
+) -> int | None:  # fmt: skip
+    """Weight of the heaviest set with a hereditary property, by growing all sets that have it; None if none does."""
+    best = None
+    needed, barred = set(must), set(never)
+    open_sets: list[tuple[int, list[int]]] = [(0, [])]
+    while open_sets:
+        v, chosen = open_sets.pop()
+        if v == n:
+            weight = sum(weights[u] for u in chosen)
+            best = weight if best is None else max(best, weight)
+            continue
+        if v not in needed:
+            open_sets.append((v + 1, chosen))
+        if v not in barred and holds(edges, [*chosen, v]):
+            open_sets.append((v + 1, [*chosen, v]))
+    return best

@@ -33,7 +33,18 @@ from nearchord.errors import (
 from nearchord.graph import Graph
 from nearchord.jobs import Addresses, BatchInfo, Event, JobInfo, JobRequest, Progress
 from nearchord.load import Load, QuestionLoad, ServerInfo, Slots
-from nearchord.question import QUESTIONS, Budget, Fill, IndependentSet, Question, Structure, VertexCover
+from nearchord.question import (
+    QUESTIONS,
+    Budget,
+    Clique,
+    ColourableSubgraph,
+    Fill,
+    IndependentSet,
+    InducedForest,
+    Question,
+    Structure,
+    VertexCover,
+)
 from nearchord.session.aio import AsyncBatch, AsyncJob, AsyncService, connect_async
 from nearchord.session.sync import Batch, Job, Service, connect
 from nearchord.stages import Phase, ProofKind, Stage, Verdict, WhenOver
@@ -53,6 +64,8 @@ __all__ = [
     "Budget",
     "CallFailed",
     "CheckFailed",
+    "Clique",
+    "ColourableSubgraph",
     "Confirmed",
     "EmbeddedFailed",
     "Event",
@@ -60,6 +73,7 @@ __all__ = [
     "Fill",
     "Graph",
     "IndependentSet",
+    "InducedForest",
     "Job",
     "JobInfo",
     "JobRequest",

@@ -110,6 +110,12 @@ class Answer:
     structure: StructureReport | None = None
 
     @property
+    def colour(self) -> NDArray[np.uint32]:
+        """The colours of `chosen`, from 1, aligned with it; empty unless the question gives colours."""
+        found: NDArray[np.uint32] = self.columns.get("colour", np.zeros(0, np.uint32))
+        return found
+
+    @property
     def fill_edges(self) -> NDArray[np.uint32]:
         """The pairs to add as uint32[k, 2], smaller end first, ascending; k = 0 unless the question is `fill`."""
         ends: NDArray[np.uint32] = self.columns.get("fill_edge", np.zeros(0, np.uint32))

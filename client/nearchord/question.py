@@ -9,6 +9,8 @@ from typing import ClassVar
 
 from nearchord.errors import BadInput
 
+MOST_COLOURS = 4
+
 Pin = int | str
 """A vertex: its number from 0, or its name in the graph."""
 
@@ -68,6 +70,34 @@ class VertexCover(Choice):
 
 
 @dataclass(frozen=True)
+class Clique(Choice):
+    """Heaviest set of pairwise adjacent vertices: the tightest bottleneck."""
+
+    name: ClassVar[str] = "clique"
+
+
+@dataclass(frozen=True)
+class ColourableSubgraph(Choice):
+    """Heaviest induced subgraph that `colours` (1 to 4) suffice for: the best choice on so many channels. The answer
+    has them in `colour`. With two, what is left out is the cheapest odd cycle transversal."""
+
+    name: ClassVar[str] = "colourable-subgraph"
+    colours: int = 2
+
+    def __post_init__(self) -> None:
+        super().__post_init__()
+        if not isinstance(self.colours, int) or not 1 <= self.colours <= MOST_COLOURS:
+            raise BadInput(f"colours is {self.colours!r}", f"give a whole number from 1 to {MOST_COLOURS}")
+
+
+@dataclass(frozen=True)
+class InducedForest(Choice):
+    """Heaviest induced forest: the loop-free choice; what is left out is the cheapest feedback vertex set."""
+
+    name: ClassVar[str] = "induced-forest"
+
+
+@dataclass(frozen=True)
 class Fill(Question):
     """Fewest edges whose addition makes the graph chordal: how far the conflict data is from well-behaved, and which
     pairs break it. The answer has `fill_edges` and the classes that the graph belongs to (`recognition`)."""
@@ -85,7 +115,10 @@ class Structure(Question):
     maximises: ClassVar[bool] = False
 
 
-QUESTIONS: dict[str, type[Question]] = {kind.name: kind for kind in (IndependentSet, VertexCover, Fill, Structure)}
+QUESTIONS: dict[str, type[Question]] = {
+    kind.name: kind
+    for kind in (IndependentSet, VertexCover, Clique, ColourableSubgraph, InducedForest, Fill, Structure)
+}
 """Every question by its name on the command line and in metrics."""
 
 

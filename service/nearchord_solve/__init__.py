@@ -11,7 +11,16 @@ from nearchord_solve.kept import Kept
 from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Monitor, Phase, Stop
 from nearchord_solve.outcome import Outcome, Prediction, Recognition, StructureReport, Verdict
-from nearchord_solve.questions import QUESTIONS, Fill, IndependentSet, Structure, VertexCover
+from nearchord_solve.questions import (
+    QUESTIONS,
+    Clique,
+    ColourableSubgraph,
+    Fill,
+    IndependentSet,
+    InducedForest,
+    Structure,
+    VertexCover,
+)
 from nearchord_solve.solving import solve
 from nearchord_solve.warm import WARM_PARTS, warm_up
 
@@ -22,10 +31,13 @@ __all__ = [
     "VERSION",
     "WARM_PARTS",
     "Budget",
+    "Clique",
+    "ColourableSubgraph",
     "Fill",
     "Graph",
     "GraphError",
     "IndependentSet",
+    "InducedForest",
     "Kept",
     "Monitor",
     "Outcome",

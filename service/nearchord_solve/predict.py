@@ -1,7 +1,7 @@
 """What an exact answer to each question would take on a graph of known structure.
 
-States are those that count against the state budget.  A dynamic program over colour classes or forests keeps a table in
-every bag; the one over independent sets needs none in bags without fill, so those cost it nothing.
+States are those that count against the state budget.  With three colours or more a table is kept in every bag; the
+other questions need none in bags without fill, so those cost them nothing.
 """
 
 from collections.abc import Iterator
@@ -29,11 +29,6 @@ def colour_states(size: int, colours: int) -> int:
     return sum(comb(size, i) for i in range(colours + 1))
 
 
-def forest_states(size: int) -> int:
-    """States of the forest program in a bag without fill: at most two vertices, in one tree."""
-    return 1 + size + comb(size, 2)
-
-
 def _plain_sizes(structure: Structure) -> list[tuple[int, int]]:
     """(size, number) of the bags outside fill cores."""
     nb = structure.numbering
@@ -58,12 +53,11 @@ def _tabled(structure: Structure, budget: Budget, monitor: Monitor) -> Iterator[
     """The questions that keep tables in all bags."""
     sizes = _plain_sizes(structure)
     for colours in COLOURS:
-        plain = sum(count * colour_states(size, colours) for size, count in sizes)
+        plain = 0 if colours == 2 else sum(count * colour_states(size, colours) for size, count in sizes)
         inside = state_counts.colour_states(structure.forest, colours, budget.states - plain, monitor.cells)
         yield _prediction("colourable-subgraph", colours, plain + int(inside), structure, budget, monitor)
-    plain = sum(count * forest_states(size) for size, count in sizes)
-    inside = state_counts.forest_states(structure.forest, budget.states - plain, monitor.cells)
-    yield _prediction("induced-forest", 0, plain + int(inside), structure, budget, monitor)
+    inside = state_counts.forest_states(structure.forest, budget.states, monitor.cells)
+    yield _prediction("induced-forest", 0, int(inside), structure, budget, monitor)
 
 
 def _prediction(

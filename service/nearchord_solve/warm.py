@@ -11,7 +11,15 @@ from nearchord_solve.graph import Graph
 from nearchord_solve.kernels.triangulate import best_triangulation
 from nearchord_solve.monitor import Monitor, Phase, Stop
 from nearchord_solve.order import Unfinished, eliminate, rank, rank_by_degree
-from nearchord_solve.questions import Fill, IndependentSet, Structure, VertexCover
+from nearchord_solve.questions import (
+    Clique,
+    ColourableSubgraph,
+    Fill,
+    IndependentSet,
+    InducedForest,
+    Structure,
+    VertexCover,
+)
 from nearchord_solve.solving import solve
 
 Report = Callable[[int, int], None]
@@ -67,6 +75,18 @@ def _choosing() -> Iterator[None]:
     yield
 
 
+def _labelling() -> Iterator[None]:
+    """Cliques, colours and forests."""
+    square = Graph.from_edges(5, [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4)])
+    solve(Clique(), square, None, Budget(), "bound", Monitor())
+    solve(Clique(), square, None, Budget(memory=1), "bound", Monitor())
+    yield
+    for question in (InducedForest(), ColourableSubgraph(2), ColourableSubgraph(3)):
+        solve(question, _braced_ring(7), None, Budget(), "bound", Monitor())
+        solve(question, square, None, Budget(memory=1), "bound", Monitor())
+        yield
+
+
 def _filling() -> Iterator[None]:
     """Everything about the graph alone."""
     square = Graph.from_edges(5, [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4)])
@@ -88,7 +108,11 @@ def _braced_ring(n: int) -> Graph:
     return Graph.from_edges(n + 1, [*sorted(pairs), (n - 1, n)])
 
 
-PARTS: dict[str, tuple[Callable[[], Iterator[None]], int]] = {"choosing": (_choosing, 11), "filling": (_filling, 7)}
+PARTS: dict[str, tuple[Callable[[], Iterator[None]], int]] = {
+    "choosing": (_choosing, 11),
+    "filling": (_filling, 7),
+    "labelling": (_labelling, 4),
+}
 """Name of a part: its stages one by one, and how many they are."""
 WARM_PARTS = tuple(PARTS)
 """Parts of the warm-up that can be compiled side by side; what they share is compiled by whoever comes first."""

@@ -83,6 +83,25 @@ class VertexCover:
 
 
 @dataclass(frozen=True)
+class Clique:
+    must: tuple[int, ...] = ()
+    never: tuple[int, ...] = ()
+
+
+@dataclass(frozen=True)
+class ColourableSubgraph:
+    colours: int = 2
+    must: tuple[int, ...] = ()
+    never: tuple[int, ...] = ()
+
+
+@dataclass(frozen=True)
+class InducedForest:
+    must: tuple[int, ...] = ()
+    never: tuple[int, ...] = ()
+
+
+@dataclass(frozen=True)
 class Fill:
     pass
 
@@ -92,7 +111,15 @@ class Structure:
     pass
 
 
-QUESTIONS = {"independent-set": IndependentSet, "vertex-cover": VertexCover, "fill": Fill, "structure": Structure}
+QUESTIONS = {
+    "independent-set": IndependentSet,
+    "vertex-cover": VertexCover,
+    "clique": Clique,
+    "colourable-subgraph": ColourableSubgraph,
+    "induced-forest": InducedForest,
+    "fill": Fill,
+    "structure": Structure,
+}
 Verdict = Enum("Verdict", {name: name for name in ("PROVEN", "BOUNDED", "OVER_FILL", "INFEASIBLE", "CANCELLED")})
 _LEAKED = []
 

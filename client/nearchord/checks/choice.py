@@ -9,13 +9,14 @@ from numpy.typing import NDArray
 
 from nearchord.answer import Answer
 from nearchord.canonical import weight_sum
+from nearchord.checks.classes_of_choice import check_colours, check_forest
 from nearchord.checks.confirmed import Confirmed, check_sides, check_unanswered
 from nearchord.checks.edges import Edges
 from nearchord.checks.splitting import Splitting, has_splitting
 from nearchord.checks.states import TooManyStates
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph
-from nearchord.question import Choice, IndependentSet, Pin, VertexCover
+from nearchord.question import Choice, Clique, ColourableSubgraph, IndependentSet, InducedForest, Pin, VertexCover
 from nearchord.stages import ProofKind, Verdict
 
 Mask = NDArray[np.bool_]
@@ -28,7 +29,7 @@ def check_choice(graph: Graph, answer: Answer, question: Choice) -> Confirmed:
     if answer.value is None:
         return check_unanswered(answer)
     chosen = _chosen_mask(graph, answer)
-    done = [_check_definition(graph, question, chosen), _check_value(graph, answer, chosen)]
+    done = [_check_definition(graph, question, chosen, answer.colour), _check_value(graph, answer, chosen)]
     plain = _check_bound(graph, answer, question)
     if plain is None and has_splitting(answer.columns):
         try:
@@ -72,10 +73,21 @@ def _check_infeasible(graph: Graph, question: Choice) -> Confirmed:
     both = np.flatnonzero(must & never)
     if both.size:
         return Confirmed((f"the pins contradict each other: vertex {graph.label(int(both[0]))} is in both lists",), ())
-    clash = _edge_inside(graph, never if isinstance(question, VertexCover) else must)
+    if isinstance(question, Clique):
+        pair = _no_edge_inside(graph, must)
+        if pair is not None:
+            return Confirmed((f"the pins contradict each other: {pair} is no edge",), ())
+    if isinstance(question, ColourableSubgraph | InducedForest):
+        return Confirmed((), ("that the pins contradict each other: the answer carries no proof of it",))
+    clash = None if isinstance(question, Clique) else _edge_inside(graph, _forced(question, must, never))
     if clash is None:
         raise CheckFailed("the verdict is INFEASIBLE, but the pins do not contradict each other")
     return Confirmed((f"the pins contradict each other at the edge {clash}",), ())
+
+
+def _forced(question: Choice, must: Mask, never: Mask) -> Mask:
+    """Vertices that the pins force into one independent set."""
+    return never if isinstance(question, VertexCover) else must
 
 
 def _chosen_mask(graph: Graph, answer: Answer) -> Mask:
@@ -108,9 +120,29 @@ def _edge_inside(graph: Graph, mask: Mask) -> str | None:
     return f"{{{graph.label(int(u[place]))}, {graph.label(int(v[place]))}}}"
 
 
-def _check_definition(graph: Graph, question: Choice, chosen: Mask) -> str:
+def _no_edge_inside(graph: Graph, mask: Mask) -> str | None:
+    """The first pair of a set without an edge between its ends."""
+    u, v = graph.edges()
+    inside = mask[u] & mask[v]
+    degree = np.bincount(u[inside], minlength=graph.n) + np.bincount(v[inside], minlength=graph.n)
+    short = np.flatnonzero(mask & (degree < int(mask.sum()) - 1))
+    if not short.size:
+        return None
+    one = int(short[0])
+    near = np.concatenate((v[inside & (u == one)], u[inside & (v == one)]))
+    far = mask.copy()
+    far[near] = False
+    far[one] = False
+    return f"{{{graph.label(one)}, {graph.label(int(np.flatnonzero(far)[0]))}}}"
+
+
+def _check_definition(graph: Graph, question: Choice, chosen: Mask, colour: NDArray[np.uint32]) -> str:
     """The choice meets the definition of the question and its pins."""
     _check_pins(graph, question, chosen)
+    if isinstance(question, ColourableSubgraph):
+        return check_colours(graph, chosen, colour, question.colours)
+    if isinstance(question, InducedForest):
+        return check_forest(graph, chosen)
     if isinstance(question, IndependentSet):
         clash = _edge_inside(graph, chosen)
         if clash is not None:
@@ -121,6 +153,11 @@ def _check_definition(graph: Graph, question: Choice, chosen: Mask) -> str:
         if clash is not None:
             raise CheckFailed(f"the chosen set does not touch the edge {clash}")
         return f"the {int(chosen.sum())} chosen vertices touch all {graph.m} edges"
+    if isinstance(question, Clique):
+        pair = _no_edge_inside(graph, chosen)
+        if pair is not None:
+            raise CheckFailed(f"the chosen vertices {pair} are not adjacent")
+        return f"the {int(chosen.sum())} chosen vertices are pairwise adjacent"
     raise CheckFailed(f"this client cannot check the question {question.name!r}; update it")
 
 

@@ -114,6 +114,7 @@ whole_batch = click.option("--batch", "is_batch", is_flag=True, help="The id nam
 
 _QUESTION = [
     click.option("--question", required=True, type=click.Choice(list(nearchord.QUESTIONS)), help="What to ask."),
+    click.option("-q", "colours", type=int, metavar="N", help="Colours, for colourable-subgraph.  [default: 2]"),
     click.option("--must", type=NameList(), multiple=True, help="Vertices that have to be in the answer."),
     click.option("--never", type=NameList(), multiple=True, help="Vertices that must not be in the answer."),
 ]
@@ -155,6 +156,7 @@ def asks(command: Command) -> Command:
     def gathering(
         *,
         question: str,
+        colours: int | None,
         must: tuple[tuple[str, ...], ...],
         never: tuple[tuple[str, ...], ...],
         fill: int | None,
@@ -167,16 +169,22 @@ def asks(command: Command) -> Command:
         label: str,
         **rest: object,
     ) -> int:
-        asked = _question(question, sum(must, ()), sum(never, ()), rest.get("weights"))
+        asked = _question(question, colours, sum(must, ()), sum(never, ()), rest.get("weights"))
         budget = nearchord.Budget(fill=fill, states=states, seconds=seconds, memory=memory)
         return command(ask=Ask(asked, budget, when_over, priority, not_after, label), **rest)
 
     return _with([*_QUESTION, *_BUDGET, *_QUEUE], gathering)
 
 
-def _question(name: str, must: tuple[str, ...], never: tuple[str, ...], weights: object) -> nearchord.Question:
+def _question(
+    name: str, colours: int | None, must: tuple[str, ...], never: tuple[str, ...], weights: object
+) -> nearchord.Question:
     """The question with its options; those that it does not take are refused."""
     kind = nearchord.QUESTIONS[name]
+    if kind is nearchord.ColourableSubgraph:
+        return nearchord.ColourableSubgraph(must=must, never=never, colours=2 if colours is None else colours)
+    if colours is not None:
+        raise usage(f"-q does not go with the question {name}", "leave it out, or ask colourable-subgraph")
     if issubclass(kind, Choice):
         return kind(must=must, never=never)
     for option, given in (("--must", must), ("--never", never), ("--weights", weights)):
@@ -186,7 +194,8 @@ def _question(name: str, must: tuple[str, ...], never: tuple[str, ...], weights:
 
 
 def _choices() -> str:
-    return " or ".join(name for name, kind in nearchord.QUESTIONS.items() if issubclass(kind, Choice))
+    *names, last = [name for name, kind in nearchord.QUESTIONS.items() if issubclass(kind, Choice)]
+    return f"{', '.join(names)} or {last}"
 
 
 def reads(command: Command) -> Command:

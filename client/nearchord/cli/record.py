@@ -51,6 +51,8 @@ def _of_its_question(answer: nearchord.Answer, labels: Labels) -> dict[str, Any]
             return fill.record(answer, labels)
         case nearchord.Structure():
             return structure.record(answer)
+        case nearchord.ColourableSubgraph():
+            return choice.colour_record(answer, answer.question, labels)
     return {}
 
 

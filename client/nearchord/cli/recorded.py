@@ -82,6 +82,9 @@ class _Reader:
 
     def _question(self) -> nearchord.Question:
         kind = nearchord.QUESTIONS[self._word("question", nearchord.QUESTIONS)]
+        if kind is nearchord.ColourableSubgraph:
+            colours = self._found.get("colours", 2)
+            return nearchord.ColourableSubgraph(self._vertices("must"), self._vertices("never"), colours)
         if issubclass(kind, Choice):
             return kind(must=self._vertices("must"), never=self._vertices("never"))
         return kind()
@@ -102,12 +105,22 @@ class _Reader:
 
     def _columns(self) -> dict[str, Any]:
         columns: dict[str, Any] = {}
+        if isinstance(self._found.get("colour"), dict):
+            columns["colour"] = self._colour()
         pairs = self._pairs("fill_edges")
         if self._found.get("witness") is not None:
             columns = self._witness()
         if pairs is not None:
             columns["fill_edge"] = pairs
         return columns
+
+    def _colour(self) -> Any:
+        """Colours by the ascending order of their vertices."""
+        by_vertex = {self._vertex("colour", name): colour for name, colour in self._found["colour"].items()}
+        try:
+            return np.array([by_vertex[v] for v in sorted(by_vertex)], np.uint32)
+        except (OverflowError, TypeError, ValueError):
+            raise self._problem("colour", "has a colour that is no number", "give whole numbers from 1") from None
 
     def _pairs(self, key: str) -> Any:
         """Pairs as one flat column in the form of the contract: smaller end first, ascending."""

@@ -11,7 +11,7 @@ from google.protobuf.timestamp_pb2 import Timestamp
 from nearchord.errors import ServerFault
 from nearchord.jobs import BatchInfo, Event, JobInfo, Progress
 from nearchord.load import Load, QuestionLoad, ServerInfo, Slots
-from nearchord.question import QUESTIONS, Budget, Choice, Question
+from nearchord.question import QUESTIONS, Budget, Choice, ColourableSubgraph, Question
 from nearchord.stages import Phase, ProofKind, Stage, Verdict, WhenOver
 from nearchord.v1 import answer_pb2, job_pb2, load_service_pb2, question_pb2
 
@@ -143,6 +143,8 @@ def question(asked: question_pb2.Question) -> Question:
     if not issubclass(kind, Choice):
         return kind()
     wire = getattr(asked, field)
+    if kind is ColourableSubgraph:
+        return ColourableSubgraph(must=tuple(wire.must), never=tuple(wire.never), colours=int(wire.colours) or 2)
     return kind(must=tuple(wire.must), never=tuple(wire.never))
 
 

@@ -11,7 +11,7 @@ from google.protobuf.timestamp_pb2 import Timestamp
 from nearchord.errors import BadInput
 from nearchord.graph import Graph
 from nearchord.jobs import Addresses, JobRequest
-from nearchord.question import QUESTIONS, Budget, Choice, Pin, Question
+from nearchord.question import QUESTIONS, Budget, Choice, ColourableSubgraph, Pin, Question
 from nearchord.session.content import InputContent
 from nearchord.stages import Stage, WhenOver
 from nearchord.v1 import content_pb2, job_pb2, question_pb2
@@ -57,6 +57,8 @@ def question(asked: Question, graph: Graph | Addresses) -> question_pb2.Question
     if isinstance(asked, Choice):
         wire.must.extend(pins("must", asked.must, graph))
         wire.never.extend(pins("never", asked.never, graph))
+    if isinstance(asked, ColourableSubgraph):
+        wire.colours = asked.colours
     return message
 
 

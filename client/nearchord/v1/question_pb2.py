@@ -24,15 +24,15 @@ _sym_db = _symbol_database.Default()
 
 
 
-DESCRIPTOR = _descriptor_pool.Default().AddSerializedFile(b'\n\x1bnearchord/v1/question.proto\x12\x0cnearchord.v1\"-\n\x0eIndependentSet\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"*\n\x0bVertexCover\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"\x06\n\x04\x46ill\"\x0b\n\tStructure\"\xd4\x01\n\x08Question\x12\x37\n\x0findependent_set\x18\x01 \x01(\x0b\x32\x1c.nearchord.v1.IndependentSetH\x00\x12\x31\n\x0cvertex_cover\x18\x02 \x01(\x0b\x32\x19.nearchord.v1.VertexCoverH\x00\x12\"\n\x04\x66ill\x18\x03 \x01(\x0b\x32\x12.nearchord.v1.FillH\x00\x12,\n\tstructure\x18\x04 \x01(\x0b\x32\x17.nearchord.v1.StructureH\x00\x42\n\n\x08question\"\x92\x01\n\x06\x42udget\x12\x11\n\x04\x66ill\x18\x01 \x01(\x03H\x00\x88\x01\x01\x12\x13\n\x06states\x18\x02 \x01(\x03H\x01\x88\x01\x01\x12\x14\n\x07seconds\x18\x03 \x01(\x01H\x02\x88\x01\x01\x12\x19\n\x0cmemory_bytes\x18\x04 \x01(\x03H\x03\x88\x01\x01\x42\x07\n\x05_fillB\t\n\x07_statesB\n\n\x08_secondsB\x0f\n\r_memory_bytes*N\n\x08WhenOver\x12\x19\n\x15WHEN_OVER_UNSPECIFIED\x10\x00\x12\x13\n\x0fWHEN_OVER_BOUND\x10\x01\x12\x12\n\x0eWHEN_OVER_STOP\x10\x02\x62\x06proto3')
+DESCRIPTOR = _descriptor_pool.Default().AddSerializedFile(b'\n\x1bnearchord/v1/question.proto\x12\x0cnearchord.v1\"-\n\x0eIndependentSet\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"*\n\x0bVertexCover\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"\x06\n\x04\x46ill\"\x0b\n\tStructure\"%\n\x06\x43lique\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"B\n\x12\x43olourableSubgraph\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\x12\x0f\n\x07\x63olours\x18\x03 \x01(\r\",\n\rInducedForest\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"\xf4\x02\n\x08Question\x12\x37\n\x0findependent_set\x18\x01 \x01(\x0b\x32\x1c.nearchord.v1.IndependentSetH\x00\x12\x31\n\x0cvertex_cover\x18\x02 \x01(\x0b\x32\x19.nearchord.v1.VertexCoverH\x00\x12\"\n\x04\x66ill\x18\x03 \x01(\x0b\x32\x12.nearchord.v1.FillH\x00\x12,\n\tstructure\x18\x04 \x01(\x0b\x32\x17.nearchord.v1.StructureH\x00\x12&\n\x06\x63lique\x18\x05 \x01(\x0b\x32\x14.nearchord.v1.CliqueH\x00\x12?\n\x13\x63olourable_subgraph\x18\x06 \x01(\x0b\x32 .nearchord.v1.ColourableSubgraphH\x00\x12\x35\n\x0einduced_forest\x18\x07 \x01(\x0b\x32\x1b.nearchord.v1.InducedForestH\x00\x42\n\n\x08question\"\x92\x01\n\x06\x42udget\x12\x11\n\x04\x66ill\x18\x01 \x01(\x03H\x00\x88\x01\x01\x12\x13\n\x06states\x18\x02 \x01(\x03H\x01\x88\x01\x01\x12\x14\n\x07seconds\x18\x03 \x01(\x01H\x02\x88\x01\x01\x12\x19\n\x0cmemory_bytes\x18\x04 \x01(\x03H\x03\x88\x01\x01\x42\x07\n\x05_fillB\t\n\x07_statesB\n\n\x08_secondsB\x0f\n\r_memory_bytes*N\n\x08WhenOver\x12\x19\n\x15WHEN_OVER_UNSPECIFIED\x10\x00\x12\x13\n\x0fWHEN_OVER_BOUND\x10\x01\x12\x12\n\x0eWHEN_OVER_STOP\x10\x02\x62\x06proto3')
 
 _globals = globals()
 _builder.BuildMessageAndEnumDescriptors(DESCRIPTOR, _globals)
 _builder.BuildTopDescriptorsAndMessages(DESCRIPTOR, 'nearchord.v1.question_pb2', _globals)
 if not _descriptor._USE_C_DESCRIPTORS:
   DESCRIPTOR._loaded_options = None
-  _globals['_WHENOVER']._serialized_start=521
-  _globals['_WHENOVER']._serialized_end=599
+  _globals['_WHENOVER']._serialized_start=834
+  _globals['_WHENOVER']._serialized_end=912
   _globals['_INDEPENDENTSET']._serialized_start=45
   _globals['_INDEPENDENTSET']._serialized_end=90
   _globals['_VERTEXCOVER']._serialized_start=92
@@ -41,8 +41,14 @@ if not _descriptor._USE_C_DESCRIPTORS:
   _globals['_FILL']._serialized_end=142
   _globals['_STRUCTURE']._serialized_start=144
   _globals['_STRUCTURE']._serialized_end=155
-  _globals['_QUESTION']._serialized_start=158
-  _globals['_QUESTION']._serialized_end=370
-  _globals['_BUDGET']._serialized_start=373
-  _globals['_BUDGET']._serialized_end=519
+  _globals['_CLIQUE']._serialized_start=157
+  _globals['_CLIQUE']._serialized_end=194
+  _globals['_COLOURABLESUBGRAPH']._serialized_start=196
+  _globals['_COLOURABLESUBGRAPH']._serialized_end=262
+  _globals['_INDUCEDFOREST']._serialized_start=264
+  _globals['_INDUCEDFOREST']._serialized_end=308
+  _globals['_QUESTION']._serialized_start=311
+  _globals['_QUESTION']._serialized_end=683
+  _globals['_BUDGET']._serialized_start=686
+  _globals['_BUDGET']._serialized_end=832
 # @@protoc_insertion_point(module_scope)

@@ -40,17 +40,49 @@ class Structure(_message.Message):
     __slots__ = ()
     def __init__(self) -> None: ...
 
+class Clique(_message.Message):
+    __slots__ = ("must", "never")
+    MUST_FIELD_NUMBER: _ClassVar[int]
+    NEVER_FIELD_NUMBER: _ClassVar[int]
+    must: _containers.RepeatedScalarFieldContainer[int]
+    never: _containers.RepeatedScalarFieldContainer[int]
+    def __init__(self, must: _Optional[_Iterable[int]] = ..., never: _Optional[_Iterable[int]] = ...) -> None: ...
+
+class ColourableSubgraph(_message.Message):
+    __slots__ = ("must", "never", "colours")
+    MUST_FIELD_NUMBER: _ClassVar[int]
+    NEVER_FIELD_NUMBER: _ClassVar[int]
+    COLOURS_FIELD_NUMBER: _ClassVar[int]
+    must: _containers.RepeatedScalarFieldContainer[int]
+    never: _containers.RepeatedScalarFieldContainer[int]
+    colours: int
+    def __init__(self, must: _Optional[_Iterable[int]] = ..., never: _Optional[_Iterable[int]] = ..., colours: _Optional[int] = ...) -> None: ...
+
+class InducedForest(_message.Message):
+    __slots__ = ("must", "never")
+    MUST_FIELD_NUMBER: _ClassVar[int]
+    NEVER_FIELD_NUMBER: _ClassVar[int]
+    must: _containers.RepeatedScalarFieldContainer[int]
+    never: _containers.RepeatedScalarFieldContainer[int]
+    def __init__(self, must: _Optional[_Iterable[int]] = ..., never: _Optional[_Iterable[int]] = ...) -> None: ...
+
 class Question(_message.Message):
-    __slots__ = ("independent_set", "vertex_cover", "fill", "structure")
+    __slots__ = ("independent_set", "vertex_cover", "fill", "structure", "clique", "colourable_subgraph", "induced_forest")
     INDEPENDENT_SET_FIELD_NUMBER: _ClassVar[int]
     VERTEX_COVER_FIELD_NUMBER: _ClassVar[int]
     FILL_FIELD_NUMBER: _ClassVar[int]
     STRUCTURE_FIELD_NUMBER: _ClassVar[int]
+    CLIQUE_FIELD_NUMBER: _ClassVar[int]
+    COLOURABLE_SUBGRAPH_FIELD_NUMBER: _ClassVar[int]
+    INDUCED_FOREST_FIELD_NUMBER: _ClassVar[int]
     independent_set: IndependentSet
     vertex_cover: VertexCover
     fill: Fill
     structure: Structure
-    def __init__(self, independent_set: _Optional[_Union[IndependentSet, _Mapping]] = ..., vertex_cover: _Optional[_Union[VertexCover, _Mapping]] = ..., fill: _Optional[_Union[Fill, _Mapping]] = ..., structure: _Optional[_Union[Structure, _Mapping]] = ...) -> None: ...
+    clique: Clique
+    colourable_subgraph: ColourableSubgraph
+    induced_forest: InducedForest
+    def __init__(self, independent_set: _Optional[_Union[IndependentSet, _Mapping]] = ..., vertex_cover: _Optional[_Union[VertexCover, _Mapping]] = ..., fill: _Optional[_Union[Fill, _Mapping]] = ..., structure: _Optional[_Union[Structure, _Mapping]] = ..., clique: _Optional[_Union[Clique, _Mapping]] = ..., colourable_subgraph: _Optional[_Union[ColourableSubgraph, _Mapping]] = ..., induced_forest: _Optional[_Union[InducedForest, _Mapping]] = ...) -> None: ...
 
 class Budget(_message.Message):
     __slots__ = ("fill", "states", "seconds", "memory_bytes")

@@ -11,13 +11,16 @@ class QuestionName(StrEnum):
 
     INDEPENDENT_SET = "independent-set"
     VERTEX_COVER = "vertex-cover"
+    CLIQUE = "clique"
+    COLOURABLE_SUBGRAPH = "colourable-subgraph"
+    INDUCED_FOREST = "induced-forest"
     FILL = "fill"
     STRUCTURE = "structure"
 
     @property
     def chooses(self) -> bool:
         """Whether its answer is a set of vertices: only then does it take weights and pins."""
-        return self in (QuestionName.INDEPENDENT_SET, QuestionName.VERTEX_COVER)
+        return self not in (QuestionName.FILL, QuestionName.STRUCTURE)
 
 
 class WhenOver(StrEnum):
@@ -30,11 +33,12 @@ class WhenOver(StrEnum):
 @dataclass(frozen=True)
 class Question:
     """What a job asks. `must` and `never` are vertex numbers from 0, ascending, without repetition; both are empty
-    for a question that does not choose vertices."""
+    for a question that does not choose vertices. `colours` is 0 for a question that takes none."""
 
     name: QuestionName
     must: tuple[int, ...] = ()
     never: tuple[int, ...] = ()
+    colours: int = 0
 
 
 @dataclass(frozen=True)

@@ -77,12 +77,12 @@ def _chosen(chosen: NDArray[np.integer[Any]], vertices: int) -> Column:
 
 
 def _column(name: str, values: NDArray[Any], vertices: int) -> Column:
-    """Write a column: uint32 are vertices, int64 are numbers; ValueError for anything else."""
+    """Write a column: uint32 are vertices or colours, int64 are numbers; ValueError for anything else."""
     if values.ndim != 1 or values.dtype not in (np.uint32, np.int64):
         raise ValueError(f"column {name} has shape {values.shape} and type {values.dtype}")
     if values.dtype == np.int64:
         return Column(name, ElementType.INT64, values.astype("<i8", copy=False).tobytes())
-    if values.size and int(values.max()) >= vertices:
+    if name != "colour" and values.size and int(values.max()) >= vertices:
         raise ValueError(f"column {name} has vertex {int(values.max())} on {vertices} vertices")
     return Column(name, ElementType.UINT32, values.astype("<u4", copy=False).tobytes())
 

@@ -15,14 +15,16 @@ ONE = np.uint64(1)
 
 @kernel
 def choices(n: int, k: int) -> int:
-    """C(n, k) for k <= 3; n below 2**20, or the product may overflow."""
+    """C(n, k) for k <= 4; n below 2**20, or the product may overflow."""
     if k == 0:
         return 1
     if k == 1:
         return n
     if k == 2:
         return n * (n - 1) // 2
-    return n * (n - 1) * (n - 2) // 6
+    if k == 3:
+        return n * (n - 1) * (n - 2) // 6
+    return n * (n - 1) // 2 * (n - 2) // 3 * (n - 3) // 4
 
 
 @kernel
@@ -39,10 +41,15 @@ def class_states(found: I64, others: int, colours: int) -> int:
 
 @kernel
 def colour_states(forest: Forest, colours: int, most: int, cells: I64) -> int:
-    """States of ``colours`` (1 to 3) disjoint independent sets in all bags; about ``most`` or more if above it."""
+    """States of ``colours`` (1 to 4) disjoint independent sets; about ``most`` or more if above it.
+
+    With one or two colours bags without fill are settled by a formula and have none, with more all bags count.
+    """
     total = 0
     where = np.full(forest.slot_place.shape[0], -1, np.int32)
     for b in range(forest.bag_kind.shape[0]):
+        if colours <= 2 and not forest.bag_kind[b] & BAG_FILL:
+            continue
         begin, end = forest.bag_ptr[b], forest.bag_ptr[b + 1]
         found = np.zeros(colours + 1, np.int64)
         found[0] = 1
@@ -83,14 +90,13 @@ def reached_below(bag: int, slots: I32, first: I32, following: I32, forest: Fore
 
 @kernel
 def forest_states(forest: Forest, most: int, cells: I64) -> int:
-    """States of the forest program in all bags; about ``most`` or more if above it."""
+    """States of the forest program in bags with fill; about ``most`` or more if above it."""
     total = 0
     where = np.full(forest.slot_place.shape[0], -1, np.int32)
     first, following = link_bags(forest.bag_above, forest.bag_kind)
     for b in range(forest.bag_kind.shape[0]):
         begin, end = forest.bag_ptr[b], forest.bag_ptr[b + 1]
         if not forest.bag_kind[b] & BAG_FILL:
-            total += 1 + end - begin + choices(end - begin, 2)
             continue
         slots, rows, edges = touched(forest.bag_slot, begin, end, forest.slot_fill_ptr, forest.slot_fill, where)
         t = slots.shape[0]

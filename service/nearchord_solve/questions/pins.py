@@ -4,6 +4,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from nearchord_solve.arrays import I64, U32
 from nearchord_solve.errors import SolverError
@@ -65,13 +66,20 @@ def apply_pins(graph: Graph, weights: I64, must: I64, never: I64) -> Rest | Cont
         gone[row] = True
     gone[must] = True
     gone[never] = True
-    vertices = np.flatnonzero(~gone)
+    return keep_vertices(graph, weights, ~gone, must)
+
+
+def keep_vertices(graph: Graph, weights: I64, stays: NDArray[np.bool_], taken: I64) -> Rest:
+    """The graph on the vertices that stay (bool[n]), next to those taken; the same graph if all stay.  O(n + m)."""
+    vertices = np.flatnonzero(stays)
+    if vertices.size == graph.n:
+        return Rest(graph, weights, vertices, taken, 0)
     index = np.full(graph.n, -1, np.int32)
     index[vertices] = np.arange(vertices.size, dtype=np.int32)
     ptr, adj = csr.induce(graph.ptr, graph.adj, index, vertices.size)
     left = weights[vertices]
     left.flags.writeable = False  # as all weights are: kernels are compiled for one kind of array
-    return Rest(Graph.from_symmetric(ptr, adj), left, vertices, must, int(weights[must].sum()))
+    return Rest(Graph.from_symmetric(ptr, adj), left, vertices, taken, int(weights[taken].sum()))
 
 
 def lift(rest: Rest, chosen: U32) -> U32:

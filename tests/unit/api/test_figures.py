@@ -12,7 +12,15 @@ from unit.api.serving import DEADLINE, Serving, a_spec, an_answer, failure, wait
 def test_the_server_says_what_it_can_do(served: Serving) -> None:
     found = served.load.GetServer(load_service_pb2.GetServerRequest())
     assert (found.version, found.solver_version) == ("1.2.3", "4.5.6")
-    assert list(found.questions) == ["independent-set", "vertex-cover", "fill", "structure"]
+    assert list(found.questions) == [
+        "independent-set",
+        "vertex-cover",
+        "clique",
+        "colourable-subgraph",
+        "induced-forest",
+        "fill",
+        "structure",
+    ]
     assert (found.default_budget.states, found.default_budget.seconds) == (10**7, 60.0)
     assert not found.default_budget.HasField("fill")
     assert (found.largest_budget.states, found.largest_budget.HasField("memory_bytes")) == (10**9, False)

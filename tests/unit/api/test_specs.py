@@ -123,7 +123,7 @@ WRONG: list[tuple[Callable[[job_pb2.JobSpec], object], str, str]] = [
     (
         lambda s: s.ClearField("question"),
         "spec.question",
-        "is missing or not known to this server; ask one of independent-set, vertex-cover, fill, structure",
+        "is missing or not known to this server; ask one of independent-set, vertex-cover, clique, colourable",
     ),
     (pins(0, 2, 0), "spec.question.independent_set.must[2]", "names vertex 0 again, after [0]; name it once"),
     (pins(never=(1, 1)), "spec.question.independent_set.never[1]", "names vertex 1 again, after [0]; name it once"),

@@ -185,7 +185,7 @@ def test_options_that_do_not_fit_are_refused(
     ran = nearchord_command(command, str(square), "--question", question, option, str(square))
     assert (ran.code, ran.out) == (2, "")
     assert f"{option} does not go with the question {question}" in ran.err
-    assert "independent-set or vertex-cover" in ran.err
+    assert "independent-set, vertex-cover, clique, colourable-subgraph or induced-forest" in ran.err
     assert service.submitted == []
 
 

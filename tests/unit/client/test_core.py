@@ -147,7 +147,7 @@ def test_questions_about_the_graph_alone_take_no_pins():
 @pytest.mark.parametrize("asked", ["fill", None, nearchord.Fill, nearchord.Question()])
 def test_what_is_no_question_is_refused(asked):
     """The remedy lists what can be asked."""
-    with pytest.raises(nearchord.BadInput, match="ask one of IndependentSet, VertexCover, Fill, Structure"):
+    with pytest.raises(nearchord.BadInput, match="ask one of IndependentSet, VertexCover, Clique, ColourableSubgraph"):
         requests.question(asked, GRAPH)
 
 

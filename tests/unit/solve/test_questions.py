@@ -5,9 +5,12 @@ import pytest
 from nearchord_solve import (
     QUESTIONS,
     Budget,
+    Clique,
+    ColourableSubgraph,
     Fill,
     Graph,
     IndependentSet,
+    InducedForest,
     Monitor,
     SolverError,
     Structure,
@@ -29,6 +32,9 @@ def test_questions_are_found_by_their_wire_names() -> None:
     assert {
         "independent-set": IndependentSet,
         "vertex-cover": VertexCover,
+        "clique": Clique,
+        "colourable-subgraph": ColourableSubgraph,
+        "induced-forest": InducedForest,
         "fill": Fill,
         "structure": Structure,
     } == QUESTIONS

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from typing import Any
 
 import nearchord
 from nearchord.cli.layout import print_listing
@@ -26,7 +27,20 @@ def lines(answer: nearchord.Answer) -> Iterator[tuple[str, str]]:
         yield "bags", f"{answer.bags:,}{largest}"
 
 
+def colour_record(answer: nearchord.Answer, question: nearchord.ColourableSubgraph, labels: Labels) -> dict[str, Any]:
+    """The keys that only colours have."""
+    names = map(str, labels.of(answer.chosen.tolist()))
+    return {"colours": question.colours, "colour": dict(zip(names, answer.colour.tolist(), strict=False))}
+
+
 def show_names(answer: nearchord.Answer, labels: Labels) -> None:
     """Print the vertices chosen."""
-    if answer.value is not None:
+    if answer.value is None:
+        return
+    if not answer.colour.size:
         print_listing("names", [str(name) for name in labels.of(answer.chosen.tolist())])
+        return
+    for colour in range(1, int(answer.colour.max()) + 1):
+        print_listing(
+            f"colour {colour}", [str(name) for name in labels.of(answer.chosen[answer.colour == colour].tolist())]
+        )

@@ -13,6 +13,9 @@ from nearchord_service.api.convert.violations import Violations
 from nearchord_service.api.limits import Caps, Largest
 from nearchord_service.model.question import Budget, Question, QuestionName, WhenOver
 
+DEFAULT_COLOURS = 2
+MOST_COLOURS = 4
+
 
 def to_question(message: question_pb2.Question, place: str, caps: Caps, wrong: Violations) -> Question | None:
     """Read a question without looking at the graph; notes what is wrong and returns None then."""
@@ -31,7 +34,17 @@ def to_question(message: question_pb2.Question, place: str, caps: Caps, wrong: V
         return None
     must = _pins(asked.must, f"{place}.{name}.must", wrong)
     never = _pins(asked.never, f"{place}.{name}.never", wrong)
-    return Question(question, must, never)
+    return Question(question, must, never, _colours(asked, question, f"{place}.{name}", wrong))
+
+
+def _colours(asked: Any, question: QuestionName, place: str, wrong: Violations) -> int:
+    """Read the number of colours of a question that takes one."""
+    if question is not QuestionName.COLOURABLE_SUBGRAPH:
+        return 0
+    colours = int(asked.colours) or DEFAULT_COLOURS
+    if colours > MOST_COLOURS:
+        wrong.add(f"{place}.colours", f"is {colours}; it must be 1 to {MOST_COLOURS}, or absent for {DEFAULT_COLOURS}")
+    return colours
 
 
 def _pins(vertices: Sequence[int], place: str, wrong: Violations) -> tuple[int, ...]:
@@ -74,6 +87,8 @@ def from_question(question: Question) -> question_pb2.Question:
     if question.name.chooses:
         asked.must.extend(question.must)
         asked.never.extend(question.never)
+    if question.colours:
+        asked.colours = question.colours
     return message
 
 

@@ -51,7 +51,12 @@ def terms_of(spec: JobSpec) -> str:
     question, budget = spec.question, spec.budget
     return _compact(
         {
-            "question": {"name": question.name, "must": question.must, "never": question.never},
+            "question": {
+                "name": question.name,
+                "must": question.must,
+                "never": question.never,
+                "colours": question.colours,
+            },
             "budget": {
                 "fill": budget.fill,
                 "states": budget.states,
@@ -71,7 +76,8 @@ def question_name(row: Row) -> QuestionName:
 def _terms(text: str) -> tuple[Question, Budget, WhenOver]:
     terms = json.loads(text)
     asked = terms["question"]
-    question = Question(QuestionName(asked["name"]), tuple(asked["must"]), tuple(asked["never"]))
+    name, colours = QuestionName(asked["name"]), asked.get("colours", 0)  # absent in rows written before colours were
+    question = Question(name, tuple(asked["must"]), tuple(asked["never"]), colours)
     return question, Budget(**terms["budget"]), WhenOver(terms["when_over"])
 
 

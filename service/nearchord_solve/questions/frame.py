@@ -1,0 +1,110 @@
+"""How a question that chooses vertices gets from a graph to its answer: one flow for all dynamic programs.
+
+A program knows what a choice is; the flow knows budgets, stops and verdicts.
+"""
+
+from dataclasses import dataclass
+from typing import Protocol
+
+from nearchord_solve.arrays import I64, U8, U32
+from nearchord_solve.memory import predicted_bytes
+from nearchord_solve.monitor import Stop
+from nearchord_solve.order import Ranking, Unfinished
+from nearchord_solve.outcome import Verdict
+from nearchord_solve.questions.heaviest import Found, Task
+from nearchord_solve.refine import over_fill, search_less_fill
+from nearchord_solve.structure import Structure
+from nearchord_solve.tree import Partial, build_structure
+
+
+@dataclass(frozen=True, eq=False)
+class Settled:
+    """What a program found on a graph of known structure.
+
+    ``chosen`` uint8[n], feasible; ``bound`` is valid, and is the optimum if ``exact``.  ``states``: states that it
+    went through or would have to; ``reason``: how it was settled, or what was too small.  ``colour`` uint32[n]: classes
+    of the chosen vertices, for questions that have some.
+    """
+
+    chosen: U8
+    bound: int
+    exact: bool
+    states: int
+    reason: str
+    colour: U32 | None = None
+
+
+@dataclass(frozen=True, eq=False)
+class Concluded:
+    """A finding with what only some questions have."""
+
+    found: Found
+    states: int | None = None
+    colour: U32 | None = None
+
+
+class Program(Protocol):
+    """One question about one graph."""
+
+    def quick(self, task: Task, ranking: Ranking | None) -> Settled:
+        """A feasible choice and a valid bound in about linear time, without looking at the clock."""
+
+    def settle(self, task: Task, structure: Structure) -> Settled:
+        """The optimum within the budget, or a choice and a bound where it or the time does not suffice."""
+
+
+def run_program(task: Task, program: Program) -> Concluded:
+    """Settle ``task``; never fails for want of budget or time."""
+    task.gauge.bound(int(task.weights.sum()))
+    need = predicted_bytes(task.graph.n, task.graph.m)
+    if need > task.budget.memory:
+        return _close(task, program.quick(task, None), None, f"memory budget: {need} bytes are needed")
+    structure = build_structure(task.graph, task.budget, task.gauge.monitor, task.reuse)
+    if isinstance(structure, Partial):
+        ranking = None if structure.why is Unfinished.STOPPED else structure.ranking
+        return _close(task, program.quick(task, ranking), None, structure.reason)
+    if task.when_over == "stop" and over_fill(structure, task.budget):
+        structure = search_less_fill(task.graph, structure, task.budget, task.gauge.monitor)
+        if over_fill(structure, task.budget):
+            return _over_fill(task, program, structure)
+    settled = program.settle(task, structure)
+    reason = settled.reason
+    most = task.budget.fill
+    if settled.exact and most is not None and structure.fill > most:
+        reason += f" (more fill than the {most} budgeted, as the states allowed it)"
+    return _close(task, settled, structure, reason)
+
+
+def _over_fill(task: Task, program: Program, structure: Structure) -> Concluded:
+    most, lower = task.budget.fill, structure.fill_lower_bound
+    if most is not None and lower > most and task.stop is not Stop.CANCEL:
+        reason = f"fill budget: at least {lower} fill edges are needed, {most} are allowed"
+        return Concluded(Found(Verdict.OVER_FILL, None, None, None, structure, reason))
+    reason = f"fill budget: {structure.fill} fill edges were found, {most} are allowed, at least {lower} are needed"
+    if task.stop is Stop.SECONDS:
+        reason += "; seconds ran out in the search for fewer"
+    return _close(task, program.quick(task, structure.ranking), structure, reason)
+
+
+def _cancelled(structure: Structure | None) -> Concluded:
+    return Concluded(Found(Verdict.CANCELLED, None, None, None, structure, "cancelled on request"))
+
+
+def _close(task: Task, settled: Settled, structure: Structure | None, reason: str) -> Concluded:
+    """End with a feasible choice and a bound: PROVEN if they meet."""
+    if task.stop is Stop.CANCEL:
+        return _cancelled(structure)
+    value = task.weight(settled.chosen)
+    task.gauge.incumbent(value)
+    task.gauge.bound(settled.bound)
+    states = settled.states if structure is not None else None
+    verdict = Verdict.PROVEN if value == settled.bound else Verdict.BOUNDED
+    if value == settled.bound and not settled.exact:
+        reason += "; the choice found meets the bound all the same"
+    found = Found(verdict, value, settled.bound, settled.chosen, structure, reason)
+    return Concluded(found, states, settled.colour)
+
+
+def total_of(weights: I64, chosen: U8) -> int:
+    """Weight of a choice."""
+    return int(weights[chosen != 0].sum())
