@@ -58,7 +58,7 @@ def solved(stage, n, edges, *, name=QuestionName.INDEPENDENT_SET, weights=None, 
 
 
 def chosen(answer):
-    (column,) = answer.columns
+    (column,) = (column for column in answer.columns if column.name == "chosen")
     return np.frombuffer(column.data, "<u4").tolist()
 
 

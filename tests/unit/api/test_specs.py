@@ -187,7 +187,8 @@ def test_questions_about_the_graph_alone_take_no_weights(name: QuestionName, fie
 def test_the_written_question_is_the_one_read() -> None:
     """Every question of the model has a branch in the contract, and comes back as itself."""
     for name in QuestionName:
-        asked = Question(name, (0, 2), (1,)) if name.chooses else Question(name)
+        colours = 3 if name is QuestionName.COLOURABLE_SUBGRAPH else 0
+        asked = Question(name, (0, 2), (1,), colours) if name.chooses else Question(name)
         written = from_question(asked)
         assert written.WhichOneof("question") == name.value.replace("-", "_")
         assert to_question(written, "question", CAPS, Violations()) == asked
