@@ -90,7 +90,8 @@ def test_pins_reach_the_solver(stage):
 @pytest.mark.parametrize("name", list(QuestionName))
 def test_empty_graph(stage, name):
     """Nothing to choose from, and nothing to fill, is proven at once."""
-    answer = solved(stage, 0, [], name=name)
+    colours = {"colours": 2} if name is QuestionName.COLOURABLE_SUBGRAPH else {}
+    answer = solved(stage, 0, [], name=name, **colours)
     assert (answer.verdict, answer.value) == (Verdict.PROVEN, (0, 1))
     columns = {column.name: column.data for column in answer.columns}
     assert ("chosen" in columns) is name.chooses

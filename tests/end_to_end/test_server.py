@@ -46,7 +46,7 @@ def answer(server: ServerProcess, job_id: str) -> tuple[job_pb2.Verdict, int, tu
     request = job_service_pb2.ReadAnswerRequest(job_id=job_id)
     stub = job_service_pb2_grpc.JobServiceStub(server.channel)
     head, *columns = (response.part for response in stub.ReadAnswer(request, timeout=DEADLINE))
-    chosen = b"".join(part.column.data for part in columns)
+    chosen = b"".join(part.column.data for part in columns if part.column.name == "chosen")
     return head.head.verdict, head.head.value.numerator, struct.unpack(f"<{len(chosen) // 4}I", chosen)
 
 
