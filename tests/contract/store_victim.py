@@ -49,9 +49,13 @@ def main(kind: str, place: str, life: str) -> None:
     store = HOMES[kind](Path(place)).open()
     store.reclaim("worker")
     bodies = (submit_for_ever, submit_for_ever, upload_for_ever, work_for_ever, work_for_ever)
+    threads = []
     for index, body in enumerate(bodies):
         name = "worker" if body is work_for_ever else f"{life}-{index}"
-        threading.Thread(target=body, args=(store, name)).start()
+        threads.append(threading.Thread(target=body, args=(store, name)))
+        threads[-1].start()
+    for thread in threads:  # as a server waits: an interpreter whose main thread has ended begins no new threads
+        thread.join()
 
 
 if __name__ == "__main__":

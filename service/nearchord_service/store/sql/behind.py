@@ -11,7 +11,10 @@ STEP = 8 << 20
 
 
 class Behind:
-    """Syncs one file on a thread of its own, which begins with the first work for it."""
+    """Syncs one file on a thread of its own, which begins with the first work for it.
+
+    That takes a main thread that has not ended yet, as a server's has not while uploads are under way.
+    """
 
     def __init__(self, disk: Disk, descriptor: int) -> None:
         """`descriptor` stays open until `close`."""
