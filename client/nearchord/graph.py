@@ -104,15 +104,22 @@ class Graph:
     def with_weights(self, weights: Iterable[int] | NDArray[Any] | None) -> Graph:
         """The same graph under other weights: n whole numbers >= 0 whose sum stays below 2^62; None for all ones."""
         if weights is None:
-            return self if self.weights is None else replace(self, weights=None)
+            return self if self.weights is None else self._but(weights=None)
         listed = weights if isinstance(weights, np.ndarray | Sequence) else list(weights)
-        return replace(self, weights=canonical.weight_vector(self.n, listed))
+        return self._but(weights=canonical.weight_vector(self.n, listed))
 
     def with_names(self, names: Iterable[str] | None) -> Graph:
         """The same graph under other names: n different, non-empty words; None for no names."""
         if names is None:
-            return self if self.names is None else replace(self, names=None)
-        return replace(self, names=canonical.name_tuple(self.n, names))
+            return self if self.names is None else self._but(names=None)
+        return self._but(names=canonical.name_tuple(self.n, names))
+
+    def _but(self, **changes: Any) -> Graph:
+        """The same rows with other things beside them: a known address stays known."""
+        graph = replace(self, **changes)
+        if "address" in vars(self):
+            vars(graph)["address"] = self.address
+        return graph
 
     def to_networkx(self, weight: str = "weight") -> NetworkxGraph:
         """A networkx graph with names (or numbers from 0) as nodes and weights, if any, as node attribute `weight`."""

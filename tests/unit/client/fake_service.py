@@ -66,6 +66,7 @@ class FakeService(
         self.breaks = defaultdict(list)
         self.partial = {}
         self.contents = {}
+        self.refused = set()
         self.jobs = {}
         self.batches = {}
         self.events = []
@@ -73,6 +74,7 @@ class FakeService(
         self.seen = defaultdict(list)
         self.gate = threading.Event()
         self.gate.set()
+        self.held = threading.Event()
         self.left = threading.Event()
         self.inline_bytes = 1 << 20
 
@@ -107,6 +109,13 @@ class FakeService(
     def StoreContent(self, requests, context):
         limit = self._enter(context, "StoreContent")
         opening = next(requests).opening
+        if opening.address in self.refused:
+            assert self.held.wait(20)
+            context.abort_with_status(rich_status(grpc.StatusCode.INVALID_ARGUMENT, "CONTENT_INVALID", "refused"))
+        if not self.gate.is_set():
+            context.add_callback(self.left.set)
+            self.held.set()
+            self._hold(context)
         self.seen["offset"].append(opening.offset)
         data = self.partial.setdefault(opening.address, bytearray())
         assert opening.offset == len(data)
@@ -195,6 +204,10 @@ class FakeService(
             if number == limit:
                 self._break(context)
             yield response(event=event)
+        self._hold(context)
+
+    def _hold(self, context):
+        """Waits until the test opens the gate or the caller leaves."""
         while not self.gate.wait(0.01) and context.is_active():
             pass
 

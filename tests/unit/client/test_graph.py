@@ -10,6 +10,7 @@ import networkx
 import numpy as np
 import pytest
 from nearchord import Graph
+from nearchord.session.content import content_of
 
 
 def test_canonical_form_is_the_one_of_the_contract():
@@ -50,6 +51,15 @@ def test_every_integer_dtype_is_taken(dtype):
     """The canonical form does not depend on how endpoints are held."""
     graph = Graph.from_arrays(3, np.array([0, 1], dtype), np.array([1, 2], dtype))
     assert graph == Graph.from_edges(3, [(0, 1), (1, 2)])
+
+
+def test_the_address_is_computed_once_for_all_weights_and_names(monkeypatch):
+    """Weights and names are no part of what is addressed; neither does a session hash the graph again."""
+    graph = Graph.from_edges(2, [(0, 1)])
+    address = graph.address
+    monkeypatch.setattr(hashlib, "sha256", None)
+    other = graph.with_weights([1, 2]).with_names(["a", "b"]).with_weights(None)
+    assert other.address == address == content_of(other).graph.address
 
 
 def test_nothing_of_a_graph_can_be_changed():

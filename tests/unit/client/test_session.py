@@ -8,6 +8,7 @@ import inspect
 import nearchord
 import numpy as np
 import pytest
+from nearchord.session import content
 from nearchord.v1 import answer_pb2, job_pb2, question_pb2
 from unit.client.fake_service import FakeService, answer_parts, column_parts, progress, served, transition
 
@@ -162,6 +163,28 @@ def test_a_broken_upload_goes_on_where_it_broke(user, fake):
     addresses = user.call(user.service.upload(graph))
     assert addresses == nearchord.Addresses(graph.address)
     assert fake.seen["offset"] == [0, 2012, 4012]  # the header and two pieces of 1000, then two more
+
+
+def test_all_content_of_a_graph_is_stored_though_every_stream_breaks(user, fake):
+    """Weights, names and graph go side by side; each goes on by itself after its breaks."""
+    fake.breaks["StoreContent"] = [1, 1, 1, 0, None, 2]
+    n = 1_000
+    graph = nearchord.Graph.from_arrays(n, range(n - 1), range(1, n), range(n), map(str, range(n)))
+    addresses = user.call(user.service.upload(graph))
+    assert addresses.graph == graph.address
+    assert fake.contents[addresses.graph] == b"".join(graph.canonical())
+    assert fake.contents[addresses.weights] == np.arange(n, dtype="<i8").tobytes()
+    assert fake.contents[addresses.names] == "".join(f"{name}\n" for name in range(n)).encode()
+
+
+def test_a_refusal_of_one_content_ends_the_others(user, fake):
+    """The weights are refused while the graph is held up on its way; the call ends, and with it the graph's stream."""
+    fake.gate.clear()
+    graph = large(2_000).with_weights(range(2_000))
+    fake.refused.add(content.content_of(graph).weights.address)
+    with pytest.raises(nearchord.Rejected, match="refused"):
+        user.call(user.service.upload(graph))
+    assert fake.left.wait(10)
 
 
 def test_stored_content_that_is_gone_is_stored_anew(user, fake):

@@ -9,9 +9,9 @@ from pathlib import Path
 
 import pytest
 from contract.stores import ANN, Clock, accept_all, begin, claim_one, finish, graph, put, spec, submit
-from nearchord_service.model.errors import ContentUnknown, StoreUnavailable
+from nearchord_service.model.errors import ContentInvalid, ContentUnknown, FieldViolation, StoreUnavailable
 from nearchord_service.store.port import Query
-from nearchord_service.store.sql import SqlStore
+from nearchord_service.store.sql import SqlStore, behind
 from nearchord_service.store.sql.disk import Disk
 
 LARGE = graph(1, padding=2 << 20)
@@ -21,6 +21,7 @@ class FailingDisk(Disk):
     """Fails where it is told to; a failing write leaves half of its piece, as a full disk does."""
 
     failing = ""
+    flushes = 0
 
     def _try(self, name: str) -> None:
         if self.failing == name:
@@ -35,6 +36,11 @@ class FailingDisk(Disk):
             super().write(descriptor, piece[: len(piece) // 2])
         self._try("write")
         super().write(descriptor, piece)
+
+    def flush(self, descriptor: int) -> None:
+        self.flushes += 1
+        self._try("flush")
+        super().flush(descriptor)
 
     def sync(self, descriptor: int) -> None:
         self._try("sync")
@@ -99,6 +105,39 @@ def test_failed_publish_can_be_tried_again(store: SqlStore, disk: FailingDisk) -
         upload.publish(accept_all)
     disk.failing = ""
     assert upload.publish(accept_all).address == LARGE.address
+
+
+def test_bytes_lost_on_their_way_to_the_disk_are_not_published(
+    store: SqlStore, disk: FailingDisk, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """What the disk lost while more arrived is not forgotten when it says yes in the end."""
+    monkeypatch.setattr(behind, "STEP", 1 << 20)
+    upload = begin(store, LARGE.data)
+    disk.failing = "flush"
+    upload.write(LARGE.data[: 1 << 20])
+    upload.write(LARGE.data[1 << 20 :])
+    for _ in range(2):
+        with pytest.raises(StoreUnavailable, match=space(disk.content)):
+            upload.publish(accept_all)
+        disk.failing = ""
+    assert disk.flushes == 2
+    with pytest.raises(ContentUnknown):
+        store.content(ANN, LARGE.address)
+
+
+@pytest.mark.parametrize("where", ["", "sync"])
+def test_refused_bytes_are_dropped_whatever_becomes_of_the_disk(store: SqlStore, disk: FailingDisk, where: str) -> None:
+    upload = begin(store, LARGE.data)
+    upload.write(LARGE.data)
+    disk.failing = where
+
+    def refuse(view: memoryview) -> tuple[int, int]:
+        raise ContentInvalid(FieldViolation("piece", f"row 3 of {len(view)} is wrong"))
+
+    with pytest.raises(ContentInvalid, match="row 3"):
+        upload.publish(refuse)
+    assert store.upload_state(ANN, LARGE.address) == (0, False)
+    assert list(disk.content.iterdir()) == []
 
 
 @pytest.mark.parametrize("where", ["open", "write", "sync"])
