@@ -9,12 +9,13 @@ from math import comb
 
 from nearchord_solve.arrays import I64
 from nearchord_solve.budget import Budget
-from nearchord_solve.kernels import elimination, state_counts
+from nearchord_solve.kernels import elimination
 from nearchord_solve.kernels.layout import STATES, TABLE
 from nearchord_solve.memory import state_bytes, table_bytes
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Prediction
 from nearchord_solve.structure import Structure
+from nearchord_solve.sweep.kernels import state_counts
 
 COLOURS = (2, 3)
 

@@ -7,8 +7,8 @@ import numpy as np
 from nearchord_solve.budget import Budget
 from nearchord_solve.fill import find_cores, triangulate
 from nearchord_solve.fill.exact.rehearse import rehearse
+from nearchord_solve.fill.kernels.triangulate import best_triangulation
 from nearchord_solve.graph import Graph
-from nearchord_solve.kernels.triangulate import best_triangulation
 from nearchord_solve.monitor import Monitor, Phase, Stop
 from nearchord_solve.order import Unfinished, eliminate, rank, rank_by_degree
 from nearchord_solve.questions import (

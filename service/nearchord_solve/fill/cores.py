@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from nearchord_solve.arrays import I32, I64
-from nearchord_solve.kernels import cores as core_kernels
+from nearchord_solve.fill.kernels import cores as core_kernels
 from nearchord_solve.kernels import elimination
 from nearchord_solve.kernels.layout import Forest, Numbering
 from nearchord_solve.monitor import Monitor

@@ -41,7 +41,7 @@ class Forest(NamedTuple):
 
 
 class Tries(NamedTuple):
-    """Messages kept between bags: preorder tries, see :mod:`.tables`."""
+    """Messages kept between bags: preorder tries, see :mod:`nearchord_solve.sweep.kernels.tables`."""
 
     begin: I64  # [B]
     end: I64  # [B]

@@ -15,7 +15,6 @@ from nearchord_solve.arrays import I64, U8
 from nearchord_solve.budget import Budget
 from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
-from nearchord_solve.kernels import bag_cliques
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.order import Ranking
 from nearchord_solve.outcome import Outcome
@@ -25,6 +24,7 @@ from nearchord_solve.questions.gauge import Gauge
 from nearchord_solve.questions.heaviest import Task
 from nearchord_solve.questions.pins import Contradiction, Rest, keep_vertices, lift, pin_array
 from nearchord_solve.structure import Structure
+from nearchord_solve.sweep.kernels import bag_cliques
 
 
 @dataclass(frozen=True)

@@ -2,7 +2,7 @@
 
 The planner's reading: the best choice on q channels; with two, what is left out is the cheapest odd cycle transversal.
 A state of a bag is a set of at most q disjoint cliques of its fill graph (independent sets of G), see
-:mod:`nearchord_solve.kernels.label_states`.  Two states of neighbouring bags go together when they have the same
+:mod:`nearchord_solve.sweep.kernels.label_states`.  Two states of neighbouring bags go together when they have the same
 classes on the adhesion; glued, classes stay independent, as every edge of G lies in a bag.  With one colour it is the
 heaviest independent set.
 """

@@ -2,7 +2,7 @@
 
 The planner's reading: a loop-free choice; what is left out is the cheapest feedback vertex set.  A state of a bag is a
 set without a cycle of G, and what lies below connects some of its vertices: see
-:mod:`nearchord_solve.kernels.label_states`.
+:mod:`nearchord_solve.sweep.kernels.label_states`.
 """
 
 from collections.abc import Sequence

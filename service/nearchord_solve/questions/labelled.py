@@ -15,7 +15,6 @@ from nearchord_solve.arrays import I64, U8, U32
 from nearchord_solve.budget import Budget
 from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
-from nearchord_solve.kernels import label_passes
 from nearchord_solve.kernels.greedy_classes import colour_in_order, grow_forest
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.order import Ranking
@@ -26,6 +25,7 @@ from nearchord_solve.questions.gauge import Gauge
 from nearchord_solve.questions.heaviest import Found, Task
 from nearchord_solve.questions.pins import Contradiction, Rest, keep_vertices, lift
 from nearchord_solve.structure import Structure
+from nearchord_solve.sweep.kernels import label_passes
 from nearchord_solve.sweep.labelled import Labelled, count_states, line_up, sweep_labelled
 
 HEAVIEST = 2**61  # sums of weights with the extras of pins stay below

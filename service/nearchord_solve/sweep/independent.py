@@ -6,11 +6,11 @@ from dataclasses import dataclass
 import numpy as np
 
 from nearchord_solve.arrays import I64, U8, U32
-from nearchord_solve.kernels import sweep as kernels
 from nearchord_solve.kernels.layout import TABLE, Cover, Tries
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.proof import Certificate, certify_sweep, room_for_cover
 from nearchord_solve.structure import Structure
+from nearchord_solve.sweep.kernels import passes as kernels
 
 
 @dataclass(frozen=True, eq=False)

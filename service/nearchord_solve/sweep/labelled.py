@@ -5,12 +5,14 @@ from dataclasses import dataclass
 import numpy as np
 
 from nearchord_solve.arrays import I32, I64, U8
+from nearchord_solve.fill.kernels import core_lists
 from nearchord_solve.graph import Graph
-from nearchord_solve.kernels import bags, core_lists, label_passes, state_counts
+from nearchord_solve.kernels import bags
 from nearchord_solve.kernels.layout import Forest, Numbering
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.order import eliminate, rank_along
 from nearchord_solve.structure import Structure
+from nearchord_solve.sweep.kernels import label_passes, state_counts
 
 CLOSED = (0, 2)  # colours (0: forests) for which bags without fill are settled by a formula
 
@@ -56,7 +58,7 @@ def count_states(line: Line, colours: int, most: int, monitor: Monitor) -> int:
 
 @dataclass(frozen=True, eq=False)
 class Labelled:
-    """``code`` as in :mod:`..kernels.label_passes`; ``colour`` uint8[n] by vertex, None unless DONE."""
+    """``code`` as in :mod:`.kernels.label_passes`; ``colour`` uint8[n] by vertex, None unless DONE."""
 
     code: int
     value: int

@@ -49,7 +49,7 @@ def test_exports_are_sorted_and_complete() -> None:
 
 
 def test_warm_up_reports_each_step_and_compiles_everything() -> None:
-    from nearchord_solve.kernels import sweep
+    from nearchord_solve.sweep.kernels import passes as sweep
 
     reports: list[tuple[int, int]] = []
     nearchord_solve.warm_up(lambda done, total: reports.append((done, total)))

@@ -12,11 +12,11 @@ import pytest
 from definition import networkx_graph
 from hypothesis import given, settings
 from nearchord_solve import Budget, Graph, Monitor, Structure, solve
-from nearchord_solve.kernels.forests import count_joinings
 from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest
-from nearchord_solve.kernels.state_counts import colour_states, forest_states
 from nearchord_solve.outcome import Outcome
 from nearchord_solve.structure import Structure as Built
+from nearchord_solve.sweep.kernels.forests import count_joinings
+from nearchord_solve.sweep.kernels.state_counts import colour_states, forest_states
 from nearchord_solve.tree import build_structure
 from strategies import Edges, arbitrary_graphs, graphs
 

@@ -8,7 +8,8 @@ import pytest
 from definition import cliques_of_two_or_more, least_fill, networkx_graph
 from nearchord_solve import Budget, Graph, Monitor
 from nearchord_solve.fill import cores
-from nearchord_solve.kernels import cliques, dense
+from nearchord_solve.fill.kernels import dense
+from nearchord_solve.kernels import cliques
 from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, STATES
 from nearchord_solve.order import Ranking, Unfinished, eliminate, rank_by_degree
 from nearchord_solve.tree import Structure, build_structure

@@ -7,7 +7,7 @@ from nearchord_solve.fill.exact.atoms import triangulation_fill
 from nearchord_solve.fill.exact.core import Core, Pair, joined
 from nearchord_solve.fill.exact.kernels.greedy import BY_DEGREE, BY_FILL, eliminate
 from nearchord_solve.fill.exact.words import new_pairs, rows_of
-from nearchord_solve.kernels.dense import list_fill, thin
+from nearchord_solve.fill.kernels.dense import list_fill, thin
 from nearchord_solve.monitor import Monitor
 
 ENDLESS_EFFORT = 2**62

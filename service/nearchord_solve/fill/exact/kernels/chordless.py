@@ -7,9 +7,9 @@ diagonal.
 import numpy as np
 
 from nearchord_solve.fill.exact.kernels.words import F64, unpack
+from nearchord_solve.fill.kernels.dense import holds, set_pair
 from nearchord_solve.kernels.cells import STOP
 from nearchord_solve.kernels.compiled import I64, U64, kernel, lowest
-from nearchord_solve.kernels.dense import holds, set_pair
 
 
 @kernel

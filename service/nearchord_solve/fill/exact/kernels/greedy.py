@@ -3,8 +3,8 @@
 import numpy as np
 
 from nearchord_solve.fill.exact.kernels.words import F64, contains, fill_up, leave_out, unpack
+from nearchord_solve.fill.kernels.dense import holds, set_pair
 from nearchord_solve.kernels.compiled import I64, U64, kernel
-from nearchord_solve.kernels.dense import holds, set_pair
 
 BY_DEGREE, BY_FILL = 0, 1
 

@@ -3,12 +3,12 @@
 import numpy as np
 
 from nearchord_solve.kernels.cells import STOP
-from nearchord_solve.kernels.classes import count_classes
 from nearchord_solve.kernels.cliques import count_cliques, touched
 from nearchord_solve.kernels.compiled import I32, I64, U64, kernel
-from nearchord_solve.kernels.forests import count_forests
 from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest
-from nearchord_solve.kernels.sweep import link_bags
+from nearchord_solve.sweep.kernels.classes import count_classes
+from nearchord_solve.sweep.kernels.forests import count_forests
+from nearchord_solve.sweep.kernels.passes import link_bags
 
 ONE = np.uint64(1)
 

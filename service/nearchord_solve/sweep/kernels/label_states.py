@@ -17,7 +17,7 @@ import numpy as np
 
 from nearchord_solve.kernels.cells import STOP
 from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest, ones
-from nearchord_solve.kernels.label_table import Table, find, record
+from nearchord_solve.sweep.kernels.label_table import Table, find, record
 
 ONE = np.uint64(1)
 

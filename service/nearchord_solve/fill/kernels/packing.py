@@ -6,9 +6,9 @@ share no non-edge need different chords, so these numbers add up.
 
 import numpy as np
 
+from nearchord_solve.fill.kernels.dense import holds, set_pair
 from nearchord_solve.kernels.cells import STOP
 from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest
-from nearchord_solve.kernels.dense import holds, set_pair
 
 ONE = np.uint64(1)
 STEPS = 200_000  # about the vertices that the shortest paths of one core may look at

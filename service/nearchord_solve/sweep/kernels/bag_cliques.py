@@ -5,9 +5,9 @@ import numpy as np
 from nearchord_solve.kernels.cells import BAGS_DONE, POLL, STEP, STOP
 from nearchord_solve.kernels.cliques import touched
 from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
-from nearchord_solve.kernels.forests import symmetric
 from nearchord_solve.kernels.layout import BAG_FILL, Forest
-from nearchord_solve.kernels.stable import heaviest_stable
+from nearchord_solve.sweep.kernels.forests import symmetric
+from nearchord_solve.sweep.kernels.stable import heaviest_stable
 
 
 @kernel

@@ -4,11 +4,13 @@ from typing import NamedTuple
 
 import numpy as np
 
+from nearchord_solve.fill.kernels.core_lists import core_vertices, dense_lists, dense_rows, sparse_lists
+from nearchord_solve.fill.kernels.dense import list_fill, number_from, set_pair
+from nearchord_solve.fill.kernels.packing import pack_cycles
+from nearchord_solve.fill.kernels.triangulate import best_triangulation
 from nearchord_solve.kernels.bags import count_parts, count_states, write_bags
 from nearchord_solve.kernels.cells import STEP, STOP
 from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
-from nearchord_solve.kernels.core_lists import core_vertices, dense_lists, dense_rows, sparse_lists
-from nearchord_solve.kernels.dense import list_fill, number_from, set_pair
 from nearchord_solve.kernels.grow import grown8, grown32, grown64
 from nearchord_solve.kernels.layout import (
     EASY,
@@ -21,8 +23,6 @@ from nearchord_solve.kernels.layout import (
     Forest,
     Numbering,
 )
-from nearchord_solve.kernels.packing import pack_cycles
-from nearchord_solve.kernels.triangulate import best_triangulation
 
 
 class Plan(NamedTuple):

@@ -2,11 +2,11 @@
 
 import numpy as np
 
+from nearchord_solve.fill.kernels.core_lists import dense_lists
+from nearchord_solve.fill.kernels.dense import fill_by_degree, fill_by_missing, list_fill, number_from, thin
 from nearchord_solve.kernels.bags import count_states, write_bags
 from nearchord_solve.kernels.cells import STOP
 from nearchord_solve.kernels.compiled import I32, I64, U64, kernel
-from nearchord_solve.kernels.core_lists import dense_lists
-from nearchord_solve.kernels.dense import fill_by_degree, fill_by_missing, list_fill, number_from, thin
 
 EFFORT = 1_000_000_000  # words that one candidate for one core may touch: about a second
 

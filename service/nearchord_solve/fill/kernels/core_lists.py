@@ -6,8 +6,8 @@ by rank in an elimination order (highest rank first to go); ``fill`` lists give 
 
 import numpy as np
 
+from nearchord_solve.fill.kernels.dense import set_pair
 from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest
-from nearchord_solve.kernels.dense import set_pair
 from nearchord_solve.kernels.grow import grown32
 
 

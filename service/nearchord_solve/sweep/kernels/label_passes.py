@@ -17,9 +17,9 @@ import numpy as np
 from nearchord_solve.kernels.cells import BAGS_DONE, STEP, STOP
 from nearchord_solve.kernels.cliques import depth_limit
 from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
-from nearchord_solve.kernels.label_states import Bag, settle_states
-from nearchord_solve.kernels.label_table import Table, empty_table, find
 from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest
+from nearchord_solve.sweep.kernels.label_states import Bag, settle_states
+from nearchord_solve.sweep.kernels.label_table import Table, empty_table, find
 
 ONE = np.uint64(1)
 DONE, STOPPED, STATES, MEMORY = 0, 1, 2, 3

@@ -14,7 +14,7 @@ from nearchord_solve.kernels.cliques import touched
 from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
 from nearchord_solve.kernels.cover import choose_greedily, cover_core
 from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Cover, Forest, Numbering, Tries
-from nearchord_solve.kernels.tables import best_state, collect_messages, fill_table, settle_message
+from nearchord_solve.sweep.kernels.tables import best_state, collect_messages, fill_table, settle_message
 
 
 @kernel

@@ -1,0 +1,1 @@
+"""Kernels that triangulate fill cores and write them down as bags."""

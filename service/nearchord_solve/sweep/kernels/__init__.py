@@ -1,0 +1,1 @@
+"""Kernels of the sweeps: states of bags, the messages between them, and the passes over the tree."""
