@@ -18,8 +18,8 @@ Nothing was assumed about how the bags cover the graph; whether the bound is goo
 valid does not.  The tables M are not part of the certificate: whoever checks it computes them from G itself.
 
 Tightness.  Outside fill cores the elimination lists are cliques of G and Frank's algorithm takes the weight off
-by them (see :mod:`.sweep.kernels.passes`).  A core takes what its homes are still worth, and from each anchor a, one of the
-vertices that it shares with what lies above it, M(empty) - M({a}): anchors are pairwise adjacent, so with these
+by them (see :mod:`.sweep.kernels.passes`).  A core takes what its homes are still worth, and from each anchor a, one
+of the vertices that it shares with what lies above it, M(empty) - M({a}): anchors are pairwise adjacent, so with these
 weights the optimum of the core is M(empty), what it adds to the value.  A core without tables is covered by cliques.
 So the certificate proves the bound of the sweep.
 """
