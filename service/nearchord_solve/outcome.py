@@ -3,6 +3,7 @@
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from enum import Enum
+from fractions import Fraction
 
 from nearchord_solve.arrays import I64, U32
 from nearchord_solve.kept import Kept
@@ -58,7 +59,7 @@ class StructureReport:
 class Outcome:
     """The answer of a solve and what it took.
 
-    ``value``, ``bound``: int or None where there is none; ``bound`` is an upper bound when maximising, a lower
+    ``value``, ``bound``: int, Fraction for plans in fractions of units, None where there is none; ``bound`` is an upper bound when maximising, a lower
     bound when minimising.  ``chosen`` uint32, ascending, None for questions that choose no vertices.
     ``fill``: fill edges used, None if no triangulation was finished; ``fill_lower_bound``: no triangulation has fewer.
     ``states``: states in bags that hold fill (bags without fill need no table), None if not counted.  ``parts``: what
@@ -70,8 +71,8 @@ class Outcome:
     """
 
     verdict: Verdict
-    value: int | None
-    bound: int | None
+    value: int | Fraction | None
+    bound: int | Fraction | None
     chosen: U32 | None
     fill: int | None
     fill_lower_bound: int
