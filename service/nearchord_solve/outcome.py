@@ -59,15 +59,15 @@ class StructureReport:
 class Outcome:
     """The answer of a solve and what it took.
 
-    ``value``, ``bound``: int, Fraction for plans in fractions of units, None where there is none; ``bound`` is an upper bound when maximising, a lower
-    bound when minimising.  ``chosen`` uint32, ascending, None for questions that choose no vertices.
-    ``fill``: fill edges used, None if no triangulation was finished; ``fill_lower_bound``: no triangulation has fewer.
-    ``states``: states in bags that hold fill (bags without fill need no table), None if not counted.  ``parts``: what
-    remains when the tree of bags is cut at adhesions without fill; ``fill_cores``: parts that hold fill.  ``proof``:
-    "search" if the bound can be recomputed only, "certificate" if a checker can confirm it, "none" if nothing is
-    proven; ``proof_kinds``: one per fill core.  ``reason``: in words, never empty.  ``columns``: further arrays by
-    name, uint32 (vertices) or int64.  ``kept``: the structure of the graph, if it is new, for later solves on the
-    same graph.
+    ``value``, ``bound``: int, Fraction for plans in fractions of units, None where there is none; ``bound`` is an upper
+    bound when maximising, a lower bound when minimising.  ``chosen`` uint32, ascending, None for questions that choose
+    no vertices.  ``fill``: fill edges used, None if no triangulation was finished; ``fill_lower_bound``: no
+    triangulation has fewer.  ``states``: states in bags that hold fill (bags without fill need no table), None if not
+    counted.  ``parts``: what remains when the tree of bags is cut at adhesions without fill; ``fill_cores``: parts that
+    hold fill.  ``proof``: "search" if the bound can be recomputed only, "certificate" if a checker can confirm it,
+    "none" if nothing is proven; ``proof_kinds``: one per fill core.  ``reason``: in words, never empty.  ``columns``:
+    further arrays by name, uint32 (vertices) or int64.  ``kept``: the structure of the graph, if it is new, for later
+    solves on the same graph.
     """
 
     verdict: Verdict

@@ -60,12 +60,12 @@ class Allotment:
 
     def given(self, v: int) -> bool:
         """Whether v has its time."""
-        return bool(self._times.count[v] >= 0)
+        return bool(self._times.pieces[v] >= 0)
 
     def of(self, v: int) -> Intervals:
         """When v is served."""
         begin = int(self._times.first[v])
-        end = begin + int(self._times.count[v])
+        end = begin + int(self._times.pieces[v])
         return list(zip(self._times.start[begin:end].tolist(), self._times.end[begin:end].tolist(), strict=True))
 
     def give(self, v: int, intervals: Intervals) -> None:
@@ -73,7 +73,7 @@ class Allotment:
         if self._used + len(intervals) > self._times.start.size:
             self._grow(self._used + len(intervals))
         times, end = self._times, self._used + len(intervals)
-        times.first[v], times.count[v], times.log[self._logged] = self._used, len(intervals), v
+        times.first[v], times.pieces[v], times.log[self._logged] = self._used, len(intervals), v
         if intervals:
             times.start[self._used : end], times.end[self._used : end] = zip(*intervals, strict=True)
         self._logged, self._used = self._logged + 1, end
@@ -86,7 +86,7 @@ class Allotment:
             return
         gone = times.log[int(logged[0]) : self._logged]
         self._used, self._logged = int(times.first[gone[0]]), int(logged[0])
-        times.count[gone] = -1
+        times.pieces[gone] = -1
         self._at = min(self._at, int(self._place[gone].min()))
 
     def refine(self, factor: int) -> None:
@@ -100,7 +100,7 @@ class Allotment:
     def neighbours_given(self, v: int) -> I64:
         """Neighbours of v that have their time."""
         row = self._graph.adj[self._graph.ptr[v] : self._graph.ptr[v + 1]]
-        return row[self._times.count[row] >= 0].astype(np.int64)
+        return row[self._times.pieces[row] >= 0].astype(np.int64)
 
     @property
     def length(self) -> int:
@@ -110,7 +110,7 @@ class Allotment:
     def intervals(self) -> tuple[I64, I64, I64]:
         """All intervals: (vertices, starts, ends), by vertex and time.  Every vertex must have its time."""
         times = self._times
-        counts = times.count
+        counts = times.pieces
         vertex = np.repeat(np.arange(counts.size), counts)
         at = np.arange(vertex.size) + np.repeat(times.first - np.cumsum(counts) + counts, counts)
         return vertex, times.start[at], times.end[at]

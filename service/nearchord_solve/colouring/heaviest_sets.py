@@ -29,7 +29,7 @@ class HeaviestSets:
     """Sweeps over the tree of bags of one graph, whose structure is found once."""
 
     def __init__(self, graph: Graph, budget: Budget, monitor: Monitor) -> None:
-        self._monitor = monitor
+        self._graph, self._monitor = graph, monitor
         self._budget = replace(budget, fill=None)
         with monitor.aside() as quiet:
             built = build_structure(graph, self._budget, quiet)
@@ -51,3 +51,24 @@ class HeaviestSets:
         if swept is None or swept.chosen is None:
             return None
         return Heaviest(swept.chosen != 0, swept.bound, swept.certify)
+
+    def cover(self, heaviest: Heaviest, weights: I64, most: int) -> list[NDArray[np.bool_]]:
+        """``heaviest`` and up to ``most`` further sets, each the heaviest of what those before leave; all made maximal.
+
+        Together they are what a plan is made of, so a linear program gets further with them than with one alone.
+        """
+        left = weights.copy()
+        found: list[NDArray[np.bool_]] = []
+        next_one: Heaviest | None = heaviest
+        while next_one is not None and next_one.weight:
+            found.append(self._maximal(next_one.chosen))
+            left[next_one.chosen] = 0
+            next_one = self.heaviest(left) if len(found) <= most else None
+        return found
+
+    def _maximal(self, chosen: NDArray[np.bool_]) -> NDArray[np.bool_]:
+        """The set with further vertices, lower ones first, until none can be added."""
+        graph, grown = self._graph, chosen.copy()
+        for v in np.flatnonzero(~chosen).tolist():
+            grown[v] = not grown[graph.adj[graph.ptr[v] : graph.ptr[v + 1]]].any()
+        return grown

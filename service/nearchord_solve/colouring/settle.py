@@ -21,6 +21,7 @@ from nearchord_solve.monitor import Monitor
 MOST_COPIES = 2048
 FIRST_TURNS = 4000
 LONG_TURNS = 400_000
+FINEST = 10_000  # a unit is not divided into more steps to make a plan writable
 
 
 @dataclass(frozen=True, eq=False)
@@ -48,6 +49,11 @@ def _plan_along(part: Part, sequence: I64, demand: I64) -> Plan:
     return Plan(member, lengths.tolist())
 
 
+def shorter(one: Plan, other: Plan) -> Plan:
+    """The shorter of two plans, the first if they are equally long."""
+    return other if other.frame < one.frame else one
+
+
 class Settler:
     """Settles one part after the other; ``whole``: in whole units, else in fractions of them."""
 
@@ -67,16 +73,44 @@ class Settler:
         return self._in_fractions(part, demand, frame, plan)
 
     def _in_fractions(self, part: Part, demand: I64, frame: Fraction, plan: Plan) -> Settled:
+        painter = self.painter(part, demand) if int(demand.sum()) <= MOST_COPIES else None
+        if painter is not None:
+            painter.improve(int(frame), FIRST_TURNS)
+            plan = shorter(plan, painter.plan)
+            if plan.frame <= frame:
+                return Settled(plan, None)
         found = self.shortest(part, demand, frame, [plan])
         if found is None:
-            if int(demand.sum()) <= MOST_COPIES:
-                painter = self.painter(part, demand)
+            if painter is not None:
                 painter.improve(int(frame), LONG_TURNS)
-                plan = min(plan, painter.plan, key=lambda one: one.frame)
+                plan = shorter(plan, painter.plan)
             return Settled(plan, None)
-        if found.plan is not None and found.plan.frame < plan.frame:
-            plan = found.plan
-        return Settled(plan, self.evidence(part, demand, found))
+        evidence = self.evidence(part, demand, found)
+        target = max(frame, evidence.bound) if evidence else frame
+        if found.plan is not None:
+            plan = shorter(plan, found.plan)
+            if plan.frame > target and target.denominator <= FINEST:
+                plan = shorter(plan, self._on_grid(part, demand, found.plan, target))
+        return Settled(plan, evidence)
+
+    def _on_grid(self, part: Part, demand: I64, plan: Plan, target: Fraction) -> Plan:
+        """A plan in units of the target's denominator, near to one whose fractions are too long to be written."""
+        unit = target.denominator
+        finer = Plan(plan.member, [length * unit for length in plan.lengths], plan.denominator)
+        found = self.in_whole_units(part, demand * unit, finer, int(target * unit))
+        return plan if found is None else Plan(found.member, found.lengths, unit)
+
+    def in_whole_units(self, part: Part, demand: I64, plan: Plan, target: int) -> Plan | None:
+        """Whole parts of the lengths of ``plan`` as they are, and copies for what is then missing; None if too much."""
+        whole = [length // plan.denominator for length in plan.lengths]
+        served = plan.member.T.astype(np.int64) @ np.array(whole, np.int64) if whole else 0 * demand
+        short = np.maximum(0, demand - served)
+        if int(short.sum()) > MOST_COPIES:
+            return None
+        painter = self.painter(part, short)
+        painter.improve(target - sum(whole), FIRST_TURNS)
+        rest = painter.plan
+        return Plan(np.concatenate((plan.member, rest.member)), [*whole, *rest.lengths])
 
     def shortest(self, part: Part, demand: I64, frame: Fraction, plans: Sequence[Plan]) -> Shortest | None:
         """The shortest plan in fractions, begun from the sets of ``plans``; None if the states do not allow it."""
@@ -132,14 +166,10 @@ class _Whole:
         """There is no use in being shorter."""
         return self._frame if self._evidence is None else max(self._frame, self._evidence.bound)
 
-    def _take(self, plan: Plan) -> None:
-        if plan.frame < self._plan.frame:
-            self._plan = plan
-
     def _paint(self, turns: int = FIRST_TURNS) -> None:
         if self._painter is not None:
             self._painter.improve(int(self._target), turns)
-            self._take(self._painter.plan)
+            self._plan = shorter(self._plan, self._painter.plan)
 
     def _paint_long(self) -> None:
         self._paint(LONG_TURNS)
@@ -150,19 +180,8 @@ class _Whole:
             return
         self._evidence = self._by.evidence(self._part, self._demand, found)
         if found.plan is not None:
-            self._round(found.plan)
-
-    def _round(self, plan: Plan) -> None:
-        """Whole parts of the lengths as they are, and copies for what is then missing."""
-        whole = [length // plan.denominator for length in plan.lengths]
-        served = plan.member.T.astype(np.int64) @ np.array(whole, np.int64) if whole else 0 * self._demand
-        short = np.maximum(0, self._demand - served)
-        if int(short.sum()) > MOST_COPIES:
-            return
-        painter = self._by.painter(self._part, short)
-        painter.improve(int(self._target) - sum(whole), FIRST_TURNS)
-        rest = painter.plan
-        self._take(Plan(np.concatenate((plan.member, rest.member)), [*whole, *rest.lengths]))
+            near = self._by.in_whole_units(self._part, self._demand, found.plan, int(self._target))
+            self._plan = self._plan if near is None else shorter(self._plan, near)
 
     def _branch(self) -> None:
         """Try the fewest units that are not refuted, then one more."""
@@ -171,7 +190,7 @@ class _Whole:
         for units in range(int(self._target), int(self._plan.frame)):
             possible = self._painter.settle(units, self._by.most)
             if possible:
-                self._take(self._painter.plan)
+                self._plan = shorter(self._plan, self._painter.plan)
             if possible is not False:
                 return
             self._evidence = Evidence(Fraction(units + 1))

@@ -10,7 +10,7 @@ whole numbers.  At the end the basis is solved in fractions, the plan and the mu
 and only if both say the same length is it called the shortest.
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 from math import ceil
@@ -31,6 +31,8 @@ SCALE = 2**30  # multipliers are rounded down to so many parts of one
 MOST_SUM = 2**62
 MOST_ROUNDS = 20_000
 NEAR = 1e-9
+AT_ONCE = 6  # further sets brought in with the heaviest one
+PRIMAL = 4  # simplex on plans, which stay feasible when sets come in
 
 Sets = NDArray[np.bool_]
 
@@ -62,6 +64,7 @@ class Master:
 
     def __init__(self, demand: I64, monitor: Monitor) -> None:
         self._solver = quiet_solver(monitor)
+        self._solver.setOptionValue("simplex_strategy", PRIMAL)
         self._scale = float(max(1, demand.max(initial=0)))
         rows = demand.size
         none = np.empty(0, np.int32)
@@ -73,7 +76,7 @@ class Master:
         self.member: Sets = np.zeros((0, rows), np.bool_)
         self._known: set[bytes] = set()
 
-    def add(self, sets: Sets) -> int:
+    def add(self, sets: Sequence[NDArray[np.bool_]] | Sets) -> int:
         """Bring in those of ``sets`` bool[k, p] that are new; returns how many."""
         fresh = []
         for one in sets:
@@ -190,7 +193,7 @@ def shortest_frame(
         if whole and best is not None and ceil(best.bound(demand)) >= ceil(length * (1 - NEAR)):
             break
         if heaviest.weight > SCALE * (1 + NEAR) + demand.size:
-            if master.add(heaviest.chosen[None]):
+            if master.add(sets.cover(heaviest, prices, AT_ONCE)):
                 continue
             break
         more, best = _prove(master, demand, sets, best)

@@ -18,11 +18,11 @@ DONE, STOPPED, PLANNED, OVER, FULL = 0, 1, 2, 3, 4
 
 
 class Times(NamedTuple):
-    """The intervals given so far.  Vertex v has ``start[first[v]+i]``..``end[first[v]+i]`` for i below ``count[v]``;
-    ``count`` is -1 where none was given.  ``log``: the vertices in the order in which they got theirs."""
+    """The intervals given so far.  Vertex v has ``start[first[v]+i]``..``end[first[v]+i]`` for i below ``pieces[v]``;
+    ``pieces`` is -1 where none was given.  ``log``: the vertices in the order in which they got theirs."""
 
     first: I64  # [n]
-    count: I64  # [n]
+    pieces: I64  # [n]
     start: I64
     end: I64
     log: I32  # [n]
@@ -66,20 +66,20 @@ def first_fit(
             if cells[STOP] != 0:
                 return STOPPED, at, logged, used
         v = sequence[at]
-        if times.count[v] >= 0:
+        if times.pieces[v] >= 0:
             at += 1
             continue
         if planned[v]:
             return PLANNED, at, logged, used
         size = 0
         for e in range(ptr[v], ptr[v + 1]):
-            size += max(0, times.count[adj[e]])
+            size += max(0, times.pieces[adj[e]])
         low = grown64(low, size)
         high = grown64(high, size)
         size = 0
         for e in range(ptr[v], ptr[v + 1]):
             u = adj[e]
-            for i in range(times.first[u], times.first[u] + max(0, times.count[u])):
+            for i in range(times.first[u], times.first[u] + max(0, times.pieces[u])):
                 low[size] = times.start[i]
                 high[size] = times.end[i]
                 size += 1
@@ -106,7 +106,7 @@ def first_fit(
             times.end[end] = free + need
             end += 1
         times.first[v] = used
-        times.count[v] = end - used
+        times.pieces[v] = end - used
         times.log[logged] = v
         logged += 1
         used = end

@@ -20,13 +20,16 @@ FOUND, NONE, MANY, STOPPED = 0, 1, 2, 3
 def most_constrained(saturation: I32, ptr: I64, colour: I32) -> int:
     """The uncoloured vertex with most colours around it, ties to more neighbours, then to the lower vertex."""
     best = -1
+    most = -1
+    degree = int(np.int64(-1))
     for v in range(colour.shape[0]):
         if colour[v] >= 0:
             continue
-        if best < 0 or saturation[v] > saturation[best]:
+        size = ptr[v + 1] - ptr[v]
+        if saturation[v] > most or (saturation[v] == most and size > degree):
             best = v
-        elif saturation[v] == saturation[best] and ptr[v + 1] - ptr[v] > ptr[best + 1] - ptr[best]:
-            best = v
+            most = saturation[v]
+            degree = size
     return best
 
 
