@@ -86,7 +86,7 @@ def _serve(request: Request) -> Served | Outcome:
     return _along(request, structure)
 
 
-def _along(request: Request, structure: Structure) -> Served:
+def _along(request: Request, structure: Structure) -> Served | Outcome:
     """Put a plan together over the parts."""
     graph, monitor = request.graph, request.monitor
     clique = CliqueProgram().settle(request.task, structure)
@@ -98,10 +98,12 @@ def _along(request: Request, structure: Structure) -> Served:
         return Planner(graph, demand, parts, heaviest, request.whole, request.budget, monitor).run()
 
     planned = plan(request.demand)
+    if monitor.stop is Stop.CANCEL:
+        return without_structure(monitor, "")
     if not request.whole and planned.allotment.entries > MANY_ENTRIES:
         frame = planned.allotment.frame
         other = plan(parts.raised(request.demand, int(frame)))
-        if other.allotment.frame <= frame:
+        if other.complete and other.allotment.frame <= frame:
             planned = replace(planned, allotment=other.allotment)
     if monitor.stop is Stop.SECONDS:
         reason = "seconds ran out while planning"
