@@ -110,7 +110,7 @@ def _braced_ring(n: int) -> Graph:
 
 PARTS: dict[str, tuple[Callable[[], Iterator[None]], int]] = {
     "choosing": (_choosing, 11),
-    "filling": (_filling, 7),
+    "filling": (_filling, 8),
     "labelling": (_labelling, 4),
 }
 """Name of a part: its stages one by one, and how many they are."""

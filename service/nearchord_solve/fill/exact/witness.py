@@ -9,6 +9,7 @@ from collections.abc import Iterable, Sequence
 import numpy as np
 
 from nearchord_solve.arrays import I32, I64, U32
+from nearchord_solve.fill.exact.ragged import starts
 from nearchord_solve.fill.exact.result import Packing
 from nearchord_solve.fill.exact.whole import PartFill
 
@@ -48,11 +49,6 @@ def joined_packings(packings: Sequence[tuple[Packing, I32]]) -> dict[str, U32 | 
 def joined(arrays: Iterable[I64 | I32]) -> I64:
     """One array of all, int64."""
     return np.concatenate([np.empty(0, np.int64), *arrays])
-
-
-def starts(sizes: I64) -> I64:
-    """Where each of the lists of these sizes begins, and where the last one ends."""
-    return np.concatenate((np.zeros(1, np.int64), np.cumsum(sizes)))
 
 
 def _pairs(packing: Packing) -> int:
