@@ -41,7 +41,7 @@ class Fill:
         if isinstance(structure, Partial):
             return without_structure(monitor, structure.reason)
         recognition, columns = recognise(graph, structure, monitor)
-        found = fill_of_graph(graph, structure, budget.fill, monitor)
+        found = fill_of_graph(graph, structure, budget.fill, monitor, budget.memory)
         if monitor.stop is Stop.CANCEL:
             return without_structure(monitor, "")
         return _conclude(graph, structure, found, recognition, columns, budget, monitor)

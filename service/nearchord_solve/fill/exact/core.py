@@ -10,7 +10,7 @@ from functools import cached_property
 import numpy as np
 
 from nearchord_solve.arrays import I32, I64, U64
-from nearchord_solve.fill.exact.kernels.words import induced, set_pairs
+from nearchord_solve.fill.exact.kernels.words import induced, lifted, set_pairs, written
 from nearchord_solve.fill.exact.ragged import picked
 
 NO_PAIRS: I32 = np.empty((0, 2), np.int32)
@@ -33,11 +33,7 @@ class Core:
     def from_rows(cls, ptr: I64, adj: I32) -> "Core":
         """Read symmetric compressed rows, each vertex its own class.  O(n W + m)."""
         n = ptr.size - 1
-        pairs = np.empty((adj.size, 2), np.int32)
-        pairs[:, 0] = np.repeat(np.arange(n, dtype=np.int32), np.diff(ptr))
-        pairs[:, 1] = adj
-        rows = with_pairs(np.zeros((n, row_words(n)), np.uint64), pairs)
-        return cls(rows, np.arange(n + 1), np.arange(n, dtype=np.int32))
+        return cls(written(ptr, adj), np.arange(n + 1), np.arange(n, dtype=np.int32))
 
     @property
     def n(self) -> int:
@@ -61,6 +57,8 @@ class Core:
 
     def induced(self, kept: I32) -> "Core":
         """The core on ``kept``, ascending, renumbered in this order.  O(k W) and its edges."""
+        if kept.size == self.n:
+            return self
         start, at = picked(self.start, kept)
         return Core(induced(self.rows, kept), start, self.member[at])
 
@@ -78,23 +76,7 @@ class Core:
 
     def lift(self, pairs: I32) -> I32:
         """The pairs of the part, each with its smaller end first."""
-        first, second = pairs[:, 0], pairs[:, 1]
-        counts = self.weights(pairs)
-        at = np.arange(counts.sum()) - np.repeat(np.cumsum(counts) - counts, counts)
-        across = np.repeat(self.sizes[second], counts)
-        ends = np.stack(
-            (
-                self.member[np.repeat(self.start[first], counts) + at // across],
-                self.member[np.repeat(self.start[second], counts) + at % across],
-            ),
-            1,
-        )
-        return np.sort(ends, axis=1)
-
-
-def row_words(n: int) -> int:
-    """Words of a bit row."""
-    return max(1, (n + 63) // 64)
+        return lifted(pairs, self.start, self.member)
 
 
 def with_pairs(rows: U64, pairs: I32) -> U64:

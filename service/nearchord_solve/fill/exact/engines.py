@@ -10,7 +10,7 @@ from nearchord_solve.fill.exact.blocks import solve_blocks
 from nearchord_solve.fill.exact.branch import CaseSearch
 from nearchord_solve.fill.exact.core import Core
 from nearchord_solve.fill.exact.cuts import price_matrix
-from nearchord_solve.fill.exact.greedy import MOST_DENSE, coarse_portfolio, portfolio
+from nearchord_solve.fill.exact.greedy import coarse_portfolio, is_large, portfolio
 from nearchord_solve.fill.exact.packing import disjoint
 from nearchord_solve.fill.exact.root import Bounds, cut
 from nearchord_solve.fill.exact.status import Status
@@ -25,7 +25,7 @@ ENDLESS = 2**31
 
 def first_bounds(core: Core, monitor: Monitor) -> Bounds | None:
     """The cheapest fill of the portfolio; for a large core also a packing of disjoint cycles, None when stopped."""
-    if core.n <= MOST_DENSE:
+    if not is_large(core):
         return Bounds.above(core, portfolio(core, monitor))
     best = coarse_portfolio(core, monitor)
     if best is None:
@@ -41,7 +41,7 @@ def search_core(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> None
 
     A large core is left as it is.
     """
-    if core.n > MOST_DENSE:
+    if is_large(core):
         return
     if free_vertices(core) <= MOST_FREE:
         limit = min(bounds.upper - 1, most)

@@ -41,13 +41,16 @@ def minimal(core: Core, fill: I32, cells: I64) -> I32:
     return thinned(core, with_pairs(core.rows.copy(), fill), cells)
 
 
+def is_large(core: Core) -> bool:
+    """Whether matrices of numbers would be too large, and with them the relaxation and the engines."""
+    return core.n > MOST_DENSE
+
+
 def thinned(core: Core, filled: U64, cells: I64) -> I32:
     """Fill of a triangulation after dropping what can go, sorted; ``filled`` is overwritten."""
     pairs = list_fill(core.rows, filled)
-    if core.n <= MOST_DENSE:
-        count, _ = thin(filled, pairs, np.array([ENDLESS_EFFORT]), _GOING_ON)
-    else:
-        count, _ = thin(filled, pairs, np.array([EFFORT]), cells)
+    effort, cells = (EFFORT, cells) if is_large(core) else (ENDLESS_EFFORT, _GOING_ON)
+    count, _ = thin(filled, pairs, np.array([effort]), cells)
     return pairs[:count].copy()
 
 

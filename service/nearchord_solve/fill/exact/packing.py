@@ -10,7 +10,7 @@ from nearchord_solve.fill.exact.kernels.cuts import disjoint_cycles
 from nearchord_solve.fill.exact.ragged import picked
 from nearchord_solve.fill.exact.result import Packing
 
-PATHS = 2**33  # words that shortest paths may look at, about
+PATHS = 2**31  # words that shortest paths may look at, about
 
 
 def packing_of(core: Core, cuts: Cuts, multipliers: Multipliers) -> Packing:

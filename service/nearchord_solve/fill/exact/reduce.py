@@ -22,6 +22,7 @@ s(u) s(x), and x gave back at least s(c) s(x) >= s(u) s(x) for some c in C.  So 
 """
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
@@ -46,20 +47,20 @@ class Reduced:
 
 def decompose(core: Core, monitor: Monitor) -> list[Core]:
     """Atoms without universal and simplicial vertices: rules 1 and 2 only.  Their fill numbers add up."""
-    waiting = [core]
+    waiting = [(core, np.arange(core.n, dtype=np.int32))]
     found = []
     while waiting:
-        current = waiting.pop()
+        whole, piece = waiting.pop()
+        current = whole.induced(piece)
         kept = stripped(current.rows, monitor.cells)
         if not kept.size:
             continue
         inside = current.induced(kept)
         ptr, vertex = atoms(inside.rows, monitor.cells)
-        pieces = np.split(vertex, ptr[1:-1])
-        if len(pieces) == 1:
+        if ptr.size == 2:
             found.append(inside)
         else:
-            waiting.extend(inside.induced(piece) for piece in reversed(pieces))
+            waiting.extend((inside, vertex[begin:end]) for end, begin in pairwise(ptr[::-1].tolist()))
     return found
 
 

@@ -17,7 +17,7 @@ from nearchord_solve.arrays import I32, I64
 from nearchord_solve.fill.exact.branch import CaseSearch
 from nearchord_solve.fill.exact.core import NO_PAIRS, Core
 from nearchord_solve.fill.exact.engines import first_bounds, search_core
-from nearchord_solve.fill.exact.greedy import MOST_DENSE, PRODUCTS, completed, minimal
+from nearchord_solve.fill.exact.greedy import PRODUCTS, completed, is_large, minimal
 from nearchord_solve.fill.exact.kernels.greedy import BY_DEGREE
 from nearchord_solve.fill.exact.packing import packing_of
 from nearchord_solve.fill.exact.reduce import contract_twins, decompose, reduce_core
@@ -191,7 +191,7 @@ def bounded(atom: Core, most: int, monitor: Monitor) -> Piece | None:
     bounds = first_bounds(core, monitor)
     if bounds is None:
         return None
-    relaxation = None if monitor.stop or core.n > MOST_DENSE else cut(core, bounds, most, monitor)
+    relaxation = None if monitor.stop or is_large(core) else cut(core, bounds, most, monitor)
     kept = None if bounds.closed else relaxation
     return Piece(core, bounds, kept, core.lift(bounds.best), bounds.lower, bounds.lower)
 

@@ -98,10 +98,43 @@ def lacking(rows: U64, chosen: U64, pair: I64) -> int:
 
 
 @kernel
+def written(ptr: I64, adj: I32) -> U64:
+    """Bit rows of symmetric compressed rows."""
+    n = ptr.shape[0] - 1
+    rows = np.zeros((n, max(1, (n + 63) // 64)), np.uint64)
+    for v in range(n):
+        for e in range(ptr[v], ptr[v + 1]):
+            rows[v, adj[e] >> 6] |= np.uint64(1) << np.uint64(adj[e] & 63)
+    return rows
+
+
+@kernel
 def set_pairs(rows: U64, pairs: I32) -> None:
     """Add ``pairs`` int32[k, 2] to bit rows."""
     for e in range(pairs.shape[0]):
         set_pair(rows, pairs[e, 0], pairs[e, 1])
+
+
+@kernel
+def lifted(pairs: I32, start: I64, member: I32) -> I32:
+    """All pairs between the classes of each pair, int32[l, 2], smaller end first.
+
+    Class v is member[start[v]:start[v+1]]; ``pairs`` int32[k, 2].
+    """
+    total = np.int64(0)
+    for e in range(pairs.shape[0]):
+        a = pairs[e, 0]
+        b = pairs[e, 1]
+        total += (start[a + 1] - start[a]) * (start[b + 1] - start[b])
+    found = np.empty((total, 2), np.int32)
+    at = 0
+    for e in range(pairs.shape[0]):
+        for i in range(start[pairs[e, 0]], start[pairs[e, 0] + 1]):
+            for j in range(start[pairs[e, 1]], start[pairs[e, 1] + 1]):
+                found[at, 0] = min(member[i], member[j])
+                found[at, 1] = max(member[i], member[j])
+                at += 1
+    return found
 
 
 @kernel
