@@ -86,26 +86,29 @@ def violated(core: Core, x: F64, thresholds: tuple[float, ...], enough: int, cel
     present = presence(core.rows, x)
     squares, gain = four_cycles(core.rows, present, LEAST_VIOLATION)
     found = Cycles(4 * np.arange(squares.shape[0] + 1), squares.ravel())
-    found, gain = _distinct(found, gain)
+    seen = core.rows[:0]
     for threshold in thresholds:
+        if found.count >= enough and np.unique(found.keys()).size >= enough:
+            break
         rounded = core.rows.copy()
         round_up(present, threshold, rounded)
+        if np.array_equal(rounded, seen):
+            continue
+        seen = rounded
         flat, ends, gains = long_cycles(rounded, present, LEAST_VIOLATION, cells)
         longer = Cycles(np.concatenate((np.zeros(1, np.int64), ends)), flat)
-        found, gain = _distinct(found.joined(longer), np.concatenate((gain, gains)))
-        if found.count >= enough:
-            break
-    return found
+        found, gain = found.joined(longer), np.concatenate((gain, gains))
+    return _ordered(found, gain)
 
 
-def _distinct(cycles: Cycles, gain: F64) -> tuple[Cycles, F64]:
+def _ordered(cycles: Cycles, gain: F64) -> Cycles:
     """Each cycle once, the most violated first; ties by their first vertices, then by key."""
     if not cycles.count:
-        return cycles, gain
+        return cycles
     keys, first = np.unique(cycles.keys(), return_index=True)
     cycles, gain = cycles.take(first).turned(), gain[first]
     sizes = np.diff(cycles.ptr)
     places = cycles.ptr[:-1, None] + np.arange(TOLD_APART)
     begins = np.where(np.arange(TOLD_APART) < sizes[:, None], cycles.vertex[places % cycles.vertex.size], -1)
     order = np.lexsort((keys, *begins.T[::-1], -np.round(gain * NEGLIGIBLE)))
-    return cycles.take(order), gain[order]
+    return cycles.take(order)
