@@ -7,34 +7,11 @@ from nearchord_solve.arrays import F64, I32, I64
 from nearchord_solve.fill.exact.core import Core
 from nearchord_solve.fill.exact.cuts import Cuts, Multipliers, excess, rounded_up, unnumbered
 from nearchord_solve.fill.exact.cycles import Cycles
-from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.linear import quiet_solver
 from nearchord_solve.monitor import Monitor
 
 FORBIDDING = 1e5
 OPEN, ADDED, LEFT_OUT = -1, 1, 0
-
-
-class _Silent(highspy.Highs):
-    """A solver that prints nothing, not even when it is made."""
-
-    def __init__(self) -> None:
-        super().__init__()  # type: ignore[no-untyped-call]
-
-    def enableCallbacks(self) -> None:  # noqa: N802
-        """Called on construction: silence comes first."""
-        self.silent()
-        super().enableCallbacks()  # type: ignore[no-untyped-call]
-
-
-class _Watch:
-    """Ends a run of the solver when the monitor says stop.  Holds the cells only, so that no cycle keeps it alive."""
-
-    def __init__(self, cells: I64) -> None:
-        self.cells = cells
-
-    def __call__(self, event: highspy.HighsCallbackEvent) -> None:
-        if self.cells[STOP] != 0:
-            event.interrupt()
 
 
 class Relaxation:
@@ -56,10 +33,7 @@ class Relaxation:
         self._idle: I64 = np.empty(0, np.int64)
         self._numbers: I64 = np.empty(0, np.int64)  # of the pairs, ascending
         self._columns: I64 = np.empty(0, np.int64)  # of the pairs with these numbers
-        self._solver = _Silent()
-        self._solver.cbSimplexInterrupt.subscribe(_Watch(monitor.cells))
-        for option, value in (("threads", 1), ("parallel", "off"), ("presolve", "off"), ("random_seed", 0)):
-            self._solver.setOptionValue(option, value)
+        self._solver = quiet_solver(monitor)
 
     def add(self, cycles: Cycles) -> int:
         """Add cuts that are not there yet; returns how many were."""
