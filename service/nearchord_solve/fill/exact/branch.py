@@ -112,7 +112,7 @@ class CaseSearch:
         multipliers = self.relaxation.multipliers()
         if self.relaxation.bound(multipliers) <= self.target:
             return None
-        return packing_of(self.core, self.relaxation.cuts, multipliers)
+        return packing_of(self.core, self.relaxation.cuts.cycles, multipliers)
 
     def _choose(self, case: _Case, value: float, fractional: I64) -> int:
         """The fractional pair whose worse and better case raise the relaxation most, together."""

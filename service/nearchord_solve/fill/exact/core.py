@@ -31,9 +31,12 @@ class Core:
 
     @classmethod
     def from_rows(cls, ptr: I64, adj: I32) -> "Core":
-        """Read symmetric compressed rows, each vertex its own class.  O(n W + m)."""
+        """Read symmetric compressed rows, each vertex its own class.  O(n W + m).
+
+        Rows may be read-only, and the kernel knows one type only: they are copied.
+        """
         n = ptr.size - 1
-        return cls(written(ptr, adj), np.arange(n + 1), np.arange(n, dtype=np.int32))
+        return cls(written(ptr.copy(), adj.copy()), np.arange(n + 1), np.arange(n, dtype=np.int32))
 
     @property
     def n(self) -> int:

@@ -9,7 +9,7 @@ from nearchord_solve.arrays import I32
 from nearchord_solve.fill.exact.blocks import solve_blocks
 from nearchord_solve.fill.exact.branch import CaseSearch
 from nearchord_solve.fill.exact.core import Core
-from nearchord_solve.fill.exact.cuts import price_matrix
+from nearchord_solve.fill.exact.cuts import Cuts, price_matrix
 from nearchord_solve.fill.exact.greedy import coarse_portfolio, is_large, portfolio
 from nearchord_solve.fill.exact.packing import disjoint
 from nearchord_solve.fill.exact.root import Bounds, cut
@@ -31,8 +31,7 @@ def first_bounds(core: Core, monitor: Monitor) -> Bounds | None:
     if best is None:
         return None
     bounds = Bounds.above(core, best)
-    cuts, multipliers = disjoint(core, best, monitor.cells)
-    bounds.raise_to(int(cuts.least @ multipliers.numerators), cuts, multipliers)
+    bounds.raise_to(*disjoint(core, best, monitor.cells))
     return bounds
 
 
@@ -59,7 +58,7 @@ def search_core(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> None
 def by_blocks(core: Core, bounds: Bounds, most: int, separators: int, monitor: Monitor) -> bool:
     """Look for a fill cheaper than the best known one among potential maximal cliques; whether that settled it."""
     limit = min(bounds.upper - 1, most)
-    base, prices = price_matrix(core, bounds.cuts, bounds.multipliers)
+    base, prices = price_matrix(core, Cuts.of(core, bounds.cycles), bounds.multipliers)
     slack = limit * bounds.multipliers.denominator - base
     return settle(core, bounds, limit, *solve_blocks(core, limit, prices, slack, separators, monitor.cells))
 

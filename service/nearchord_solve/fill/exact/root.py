@@ -6,7 +6,7 @@ import numpy as np
 
 from nearchord_solve.arrays import F64, I32
 from nearchord_solve.fill.exact.core import Core
-from nearchord_solve.fill.exact.cuts import Cuts, Multipliers
+from nearchord_solve.fill.exact.cuts import Multipliers
 from nearchord_solve.fill.exact.cycles import Cycles, violated
 from nearchord_solve.fill.exact.greedy import completed, prices_of
 from nearchord_solve.fill.exact.kernels.cuts import pick
@@ -27,20 +27,19 @@ class Bounds:
     """Where the search for one core stands.
 
     ``best``: the cheapest fill found (pairs of classes), of cost ``upper``; every fill costs at least ``lower``, which
-    ``cuts`` with ``multipliers`` prove when ``lower`` came from them.
+    ``cycles`` with ``multipliers`` prove when ``lower`` came from them.
     """
 
     best: I32
     upper: int
-    cuts: Cuts
+    cycles: Cycles
     multipliers: Multipliers
     lower: int = 0
 
     @classmethod
     def above(cls, core: Core, best: I32) -> "Bounds":
         """A fill is known and no lower bound."""
-        none = Cuts.of(core, Cycles.none())
-        return cls(best, core.cost(best), none, Multipliers(none.least, 1))
+        return cls(best, core.cost(best), Cycles.none(), Multipliers(np.empty(0, np.int64), 1))
 
     @property
     def closed(self) -> bool:
@@ -53,10 +52,10 @@ class Bounds:
         if cost < self.upper:
             self.best, self.upper = pairs, cost
 
-    def raise_to(self, lower: int, cuts: Cuts, multipliers: Multipliers) -> None:
+    def raise_to(self, lower: int, cycles: Cycles, multipliers: Multipliers) -> None:
         """Keep a lower bound if it is better."""
         if lower > self.lower:
-            self.lower, self.cuts, self.multipliers = lower, cuts, multipliers
+            self.lower, self.cycles, self.multipliers = lower, cycles, multipliers
 
 
 def cut(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> Relaxation:
@@ -71,7 +70,7 @@ def cut(core: Core, bounds: Bounds, most: int, monitor: Monitor) -> Relaxation:
         values.append(value)
         if np.ceil(value - 1e-6) > bounds.lower:
             multipliers = relaxation.multipliers()
-            bounds.raise_to(relaxation.bound(multipliers), relaxation.cuts, multipliers)
+            bounds.raise_to(relaxation.bound(multipliers), relaxation.cuts.cycles, multipliers)
         point = relaxation.point()
         if turn % 3 == 2:
             guided(core, point, bounds, 1)

@@ -62,7 +62,7 @@ class Piece:
         """The packing that proves ``lower``, if the multipliers do."""
         if self.lower > self.packed:
             return None
-        return packing_of(self.core, self.bounds.cuts, self.bounds.multipliers)
+        return packing_of(self.core, self.bounds.cycles, self.bounds.multipliers)
 
     @property
     def narrow(self) -> bool:

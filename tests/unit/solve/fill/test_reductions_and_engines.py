@@ -12,7 +12,7 @@ from nearchord_solve import Graph, Monitor
 from nearchord_solve.fill.exact.blocks import solve_blocks
 from nearchord_solve.fill.exact.branch import CaseSearch
 from nearchord_solve.fill.exact.core import Core
-from nearchord_solve.fill.exact.cuts import price_matrix
+from nearchord_solve.fill.exact.cuts import Cuts, price_matrix
 from nearchord_solve.fill.exact.engines import first_bounds
 from nearchord_solve.fill.exact.kernels.separators import connected_order
 from nearchord_solve.fill.exact.kernels.words import permuted
@@ -164,7 +164,7 @@ def test_blocks_find_a_least_fill_or_show_that_there_is_none(core: Core) -> None
     least = least_fill(*spread(core))
     bounds = bounds_of(core)
     cut(core, bounds, PLENTY, Monitor())
-    base, prices = price_matrix(core, bounds.cuts, bounds.multipliers)
+    base, prices = price_matrix(core, Cuts.of(core, bounds.cycles), bounds.multipliers)
     for limit in (least, least - 1):
         for price, slack in ((free(core), 0), (prices, limit * bounds.multipliers.denominator - base)):
             status, pairs = solve_blocks(core, limit, price, slack, PLENTY, Monitor().cells)

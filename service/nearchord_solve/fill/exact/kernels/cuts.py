@@ -91,12 +91,23 @@ def _opposite(rows: U64, a: int, b: int, v: int) -> int:
 
 
 @kernel
-def disjoint_cycles(rows: U64, pairs: I32, tries: int, cells: I64) -> tuple[I64, I32]:
-    """Chordless cycles of which no two share a non-edge: (ptr int64[k+1], vertex int32).
+def _cheapest_chord(sizes: I64, cycle: I32, length: int) -> int:
+    """The least product of the sizes of two vertices of a cycle that do not follow each other."""
+    least = np.int64(2**62)
+    for i in range(length - 2):
+        for j in range(i + 2, length - (i == 0)):
+            least = min(least, sizes[cycle[i]] * sizes[cycle[j]])
+    return int(least)
 
-    ``pairs`` int32[f, 2]: the fill of some triangulation.  Each chordless cycle has a vertex whose two neighbours on it
-    are joined by fill, so only such (fill edge, common neighbour) are tried: cycles on four vertices first, as they
-    use the fewest non-edges for what they add, then all, by at most ``tries`` shortest paths.  Fewer when stopped.
+
+@kernel
+def disjoint_cycles(rows: U64, sizes: I64, pairs: I32, tries: int, cells: I64) -> tuple[I64, I32, I64]:
+    """Chordless cycles of which no two share a non-edge, and what the cheapest chord of each costs.
+
+    Returns (ptr int64[k+1], vertex int32, cost int64[k]).  ``rows`` uint64[n, W], ``sizes`` int64[n]; ``pairs``
+    int32[f, 2]: the fill of some triangulation.  Each chordless cycle has a vertex whose two neighbours on it are
+    joined by fill, so only such (fill edge, common neighbour) are tried: cycles on four vertices first, as they use the
+    fewest non-edges for what they add, then all, by at most ``tries`` shortest paths.  Fewer when stopped.
     """
     n, words = rows.shape
     used = np.zeros((n, words), np.uint64)
@@ -105,6 +116,7 @@ def disjoint_cycles(rows: U64, pairs: I32, tries: int, cells: I64) -> tuple[I64,
     cycle = np.empty(n + 1, np.int32)
     ptr = np.zeros(64, np.int64)
     vertex = np.empty(1024, np.int32)
+    cost = np.empty(64, np.int64)
     count = 0
     for long in range(2):
         for e in range(pairs.shape[0]):
@@ -137,9 +149,11 @@ def disjoint_cycles(rows: U64, pairs: I32, tries: int, cells: I64) -> tuple[I64,
                         continue
                     if count + 2 > ptr.shape[0]:
                         ptr = np.concatenate((ptr, np.empty_like(ptr)))
+                        cost = np.concatenate((cost, np.empty_like(cost)))
                     if ptr[count] + length > vertex.shape[0]:
                         vertex = np.concatenate((vertex, np.empty(ptr[count] + length, np.int32)))
                     vertex[ptr[count] : ptr[count] + length] = cycle[:length]
                     ptr[count + 1] = ptr[count] + length
+                    cost[count] = _cheapest_chord(sizes, cycle, length)
                     count += 1
-    return ptr[: count + 1].copy(), vertex[: ptr[count]].copy()
+    return ptr[: count + 1].copy(), vertex[: ptr[count]].copy(), cost[:count].copy()
