@@ -37,4 +37,4 @@ def triangulation_fill(rows: U64, cells: I64) -> I32 | None:
     n, width = rows.shape
     lacking = (later & ~rows).astype("<u8").view(np.uint8).reshape(n, 8 * width)
     ends = np.argwhere(np.unpackbits(lacking, axis=1, bitorder="little"))
-    return np.sort(ends, axis=1).astype(np.int32)
+    return np.ascontiguousarray(np.sort(ends, axis=1), np.int32)
