@@ -66,7 +66,7 @@ class Outcome:
     "search" if the bound can be recomputed only, "certificate" if a checker can confirm it, "none" if nothing is
     proven; ``proof_kinds``: one per fill core.  ``reason``: in words, never empty.  ``columns``: further arrays by
     name, uint32 (vertices) or int64.  ``kept``: the structure of the graph, if it is new, for later solves on the
-    same graph.
+    same graph.  ``count``: how many sets are best, None if not asked or not known.
     """
 
     verdict: Verdict
@@ -87,3 +87,4 @@ class Outcome:
     recognition: Recognition | None = None
     report: StructureReport | None = None
     kept: Kept | None = None
+    count: int | None = None

@@ -12,6 +12,8 @@ from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
+from nearchord_solve.questions.addons.added import AddOn, extend
+from nearchord_solve.questions.addons.terms import check_terms
 from nearchord_solve.questions.conclude import contradiction, outcome_of
 from nearchord_solve.questions.gauge import Gauge
 from nearchord_solve.questions.heaviest import Task, find_heaviest
@@ -20,15 +22,27 @@ from nearchord_solve.questions.pins import Contradiction, apply_pins, lift, pin_
 
 @dataclass(frozen=True)
 class IndependentSet:
-    """``must``: vertices that have to be chosen; ``never``: vertices that may not be; both 0-based."""
+    """``must``: vertices that have to be chosen; ``never``: vertices that may not be; both 0-based.
+
+    Add-ons: ``prices`` of the vertices, ``conflict_prices`` of the edges, the ``best`` so many sets (2 to 1000; 0 and 1
+    ask for nothing more), the ``count`` of the best ones; or ``limit``: at most so many vertices are chosen, pins
+    included; or ``scenarios``: so many vectors of weights.
+    """
 
     must: Sequence[int] | I64 = ()
     never: Sequence[int] | I64 = ()
+    prices: bool = False
+    conflict_prices: bool = False
+    best: int = 0
+    count: bool = False
+    limit: int | None = None
+    scenarios: int = 0
 
     def answer(
         self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor, reuse: Reuse
     ) -> Outcome:
         """Answer for checked arguments; see :func:`nearchord_solve.solve`."""
+        check_terms(self)
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)
         rest = apply_pins(graph, weights, must, never)
@@ -36,5 +50,11 @@ class IndependentSet:
             return contradiction(rest, "must be chosen", "must not be chosen")
         gauge = Gauge(monitor, rest.taken_weight, 1)
         whole = reuse if rest.graph is graph else None
-        found = find_heaviest(Task(rest.graph, rest.weights, budget, when_over, gauge, whole))
-        return outcome_of(found, rest.taken_weight, 1, lambda chosen: lift(rest, chosen), rest.vertices)
+        task = Task(rest.graph, rest.weights, budget, when_over, gauge, whole)
+        found = find_heaviest(task)
+        outcome = outcome_of(found, rest.taken_weight, 1, lambda chosen: lift(rest, chosen), rest.vertices)
+        return extend(outcome, task, rest, found.swept, self._wanted())
+
+    def _wanted(self) -> dict[str, AddOn]:
+        """The add-ons asked for, by name."""
+        return {}
