@@ -1,26 +1,27 @@
 """The k best independent sets of a graph after its sweep, one after the other.
 
-The outward pass decides at points, one after the other: at a place outside fill cores whether it is chosen, in a bag of
-a core which homes are; what was chosen around a point before is all that its decision depends on.
+The outward pass decides at points, one after the other: at a place outside fill cores whether it is chosen, in a bag
+of a core which homes are; what was chosen around a point before is all that its decision depends on.
 
 *Cost of a decision.*  Let S be any independent set, whose decisions are followed instead of the best ones.  Its
-weight is the optimum minus the sum of the costs of its decisions, where a decision costs the difference between the best
-decision, given what S has around the point, and its own; hence no cost is negative.  Proof, along the inward pass, which
-keeps: w(S) = base + (residuals of the chosen places not settled yet) + (kept parts of messages that S meets) - (costs of
-the points settled).  A place i outside cores, with residual r and g = max(0, r), gives g to the base and takes g from
-all of L(i).  {i} + L(i) is a clique.  If S has a vertex of L(i), what is given and what is taken cancel, i cannot be
-chosen, and there is one decision, of cost 0.  Otherwise S has r or 0 of i where the base has g: one decision costs 0,
-the other |r|.  A bag of a core adds up what it is worth, M(t), given the part t of S in its adhesion; S has the
-value of the state S & bag instead: the difference is the cost.  At the end nothing is left but base and costs.
+weight is the optimum minus the sum of the costs of its decisions, where a decision costs the difference between the
+best decision, given what S has around the point, and its own; hence no cost is negative.  Proof, along the inward
+pass, which keeps: w(S) = base + (residuals of the chosen places not settled yet) + (kept parts of messages that S
+meets) - (costs of the points settled).  A place i outside cores, with residual r and g = max(0, r), gives g to the
+base and takes g from all of L(i).  {i} + L(i) is a clique.  If S has a vertex of L(i), what is given and what is
+taken cancel, i cannot be chosen, and there is one decision, of cost 0.  Otherwise S has r or 0 of i where the base
+has g: one decision costs 0, the other |r|.  A bag of a core adds up what it is worth, M(t), given the part t of S in
+its adhesion; S has the value of the state S & bag instead: the difference is the cost.  At the end nothing is left
+but base and costs.
 
-*The tree of sets.*  Call a decision other than that of the outward pass, given the same surroundings, a deviation.  A set
-is known by its deviations, as all else follows.  Taking away the last one leaves another set, of no greater cost: this
-makes all independent sets a tree, rooted at the set that the outward pass chose.  Below a set are those with one
+*The tree of sets.*  Call a decision other than that of the outward pass, given the same surroundings, a deviation.  A
+set is known by its deviations, as all else follows.  Taking away the last one leaves another set, of no greater cost:
+this makes all independent sets a tree, rooted at the set that the outward pass chose.  Below a set are those with one
 deviation more, at a later point; where a point has several, they come one after the other by cost, the next one only
-when the one before has been taken.  So the sets are found in the order of their cost by a heap, each exactly once, and k
-of them need k times what follows from one deviation.  Of the deviations of a set only the k - (sets found) cheapest are
-kept, and only those cheaper than the k-th cheapest known anywhere.  What a set inherits from the set above stays so,
-except at points whose surroundings have changed.
+when the one before has been taken.  So the sets are found in the order of their cost by a heap, each exactly once,
+and k of them need k times what follows from one deviation.  Of the deviations of a set only the k - (sets found)
+cheapest are kept, and only those cheaper than the k-th cheapest known anywhere.  What a set inherits from the set
+above stays so, except at points whose surroundings have changed.
 
 Equal weights come in a fixed order: that in which they entered the heap.  (The heap over deviations follows Lawler,
 Management Science 18 (1972) 401-405, who splits what is left by the first decision that differs.)
@@ -142,7 +143,8 @@ class BestSets:
         before = chosen[mine]
         chosen[mine] = 0
         chosen[homes] = 1
-        return mine[before != chosen[mine]]
+        changed: I32 = mine[before != chosen[mine]]
+        return changed
 
     def _follow(self, start: int, changed: I32, pending: int, chosen: U8) -> tuple[I32, U8]:
         structure, swept = self._swept.structure, self._swept
@@ -198,9 +200,10 @@ class BestSets:
 
     def _homes(self, bag: int) -> I32:
         forest = self._swept.structure.forest
-        return forest.slot_place[
-            forest.bag_slot[forest.bag_ptr[bag] + forest.bag_adhesion[bag] : forest.bag_ptr[bag + 1]]
-        ]
+        begin = forest.bag_ptr[bag] + forest.bag_adhesion[bag]
+        slots: I32 = forest.bag_slot[begin : forest.bag_ptr[bag + 1]]
+        homes: I32 = forest.slot_place[slots]
+        return homes
 
     def _others(self, bag: int, chosen: U8) -> Others:
         """The deviations at a bag next to what is chosen in its adhesion; they are kept for the next who asks."""

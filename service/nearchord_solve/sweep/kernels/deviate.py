@@ -83,7 +83,7 @@ def best_states(
     sizes = np.zeros(most, np.int64)
     homes = np.zeros((most, deepest), np.int32)
     heap = np.zeros(most, np.int32)
-    _, size = _offer(np.int64(0), heap, int(np.int64(0)), values)
+    _, size = _offer(int(np.int64(0)), heap, int(np.int64(0)), values)
     taken = 0
     j = 0
     for e in range(begin, split):
@@ -150,7 +150,7 @@ def follow(
     ``free`` tells of a place whether nothing around it forbade it, and is 1 for bags.  Returns how many they are.
     """
     for p in changed:
-        pending += _mark(p, start, points, numbering, dirty)
+        pending += _mark(int(np.int64(p)), start, points, numbering, dirty)
     count = 0
     at = start
     while pending > 0:
@@ -170,7 +170,7 @@ def follow(
             wanted = free[count] if residual[i] > 0 else np.uint8(0)
             if chosen[i] != wanted:
                 chosen[i] = wanted
-                pending += _mark(i, at, points, numbering, dirty)
+                pending += _mark(int(np.int64(i)), at, points, numbering, dirty)
         else:
             b = -1 - i
             begin = forest.bag_ptr[b] + forest.bag_adhesion[b]
@@ -186,6 +186,6 @@ def follow(
             for e in range(before.shape[0]):
                 p = forest.slot_place[forest.bag_slot[begin + e]]
                 if chosen[p] != before[e]:
-                    pending += _mark(p, at, points, numbering, dirty)
+                    pending += _mark(int(np.int64(p)), at, points, numbering, dirty)
         count += 1
     return count

@@ -7,6 +7,7 @@ from nearchord_solve.kernels.compiled import I32, I64, U32, kernel
 from nearchord_solve.sweep.kernels.tally import OVER, PLUS, START, STEP, TIMES
 
 HALF = np.uint64(32)
+TWO = np.uint64(2)
 WORD = np.uint64(2**32 - 1)
 
 
@@ -31,8 +32,13 @@ def run_logarithms(code: I32, steps: int, value: I64) -> tuple[float, float]:
         else:
             one = value[target]
             other = 0.0 if what == STEP else value[source]
-            value[target] = max(one, other) + np.log1p(np.exp(-abs(one - other)))
-        most = max(most, abs(value[target]))
+            if one < other:
+                one, other = other, one
+            value[target] = one + np.log1p(np.exp(other - one))
+        if value[target] > most:
+            most = value[target]
+        elif -value[target] > most:
+            most = -value[target]
     return value[0], most
 
 
@@ -48,13 +54,13 @@ def run_residues(code: I32, steps: int, prime: U32, number: U32, below: U32, cel
     p = np.empty(lanes, np.uint64)
     inverse = np.empty(lanes, np.uint64)  # -1/p modulo 2**32
     unit = np.empty(lanes, np.uint32)  # 2**32 modulo p
-    spare = np.empty((2, lanes), np.uint32)
+    spare = np.empty(lanes, np.uint32)
     for k in range(lanes):
         p[k] = prime[k]
         root = p[k]
         for _ in range(5):
-            root = root * (np.uint64(2) - p[k] * root)
-        inverse[k] = (np.uint64(0) - root) & WORD
+            root = root * (TWO - p[k] * root)
+        inverse[k] = ~root + np.uint64(1) & WORD
         unit[k] = np.uint32((WORD + np.uint64(1)) % p[k])
     for t in range(steps):
         if (t & POLL) == 0 and cells[STOP] != 0:
@@ -64,8 +70,9 @@ def run_residues(code: I32, steps: int, prime: U32, number: U32, below: U32, cel
         source = code[3 * t + 2]
         a, b = number[target], below[target]
         if what == START:
-            a[:] = unit
-            b[:] = unit
+            for k in range(lanes):
+                a[k] = unit[k]
+                b[k] = unit[k]
         elif what == STEP:
             _plus(a, b, p)
         elif what == TIMES:
@@ -76,9 +83,9 @@ def run_residues(code: I32, steps: int, prime: U32, number: U32, below: U32, cel
             _times(b, number[source], b, p, inverse)
         elif what == PLUS:
             _times(a, below[source], a, p, inverse)
-            _times(b, number[source], spare[0], p, inverse)
+            _times(b, number[source], spare, p, inverse)
             _times(b, below[source], b, p, inverse)
-            _plus(a, spare[0], p)
+            _plus(a, spare, p)
     return True
 
 

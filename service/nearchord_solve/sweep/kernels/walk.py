@@ -1,7 +1,7 @@
 """One bag with fill as the passes left it, and a walk through its states.
 
-For whoever goes through a bag once more after :mod:`.passes`: states come in the order of :mod:`.tables`, depth first by
-ascending slots.
+For whoever goes through a bag once more after :mod:`.passes`: states come in the order of :mod:`.tables`, depth first
+by ascending slots.
 """
 
 from typing import NamedTuple
@@ -59,13 +59,19 @@ def begin_walk(opened: Opened, children: int, first: int) -> Walk:
     """A walk through the states of vertices from ``first`` on; it stands at the empty one."""
     count, words = opened.rows.shape
     deepest = depth_limit(count, opened.edges) + 1
-    open_ = np.zeros((deepest, words), np.uint64)
+    open_ = np.empty((deepest, words), np.uint64)
+    for w in range(words):
+        open_[0, w] = 0
     for j in range(first, count):
         open_[0, j >> 6] |= ONE << np.uint64(j & 63)
-    return Walk(
-        open_, np.full(deepest, -1, np.int64), np.full(children, -1, np.int64),
-        np.empty(opened.meet_node.shape[0] + 1, np.int64), np.zeros(2, np.int64),
-    )  # fmt: skip
+    current = np.empty(children, np.int64)
+    for q in range(children):
+        current[q] = -1
+    at = np.empty(2, np.int64)
+    at[0] = 0
+    at[1] = 0
+    undo = np.empty(opened.meet_node.shape[0] + 1, np.int64)
+    return Walk(open_, np.empty(deepest, np.int64), current, undo, at)
 
 
 @kernel
