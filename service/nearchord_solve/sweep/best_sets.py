@@ -40,7 +40,7 @@ from nearchord_solve.kernels.layout import BAG_FILL
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.sweep.independent import Swept
 from nearchord_solve.sweep.kernels import deviate
-from nearchord_solve.sweep.kernels.passes import link_bags, senders
+from nearchord_solve.sweep.kernels.passes import choose_bag, choose_plain, link_bags, senders
 
 
 @dataclass(frozen=True, eq=False)
@@ -93,6 +93,7 @@ class BestSets:
         self._where = np.full(swept.structure.forest.slot_place.size, -1, np.int32)
         self._dirty = np.zeros(size, np.uint8)
         self._met, self._free = np.empty(size, np.int32), np.empty(size, np.uint8)
+        self._state = np.zeros(2, np.int64)
         self._heap: list[Open] = []
         self._serial = 0
         self._costs: list[int] = []  # the ``most`` least costs known, ascending
@@ -115,10 +116,16 @@ class BestSets:
         return np.unpackbits(self.known[number].bits, count=self._n)
 
     def _root(self) -> None:
+        """Begin with what the outward pass chose; all its points are looked at once."""
+        assert self._swept.chosen is not None
         self._costs.append(0)
-        self._dirty[:] = 1
-        chosen = np.zeros(self._n, np.uint8)
-        met, free = self._follow(-1, np.empty(0, np.int32), self._dirty.size, chosen)
+        chosen = self._swept.chosen[self._swept.structure.numbering.order]
+        alone = self._points.point >= 0
+        self._dirty[:] = alone
+        self._state[:] = alone.sum(), 0
+        met, free = self._follow(-1, np.empty(0, np.int32), chosen)
+        bags = np.flatnonzero(~alone).astype(np.int32)
+        met, free = np.concatenate((met, bags)), np.concatenate((free, np.ones(bags.size, np.uint8)))
         self._keep(0, chosen, met, free, -1, Offers(np.empty(0, np.int64), np.empty(0, np.int64)))
 
     def _take(self, node: Open) -> None:
@@ -134,7 +141,8 @@ class BestSets:
             if node.rank + 1 < len(node.others.cost):
                 cost = above.cost + node.others.cost[node.rank + 1]
                 self._open(cost, node.above, node.point, node.rank + 1, node.others)
-        met, free = self._follow(node.point, changed, 0, chosen)
+        self._state[:] = 0
+        met, free = self._follow(node.point, changed, chosen)
         self._keep(node.cost, chosen, met, free, node.point, above.offers)
 
     def _replace_homes(self, bag: int, homes: I32, chosen: U8) -> I32:
@@ -146,13 +154,32 @@ class BestSets:
         changed: I32 = mine[before != chosen[mine]]
         return changed
 
-    def _follow(self, start: int, changed: I32, pending: int, chosen: U8) -> tuple[I32, U8]:
-        structure, swept = self._swept.structure, self._swept
-        count = deviate.follow(
-            start, changed, pending, self._points, structure.numbering, structure.forest, *self._links,
-            swept.tries, swept.residual, self._dirty, self._where, chosen, self._met, self._free,
-        )  # fmt: skip
-        return self._met[:count].copy(), self._free[:count]
+    def _follow(self, at: int, changed: I32, chosen: U8) -> tuple[I32, U8]:
+        """Choose anew what follows from changes at a point: the points looked at, and which of them are free."""
+        numbering, residual = self._swept.structure.numbering, self._swept.residual
+        while True:
+            deviate.mark_all(changed, at, self._points, numbering, self._dirty, self._state)
+            at = deviate.follow(
+                at, self._points, numbering, residual, self._dirty, chosen, self._met, self._free, self._state
+            )
+            if at < 0:
+                count = self._state[1]
+                return self._met[:count].copy(), self._free[:count].copy()
+            changed = self._choose_homes(-1 - int(self._points.point[at]), chosen)
+
+    def _choose_homes(self, bag: int, chosen: U8) -> I32:
+        """Choose the homes of a bag as the outward pass would; returns the places that changed."""
+        swept, forest = self._swept, self._swept.structure.forest
+        mine = self._homes(bag)
+        before = chosen[mine]
+        chosen[mine] = 0
+        if forest.bag_kind[bag] & BAG_FILL:
+            below = senders(bag, *self._links)
+            choose_bag(bag, forest, below, swept.tries, self._where, swept.residual, chosen)
+        else:
+            choose_plain(bag, forest, swept.residual, chosen)
+        changed: I32 = mine[before != chosen[mine]]
+        return changed
 
     def _keep(self, cost: int, chosen: U8, met: I32, free: U8, start: int, above: Offers) -> None:
         """Record a set and open what is right below it, unless there is enough that is cheaper."""
@@ -220,13 +247,16 @@ class BestSets:
 
     def _with_fill(self, bag: int, chosen: U8) -> Others:
         structure, swept = self._swept.structure, self._swept
-        values, sizes, homes = deviate.best_states(
+        most = self._most - len(self.known) + 1
+        values, sizes = np.empty(most, np.int64), np.empty(most, np.int64)
+        count, homes = deviate.best_states(
             bag, structure.forest, senders(bag, *self._links), swept.tries, self._where, swept.residual, chosen,
-            self._most - len(self.known) + 1,
+            np.empty(most, np.int32), values, sizes,
         )  # fmt: skip
+        values = values[:count]
         with np.errstate(over="ignore"):
             cost = (values - values[0]).max() - (values - values[0])
-        sets = [np.sort(homes[row, : sizes[row]]) for row in range(values.size)]
+        sets = [np.sort(homes[row, : sizes[row]]) for row in range(count)]
         return self._other_than(chosen[self._homes(bag)], self._homes(bag), cost, sets)
 
     def _without_fill(self, bag: int, closed: bool, chosen: U8) -> Others:

@@ -9,8 +9,7 @@ from typing import NamedTuple
 import numpy as np
 
 from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
-from nearchord_solve.kernels.layout import BAG_FILL, Forest, Numbering, Tries
-from nearchord_solve.sweep.kernels.passes import choose_bag, choose_plain, senders
+from nearchord_solve.kernels.layout import Forest, Numbering, Tries
 from nearchord_solve.sweep.kernels.walk import begin_walk, join, next_state, open_bag
 
 
@@ -66,12 +65,14 @@ def _offer(value: int, heap: I32, size: int, values: I64) -> tuple[int, int]:
 
 @kernel
 def best_states(
-    bag: int, forest: Forest, children: I32, tries: Tries, where: I32, residual: I64, chosen: U8, most: int
-) -> tuple[I64, I64, I32]:  # fmt: skip
-    """The ``most`` best choices of homes of a bag with fill, next to what is chosen in its adhesion.
+    bag: int, forest: Forest, children: I32, tries: Tries, where: I32, residual: I64, chosen: U8,
+    heap: I32, values: I64, sizes: I64,
+) -> tuple[int, I32]:  # fmt: skip
+    """The best choices of homes of a bag with fill, next to what is chosen in its adhesion.
 
-    ``chosen`` uint8[n], by place.  Returns (values int64[k], sizes int64[k], places int32[k, ..]), in no order; the
-    values count from a common base and may have wrapped: their differences are right.  O(states * log most).
+    ``chosen`` uint8[n], by place.  Fills ``values`` and ``sizes`` int64[most], in no order, with the help of ``heap``
+    int32[most]; values count from a common base and may have wrapped, but their differences are right.  Returns (how
+    many choices, their places int32[most, ..]).  O(states * log most).
     """
     begin = forest.bag_ptr[bag]
     split = begin + forest.bag_adhesion[bag]
@@ -79,20 +80,18 @@ def best_states(
     slots = opened.slots
     walk = begin_walk(opened, children.shape[0], opened.lead)
     deepest = walk.picked.shape[0]
-    values = np.zeros(most, np.int64)
-    sizes = np.zeros(most, np.int64)
-    homes = np.zeros((most, deepest), np.int32)
-    heap = np.zeros(most, np.int32)
+    homes = np.empty((values.shape[0], deepest), np.int32)
     _, size = _offer(int(np.int64(0)), heap, int(np.int64(0)), values)
+    sizes[0] = 0
     taken = 0
     j = 0
     for e in range(begin, split):
         here = j < opened.lead and slots[j] == forest.bag_slot[e]
         if chosen[forest.slot_place[forest.bag_slot[e]]]:
             if not here:  # adjacent to the whole bag
-                return values[:1], sizes[:1], homes[:1]
+                return 1, homes
             taken += 1
-            join(j, opened, tries, walk)
+            join(int(np.int64(j)), opened, tries, walk)
             for w in range(opened.rows.shape[1]):
                 walk.open_[0, w] &= opened.rows[j, w]
         if here:
@@ -106,11 +105,12 @@ def best_states(
             if row >= 0:
                 sizes[row] = 1
                 homes[row, 0] = p
-    value = np.zeros(deepest, np.int64)
+    value = np.empty(deepest, np.int64)
+    value[0] = 0
     while True:
         j, more = next_state(opened, tries, walk)
         if j < 0:
-            return values[:size], sizes[:size], homes[:size]
+            return size, homes
         depth = walk.at[0]
         value[depth] = value[depth - 1] + more + opened.gain[j]
         row, size = _offer(value[depth], heap, size, values)
@@ -139,53 +139,44 @@ def _mark(p: int, after: int, points: Points, numbering: Numbering, dirty: U8) -
 
 
 @kernel
-def follow(
-    start: int, changed: I32, pending: int, points: Points, numbering: Numbering, forest: Forest, first: I32,
-    following: I32, tries: Tries, residual: I64, dirty: U8, where: I32, chosen: U8, met: I32, free: U8,
-) -> int:  # fmt: skip
-    """Choose anew after point ``start``, where the places ``changed`` have been changed, as the outward pass would.
+def mark_all(changed: I32, after: int, points: Points, numbering: Numbering, dirty: U8, state: I64) -> None:
+    """Mark the points after ``after`` that places have a say in; ``state`` int64[2] holds how many are marked."""
+    for e in range(changed.shape[0]):
+        state[0] += _mark(int(np.int64(changed[e])), after, points, numbering, dirty)
 
-    ``chosen`` uint8[n], by place, is changed.  Only points are looked at whose surroundings changed, and those marked
-    in ``dirty`` uint8[P] before, ``pending`` of them; ``dirty`` is 0 on return.  They are written to ``met`` int32[P];
-    ``free`` tells of a place whether nothing around it forbade it, and is 1 for bags.  Returns how many they are.
+
+@kernel
+def follow(
+    start: int, points: Points, numbering: Numbering, residual: I64, dirty: U8, chosen: U8, met: I32, free: U8,
+    state: I64,
+) -> int:  # fmt: skip
+    """Choose anew at the marked points after ``start``, as the outward pass would, up to the first that is a bag.
+
+    ``chosen`` uint8[n], by place, is changed, and what that has a say in is marked.  The points looked at are written
+    behind the first ``state[1]`` of ``met`` int32[P]; ``free`` uint8[P] tells of a place whether nothing around it
+    forbade it, and is 1 for a bag.  ``state[0]``: points marked.  Returns the point of the bag, -1 if none is left.
     """
-    for p in changed:
-        pending += _mark(int(np.int64(p)), start, points, numbering, dirty)
-    count = 0
     at = start
-    while pending > 0:
+    while state[0] > 0:
         at += 1
         if dirty[at] == 0:
             continue
         dirty[at] = 0
-        pending -= 1
-        met[count] = at
-        free[count] = 1
+        state[0] -= 1
         i = points.point[at]
+        open_ = 1
         if i >= 0:
             for e in range(numbering.low_ptr[i], numbering.low_ptr[i + 1]):
                 if chosen[numbering.low[e]]:
-                    free[count] = 0
+                    open_ = 0
                     break
-            wanted = free[count] if residual[i] > 0 else np.uint8(0)
-            if chosen[i] != wanted:
-                chosen[i] = wanted
-                pending += _mark(int(np.int64(i)), at, points, numbering, dirty)
-        else:
-            b = -1 - i
-            begin = forest.bag_ptr[b] + forest.bag_adhesion[b]
-            before = np.empty(forest.bag_ptr[b + 1] - begin, np.uint8)
-            for e in range(before.shape[0]):
-                p = forest.slot_place[forest.bag_slot[begin + e]]
-                before[e] = chosen[p]
-                chosen[p] = 0
-            if forest.bag_kind[b] & BAG_FILL:
-                choose_bag(b, forest, senders(b, first, following), tries, where, residual, chosen)
-            else:
-                choose_plain(b, forest, residual, chosen)
-            for e in range(before.shape[0]):
-                p = forest.slot_place[forest.bag_slot[begin + e]]
-                if chosen[p] != before[e]:
-                    pending += _mark(int(np.int64(p)), at, points, numbering, dirty)
-        count += 1
-    return count
+        met[state[1]] = at
+        free[state[1]] = open_
+        state[1] += 1
+        if i < 0:
+            return at
+        wanted = open_ if residual[i] > 0 else 0
+        if chosen[i] != wanted:
+            chosen[i] = wanted
+            state[0] += _mark(int(np.int64(i)), at, points, numbering, dirty)
+    return -1
