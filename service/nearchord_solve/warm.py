@@ -71,8 +71,6 @@ def _choosing() -> Iterator[None]:
     yield
     solve(IndependentSet(best=3, count=True), _braced_ring(7), None, Budget(), "bound", monitor)
     yield
-    solve(IndependentSet(limit=1), _braced_ring(7), None, Budget(), "bound", monitor)
-    yield
     solve(IndependentSet(), square, None, Budget(memory=1), "bound", monitor)
     monitor = Monitor(on_phase=lambda phase: _stop_in_fill(monitor, phase))
     solve(IndependentSet(), square, None, Budget(), "bound", monitor)
@@ -113,7 +111,7 @@ def _braced_ring(n: int) -> Graph:
 
 
 PARTS: dict[str, tuple[Callable[[], Iterator[None]], int]] = {
-    "choosing": (_choosing, 13),
+    "choosing": (_choosing, 12),
     "filling": (_filling, 7),
     "labelling": (_labelling, 4),
 }
