@@ -69,7 +69,7 @@ def _choosing() -> Iterator[None]:
     yield
     solve(IndependentSet(), _braced_ring(7), None, Budget(states=1), "bound", monitor)
     yield
-    solve(IndependentSet(best=3, count=True), _braced_ring(7), None, Budget(), "bound", monitor)
+    solve(IndependentSet(best=100, count=True), _square_over_roof(), None, Budget(), "bound", monitor)
     yield
     solve(IndependentSet(), square, None, Budget(memory=1), "bound", monitor)
     monitor = Monitor(on_phase=lambda phase: _stop_in_fill(monitor, phase))
@@ -108,6 +108,11 @@ def _braced_ring(n: int) -> Graph:
     """A cycle in which also every second vertex is linked, and a tail."""
     pairs = {(min(v, u), max(v, u)) for v in range(n) for u in ((v + 1) % n, (v + 2) % n)}
     return Graph.from_edges(n + 1, [*sorted(pairs), (n - 1, n)])
+
+
+def _square_over_roof() -> Graph:
+    """A graph whose only core has bags of all kinds: without fill, with it, and with it in the adhesion."""
+    return Graph.from_edges(6, [(0, 1), (0, 5), (1, 2), (2, 3), (2, 4), (2, 5), (3, 4), (4, 5)])
 
 
 PARTS: dict[str, tuple[Callable[[], Iterator[None]], int]] = {

@@ -9,10 +9,9 @@ from dataclasses import replace
 
 import numpy as np
 
-from nearchord_solve.arrays import U8
 from nearchord_solve.monitor import Phase, Stop
 from nearchord_solve.outcome import Verdict
-from nearchord_solve.questions.addons.penalty import Corner, Penalised, corner
+from nearchord_solve.questions.addons.penalty import Corner, Penalised, corner, heaviest_of
 from nearchord_solve.questions.gauge import Gauge
 from nearchord_solve.questions.heaviest import Found, Task, find_heaviest
 from nearchord_solve.structure import Structure
@@ -49,7 +48,7 @@ def _within(task: Task, limit: int, found: Found, heaviest: Corner) -> Found:
     """Where the set found is too large."""
     lightest_first = np.sort(task.weights)
     bound = min(int(found.bound or 0), int(lightest_first[-limit:].sum()))
-    below = _heaviest_of(task, heaviest.chosen, limit)
+    below = heaviest_of(task, heaviest.chosen, limit)
     reason = f"the limit of {limit} cuts into a set of {heaviest.size}"
     structure = found.structure
     if structure is None or task.stop or (found.verdict is Verdict.BOUNDED and task.when_over == "stop"):
@@ -105,15 +104,6 @@ def _close(task: Task, found: Found, best: Corner, bound: int, reason: str) -> F
     return replace(
         found, verdict=verdict, value=best.weight, bound=bound, chosen=best.chosen, reason=reason, swept=None
     )  # fmt: skip
-
-
-def _heaviest_of(task: Task, chosen: U8, limit: int) -> Corner:
-    """The heaviest vertices of a set, ties to the lowest, and nothing else."""
-    inside = np.flatnonzero(chosen)
-    kept = inside[np.argsort(-task.weights[inside], kind="stable")[:limit]]
-    few = np.zeros(task.graph.n, np.uint8)
-    few[kept] = 1
-    return corner(task, few)
 
 
 def _filled_up(task: Task, best: Corner, limit: int) -> Corner:

@@ -110,19 +110,34 @@ class Penalised:
 
 
 def exchanged(task: Task, below: Corner, above: Corner, limit: int) -> Corner:
-    """The largest set of at most ``limit`` vertices between two sets that are optimal for the same penalty."""
+    """The best set of at most ``limit`` vertices by exchanges between two sets optimal for the same penalty.
+
+    Either the largest that exchanges lead to within the limit, or the smallest beyond it without its lightest vertices.
+    """
     pieces = differences(task.graph, below.chosen != above.chosen)
-    chosen = below.chosen.copy()
+    least = below.chosen.copy()
     gains = []
     for piece in pieces:
         gain = int(above.chosen[piece].sum()) - int(below.chosen[piece].sum())
         if gain < 0:
-            chosen[piece] ^= 1  # now taking it back is a gain
+            least[piece] ^= 1  # now taking it back is a gain
         gains.append(abs(gain))
-    room = limit - int(chosen.sum())
+    room = limit - int(least.sum())
+    within, beyond = least.copy(), least.copy()
     for i in reachable(gains, room):
-        chosen[pieces[i]] ^= 1
-    return corner(task, chosen)
+        within[pieces[i]] ^= 1
+    for i in set(range(len(pieces))) - set(reachable(gains, sum(gains) - room)):
+        beyond[pieces[i]] ^= 1
+    return max(corner(task, within), heaviest_of(task, beyond, limit), key=lambda found: found.weight)
+
+
+def heaviest_of(task: Task, chosen: U8, limit: int) -> Corner:
+    """The heaviest vertices of a set, ties to the lowest, and nothing else."""
+    inside = np.flatnonzero(chosen)
+    kept = inside[np.argsort(-task.weights[inside], kind="stable")[:limit]]
+    few = np.zeros(task.graph.n, np.uint8)
+    few[kept] = 1
+    return corner(task, few)
 
 
 def differences(graph: Graph, differs: I64) -> list[I64]:
