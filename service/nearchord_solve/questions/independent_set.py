@@ -5,6 +5,7 @@ The planner's reading: the best conflict-free choice on one channel.
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import partial
 
 from nearchord_solve.arrays import I64
 from nearchord_solve.budget import Budget
@@ -13,6 +14,7 @@ from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
 from nearchord_solve.questions.addons.added import AddOn, extend
+from nearchord_solve.questions.addons.prices import add_prices
 from nearchord_solve.questions.addons.terms import check_terms
 from nearchord_solve.questions.conclude import contradiction, outcome_of
 from nearchord_solve.questions.gauge import Gauge
@@ -53,8 +55,11 @@ class IndependentSet:
         task = Task(rest.graph, rest.weights, budget, when_over, gauge, whole)
         found = find_heaviest(task)
         outcome = outcome_of(found, rest.taken_weight, 1, lambda chosen: lift(rest, chosen), rest.vertices)
-        return extend(outcome, task, rest, found.swept, self._wanted())
+        return extend(outcome, task, rest, found.swept, self._wanted(graph))
 
-    def _wanted(self) -> dict[str, AddOn]:
+    def _wanted(self, graph: Graph) -> dict[str, AddOn]:
         """The add-ons asked for, by name."""
-        return {}
+        wanted: dict[str, AddOn] = {}
+        if self.prices:
+            wanted["prices"] = partial(add_prices, n=graph.n)
+        return wanted

@@ -1,0 +1,298 @@
+"""The outward pass of prices: for every vertex, what choosing it costs, and what leaving it out costs.
+
+Gaps are those of :mod:`.gaps`: the gap of a condition is the optimum less the most that a set under it is worth.  The
+price of choosing v is the gap of "v is chosen".  Leaving v out costs nothing unless the best set found holds v.
+
+Outside fill cores, let r be what i was worth at its turn inwards.  A set that avoids L(i) gains max(0, r) in the
+subtree of i, by choosing i or not, and the choice of i gains r.  So with the gap g of avoiding L(i), the clique of
+earlier neighbours,
+
+    gap of choosing i = g + max(0, -r),        gap of avoiding K(i) = g + max(0, r).
+
+All that meets L(i) meets K(p), p the parent: a set that avoids L(i) holds nothing of K(p), or one vertex of K(p) that
+is not in L(i), as K(p) is a clique.  So g is the least of the gap of avoiding K(p) and the gaps of choosing a vertex of
+K(p) - L(i); it is 0 where the best set avoids L(i).  If L(i) is all of K(p) nothing has to be looked at; if it is about
+as large, K(p) is looked through; if it is much smaller, K(p) is sorted by gap once, and the first vertex outside L(i)
+is met after |L(i)| steps at most.  Together O(n + m log n), and the sorting is rare.
+"""
+
+from typing import NamedTuple
+
+import numpy as np
+
+from nearchord_solve.kernels.cells import POLL, STEP, STOP
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.layout import BAG_FILL, Forest, Numbering, Tries
+from nearchord_solve.sweep.kernels.gaps import avoid, open_bag, open_searches, price_bag
+from nearchord_solve.sweep.kernels.passes import link_bags, senders
+
+SMALL = 4  # a clique with so many times fewer vertices than the one it hangs from is worth sorting for
+
+
+class Prices(NamedTuple):
+    """What the pass writes."""
+
+    chosen: I64  # [n] gap of choosing the place
+    left_out: I64  # [n] gap of leaving it out
+    none: I64  # [n] gap of avoiding K(i), for places outside cores
+    avoided: I64  # [n + B] gap of avoiding L(i), and of avoiding the adhesion of bag b, at n + b
+    apart: I64  # [nodes] gap of each state of a kept message
+
+
+class Hanging(NamedTuple):
+    """What hangs from the bags of cores, and the rows that were sorted.
+
+    Place i is named i, bag b n + b: both hang by a clique, L(i) or the adhesion.
+    """
+
+    first: I32  # [B] the first that hangs from a bag, -1 for none
+    following: I32  # [n + B] the next one
+    mark: I64  # [n] name of whose clique was marked last, or -2 - p for {p}
+    sorted_low: I32  # [m] lower neighbours by falling gap
+    is_sorted: U8  # [n]
+
+
+@kernel
+def clique_of(name: int, numbering: Numbering, forest: Forest) -> I32:
+    """The clique by which a place or a bag hangs."""
+    n = numbering.order.shape[0]
+    if name < n:
+        return numbering.low[numbering.low_ptr[name] : numbering.low_ptr[name + 1]].copy()
+    b = name - n
+    size = forest.bag_adhesion[b]
+    clique = np.empty(size, np.int32)
+    for e in range(size):
+        clique[e] = forest.slot_place[forest.bag_slot[forest.bag_ptr[b] + e]]
+    return clique
+
+
+@kernel
+def home_slots(forest: Forest, n: int) -> tuple[I32, I32]:
+    """(slot, bag) at which each place of a core is at home, int32[n] each; others are not written."""
+    slot = np.empty(n, np.int32)
+    bag = np.empty(n, np.int32)
+    for b in range(forest.bag_kind.shape[0]):
+        for e in range(forest.bag_ptr[b] + forest.bag_adhesion[b], forest.bag_ptr[b + 1]):
+            p = forest.slot_place[forest.bag_slot[e]]
+            slot[p] = forest.bag_slot[e]
+            bag[p] = b
+    return slot, bag
+
+
+@kernel
+def hang(numbering: Numbering, forest: Forest) -> Hanging:
+    """Find the bag from which each place and each bag hangs.
+
+    A clique of G whose highest place is settled by a core lies in that core, and in the bag at which its member of the
+    highest slot is at home.
+    """
+    n = numbering.order.shape[0]
+    bags = forest.bag_kind.shape[0]
+    first = np.full(bags, -1, np.int32)
+    following = np.full(n + bags, -1, np.int32)
+    slot, bag = home_slots(forest, n)
+    for name in range(n + bags):
+        if name < n:
+            p = numbering.parent[name]
+            if numbering.core[name] >= 0 or p < 0 or numbering.core[p] < 0:
+                continue
+            above = np.int32(-1)
+        else:
+            above = forest.bag_above[name - n]
+        if above < 0:
+            clique = clique_of(name, numbering, forest)
+            if clique.shape[0] == 0:
+                continue
+            core = numbering.core[clique.max()]
+            if core < 0:
+                continue
+            deep = np.int32(-1)
+            for p in clique:
+                if numbering.core[p] == core and slot[p] > deep:
+                    deep = slot[p]
+                    above = bag[p]
+        following[name] = first[above]
+        first[above] = name
+    return Hanging(
+        first, following, np.full(n, -1), np.empty(numbering.low.shape[0], np.int32), np.zeros(n, np.uint8)
+    )
+
+
+@kernel
+def mark_clique(clique: I32, name: int, chosen: U8, mark: I64) -> bool:
+    """Mark a clique with ``name``; returns whether a vertex of it is in the best set."""
+    hit = False
+    for p in clique:
+        mark[p] = name
+        hit = hit or chosen[p] != 0
+    return hit
+
+
+@kernel
+def avoid_at(top: int, size: int, name: int, numbering: Numbering, hanging: Hanging, prices: Prices) -> int:
+    """Gap of avoiding the ``size`` marked places of a clique whose highest place ``top`` is in no core."""
+    begin = numbering.low_ptr[top]
+    end = numbering.low_ptr[top + 1]
+    least = prices.none[top]
+    if end - begin <= SMALL * size:
+        for e in range(begin, end):
+            p = numbering.low[e]
+            if hanging.mark[p] != name:
+                least = min(least, prices.chosen[p])
+        return least
+    if not hanging.is_sorted[top]:
+        row = numbering.low[begin:end]
+        hanging.sorted_low[begin:end] = row[np.argsort(prices.chosen[row], kind="mergesort")]
+        hanging.is_sorted[top] = 1
+    for e in range(begin, end):
+        p = hanging.sorted_low[e]
+        if hanging.mark[p] != name:
+            return min(least, prices.chosen[p])
+    return least
+
+
+@kernel
+def price_place(i: int, r: int, numbering: Numbering, hanging: Hanging, chosen: U8, prices: Prices) -> None:
+    """Gaps of a place outside cores."""
+    p = numbering.parent[i]
+    begin = numbering.low_ptr[i]
+    end = numbering.low_ptr[i + 1]
+    if p < 0:
+        gap = 0
+    elif numbering.core[p] >= 0:
+        gap = prices.avoided[i]
+    elif end - begin == numbering.low_ptr[p + 1] - numbering.low_ptr[p] + 1:
+        gap = prices.none[p]
+    elif mark_clique(numbering.low[begin:end], i, chosen, hanging.mark):
+        gap = avoid_at(p, end - begin, i, numbering, hanging, prices)
+    else:
+        gap = 0
+    prices.chosen[i] = gap + max(0, -r)
+    prices.none[i] = gap + max(0, r)
+    if chosen[i]:
+        least = prices.none[i]
+        for e in range(begin, end):
+            least = min(least, prices.chosen[numbering.low[e]])
+        prices.left_out[i] = least
+
+
+@kernel
+def price_plain(
+    b: int, numbering: Numbering, forest: Forest, hanging: Hanging, residual: I64, chosen: U8, prices: Prices
+) -> None:
+    """Gaps of a bag of a core without fill, as for places outside cores, and of what hangs from it."""
+    n = residual.shape[0]
+    begin = forest.bag_ptr[b]
+    end = forest.bag_ptr[b + 1]
+    none = prices.avoided[n + b]
+    clique = np.empty(end - begin, np.int32)
+    for e in range(begin, end):
+        p = forest.slot_place[forest.bag_slot[e]]
+        clique[e - begin] = p
+        if e >= begin + forest.bag_adhesion[b]:
+            prices.chosen[p] = none + max(0, -residual[p])
+            none += max(0, residual[p])
+    by_gap = clique[np.argsort(prices.chosen[clique], kind="mergesort")]
+    for p in clique[forest.bag_adhesion[b] :]:
+        if chosen[p]:
+            other = by_gap[0] if by_gap[0] != p or by_gap.shape[0] == 1 else by_gap[1]
+            prices.left_out[p] = none if other == p else min(none, prices.chosen[other])
+    name = hanging.first[b]
+    while name >= 0:
+        prices.avoided[name] = 0
+        if mark_clique(clique_of(name, numbering, forest), name, chosen, hanging.mark):
+            prices.avoided[name] = none
+            for p in by_gap:
+                if hanging.mark[p] != name:
+                    prices.avoided[name] = min(none, prices.chosen[p])
+                    break
+        name = hanging.following[name]
+
+
+@kernel
+def price_filled(
+    b: int, numbering: Numbering, forest: Forest, children: I32, tries: Tries, used: int, where: I32,
+    hanging: Hanging, shut: I64, serial: I64, residual: I64, chosen: U8, prices: Prices,
+) -> None:  # fmt: skip
+    """Gaps of a bag with fill, and of what hangs from it."""
+    n = residual.shape[0]
+    bag = open_bag(
+        b, forest, children, tries, used, where, residual, prices.chosen, prices.apart, prices.avoided[n + b]
+    )
+    price_bag(bag, forest, tries, residual, prices.chosen, prices.apart)
+    searches = open_searches(bag, forest, chosen)
+    for e in range(forest.bag_ptr[b] + forest.bag_adhesion[b], forest.bag_ptr[b + 1]):
+        p = forest.slot_place[forest.bag_slot[e]]
+        if chosen[p]:
+            hanging.mark[p] = -2 - p
+            prices.left_out[p] = avoid(
+                bag, forest, tries, prices.chosen, prices.apart, hanging.mark, -2 - p, searches, shut, serial
+            )
+    name = hanging.first[b]
+    while name >= 0:
+        prices.avoided[name] = 0
+        if mark_clique(clique_of(name, numbering, forest), name, chosen, hanging.mark):
+            prices.avoided[name] = avoid(
+                bag, forest, tries, prices.chosen, prices.apart, hanging.mark, name, searches, shut, serial
+            )
+        name = hanging.following[name]
+
+
+@kernel
+def price_core(
+    c: int, numbering: Numbering, forest: Forest, first: I32, following: I32, tries: Tries, used: int, where: I32,
+    hanging: Hanging, shut: I64, serial: I64, residual: I64, chosen: U8, prices: Prices,
+) -> None:  # fmt: skip
+    """Gaps of all that a core settles."""
+    n = residual.shape[0]
+    for b in range(forest.core_bag[c], forest.core_bag[c + 1]):
+        clique = clique_of(n + b, numbering, forest)
+        if clique.shape[0] == 0:
+            prices.avoided[n + b] = 0
+        elif forest.bag_above[b] < 0 and numbering.core[clique.max()] < 0:
+            prices.avoided[n + b] = 0
+            if mark_clique(clique, n + b, chosen, hanging.mark):
+                prices.avoided[n + b] = avoid_at(
+                    clique.max(), clique.shape[0], n + b, numbering, hanging, prices
+                )  # fmt: skip
+        if forest.bag_kind[b] & BAG_FILL:
+            price_filled(
+                b, numbering, forest, senders(b, first, following), tries, used, where,
+                hanging, shut, serial, residual, chosen, prices,
+            )  # fmt: skip
+        else:
+            price_plain(b, numbering, forest, hanging, residual, chosen, prices)
+
+
+@kernel
+def outward_prices(
+    numbering: Numbering, forest: Forest, tries: Tries, used: int, residual: I64, chosen: U8, prices: Prices, cells: I64
+) -> bool:
+    """Write ``prices``, from the low places to the high ones; False if stopped.
+
+    ``residual``, ``tries`` (``used`` nodes of them) as the inward pass left them, all cores by tables; the tries need
+    room for the message of any bag behind that.  ``chosen`` uint8[n], by place: an optimum.  ``prices.apart`` must
+    hold MOST_GAP everywhere, ``prices.left_out`` 0.
+    """
+    n = residual.shape[0]
+    first, following = link_bags(forest.bag_above, forest.bag_kind)
+    hanging = hang(numbering, forest)
+    where = np.full(forest.slot_place.shape[0], -1, np.int32)
+    shut = np.zeros(n, np.int64)
+    serial = np.zeros(1, np.int64)
+    for i in range(n):
+        if (i & POLL) == 0:
+            cells[STEP] = i
+            if cells[STOP] != 0:
+                return False
+        c = numbering.core[i]
+        if c < 0:
+            price_place(i, residual[i], numbering, hanging, chosen, prices)
+        elif forest.core_top[c] == i:
+            if cells[STOP] != 0:
+                return False
+            price_core(
+                c, numbering, forest, first, following, tries, used, where,
+                hanging, shut, serial, residual, chosen, prices,
+            )  # fmt: skip
+    return True
