@@ -152,31 +152,6 @@ def avoid_at(top: int, size: int, name: int, numbering: Numbering, hanging: Hang
 
 
 @kernel
-def price_place(i: int, r: int, numbering: Numbering, hanging: Hanging, chosen: U8, prices: Prices) -> None:
-    """Gaps of a place outside cores."""
-    p = numbering.parent[i]
-    begin = numbering.low_ptr[i]
-    end = numbering.low_ptr[i + 1]
-    if p < 0:
-        gap = 0
-    elif numbering.core[p] >= 0:
-        gap = prices.avoided[i]
-    elif end - begin == numbering.low_ptr[p + 1] - numbering.low_ptr[p] + 1:
-        gap = prices.none[p]
-    elif mark_clique(numbering.low[begin:end], i, chosen, hanging.mark):
-        gap = avoid_at(p, end - begin, i, numbering, hanging, prices)
-    else:
-        gap = 0
-    prices.chosen[i] = gap + max(0, -r)
-    prices.none[i] = gap + max(0, r)
-    if chosen[i]:
-        least = prices.none[i]
-        for e in range(begin, end):
-            least = min(least, prices.chosen[numbering.low[e]])
-        prices.left_out[i] = least
-
-
-@kernel
 def price_plain(
     b: int, numbering: Numbering, forest: Forest, hanging: Hanging, residual: I64, chosen: U8, prices: Prices
 ) -> None:
@@ -274,9 +249,12 @@ def outward_prices(
     room for the message of any bag behind that.  ``chosen`` uint8[n], by place: an optimum.  ``prices.apart`` must
     hold MOST_GAP everywhere, ``prices.left_out`` 0.
     """
+    low_ptr, low, parent, core = numbering.low_ptr, numbering.low, numbering.parent, numbering.core
+    gap_of, left_out, none = prices.chosen, prices.left_out, prices.none
     n = residual.shape[0]
     first, following = link_bags(forest.bag_above, forest.bag_kind)
     hanging = hang(numbering, forest)
+    mark = hanging.mark
     where = np.full(forest.slot_place.shape[0], -1, np.int32)
     shut = np.zeros(n, np.int64)
     serial = np.zeros(1, np.int64)
@@ -285,14 +263,47 @@ def outward_prices(
             cells[STEP] = i
             if cells[STOP] != 0:
                 return False
-        c = numbering.core[i]
-        if c < 0:
-            price_place(i, residual[i], numbering, hanging, chosen, prices)
-        elif forest.core_top[c] == i:
-            if cells[STOP] != 0:
-                return False
-            price_core(
-                c, numbering, forest, first, following, tries, used, where,
-                hanging, shut, serial, residual, chosen, prices,
-            )  # fmt: skip
+        c = core[i]
+        if c >= 0:
+            if forest.core_top[c] == i:
+                if cells[STOP] != 0:
+                    return False
+                price_core(
+                    c, numbering, forest, first, following, tries, used, where,
+                    hanging, shut, serial, residual, chosen, prices,
+                )  # fmt: skip
+            continue
+        # a place outside cores; what is called once a place is written out here
+        p = parent[i]
+        begin = low_ptr[i]
+        end = low_ptr[i + 1]
+        gap = 0
+        if p >= 0 and core[p] >= 0:
+            gap = prices.avoided[i]
+        elif p >= 0 and end - begin == low_ptr[p + 1] - low_ptr[p] + 1:
+            gap = none[p]
+        elif p >= 0:
+            hit = False
+            for e in range(begin, end):
+                if chosen[low[e]]:
+                    hit = True
+                    break
+            if hit:
+                for e in range(begin, end):
+                    mark[low[e]] = i
+                if low_ptr[p + 1] - low_ptr[p] > SMALL * (end - begin):
+                    gap = avoid_at(p, end - begin, i, numbering, hanging, prices)
+                else:
+                    gap = none[p]
+                    for e in range(low_ptr[p], low_ptr[p + 1]):
+                        if mark[low[e]] != i:
+                            gap = min(gap, gap_of[low[e]])
+        r = residual[i]
+        gap_of[i] = gap + max(0, -r)
+        none[i] = gap + max(0, r)
+        if chosen[i]:
+            gap = none[i]
+            for e in range(begin, end):
+                gap = min(gap, gap_of[low[e]])
+            left_out[i] = gap
     return True
