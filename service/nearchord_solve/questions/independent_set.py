@@ -15,6 +15,7 @@ from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
 from nearchord_solve.questions.addons.added import AddOn, extend
 from nearchord_solve.questions.addons.prices import add_prices
+from nearchord_solve.questions.addons.scenarios import answer_scenarios
 from nearchord_solve.questions.addons.terms import check_terms
 from nearchord_solve.questions.conclude import contradiction, outcome_of
 from nearchord_solve.questions.gauge import Gauge
@@ -47,7 +48,8 @@ class IndependentSet:
         check_terms(self)
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)
-        rest = apply_pins(graph, weights, must, never)
+        first = weights[0] if self.scenarios else weights
+        rest = apply_pins(graph, first, must, never)
         if isinstance(rest, Contradiction):
             return contradiction(rest, "must be chosen", "must not be chosen")
         gauge = Gauge(monitor, rest.taken_weight, 1)
@@ -55,6 +57,8 @@ class IndependentSet:
         task = Task(rest.graph, rest.weights, budget, when_over, gauge, whole)
         found = find_heaviest(task)
         outcome = outcome_of(found, rest.taken_weight, 1, lambda chosen: lift(rest, chosen), rest.vertices)
+        if self.scenarios:
+            return answer_scenarios(task, rest, found, outcome, weights)
         return extend(outcome, task, rest, found.swept, self._wanted(graph))
 
     def _wanted(self, graph: Graph) -> dict[str, AddOn]:
