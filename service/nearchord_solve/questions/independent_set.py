@@ -14,6 +14,7 @@ from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
 from nearchord_solve.questions.addons.added import AddOn, extend
+from nearchord_solve.questions.addons.conflict_prices import Pinned, add_conflict_prices
 from nearchord_solve.questions.addons.prices import add_prices
 from nearchord_solve.questions.addons.scenarios import answer_scenarios
 from nearchord_solve.questions.addons.terms import check_terms
@@ -59,11 +60,13 @@ class IndependentSet:
         outcome = outcome_of(found, rest.taken_weight, 1, lambda chosen: lift(rest, chosen), rest.vertices)
         if self.scenarios:
             return answer_scenarios(task, rest, found, outcome, weights)
-        return extend(outcome, task, rest, found.swept, self._wanted(graph))
+        return extend(outcome, task, rest, found.swept, self._wanted(Pinned(graph, weights, must, never)))
 
-    def _wanted(self, graph: Graph) -> dict[str, AddOn]:
+    def _wanted(self, pinned: Pinned) -> dict[str, AddOn]:
         """The add-ons asked for, by name."""
         wanted: dict[str, AddOn] = {}
         if self.prices:
-            wanted["prices"] = partial(add_prices, n=graph.n)
+            wanted["prices"] = partial(add_prices, n=pinned.graph.n)
+        if self.conflict_prices:
+            wanted["conflict_prices"] = partial(add_conflict_prices, pinned=pinned)
         return wanted

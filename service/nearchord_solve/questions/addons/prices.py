@@ -9,14 +9,16 @@ and a neighbour of a ``must`` vertex are left out at no cost.
 import numpy as np
 
 from nearchord_solve.questions.addons.added import Added, Settled
-from nearchord_solve.sweep.prices import price_vertices
+from nearchord_solve.sweep.prices import Unpriced, price_vertices
 
 
 def add_prices(settled: Settled, n: int) -> Added:
     """Columns ``price_in`` and ``price_out``, int64 by vertex of the whole graph of ``n`` vertices."""
-    priced = price_vertices(settled.swept, settled.task.gauge.monitor)
-    if priced is None:
-        return Added(note="seconds ran out")
+    task = settled.task
+    room = task.budget.memory - settled.swept.structure.held_bytes
+    priced = price_vertices(settled.swept, room, task.gauge.monitor)
+    if isinstance(priced, Unpriced):
+        return Added(note=str(priced))
     inside = np.full(n, -1)
     outside = np.zeros(n, np.int64)
     inside[settled.rest.taken] = 0
