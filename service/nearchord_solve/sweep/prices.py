@@ -12,7 +12,8 @@ from nearchord_solve.sweep.independent import Swept
 from nearchord_solve.sweep.kernels import conflicts, gaps
 from nearchord_solve.sweep.kernels import prices as kernels
 
-PAIR_NODE = 60  # bytes of a kept node of a message about an edge: label, end and value, twice while they grow
+PAIR_NODE = 44  # bytes of a kept node of a message about an edge, and of the record of the edge
+FIRST_ROOM = 2**16  # nodes to begin with; most graphs need fewer
 
 
 class Unpriced(Enum):
@@ -40,7 +41,7 @@ class Priced:
 def price_vertices(swept: Swept, room: int, monitor: Monitor) -> Priced | Unpriced:
     """Prices of all vertices after a sweep that settled all cores by tables, within ``room`` bytes beside its own.
 
-    O(n + m log n) outside cores; inside, a few times the states.
+    Mostly O(n + m) outside cores; inside, a few times the states.
     """
     structure = swept.structure
     forest, order = structure.forest, structure.numbering.order
@@ -94,11 +95,17 @@ def price_conflicts(swept: Swept, priced: Priced, room: int, monitor: Monitor) -
     room -= 60 * n + 64 * m + 8 * int(sizes.max(initial=0)) ** 2 + 28 * kept_nodes(swept)
     if room < 0:
         return Unpriced.MEMORY
-    gain = np.zeros(m, np.int64)
-    code = conflicts.inward_conflicts(
-        numbering, forest, swept.tries, kept_nodes(swept), swept.residual, priced.by_place, gain,
-        room // PAIR_NODE, monitor.cells,
-    )  # fmt: skip
+    gain = np.empty(m, np.int64)
+    nodes = min(FIRST_ROOM, room // PAIR_NODE)
+    while True:
+        gain[:] = 0
+        code = conflicts.inward_conflicts(
+            numbering, forest, swept.tries, kept_nodes(swept), swept.residual, priced.by_place, gain, nodes,
+            monitor.cells,
+        )  # fmt: skip
+        if code != conflicts.MEMORY or nodes == room // PAIR_NODE:
+            break
+        nodes = min(16 * nodes, room // PAIR_NODE)
     if code != conflicts.DONE:
         return Unpriced.STOPPED if code == conflicts.STOPPED else Unpriced.MEMORY
     upper = np.repeat(numbering.order, np.diff(numbering.low_ptr))

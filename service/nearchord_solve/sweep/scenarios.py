@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from nearchord_solve.arrays import I64, U32
-from nearchord_solve.kernels.layout import TABLE
+from nearchord_solve.kernels.layout import STATES, TABLE
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.structure import Structure
 from nearchord_solve.sweep.kernels import wide_passes as kernels
@@ -80,7 +80,8 @@ def _empty_tables(structure: Structure, wide: int) -> tuple[WideTries, Ways]:
         np.empty(room, np.int64),
         np.empty((room, wide), np.int64),
     )
+    states = int(forest.figures[:, STATES].max(initial=0))
     ways = Ways(
-        np.empty(1024, np.int32), np.empty(1024, np.int32), np.empty(wide, np.int32), np.empty((most, wide), np.int32)
+        np.empty(states, np.int32), np.empty(states, np.int32), np.empty(wide, np.int32), np.empty((most, wide), np.int32)
     )
     return tries, ways

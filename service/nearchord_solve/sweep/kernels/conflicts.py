@@ -28,16 +28,16 @@ at most the edges times the largest clique, mostly much less.  With fill: the st
 import numpy as np
 
 from nearchord_solve.kernels.cells import POLL, STEP, STOP
-from nearchord_solve.kernels.compiled import I32, I64, U64, kernel
+from nearchord_solve.kernels.compiled import I32, I64, U64, inlined, kernel
 from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest, Numbering, Tries
 from nearchord_solve.sweep.kernels.gaps import Bag, open_bag
 from nearchord_solve.sweep.kernels.pair_states import (
+    FULL,
     PairTries,
     both_ways,
     no_pairs,
     pair_states,
     settle_pair,
-    with_room,
 )
 from nearchord_solve.sweep.kernels.passes import link_bags, senders
 from nearchord_solve.sweep.kernels.prices import Prices
@@ -45,7 +45,7 @@ from nearchord_solve.sweep.kernels.prices import Prices
 DONE, STOPPED, MEMORY = 0, 1, 2
 
 
-@kernel
+@inlined
 def add_pairs(clique: I32, amount: int, name: int, low_ptr: I64, low: I32, mark: I64, pair: I64) -> None:
     """Add ``amount`` to every edge inside a clique of places; marks them with ``name``."""
     for p in clique:
@@ -56,7 +56,7 @@ def add_pairs(clique: I32, amount: int, name: int, low_ptr: I64, low: I32, mark:
                 pair[e] += amount
 
 
-@kernel
+@inlined
 def pair_plain(b: int, numbering: Numbering, forest: Forest, residual: I64, gap: I64, mark: I64, pair: I64) -> None:
     """Settle the edges at the homes of a bag of a core without fill, and add to those before each home."""
     low_ptr, low = numbering.low_ptr, numbering.low
@@ -77,7 +77,7 @@ def pair_plain(b: int, numbering: Numbering, forest: Forest, residual: I64, gap:
                     pair[e] += residual[home]
 
 
-@kernel
+@inlined
 def singles(bag: Bag, forest: Forest, tries: Tries, prices: Prices) -> tuple[I64, I64]:
     """For the touched adhesion vertices x of an open bag: M({x}), and gap of {x} + M({x}), int64[t] each."""
     single = np.zeros(bag.slots.shape[0], np.int64)
@@ -94,7 +94,7 @@ def singles(bag: Bag, forest: Forest, tries: Tries, prices: Prices) -> tuple[I64
     return single, outer
 
 
-@kernel
+@inlined
 def share_fill(full: U64, a: int, c: int) -> bool:
     """Whether fill joins some vertex to both."""
     for w in range(full.shape[1]):
@@ -103,27 +103,19 @@ def share_fill(full: U64, a: int, c: int) -> bool:
     return False
 
 
-@kernel
-def pass_down(
-    a: int, c: int, bag: Bag, full: U64, single: I64, empty: int, keep: bool, tries: Tries, kept: PairTries
-) -> tuple[int, PairTries]:
-    """What two touched adhesion vertices have together and not alone; keeps the rest of the message if ``keep``."""
-    nodes, records = kept.count[0], kept.count[1]
-    alone, kept = pair_states(bag, tries, full, a, c, 0, True, kept)
-    if keep and kept.count[0] > nodes:
-        kept = with_room(kept, 0, records + 1)
-        settle_pair(nodes, kept.count[0], alone, bag, single - empty, kept)
-        kept.low[records] = bag.slots[a]
-        kept.high[records] = bag.slots[c]
-        kept.begin[records] = nodes
-        kept.end[records] = kept.count[0]
-        kept.count[1] += 1
-    else:
-        kept.count[0] = nodes
-    return alone, kept
+@inlined
+def keep_pair(a: int, c: int, nodes: int, alone: int, bag: Bag, single: I64, empty: int, kept: PairTries) -> None:
+    """Keep the message about two touched adhesion vertices, whose nodes begin at ``nodes``."""
+    record = kept.count[1]
+    settle_pair(nodes, kept.count[0], alone, bag, single - empty, kept)
+    kept.low[record] = bag.slots[a]
+    kept.high[record] = bag.slots[c]
+    kept.begin[record] = nodes
+    kept.end[record] = kept.count[0]
+    kept.count[1] += 1
 
 
-@kernel
+@inlined
 def edges_inside(bag: Bag, numbering: Numbering, forest: Forest, local: I32) -> tuple[I32, I32, I64]:
     """The edges of G inside a bag, by their positions in it: (lower, higher, index in ``numbering.low``), ascending.
 
@@ -158,12 +150,12 @@ def edges_inside(bag: Bag, numbering: Numbering, forest: Forest, local: I32) -> 
     return one, other, edge
 
 
-@kernel
+@inlined
 def pair_filled(
     bag: Bag, numbering: Numbering, forest: Forest, tries: Tries, residual: I64, prices: Prices, local: I32,
-    pair: I64, kept: PairTries, most: int, cells: I64,
-) -> tuple[int, PairTries]:  # fmt: skip
-    """Settle the edges at the homes of a bag with fill, and pass on those of its adhesion; returns (code, kept)."""
+    pair: I64, kept: PairTries, cells: I64,
+) -> int:  # fmt: skip
+    """Settle the edges at the homes of a bag with fill, and pass on those of its adhesion."""
     begin = forest.bag_ptr[bag.number]
     size = forest.bag_ptr[bag.number + 1] - begin
     lead = forest.bag_adhesion[bag.number]
@@ -179,46 +171,53 @@ def pair_filled(
     kept.first[bag.number] = kept.count[1]
     keep = forest.bag_kind[bag.number] & ADHESION_FILL != 0
     ones, others, edges = edges_inside(bag, numbering, forest, local)
+    code = DONE
     for q in range(edges.shape[0]):
-        k, m, e = ones[q], others[q], edges[q]
         if cells[STOP] != 0:
-            return STOPPED, kept
-        if kept.count[0] > most:
-            return MEMORY, kept
+            code = STOPPED
+            break
+        k, m, e = ones[q], others[q], edges[q]
         a, c = touch[k], touch[m]
+        down = m < lead
+        nodes = kept.count[0]
+        found = np.int64(0)
         together = a >= 0 and c >= 0 and share_fill(full, a, c)
-        if m < lead:
-            if together:
-                alone, kept = pass_down(a, c, bag, full, single, empty, keep, tries, kept)
-                pair[e] += alone
-            pair[e] += empty - (single[a] if a >= 0 else 0) - (single[c] if c >= 0 else 0)
-            continue
         if together:
-            least, kept = pair_states(bag, tries, full, a, c, pair[e], False, kept)
-        else:
+            found = pair_states(bag, tries, full, a, c, 0 if down else pair[e], down, kept)
+            if found == FULL:
+                code = MEMORY
+                break
+        if down:
+            if keep and kept.count[0] > nodes:
+                keep_pair(a, c, nodes, found, bag, single, empty, kept)
+            else:
+                kept.count[0] = nodes
+            pair[e] += found + empty - (single[a] if a >= 0 else 0) - (single[c] if c >= 0 else 0)
+            continue
+        if not together:
             u = forest.slot_place[forest.bag_slot[begin + k]]
             if k >= lead:
-                least = bag.none - residual[u]
+                found = bag.none - residual[u]
             elif a >= 0:
-                least = outer[a]
+                found = outer[a]
             else:
-                least = prices.chosen[u]
-            least -= pair[e] + residual[forest.slot_place[forest.bag_slot[begin + m]]]
-        pair[e] = max(0, -least)
+                found = prices.chosen[u]
+            found -= pair[e] + residual[forest.slot_place[forest.bag_slot[begin + m]]]
+        pair[e] = max(0, -found)
     kept.behind[bag.number] = kept.count[1]
-    return DONE, kept
+    return code
 
 
 @kernel
 def inward_conflicts(
-    numbering: Numbering, forest: Forest, tries: Tries, used: int, residual: I64, prices: Prices, pair: I64, most: int,
+    numbering: Numbering, forest: Forest, tries: Tries, used: int, residual: I64, prices: Prices, pair: I64, room: int,
     cells: I64,
 ) -> int:  # fmt: skip
     """Write the prices of all edges into ``pair`` int64[m], in the order of ``numbering.low``, from the high places to
     the low ones.
 
     All as the inward pass and the pass of prices left them; ``pair`` must be 0.  Returns DONE, STOPPED, or MEMORY if
-    more than ``most`` nodes had to be kept.
+    more than ``room`` nodes had to be kept.
     """
     low_ptr, low, core = numbering.low_ptr, numbering.low, numbering.core
     gap = prices.chosen
@@ -228,7 +227,7 @@ def inward_conflicts(
     local = np.full(n, -1, np.int32)
     where = np.full(forest.slot_place.shape[0], -1, np.int32)
     first, following = link_bags(forest.bag_above, forest.bag_kind)
-    kept = no_pairs(bags)
+    kept = no_pairs(bags, room)
     for i in range(n - 1, -1, -1):
         if (i & POLL) == 0:
             cells[STEP] = n - i
@@ -251,9 +250,7 @@ def inward_conflicts(
                 b, forest, senders(b, first, following), tries, used, where, residual, gap, prices.apart,
                 prices.avoided[n + b],
             )  # fmt: skip
-            code, kept = pair_filled(
-                bag, numbering, forest, tries, residual, prices, local, pair, kept, most, cells
-            )
+            code = pair_filled(bag, numbering, forest, tries, residual, prices, local, pair, kept, cells)
             if code != DONE:
                 return code
     return DONE

@@ -21,7 +21,7 @@ from typing import NamedTuple
 import numpy as np
 
 from nearchord_solve.kernels.cliques import depth_limit, touched
-from nearchord_solve.kernels.compiled import I32, I64, U8, U64, kernel, lowest
+from nearchord_solve.kernels.compiled import I32, I64, U8, U64, inlined, kernel, lowest
 from nearchord_solve.kernels.layout import ADHESION_FILL, Forest, Tries
 from nearchord_solve.sweep.kernels.passes import split_bag
 from nearchord_solve.sweep.kernels.tables import collect_messages, extend, fill_table, retract
@@ -65,10 +65,10 @@ class Searches(NamedTuple):
     following: I32
     without: I32  # place
     size: I32
-    place: I32  # [KEPT_SEARCHES, .] places of the best state
+    place: I32  # [., .] places of the best state
 
 
-@kernel
+@inlined
 def open_bag(
     number: int, forest: Forest, children: I32, tries: Tries, used: int, where: I32, residual: I64,
     price: I64, apart: I64, avoided: int,
@@ -187,7 +187,7 @@ def least_gap(bag: Bag, tries: Tries, allowed: U64, note: bool, price: I64, apar
     return most, length
 
 
-@kernel
+@inlined
 def all_of(count: int) -> U64:
     """A bitset of the first ``count`` vertices."""
     words = np.zeros((count + 63) >> 6, np.uint64)
@@ -196,7 +196,7 @@ def all_of(count: int) -> U64:
     return words
 
 
-@kernel
+@inlined
 def price_bag(bag: Bag, forest: Forest, tries: Tries, residual: I64, price: I64, apart: I64) -> None:
     """Gaps of the homes of a bag, into ``price`` by place, and of the states of the messages from below, but the empty
     ones, into ``apart`` int64[nodes]."""
@@ -223,7 +223,7 @@ def price_bag(bag: Bag, forest: Forest, tries: Tries, residual: I64, price: I64,
             x = tries.close[x]
 
 
-@kernel
+@inlined
 def search_bag(
     bag: Bag, forest: Forest, tries: Tries, price: I64, apart: I64, shut: I64, stamp: int, places: I32
 ) -> tuple[int, int]:
@@ -252,11 +252,11 @@ def search_bag(
     return least, size
 
 
-@kernel
+@inlined
 def open_searches(bag: Bag, forest: Forest, chosen: U8) -> Searches:
     """No search yet; the root is what of the bag is in the best set, ``chosen`` uint8[n] by place."""
     deepest = depth_limit(bag.slots.shape[0], bag.edges) + 1
-    room = KEPT_SEARCHES
+    room = KEPT_SEARCHES + 1
     found = Searches(
         np.ones(1, np.int64), np.zeros(room, np.int64), np.full(room, -1, np.int32), np.full(room, -1, np.int32),
         np.full(room, -1, np.int32), np.full(room, -1, np.int32), np.zeros(room, np.int32),
@@ -270,7 +270,7 @@ def open_searches(bag: Bag, forest: Forest, chosen: U8) -> Searches:
     return found
 
 
-@kernel
+@inlined
 def avoid(
     bag: Bag, forest: Forest, tries: Tries, price: I64, apart: I64,
     mark: I64, stamp: int, searches: Searches, shut: I64, serial: I64,
@@ -295,20 +295,24 @@ def avoid(
         while following >= 0 and searches.without[following] != hit:
             following = searches.following[following]
         if following < 0:
+            full = searches.count[0] == KEPT_SEARCHES
             following = searches.count[0]
-            if following == KEPT_SEARCHES:
-                places = np.empty(searches.place.shape[1], np.int32)
-                return search_bag(bag, forest, tries, price, apart, mark, stamp, places)[0]
-            searches.count[0] += 1
-            searches.above[following] = k
-            searches.without[following] = hit
-            searches.following[following] = searches.first[k]
-            searches.first[k] = following
             serial[0] += 1
-            up = following
-            while up > 0:
-                shut[searches.without[up]] = serial[0]
-                up = searches.above[up]
+            if full:  # the last row is not kept: leave out all marked places at once
+                for e in range(forest.bag_ptr[bag.number], forest.bag_ptr[bag.number + 1]):
+                    p = forest.slot_place[forest.bag_slot[e]]
+                    if mark[p] == stamp:
+                        shut[p] = serial[0]
+            else:
+                searches.count[0] += 1
+                searches.above[following] = k
+                searches.without[following] = hit
+                searches.following[following] = searches.first[k]
+                searches.first[k] = following
+                up = following
+                while up > 0:
+                    shut[searches.without[up]] = serial[0]
+                    up = searches.above[up]
             searches.gap[following], searches.size[following] = search_bag(
                 bag, forest, tries, price, apart, shut, serial[0], searches.place[following]
             )

@@ -15,13 +15,13 @@ from typing import NamedTuple
 import numpy as np
 
 from nearchord_solve.kernels.cliques import depth_limit
-from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest
-from nearchord_solve.kernels.grow import grown32, grown64
+from nearchord_solve.kernels.compiled import I32, I64, U64, inlined, kernel, lowest
 from nearchord_solve.kernels.layout import Tries
 from nearchord_solve.sweep.kernels.gaps import MOST_GAP, Bag
 from nearchord_solve.sweep.kernels.tables import retract
 
 ONE = np.uint64(1)
+FULL = -(2**63)  # no value or gap
 
 
 class PairTries(NamedTuple):
@@ -43,10 +43,9 @@ class PairTries(NamedTuple):
     count: I64  # [2] nodes, records
 
 
-@kernel
-def no_pairs(bags: int) -> PairTries:
-    """Nothing kept yet."""
-    room = 1024
+@inlined
+def no_pairs(bags: int, room: int) -> PairTries:
+    """Nothing kept yet, with room for so many nodes, and as many records."""
     return PairTries(
         np.empty(room, np.int32), np.empty(room, np.int64), np.empty(room, np.int64),
         np.zeros(bags, np.int64), np.zeros(bags, np.int64),
@@ -55,19 +54,7 @@ def no_pairs(bags: int) -> PairTries:
     )  # fmt: skip
 
 
-@kernel
-def with_room(kept: PairTries, nodes: int, records: int) -> PairTries:
-    """The same with room for so many nodes and records."""
-    if nodes <= kept.label.shape[0] and records <= kept.low.shape[0]:
-        return kept
-    return PairTries(
-        grown32(kept.label, nodes), grown64(kept.close, nodes), grown64(kept.delta, nodes), kept.first, kept.behind,
-        grown32(kept.low, records), grown32(kept.high, records), grown64(kept.begin, records),
-        grown64(kept.end, records), kept.count,
-    )  # fmt: skip
-
-
-@kernel
+@inlined
 def both_ways(rows: U64) -> U64:
     """Symmetric rows from upper ones."""
     full = rows.copy()
@@ -81,7 +68,7 @@ def both_ways(rows: U64) -> U64:
     return full
 
 
-@kernel
+@inlined
 def find_records(bag: Bag, a: int, c: int, kept: PairTries) -> tuple[I64, I64]:
     """Messages from below about touched vertices a < c: (first node, end) int64[children] each.
 
@@ -117,12 +104,12 @@ def find_records(bag: Bag, a: int, c: int, kept: PairTries) -> tuple[I64, I64]:
 @kernel
 def pair_states(
     bag: Bag, tries: Tries, full: U64, a: int, c: int, start: int, down: bool, kept: PairTries
-) -> tuple[int, PairTries]:
+) -> int:
     """Run through the states with touched vertices a < c, worth ``start`` before anything is chosen.
 
     With ``down``, a and c are in the adhesion: leaves M(u, v, r) as a trie behind the nodes of ``kept``, and returns
     M(u, v).  Without, at least one is at home: returns the least of (gap of t + M(t) - value) over the states, t being
-    their adhesion part.  O(states * messages met).
+    their adhesion part.  FULL if the room of ``kept`` does not suffice.  O(states * messages met).
     """
     count, words = bag.rows.shape
     begin, end = find_records(bag, a, c, kept)
@@ -189,7 +176,8 @@ def pair_states(
             while tries.label[at] != bag.slots[j]:
                 at = tries.close[at]
         elif j != a and j != c:
-            kept = with_room(kept, used + 1, 0)
+            if used == kept.label.shape[0]:
+                return FULL
             at = used
             kept.label[at] = bag.slots[j]
             used += 1
@@ -212,10 +200,10 @@ def pair_states(
         elif j < bag.lead or total - best > 0:
             best = total
     kept.count[0] = used
-    return best, kept
+    return best
 
 
-@kernel
+@inlined
 def settle_pair(begin: int, end: int, alone: int, bag: Bag, single: I64, kept: PairTries) -> None:
     """Turn M(u, v, r) on nodes begin..end-1 into deltas; ``alone`` is M(u, v), ``single`` int64[t] M({x}) - M(empty)."""
     path_end = np.empty(end - begin + 1, np.int64)

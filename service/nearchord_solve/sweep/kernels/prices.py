@@ -12,8 +12,8 @@ earlier neighbours,
 All that meets L(i) meets K(p), p the parent: a set that avoids L(i) holds nothing of K(p), or one vertex of K(p) that
 is not in L(i), as K(p) is a clique.  So g is the least of the gap of avoiding K(p) and the gaps of choosing a vertex of
 K(p) - L(i); it is 0 where the best set avoids L(i).  If L(i) is all of K(p) nothing has to be looked at; if it is about
-as large, K(p) is looked through; if it is much smaller, K(p) is sorted by gap once, and the first vertex outside L(i)
-is met after |L(i)| steps at most.  Together O(n + m log n), and the sorting is rare.
+as large, K(p) is looked through; if it is much smaller, K(p) is put in the order of gaps as far as a vertex outside
+L(i) needs, once for all that hang from it.  Mostly that is one vertex or two, and together O(n + m).
 """
 
 from typing import NamedTuple
@@ -21,9 +21,9 @@ from typing import NamedTuple
 import numpy as np
 
 from nearchord_solve.kernels.cells import POLL, STEP, STOP
-from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.compiled import I32, I64, U8, inlined, kernel
 from nearchord_solve.kernels.layout import BAG_FILL, Forest, Numbering, Tries
-from nearchord_solve.sweep.kernels.gaps import avoid, open_bag, open_searches, price_bag
+from nearchord_solve.sweep.kernels.gaps import MOST_GAP, avoid, open_bag, open_searches, price_bag
 from nearchord_solve.sweep.kernels.passes import link_bags, senders
 
 SMALL = 4  # a clique with so many times fewer vertices than the one it hangs from is worth sorting for
@@ -48,8 +48,8 @@ class Hanging(NamedTuple):
     first: I32  # [B] the first that hangs from a bag, -1 for none
     following: I32  # [n + B] the next one
     mark: I64  # [n] name of whose clique was marked last, or -2 - p for {p}
-    sorted_low: I32  # [m] lower neighbours by falling gap
-    is_sorted: U8  # [n]
+    row: I32  # [m] lower neighbours; those of i are copied when head[i] becomes positive
+    head: I32  # [n] how many of the lower neighbours stand in front in the order of their gaps
 
 
 @kernel
@@ -66,7 +66,7 @@ def clique_of(name: int, numbering: Numbering, forest: Forest) -> I32:
     return clique
 
 
-@kernel
+@inlined
 def home_slots(forest: Forest, n: int) -> tuple[I32, I32]:
     """(slot, bag) at which each place of a core is at home, int32[n] each; others are not written."""
     slot = np.empty(n, np.int32)
@@ -114,7 +114,7 @@ def hang(numbering: Numbering, forest: Forest) -> Hanging:
         following[name] = first[above]
         first[above] = name
     return Hanging(
-        first, following, np.full(n, -1), np.empty(numbering.low.shape[0], np.int32), np.zeros(n, np.uint8)
+        first, following, np.full(n, -1), np.empty(numbering.low.shape[0], np.int32), np.zeros(n, np.int32)
     )
 
 
@@ -129,6 +129,25 @@ def mark_clique(clique: I32, name: int, chosen: U8, mark: I64) -> bool:
 
 
 @kernel
+def first_unmarked(row: I32, head: int, gap: I64, mark: I64, name: int) -> tuple[int, int]:
+    """The least gap of a place of ``row`` that is not marked with ``name``, MOST_GAP without one; how many places of
+    the row are now in order.
+
+    The first ``head`` places of the row are in order of gap, and as many more are put in order as are looked at.
+    """
+    size = row.shape[0]
+    for k in range(size):
+        if k == head:
+            for q in range(k + 1, size):
+                if gap[row[q]] < gap[row[k]]:
+                    row[k], row[q] = row[q], row[k]
+            head += 1
+        if mark[row[k]] != name:
+            return gap[row[k]], head
+    return MOST_GAP, head
+
+
+@kernel
 def avoid_at(top: int, size: int, name: int, numbering: Numbering, hanging: Hanging, prices: Prices) -> int:
     """Gap of avoiding the ``size`` marked places of a clique whose highest place ``top`` is in no core."""
     begin = numbering.low_ptr[top]
@@ -140,15 +159,37 @@ def avoid_at(top: int, size: int, name: int, numbering: Numbering, hanging: Hang
             if hanging.mark[p] != name:
                 least = min(least, prices.chosen[p])
         return least
-    if not hanging.is_sorted[top]:
-        row = numbering.low[begin:end]
-        hanging.sorted_low[begin:end] = row[np.argsort(prices.chosen[row], kind="mergesort")]
-        hanging.is_sorted[top] = 1
+    if hanging.head[top] == 0:
+        hanging.row[begin:end] = numbering.low[begin:end]
+    other, hanging.head[top] = first_unmarked(
+        hanging.row[begin:end], hanging.head[top], prices.chosen, hanging.mark, name
+    )
+    return min(least, other)
+
+
+@inlined
+def list_asked(b: int, forest: Forest, hanging: Hanging, chosen: U8) -> I64:
+    """What has to be avoided in a bag: each chosen home p alone, named -2 - p, and the cliques that hang from it."""
+    begin = forest.bag_ptr[b] + forest.bag_adhesion[b]
+    end = forest.bag_ptr[b + 1]
+    count = end - begin
+    name = hanging.first[b]
+    while name >= 0:
+        count += 1
+        name = hanging.following[name]
+    names = np.empty(count, np.int64)
+    count = 0
     for e in range(begin, end):
-        p = hanging.sorted_low[e]
-        if hanging.mark[p] != name:
-            return min(least, prices.chosen[p])
-    return least
+        p = forest.slot_place[forest.bag_slot[e]]
+        if chosen[p]:
+            names[count] = -2 - p
+            count += 1
+    name = hanging.first[b]
+    while name >= 0:
+        names[count] = name
+        count += 1
+        name = hanging.following[name]
+    return names[:count]
 
 
 @kernel
@@ -167,21 +208,21 @@ def price_plain(
         if e >= begin + forest.bag_adhesion[b]:
             prices.chosen[p] = none + max(0, -residual[p])
             none += max(0, residual[p])
-    by_gap = clique[np.argsort(prices.chosen[clique], kind="mergesort")]
-    for p in clique[forest.bag_adhesion[b] :]:
-        if chosen[p]:
-            other = by_gap[0] if by_gap[0] != p or by_gap.shape[0] == 1 else by_gap[1]
-            prices.left_out[p] = none if other == p else min(none, prices.chosen[other])
-    name = hanging.first[b]
-    while name >= 0:
-        prices.avoided[name] = 0
-        if mark_clique(clique_of(name, numbering, forest), name, chosen, hanging.mark):
-            prices.avoided[name] = none
-            for p in by_gap:
-                if hanging.mark[p] != name:
-                    prices.avoided[name] = min(none, prices.chosen[p])
-                    break
-        name = hanging.following[name]
+    head = 0
+    for name in list_asked(b, forest, hanging, chosen):
+        hit = name < 0
+        if hit:
+            hanging.mark[-2 - name] = name
+        else:
+            hit = mark_clique(clique_of(name, numbering, forest), name, chosen, hanging.mark)
+        gap = 0
+        if hit:
+            other, head = first_unmarked(clique, head, prices.chosen, hanging.mark, name)
+            gap = min(none, other)
+        if name < 0:
+            prices.left_out[-2 - name] = gap
+        else:
+            prices.avoided[name] = gap
 
 
 @kernel
@@ -196,24 +237,24 @@ def price_filled(
     )
     price_bag(bag, forest, tries, residual, prices.chosen, prices.apart)
     searches = open_searches(bag, forest, chosen)
-    for e in range(forest.bag_ptr[b] + forest.bag_adhesion[b], forest.bag_ptr[b + 1]):
-        p = forest.slot_place[forest.bag_slot[e]]
-        if chosen[p]:
-            hanging.mark[p] = -2 - p
-            prices.left_out[p] = avoid(
-                bag, forest, tries, prices.chosen, prices.apart, hanging.mark, -2 - p, searches, shut, serial
-            )
-    name = hanging.first[b]
-    while name >= 0:
-        prices.avoided[name] = 0
-        if mark_clique(clique_of(name, numbering, forest), name, chosen, hanging.mark):
-            prices.avoided[name] = avoid(
+    for name in list_asked(b, forest, hanging, chosen):
+        if name < 0:
+            hanging.mark[-2 - name] = name
+            hit = True
+        else:
+            hit = mark_clique(clique_of(name, numbering, forest), name, chosen, hanging.mark)
+        gap = 0
+        if hit:
+            gap = avoid(
                 bag, forest, tries, prices.chosen, prices.apart, hanging.mark, name, searches, shut, serial
-            )
-        name = hanging.following[name]
+            )  # fmt: skip
+        if name < 0:
+            prices.left_out[-2 - name] = gap
+        else:
+            prices.avoided[name] = gap
 
 
-@kernel
+@inlined
 def price_core(
     c: int, numbering: Numbering, forest: Forest, first: I32, following: I32, tries: Tries, used: int, where: I32,
     hanging: Hanging, shut: I64, serial: I64, residual: I64, chosen: U8, prices: Prices,

@@ -8,7 +8,7 @@ import numpy as np
 
 from nearchord_solve.kernels.cells import POLL, STEP, STOP
 from nearchord_solve.kernels.cliques import touched
-from nearchord_solve.kernels.compiled import I32, I64, U32, U64, kernel, lowest
+from nearchord_solve.kernels.compiled import I32, I64, U32, U64, inlined, kernel, lowest
 from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest, Numbering
 from nearchord_solve.sweep.kernels.passes import link_bags, senders
 from nearchord_solve.sweep.kernels.tables import collect_messages
@@ -39,7 +39,7 @@ def gather(weights: I64, first: int, count: int, place: I32, residual: I64) -> N
             residual[p, r] = 0
 
 
-@kernel
+@inlined
 def take_home(p: int, residual: I64, chosen: U64, base: I64, gain: I64) -> None:
     """Add what a place is worth to ``base``, and note it in ``gain`` and, as bits of what is positive, in ``chosen``."""
     positive = np.uint64(0)
@@ -52,7 +52,7 @@ def take_home(p: int, residual: I64, chosen: U64, base: I64, gain: I64) -> None:
     chosen[p] = positive
 
 
-@kernel
+@inlined
 def settle_wide_bag(
     bag: int, forest: Forest, children: I32, tries: WideTries, used: int, where: I32, residual: I64, base: I64,
     ways: Ways,
@@ -67,7 +67,7 @@ def settle_wide_bag(
     meet_ptr, meet_node, meet_child = collect_messages(
         slots, children, tries.begin, tries.end, tries.label, tries.close
     )
-    end, _ = fill_wide(
+    end = fill_wide(
         slots, rows, edges, lead, gain, meet_ptr, meet_node, meet_child, children.shape[0], tries, used, empty,
         False, ways,
     )  # fmt: skip
@@ -140,11 +140,11 @@ def inward_wide(
     return True
 
 
-@kernel
+@inlined
 def choose_wide(
     bag: int, forest: Forest, children: I32, tries: WideTries, used: int, where: I32, residual: I64, chosen: U64,
     ways: Ways,
-) -> Ways:  # fmt: skip
+) -> None:  # fmt: skip
     """Choose in a bag with fill, for each vector, the best homes next to what is chosen in its adhesion."""
     begin = forest.bag_ptr[bag]
     split = begin + forest.bag_adhesion[bag]
@@ -155,7 +155,7 @@ def choose_wide(
     meet_ptr, meet_node, meet_child = collect_messages(
         slots, children, tries.begin, tries.end, tries.label, tries.close
     )
-    _, ways = fill_wide(
+    fill_wide(
         slots, rows, edges, lead, gain, meet_ptr, meet_node, meet_child, children.shape[0], tries, used, empty,
         True, ways,
     )  # fmt: skip
@@ -187,7 +187,6 @@ def choose_wide(
         while k >= 0 and ways.last[k] >= lead:
             chosen[forest.slot_place[slots[ways.last[k]]]] |= bit
             k = ways.before[k]
-    return ways
 
 
 @kernel
@@ -222,7 +221,7 @@ def outward_wide(
             if cells[STOP] != 0:
                 return False
             if forest.bag_kind[b] & BAG_FILL:
-                ways = choose_wide(
+                choose_wide(
                     b, forest, senders(b, first, following), tries, used, where, residual, chosen, ways
                 )
                 continue

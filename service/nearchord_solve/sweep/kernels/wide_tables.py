@@ -10,8 +10,7 @@ from typing import NamedTuple
 import numpy as np
 
 from nearchord_solve.kernels.cliques import depth_limit
-from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest
-from nearchord_solve.kernels.grow import grown32
+from nearchord_solve.kernels.compiled import I32, I64, U64, inlined, kernel, lowest
 from nearchord_solve.kernels.layout import Forest
 from nearchord_solve.sweep.kernels.tables import retract
 
@@ -31,7 +30,7 @@ class WideTries(NamedTuple):
 
 
 class Ways(NamedTuple):
-    """The best states of one bag, and what they hold.
+    """The best states of one bag, and what they hold; with room for the states of any bag.
 
     State k holds touched vertex ``last[k]`` and what state ``before[k]`` holds, -1: nothing else.
     """
@@ -42,7 +41,7 @@ class Ways(NamedTuple):
     best: I32  # [., W] best state for each node of the adhesion's trie
 
 
-@kernel
+@inlined
 def split_wide(bag: int, slots: I32, forest: Forest, residual: I64) -> tuple[int, I64, I64, I32]:
     """As ``split_bag``: (touched slots in the adhesion, residual weights of touched slots int64[t, W], the best of
     an untouched home or 0 int64[W], its slot or -1 int32[W]).  ``residual`` int64[n, W]."""
@@ -71,7 +70,7 @@ def split_wide(bag: int, slots: I32, forest: Forest, residual: I64) -> tuple[int
     return lead, gain, spare, spare_slot
 
 
-@kernel
+@inlined
 def extend_wide(
     j: int, slot: int, meet_ptr: I64, meet_node: I64, meet_child: I32, tries: WideTries,
     current: I64, undo: I64, undone: int, total: I64,
@@ -98,11 +97,11 @@ def extend_wide(
 def fill_wide(
     slots: I32, rows: U64, edges: int, lead: int, gain: I64, meet_ptr: I64, meet_node: I64, meet_child: I32,
     children: int, tries: WideTries, used: int, empty: I64, noting: bool, ways: Ways,
-) -> tuple[int, Ways]:  # fmt: skip
+) -> int:  # fmt: skip
     """As ``fill_table``: run through all states and leave M as a trie behind node ``used``; returns its end.
 
     ``empty`` int64[W] holds the spares and receives M(empty).  With ``noting``, ``ways`` receives the best states
-    (what is best at nodes from ``used`` on at 0), and is returned, perhaps grown.
+    (what is best at nodes from ``used`` on at 0).
     """
     count, words = rows.shape
     wide = empty.shape[0]
@@ -115,7 +114,6 @@ def fill_wide(
     current = np.full(children, -1, np.int64)
     undo = np.empty(meet_node.shape[0] + 1, np.int64)
     undone = int(np.int64(0))  # a literal 0 would compile what it is passed to twice
-    last, before = ways.last, ways.before
     for j in range(count):
         stack[0, j >> 6] |= ONE << np.uint64(j & 63)
     if noting:
@@ -148,10 +146,8 @@ def fill_wide(
         )
         at = node[depth]
         if noting:
-            last = grown32(last, states + 1)
-            before = grown32(before, states + 1)
-            last[states] = j
-            before[states] = state[depth]
+            ways.last[states] = j
+            ways.before[states] = state[depth]
         if j < lead:
             at = used
             tries.label[used] = slots[j]
@@ -181,10 +177,10 @@ def fill_wide(
         chosen[depth] = j
         state[depth] = states
         states += 1
-    return used, Ways(last, before, ways.empty, ways.best)
+    return used
 
 
-@kernel
+@inlined
 def settle_wide(begin: int, end: int, empty: I64, tries: WideTries, slot_place: I32, residual: I64) -> None:
     """As ``settle_message``: turn M on nodes begin..end-1 into deltas, moving single vertices into ``residual``."""
     room = end - begin + 1
