@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 import random
-from dataclasses import replace
+from dataclasses import fields, replace
 from typing import Any
 
 import nearchord
@@ -21,7 +21,7 @@ def answered(
     """What the solver says, as a session would give it; pins are vertex numbers."""
     question = question or nearchord.IndependentSet()
     kind = ns.QUESTIONS[question.name]
-    asked = kind(must=list(question.must), never=list(question.never))
+    asked = kind(**{field.name: getattr(question, field.name) for field in fields(question)})
     u, v = graph.edges()
     pairs = list(zip(u.tolist(), v.tolist(), strict=True))
     weights = None if graph.weights is None else graph.weights.astype(np.int64)

@@ -15,13 +15,13 @@ assumption.
 
 *{v} + L(v) is a clique of H*: by (*) all of L(v) but p(v) is joined to p(v); apply the same to L(p(v)), which has them.
 
-So a choice inside B(v) meets the rest of the graph in L(v) alone. A dynamic program that gives each v the best choice in
-B(v) for each choice in L(v) is exact, whatever the order is: there is nothing in a proof of this kind that has to be
-trusted, only (*) and how much work it takes depend on it.
+So a choice inside B(v) meets the rest of the graph in L(v) alone. A dynamic program that gives each v the best choice
+in B(v) for each choice in L(v) is exact, whatever the order is: nothing in a proof of this kind has to be trusted, only
+whether (*) holds and how much work it takes depend on the order.
 
-**Bags.** p(v) joins the bag of v when L(v) = {p(v)} + L(p(v)); in the order, the first v that can takes it. A bag is {d} +
-L(d) for its first member d; the vertices that joined are its homes, L of the last of them is its adhesion, which lies
-in the bag that has the first vertex of it at home.
+**Bags.** p(v) joins the bag of v when L(v) = {p(v)} + L(p(v)); in the order, the first v that can takes it. A bag is
+{d} + L(d) for its first member d; d and the vertices that joined are its homes, L of the last of them is its adhesion,
+which lies in the bag that has the first vertex of the adhesion at home.
 """
 
 from __future__ import annotations
@@ -71,8 +71,8 @@ def _vertices(columns: Mapping[str, NDArray[Any]], name: str, n: int) -> Ints:
 
 @dataclass(frozen=True)
 class Rows:
-    """Later neighbours by place: `later[start[i] : start[i + 1]]` are places, the latest first; `filled` marks pairs of F
-    among them."""
+    """Later neighbours by place: `later[start[i] : start[i + 1]]`, as places, the latest first; `filled` marks those that
+    a pair of F joins."""
 
     start: Ints
     later: Ints
@@ -97,7 +97,7 @@ def no_fill() -> Ints:
 
 
 def filled(columns: Mapping[str, NDArray[Any]], edges: Edges, place: Ints) -> Ints:
-    """The pairs F, int64[f, 2]; CheckFailed unless each is a pair of vertices in the order, no edge, and stands once."""
+    """The pairs F, int64[f, 2]; CheckFailed unless each has both ends in the order, is no edge, and stands once."""
     ends = _vertices(columns, "proof_fill", edges.n)
     if ends.size % 2:
         raise CheckFailed("the last pair that the proof fills has one end")
@@ -119,9 +119,9 @@ def filled(columns: Mapping[str, NDArray[Any]], edges: Edges, place: Ints) -> In
 class Bags:
     """Bags in an order in which each follows what hangs from it.
 
-    `members[b]`: places of bag b, the latest first, the homes last; `lead[b]`: vertices of its adhesion; `above[b]`: the
-    bag that it hangs from, -1 for roots; `where[b]`: the position there of each vertex of the adhesion. `fill[b]`: pairs of
-    positions that are filled, the smaller first.
+    `members[b]`: places of bag b, the latest first, the homes last; `lead[b]`: vertices of its adhesion; `above[b]`:
+    the bag that it hangs from, -1 for roots; `where[b]`: the position there of each vertex of the adhesion.
+    `fill[b]`: pairs of positions that are filled, the smaller first.
     """
 
     members: list[Ints]
@@ -160,7 +160,7 @@ def bags_of(rows: Rows) -> Bags:
 
 
 def _positions(rows: Rows, owner: Ints, parent: Ints) -> Ints:
-    """For each entry of L(v) its position in L(p(v)) + {p(v)}, the latest first; CheckFailed where (*) does not hold."""
+    """For each entry of L(v) its position in L(p(v)) + {p(v)}, the latest first; CheckFailed unless (*) holds."""
     if not owner.size:
         return owner
     count = rows.start.size - 1
@@ -171,8 +171,8 @@ def _positions(rows: Rows, owner: Ints, parent: Ints) -> Ints:
     missing = np.flatnonzero((keys[found] != wanted) & ~own)
     if missing.size:
         raise CheckFailed(
-            f"the proof lacks fill: vertices at places {int(parent[missing[0]])} and {int(rows.later[missing[0]])} of its "
-            f"order are later neighbours of the one at {int(owner[missing[0]])}, but are not joined"
+            f"the proof lacks fill: the vertices at places {int(parent[missing[0]])} and {int(rows.later[missing[0]])} "
+            f"of its order are later neighbours of the one at place {int(owner[missing[0]])}, but are not joined"
         )
     last = rows.start[parent + 1] - rows.start[parent]
     return np.where(own, last, found - rows.start[parent])

@@ -11,6 +11,8 @@ inside the adhesion.
 
 from __future__ import annotations
 
+from typing import NamedTuple
+
 from nearchord.checks.open_bag import OpenBag, bits, moved
 from nearchord.checks.states import TooManyStates
 
@@ -24,40 +26,66 @@ NOTHING: Entry = (0, ())
 def best_by_trees(bag: OpenBag[Entry], most: int) -> tuple[Table, int]:
     """For each entry of the adhesion the most that bag and bags below come to; and the number of states.
 
-    TooManyStates above `most`. Each set is met once, by ascending positions.
+    TooManyStates above `most`. Each set is met once, by ascending positions. What may still join a set is kept as bits:
+    a vertex with two neighbours in one of its trees may not.
     """
     below = [(adhesion, _by_set(table)) for adhesion, table in bag.below]
     base = sum(table[NOTHING] for _, table in bag.below)
+    near = [~apart & ~(1 << position) for position, apart in enumerate(bag.apart)]
+    ties = bag.fill_in_adhesion
     table: Table = {}
     states = 0
-    # set, what may still join it, its trees, its trees without the edges of the adhesion, members as bits, worth so far
-    waiting: list[tuple[int, int, Trees, Trees, tuple[int, ...], int]] = [(0, (1 << bag.size) - 1, (), (), (), base)]
+    waiting = [_Grown(0, (1 << bag.size) - 1, (), (), (), (), base)]
     while waiting:
-        chosen, allowed, trees, sent, members, worth = waiting.pop()
-        ways, tried = _ways(below, chosen, trees, sent, worth)
+        state = waiting.pop()
+        ways, tried = _ways(below, state)
         states += tried
         if states > most:
             raise TooManyStates
-        inside = chosen & bag.adhesion
-        for (_, tied), value in ways.items():
-            entry = inside, _groups(tied, inside)
+        inside = state.chosen & bag.adhesion
+        for (_, sent), value in ways.items():
+            entry = inside, _groups(sent, inside) if ties else ()
             if value > table.get(entry, value - 1):
                 table[entry] = value
-        grown = []
-        for position in bits(allowed):
-            bit = 1 << position
-            met = chosen & ~bag.apart[position]
-            one = joined(trees, met | bit, bit)
-            if one is None:
-                allowed ^= bit
-                continue
-            links = joined(sent, (met if position >= bag.lead else 0) | bit, bit)
-            assert links is not None, "fewer edges close no cycle"
-            grown.append((position, bit, one, links))
-        for position, bit, one, links in grown:
-            more = worth + bag.gain(position, members)
-            waiting.append((chosen | bit, allowed & (-2 << position), one, links, (*members, bit), more))
+        for position in bits(state.allowed):
+            waiting.append(_with(state, position, near[position], bag, ties))
     return table, states
+
+
+class _Grown(NamedTuple):
+    """A set and what may still join it; its trees, and the neighbours of each; its trees without the edges of the
+    adhesion; its members as bits; what it is worth so far."""
+
+    chosen: int
+    allowed: int
+    trees: Trees
+    around: Trees
+    sent: Trees
+    members: tuple[int, ...]
+    worth: int
+
+
+def _with(state: _Grown, position: int, near: int, bag: OpenBag[Entry], ties: bool) -> _Grown:
+    """The set with one vertex more, which is joined to at most one vertex of each tree."""
+    bit = whole = 1 << position
+    once, twice = near, 0
+    trees, around = [], []
+    for tree, neighbours in zip(state.trees, state.around, strict=True):
+        if tree & near:
+            whole |= tree
+            twice |= once & neighbours
+            once |= neighbours
+        else:
+            trees.append(tree)
+            around.append(neighbours)
+    sent = state.sent
+    if ties:
+        star = near & state.chosen if position >= bag.lead else 0
+        sent = joined(sent, star, bit) or ()
+    return _Grown(
+        state.chosen | bit, state.allowed & ~twice & (-2 << position), (*trees, whole), (*around, once), sent,
+        (*state.members, bit), state.worth + bag.gain(position, state.members),
+    )  # fmt: skip
 
 
 def joined(trees: Trees, star: int, fresh: int = 0) -> Trees | None:
@@ -75,32 +103,35 @@ def joined(trees: Trees, star: int, fresh: int = 0) -> Trees | None:
 
 
 def _ways(
-    below: list[tuple[int, dict[int, list[tuple[Trees, int]]]]], chosen: int, trees: Trees, sent: Trees, worth: int
+    below: list[tuple[int, dict[int, list[tuple[Trees, int]]]]], state: _Grown
 ) -> tuple[dict[tuple[Trees, Trees], int], int]:
     """The best of all combinations of entries below that close no cycle, by what is connected then; and how many."""
-    ways, tried = {(trees, sent): worth}, 1
+    ways, tried = {(state.trees, state.sent): state.worth}, 1
     for adhesion, table in below:
-        if not adhesion & chosen:
+        if not adhesion & state.chosen:
             continue
         following: dict[tuple[Trees, Trees], int] = {}
-        least = table[0][0][1]
-        tried += len(ways) * len(table[chosen & adhesion]) - 1
-        for (whole, tied), value in ways.items():
-            for groups, more in table[chosen & adhesion]:
-                pair = _with_groups(whole, tied, groups)
+        entries, least = table[state.chosen & adhesion], table[0][0][1]
+        tried += len(ways) * len(entries) - 1
+        for (whole, sent), value in ways.items():
+            for groups, more in entries:
+                pair = _with_groups(whole, sent, groups)
                 if pair is not None:
                     following[pair] = max(following.get(pair, value + more - least), value + more - least)
         ways = following
     return ways, max(1, tried)
 
 
-def _with_groups(whole: Trees, tied: Trees, groups: Trees) -> tuple[Trees, Trees] | None:
+def _with_groups(whole: Trees, sent: Trees, groups: Trees) -> tuple[Trees, Trees] | None:
+    """Trees once the vertices of each group are connected; None where that closes a cycle."""
     for group in groups:
         grown = joined(whole, group)
         if grown is None:
             return None
-        whole, tied = grown, joined(tied, group) or ()
-    return whole, tied
+        whole = grown
+        if sent:  # trees without some edges: no cycle here either; empty where they are of no account
+            sent = joined(sent, group) or ()
+    return whole, sent
 
 
 def _groups(trees: Trees, inside: int) -> Trees:

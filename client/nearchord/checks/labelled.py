@@ -1,12 +1,12 @@
 """Bounds on the heaviest choice that falls into q independent sets, or has no cycle, from an elimination order.
 
-The dynamic program over the bags of `elimination`: each bag gives the best for every choice in its adhesion, from what the
-bags below gave. It is exact. In bags without fill the choices in an adhesion are at most q vertices (two, for forests)
-and `worths` does without trying them one by one; in bags with fill all states are tried.
+The dynamic program over the bags of `elimination`: each bag gives the best for every choice in its adhesion, from what
+the bags below gave. It is exact. In bags without fill the choices in an adhesion are at most q vertices (two, for
+forests) and `worths` does without trying them one by one; in bags with fill all states are tried.
 
-*Pins.* What may not be chosen leaves the graph. What must be chosen weighs E >= 0 more; every choice with all of it then
-weighs E more for each, so the optimum of the heavier weights less E for each is a bound for all these choices, whatever
-E is. With E above the sum of all weights it is the optimum, or below 0 where there is no such choice.
+*Pins.* What may not be chosen leaves the graph. What must be chosen weighs E >= 0 more; every choice with all of it
+then weighs E more for each, so the optimum of the heavier weights less E for each is a bound for all these choices,
+whatever E is. With E above the sum of all weights it is the optimum, or below 0 where there is no such choice.
 """
 
 from __future__ import annotations
@@ -31,7 +31,7 @@ MOST_CELLS_AT_ONCE = 1 << 26
 
 @dataclass(frozen=True)
 class Rules(Generic[Key]):
-    """What tells colours and forests apart: `q` vertices of a clique may be chosen, and how a bag with fill is settled."""
+    """What tells colours and forests apart: `q`, the most vertices of a clique, and how a bag with fill is settled."""
 
     q: int
     best: Callable[[OpenBag[Key], int], tuple[dict[Key, int], int]]
@@ -116,7 +116,7 @@ class Program(Generic[Key]):
         table, states = self.rules.best(bag, MOST_STATES - self.states)
         self.states += states
         sent = own[(slice(0, lead + 1),) * self.rules.q]
-        if any(mask & bag.adhesion for mask in apart[:lead]):
+        if bag.fill_in_adhesion:
             adhesion = sum(1 << position for position in where)
             self._tables.setdefault(self.bags.above[b], []).append((adhesion, self.rules.renamed(table, where)))
             return sent

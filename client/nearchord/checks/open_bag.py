@@ -28,6 +28,11 @@ class OpenBag(Generic[Key]):
         """The vertices of the adhesion."""
         return (1 << self.lead) - 1
 
+    @property
+    def fill_in_adhesion(self) -> bool:
+        """Whether two vertices of the adhesion are not joined in the graph."""
+        return any(apart & self.adhesion for apart in self.apart[: self.lead])
+
     def gain(self, position: int, others: tuple[int, ...]) -> int:
         """What a vertex adds to what chosen ones before it, as single bits, are worth here.
 

@@ -2,18 +2,19 @@
 
 With q colours, and for forests with q = 2, no more than q vertices of a clique are chosen, and which ones says all: in
 a clique every chosen vertex has a colour of its own, and two chosen vertices of a clique are joined, so that nothing
-else may connect them. What a choice S of a bag gets from below through a clique is a function f(S) of at most q vertices.
+else may connect them. What a choice S of a bag gets from below through a clique is a function f(S) of at most q
+vertices.
 
-*Form.* f is kept as an array with q axes over "nothing" (index 0) and the vertices of the bag (from 1): at (x1, ..., xq)
-it has f of the vertices among them. Cells with a vertex twice mean nothing and are never used for others. Such an array
-of *values* turns into one of *worths* by subtracting, axis after axis, what stands at "nothing"; adding it turns it
-back. A worth belongs to exactly its vertices: f(S) is the sum of the worths of all subsets of S (inclusion and
-exclusion). Hence worths of a bag below are simply added to the cells of the same vertices in the bag above, however
+*Form.* f is kept as an array with q axes over "nothing" (index 0) and the vertices of the bag (from 1): at
+(x1, ..., xq) it has f of the vertices among them. Cells with a vertex twice mean nothing and are never used for others.
+Such an array of *values* turns into one of *worths* by subtracting, axis after axis, what stands at "nothing"; adding
+it turns it back. A worth belongs to exactly its vertices: f(S) is the sum of the worths of all subsets of S (inclusion
+and exclusion). Hence worths of a bag below are simply added to the cells of the same vertices in the bag above, however
 many hang there; and a set S with more than q vertices, in a bag with fill, gets the worths of all its subsets as well,
 since each function that went into them looks at one clique only, with at most q vertices of S.
 
-*Eliminating* the last vertex v turns values f on K into values g on K without v: g(S) = max(f(S), f(S + v)) for less than
-q vertices S, and g(S) = f(S) for q, which leave no room for v.
+*Eliminating* the last vertex v turns values f on K into values g on K without v: g(S) = max(f(S), f(S + v)) for less
+than q vertices S, and g(S) = f(S) for q, which leave no room for v.
 """
 
 from __future__ import annotations
