@@ -5,10 +5,10 @@ For each vertex v let L(v) be its neighbours that come after it in the order, fi
 *Cliques.*  Each clique of G lies in v and those of L(v) that are neighbours in G, for its first vertex v.  So the most
 that a clique inside one of these sets weighs is a bound, in any order; no fill is needed.
 
-*Colour classes and forests.*  The dynamic program over the bags {v} + L(v), the bag of v below that of the first vertex
-of L(v), is exact whenever the order is a perfect elimination order of G + fill: a checker computes the very optimum from
-the definition, so order and fill prove every bound that holds.  They only have to be good enough for its work to be
-small, which is why such a certificate is written within limits only, see :func:`checkable`.
+*Colour classes and forests.*  The dynamic program over the bags {v} + L(v), the bag of v below that of the first
+vertex of L(v), is exact whenever the order is a perfect elimination order of G + fill: a checker computes the very
+optimum from the definition, so order and fill prove every bound that holds.  They only have to be good enough for its
+work to be small, which is why such a certificate is written within limits only, see :func:`checkable`.
 """
 
 from dataclasses import dataclass
@@ -19,11 +19,12 @@ from nearchord_solve.arrays import I32, I64, U32
 from nearchord_solve.kernels.layout import BAG_FILL, Forest
 from nearchord_solve.predict import colour_states
 
-MOST_STATES = 2_000_000  # what a checker in plain Python is asked to try in bags with fill
-MOST_CELLS = (
-    10**9
-)  # entries of its tables on all bags, one for each way to fill q places from a bag or leave them empty
-HEAVIEST = 2**60  # sums of weights that a checker computes with in int64, worths of four vertices included
+# What a checker in plain Python is asked to do: states to try in bags with fill; entries of its tables, of which a bag
+# has one for every way to fill q places with its vertices or leave them empty, over all bags and in one bag.
+MOST_STATES = 2_000_000
+MOST_CELLS = 10**9
+MOST_CELLS_OF_BAG = 1 << 24
+HEAVIEST = 2**60  # sums of weights, so that it can compute with int64
 
 
 @dataclass(frozen=True, eq=False)
@@ -52,8 +53,9 @@ def checkable(forest: Forest, colours: int, states: int, weight: int) -> bool:
     if q > 2:  # the checker needs no states in bags without fill
         plain, count = np.unique(sizes[forest.bag_kind & BAG_FILL == 0], return_counts=True)
         states -= sum(n * colour_states(size, q) for size, n in zip(plain.tolist(), count.tolist(), strict=True))
-    cells = float(((sizes + 1.0) ** q).sum())
-    return states <= MOST_STATES and cells <= MOST_CELLS and weight < HEAVIEST
+    cells = (sizes + 1.0) ** q
+    small = cells.sum() <= MOST_CELLS and cells.max(initial=0) <= MOST_CELLS_OF_BAG
+    return bool(small) and states <= MOST_STATES and weight < HEAVIEST
 
 
 def fill_pairs(order: I32, ptr: I64, low: I32) -> I32:

@@ -18,23 +18,26 @@ from nearchord.checks.open_bag import bits
 from nearchord.checks.states import TooManyStates
 
 MOST_STATES = 2_000_000
+MOST_LOOKS = 50_000_000
 
 
 def heavier_clique(rows: Rows, weights: Ints, bound: int) -> tuple[list[int] | None, int]:
     """A clique that weighs more than `bound`, as places, or None where there is none; and how often a vertex was tried.
 
-    `rows` without fill, `weights` int64 by place. O(n + m) and the search; TooManyStates above MOST_STATES.
+    `rows` without fill, `weights` int64 by place. O(n + m) and the search; TooManyStates above MOST_STATES, or where it
+    takes more than MOST_LOOKS at edges to see who is joined to whom.
     """
     running = np.concatenate((np.zeros(1, np.int64), np.cumsum(weights[rows.later])))  # may wrap, differences are right
     whole = weights + running[rows.start[1:]] - running[rows.start[:-1]]
-    states = 0
+    counts = np.diff(rows.start)
+    states = looks = 0
     for v in np.flatnonzero(whole > bound).tolist():
         others = _row(rows, v)
         others = others[np.argsort(-weights[others], kind="stable")]
-        near = _near(rows, others)
-        states += others.size
-        if states > MOST_STATES:
+        looks += int(counts[others].sum()) + others.size
+        if looks > MOST_LOOKS:
             raise TooManyStates
+        near = _near(rows, others)
         target = bound - int(weights[v])
         found, more = _heavier_inside(near, weights[others].tolist(), target, MOST_STATES - states)
         states += more

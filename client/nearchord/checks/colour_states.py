@@ -32,7 +32,7 @@ def best_by_split(colours: int, bag: OpenBag[Split], most: int) -> tuple[Table, 
     while waiting:
         classes, allowed, later, members, worth = waiting.pop()
         states += 1
-        if states > most:
+        if states + len(waiting) > most:
             raise TooManyStates
         key = part(classes, adhesion)
         value = worth + _from_below(bag, classes, sum(members)) if bag.below else worth

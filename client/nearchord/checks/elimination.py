@@ -34,9 +34,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from nearchord.checks.edges import Edges, Ints, Mask, pair_keys
+from nearchord.checks.states import TooManyStates
 from nearchord.errors import CheckFailed
 
 SHIFT = np.int64(32)
+MOST_FILLED = 2_000_000
 
 
 def has_order(columns: Mapping[str, NDArray[Any]]) -> bool:
@@ -71,8 +73,8 @@ def _vertices(columns: Mapping[str, NDArray[Any]], name: str, n: int) -> Ints:
 
 @dataclass(frozen=True)
 class Rows:
-    """Later neighbours by place: `later[start[i] : start[i + 1]]`, as places, the latest first; `filled` marks those that
-    a pair of F joins."""
+    """Later neighbours by place: `later[start[i] : start[i + 1]]` are places, the latest first; `filled` marks those
+    that a pair of F joins."""
 
     start: Ints
     later: Ints
@@ -132,7 +134,10 @@ class Bags:
 
 
 def bags_of(rows: Rows) -> Bags:
-    """The bags; CheckFailed where (*) does not hold. O((m + f) log(m + f)), and the sizes of the bags."""
+    """The bags; CheckFailed where (*) does not hold. O((m + f) log(m + f)), and the pairs in bags with fill.
+
+    TooManyStates above MOST_FILLED filled pairs in all bags: each of them is a state at least.
+    """
     start = rows.start
     counts = np.diff(start)
     owner = np.repeat(np.arange(counts.size), counts)
@@ -142,7 +147,7 @@ def bags_of(rows: Rows) -> Bags:
     deep, tops, bag = _chains(counts.tolist(), parent.tolist())
     number = np.full(len(deep), -1, np.int64)
     number[np.argsort(tops, kind="stable")] = np.arange(len(deep))
-    bags = Bags([], [], [], [], [])
+    bags, count = Bags([], [], [], [], []), 0
     filled = _filled_rows(rows, owner)
     touched = np.zeros(counts.size, np.bool_)
     touched[list(filled)] = True
@@ -156,6 +161,9 @@ def bags_of(rows: Rows) -> Bags:
         bags.above.append(int(number[bag[parent[top]]]) if counts[top] else -1)
         bags.where.append(where[start[top] : start[top + 1]])
         bags.fill.append(_fill_inside(members.tolist(), filled) if suspect else [])
+        count += len(bags.fill[-1])
+        if count > MOST_FILLED:
+            raise TooManyStates
     return bags
 
 
@@ -205,4 +213,4 @@ def _filled_rows(rows: Rows, owner: Ints) -> dict[int, set[int]]:
 def _fill_inside(members: list[int], filled: dict[int, set[int]]) -> list[tuple[int, int]]:
     """Pairs of positions of a bag that are filled; later vertices have smaller positions."""
     position = {v: i for i, v in enumerate(members)}
-    return [(position[other], i) for i, v in enumerate(members) for other in filled.get(v, ()) if other in position]
+    return [(position[other], i) for i, v in enumerate(members) for other in filled.get(v, set()) & position.keys()]

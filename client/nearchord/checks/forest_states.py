@@ -40,15 +40,14 @@ def best_by_trees(bag: OpenBag[Entry], most: int) -> tuple[Table, int]:
         state = waiting.pop()
         ways, tried = _ways(below, state)
         states += tried
-        if states > most:
+        if states + len(waiting) > most:
             raise TooManyStates
         inside = state.chosen & bag.adhesion
         for (_, sent), value in ways.items():
             entry = inside, _groups(sent, inside) if ties else ()
             if value > table.get(entry, value - 1):
                 table[entry] = value
-        for position in bits(state.allowed):
-            waiting.append(_with(state, position, near[position], bag, ties))
+        waiting.extend(_with(state, position, near[position], bag, ties) for position in bits(state.allowed))
     return table, states
 
 

@@ -26,7 +26,8 @@ from nearchord.checks.states import TooManyStates
 
 MOST_STATES = 2_000_000
 MOST_CELLS = 10**9
-MOST_CELLS_AT_ONCE = 1 << 26
+MOST_CELLS_OF_BAG = 1 << 24
+MOST_CELLS_KEPT = 1 << 26
 
 
 @dataclass(frozen=True)
@@ -75,7 +76,8 @@ class Program(Generic[Key]):
     def best(self) -> int:
         """The weight of the heaviest choice; TooManyStates above the limits of this module."""
         q = self.rules.q
-        if sum((len(members) + 1) ** q for members in self.bags.members) > MOST_CELLS:
+        cells = [(len(members) + 1) ** q for members in self.bags.members]
+        if sum(cells) > MOST_CELLS or max(cells, default=0) > MOST_CELLS_OF_BAG:
             raise TooManyStates
         total = 0
         for b, members in enumerate(self.bags.members):
@@ -102,7 +104,7 @@ class Program(Generic[Key]):
         there = self._worths.get(above)
         if there is None:
             self._held += (len(self.bags.members[above]) + 1) ** self.rules.q
-            if self._held > MOST_CELLS_AT_ONCE:
+            if self._held > MOST_CELLS_KEPT:
                 raise TooManyStates
             there = self._worths[above] = worths.no_worths(len(self.bags.members[above]), self.rules.q)
         worths.add_from_below(there, sent, self.bags.where[b])
