@@ -6,7 +6,6 @@ import random
 from dataclasses import replace
 
 import nearchord
-import nearchord_solve as ns
 import networkx as nx
 import numpy as np
 import pytest
@@ -86,10 +85,11 @@ def test_every_answer_about_a_graph_of_the_atlas_is_certified_and_confirmed() ->
                 assert verdict_on(graph, nothing_chosen(answer, answer.bound - 1)) == "refused", (number, question)
 
 
-@settings(deadline=None)
-@given(strategies.weighted_graphs(), st.sampled_from(QUESTIONS), st.data())
+@pytest.mark.parametrize("question", QUESTIONS, ids=str)
+@settings(deadline=None, max_examples=40)
+@given(drawn=strategies.weighted_graphs(), data=st.data())
 def test_bounds_are_confirmed_with_pins(
-    drawn: tuple[int, Pairs, list[int]], question: nearchord.Choice, data: st.DataObject
+    question: nearchord.Choice, drawn: tuple[int, Pairs, list[int]], data: st.DataObject
 ) -> None:
     """Whatever is PROVEN is certified and confirmed, and no better bound is."""
     n, edges, weights = drawn
@@ -118,7 +118,7 @@ def near_chordal(rng: random.Random, n: int) -> tuple[Pairs, list[int]]:
 @pytest.mark.parametrize("seed", range(24))
 @pytest.mark.parametrize("question", QUESTIONS[:2] + QUESTIONS[3:], ids=str)
 def test_no_fault_in_an_order_makes_a_bound_pass_that_is_too_good(question: nearchord.Choice, seed: int) -> None:
-    """Fifty faults a graph: a bound below the optimum is never confirmed, and every fault that is no order is refused."""
+    """Fifty faults a graph: no bound below the optimum is confirmed, and every fault that is no order is refused."""
     rng = random.Random(seed)
     n = rng.randrange(5, 11)
     edges, weights = near_chordal(rng, n)

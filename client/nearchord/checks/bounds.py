@@ -39,7 +39,7 @@ def check_bound(graph: Graph, answer: Answer, question: Choice) -> tuple[str | N
     try:
         proven = _proven(graph, answer, bound, question)
     except TooManyStates as limit:
-        return None, f"the bound {bound}: {limit or 'checking its proof would take too long'}"
+        return None, f"the bound {bound}: {str(limit) or 'checking its proof would take too long'}"
     if proven is not None:
         return proven, None
     if ProofKind.SEARCH in (answer.proof, *answer.proof_kinds):
