@@ -130,7 +130,7 @@ def _square_over_roof() -> Graph:
 
 PARTS: dict[str, tuple[Callable[[], Iterator[None]], int]] = {
     "choosing": (_choosing, 12),
-    "filling": (_filling, 7),
+    "filling": (_filling, 8),
     "labelling": (_labelling, 6),
 }
 """Name of a part: its stages one by one, and how many they are."""

@@ -41,7 +41,7 @@ class Fill:
         if isinstance(structure, Partial):
             return without_structure(monitor, structure.reason)
         recognition, columns = recognise(graph, structure, monitor)
-        found = fill_of_graph(graph, structure, budget.fill, monitor)
+        found = fill_of_graph(graph, structure, budget.fill, monitor, budget.memory)
         if monitor.stop is Stop.CANCEL:
             return without_structure(monitor, "")
         return _conclude(graph, structure, found, recognition, columns, budget, monitor)
@@ -125,7 +125,7 @@ def _cores(part: PartFill) -> list[_Core]:
         return [_Core(part.vertices, str(ProofKind.NONE))]
     found = []
     for piece in part.result.pieces:
-        vertices = part.vertices[list(piece.vertices)]
+        vertices = part.vertices[piece.vertices]
         fill = int(np.isin(part.edges, vertices).all(axis=1).sum())
         found.append(_Core(vertices, str(piece.kind if piece.bound == fill else ProofKind.NONE)))
     return found

@@ -203,8 +203,8 @@ def test_too_little_memory_leaves_nothing_known() -> None:
 
 
 def test_parts_too_large_for_the_search_keep_the_fill_of_their_structure(monkeypatch: pytest.MonkeyPatch) -> None:
-    """And say that they were not searched."""
-    monkeypatch.setattr("nearchord_solve.fill.exact.whole.MOST_VERTICES", 6)
+    """They do not fit into memory; the answer says that they were not searched."""
+    monkeypatch.setattr("nearchord_solve.fill.exact.whole.search_bytes", lambda *_: 2**62)
     grid = nx.convert_node_labels_to_integers(nx.grid_2d_graph(3, 3))
     outcome = asked((9, [(min(e), max(e)) for e in grid.edges]))
     assert outcome.bound <= 5 <= outcome.value
