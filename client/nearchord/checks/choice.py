@@ -38,9 +38,16 @@ def check_choice(graph: Graph, answer: Answer, question: Choice) -> Confirmed:
             return Confirmed(tuple(done), (f"the bound {answer.bound}: checking its proof would take too long",))
     if plain is not None:
         return Confirmed((*done, plain), ())
+    return Confirmed(tuple(done), (f"the bound {answer.bound}: {_without_proof(answer)}",))
+
+
+def _without_proof(answer: Answer) -> str:
+    """Why the bound of an answer without proof columns stays open, and what can be done about it."""
+    if ProofKind.CERTIFICATE in (answer.proof, *answer.proof_kinds):
+        return "its proof is not at hand; `solve --proof FILE` writes it, `check --proof FILE` reads it"
     if ProofKind.SEARCH in (answer.proof, *answer.proof_kinds):
-        return Confirmed(tuple(done), (f"the bound {answer.bound}: it rests on a search, which leaves no proof",))
-    return Confirmed(tuple(done), (f"the bound {answer.bound}: the answer carries no proof of it",))
+        return "it rests on a search, which leaves no proof"
+    return "the answer carries no proof of it"
 
 
 def _check_splitting(graph: Graph, answer: Answer, question: Choice) -> str:
