@@ -125,7 +125,7 @@ def _cores(part: PartFill) -> list[_Core]:
         return [_Core(part.vertices, str(ProofKind.NONE))]
     found = []
     for piece in part.result.pieces:
-        vertices = part.vertices[list(piece.vertices)]
+        vertices = part.vertices[piece.vertices]
         fill = int(np.isin(part.edges, vertices).all(axis=1).sum())
         found.append(_Core(vertices, str(piece.kind if piece.bound == fill else ProofKind.NONE)))
     return found

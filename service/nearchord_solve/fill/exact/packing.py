@@ -6,6 +6,8 @@ again in integers (module :mod:`result` proves it for any multipliers).  So no b
 
 from collections.abc import Mapping, Sequence
 
+import numpy as np
+
 from nearchord_solve.fill.exact.core import Core, Pair
 from nearchord_solve.fill.exact.cycles import Cycle
 from nearchord_solve.fill.exact.result import Packing
@@ -77,5 +79,11 @@ def prices(core: Core, cycles: Sequence[Cycle], numerators: Sequence[int]) -> tu
 def packing_of(core: Core, cycles: Sequence[Cycle], numerators: Sequence[int]) -> Packing:
     """The packing in vertices of the part; cycles without a multiplier are left out."""
     used = [(cycle, y) for cycle, y in zip(cycles, numerators, strict=True) if y]
-    rings = tuple(tuple(core.classes[v] for v in cycle) for cycle, _ in used)
-    return Packing(rings, tuple(y for _, y in used), DENOMINATOR)
+    groups = [core.classes[v] for cycle, _ in used for v in cycle]
+    return Packing(
+        np.cumsum([0, *(len(cycle) for cycle, _ in used)], dtype=np.int64),
+        np.cumsum([0, *map(len, groups)], dtype=np.int64),
+        np.array([v for group in groups for v in group], np.int32),
+        np.array([y for _, y in used], np.int64),
+        DENOMINATOR,
+    )

@@ -11,6 +11,8 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+import numpy as np
+
 from nearchord_solve.arrays import I32, I64
 from nearchord_solve.fill.exact.branch import CaseSearch
 from nearchord_solve.fill.exact.core import Core, Pair, pair_array
@@ -231,7 +233,7 @@ def summed(core: Core, pieces: list[Piece], over: bool) -> FillResult:
 
 def proof_of(piece: Piece) -> PieceProof:
     """What backs the lower bound of an atom."""
-    vertices = tuple(sorted(v for group in piece.core.classes for v in group))
+    vertices = np.array(sorted(v for group in piece.core.classes for v in group), np.int32)
     if len(piece.tree) > 1:
         return PieceProof(ProofKind.BRANCH, vertices, piece.lower, None, piece.tree)
     packing = piece.tree[0].packing if piece.tree else piece.packing
