@@ -21,7 +21,8 @@ def answered(
     """What the solver says, as a session would give it; pins are vertex numbers."""
     question = question or nearchord.IndependentSet()
     kind = ns.QUESTIONS[question.name]
-    asked = kind(must=list(question.must), never=list(question.never))
+    pins = {name: list(getattr(question, name)) for name in ("must", "never") if hasattr(question, name)}
+    asked = kind(**pins)
     u, v = graph.edges()
     pairs = list(zip(u.tolist(), v.tolist(), strict=True))
     weights = None if graph.weights is None else graph.weights.astype(np.int64)

@@ -62,6 +62,7 @@ def test_json_of_a_fill_has_the_promised_keys(service: FakeService, nearchord_co
         "chordless_cycle": [1, 2, 3, 4],
         "split_clique": None,
         "intervals": None,
+        "branches": [],
         "packing": [{"ring": [[1], [2], [3], [4]], "share": 1}],
         "cores": [[1, 2, 3, 4]],
     }
