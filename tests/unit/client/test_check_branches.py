@@ -72,6 +72,9 @@ def test_trees_about_different_pairs_add_up():
     assert bound(TWO_SQUARES, branches([TREE, SECOND])) == 2
     with pytest.raises(CheckFailed, match=r"two branch trees, or one and the packing, speak of the pair {0, 2}"):
         bound(TWO_SQUARES, branches([TREE, TREE]))
+    for other in ([(0, 2), NONE, NONE], [(0, 4), (0, 2), NONE, NONE, NONE]):
+        with pytest.raises(CheckFailed, match=r"speak of the pair {0, 2}"):
+            bound(TWO_SQUARES, branches([[(0, 2), NONE, NONE], other]))
 
 
 def test_a_tree_and_a_packing_about_different_pairs_add_up():
