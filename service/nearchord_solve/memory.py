@@ -43,8 +43,12 @@ def kept_bytes(n: int) -> int:
 
 
 def state_bytes(states: int) -> int:
-    """Memory of states kept with their way back: value 8, origin 8 and set 8 bytes."""
-    return states * 24
+    """Memory of states of colour classes and forests: what their messages keep, about 96 bytes a state.
+
+    The tables on the reference graphs held from a quarter of that to two and a half times as much, and less where many
+    states send the same message, as they share an entry.
+    """
+    return states * 96
 
 
 def most_fill(n: int, m: int, memory: int) -> int:

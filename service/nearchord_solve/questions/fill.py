@@ -10,7 +10,7 @@ import numpy as np
 from nearchord_solve.arrays import I32, I64
 from nearchord_solve.budget import Budget
 from nearchord_solve.fill.exact import GraphFill, PartFill, ProofKind, fill_of_graph
-from nearchord_solve.fill.exact.witness import packing_columns
+from nearchord_solve.fill.exact.witness import proof_columns
 from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
 from nearchord_solve.memory import predicted_bytes
@@ -67,7 +67,7 @@ def _conclude(
     proven = found.lower_bound == found.upper_bound
     monitor.incumbent(found.upper_bound)
     monitor.bound(found.lower_bound)
-    witness, complete = packing_columns(found.parts)
+    witness, complete = proof_columns(found.parts)
     columns: Columns = {
         "fill_edge": found.edges.ravel().astype(np.uint32),
         "elimination_order": order.astype(np.uint32),
@@ -132,8 +132,9 @@ def _cores(part: PartFill) -> list[_Core]:
 
 
 def _proof(cores: list[_Core], complete: bool) -> str:
-    """A certificate only if the columns prove the bound of every core; the trees of branch proofs are not in them."""
-    return "certificate" if complete and all(core.kind == ProofKind.PACKING for core in cores) else "search"
+    """A certificate only if the columns prove the bound of every core."""
+    witnessed = (ProofKind.PACKING, ProofKind.BRANCH)
+    return "certificate" if complete and all(core.kind in witnessed for core in cores) else "search"
 
 
 def _reason(found: GraphFill, budget: Budget, monitor: Monitor) -> str:
