@@ -14,9 +14,12 @@ from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
 from nearchord_solve.questions.addons.added import AddOn, extend
+from nearchord_solve.questions.addons.conflict_prices import Pinned, add_conflict_prices
 from nearchord_solve.questions.addons.count import add_count
 from nearchord_solve.questions.addons.limit import find_limited
+from nearchord_solve.questions.addons.prices import add_prices
 from nearchord_solve.questions.addons.ranked import add_best
+from nearchord_solve.questions.addons.scenarios import answer_scenarios
 from nearchord_solve.questions.addons.terms import check_terms
 from nearchord_solve.questions.conclude import contradiction, infeasible, outcome_of
 from nearchord_solve.questions.gauge import Gauge
@@ -49,7 +52,8 @@ class IndependentSet:
         check_terms(self)
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)
-        rest = apply_pins(graph, weights, must, never)
+        first = weights[0] if self.scenarios else weights
+        rest = apply_pins(graph, first, must, never)
         if isinstance(rest, Contradiction):
             return contradiction(rest, "must be chosen", "must not be chosen")
         room = None if self.limit is None else self.limit - must.size
@@ -62,11 +66,17 @@ class IndependentSet:
         task = Task(rest.graph, rest.weights, budget, when_over, gauge, whole)
         found = find_heaviest(task) if room is None else find_limited(task, room)
         outcome = outcome_of(found, rest.taken_weight, 1, lambda chosen: lift(rest, chosen), rest.vertices)
-        return extend(outcome, task, rest, found.swept, self._wanted())
+        if self.scenarios:
+            return answer_scenarios(task, rest, found, outcome, weights)
+        return extend(outcome, task, rest, found.swept, self._wanted(Pinned(graph, weights, must, never)))
 
-    def _wanted(self) -> dict[str, AddOn]:
+    def _wanted(self, pinned: Pinned) -> dict[str, AddOn]:
         """The add-ons asked for, by name."""
         wanted: dict[str, AddOn] = {}
+        if self.prices:
+            wanted["prices"] = partial(add_prices, n=pinned.graph.n)
+        if self.conflict_prices:
+            wanted["conflict_prices"] = partial(add_conflict_prices, pinned=pinned)
         if self.best > 1:
             wanted["best"] = partial(add_best, most=self.best)
         if self.count:

@@ -18,6 +18,7 @@ from nearchord_solve.kept import Reuse
 from nearchord_solve.kernels.greedy_classes import colour_in_order, grow_forest
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.order import Ranking
+from nearchord_solve.order_proof import certify_order
 from nearchord_solve.outcome import Outcome, Verdict
 from nearchord_solve.questions.conclude import contradiction, outcome_of
 from nearchord_solve.questions.frame import Concluded, Settled, run_program
@@ -69,7 +70,10 @@ class LabelledProgram:
         room = budget.memory - structure.held_bytes - 8 * line.later.size
         swept = sweep_labelled(line, task.weights, self.colours, budget.states, room, monitor)
         if swept.colour is not None:
-            return self._settled(swept.colour, swept.value, True, swept.states, _reason(structure, swept))
+            settled = self._settled(swept.colour, swept.value, True, swept.states, _reason(structure, swept))
+            weight = int(task.weights.sum())
+            proof = certify_order(swept.value, line.order, line.forest, self.colours, states, weight)
+            return replace(settled, proof=proof)
         if swept.code == label_passes.STATES:
             return self._over(task, structure, swept.states)
         reason = "memory budget: the tables of the bags do not fit" if swept.code == label_passes.MEMORY else late
@@ -120,16 +124,16 @@ def answer_labelled(
 
 def _conclude(ended: Concluded, rest: Rest, offset: int, colours: int) -> Outcome:
     found = ended.found
-    columns: Mapping[str, U32] = {}
+    columns: Mapping[str, U32 | I64] = {}
     if found.bound is not None and found.bound < offset:
         found = Found(Verdict.INFEASIBLE, None, None, None, found.structure, _impossible(colours))
     elif found.value is not None and found.value < offset:
         reason = f"{found.reason}; no choice with all pins was found"
-        found = Found(Verdict.BOUNDED, None, found.bound, None, found.structure, reason)
+        found = Found(Verdict.BOUNDED, None, found.bound, None, found.structure, reason, found.proof)
     elif found.chosen is not None and colours and ended.colour is not None:
         columns = {"colour": ended.colour[found.chosen != 0]}
     outcome = outcome_of(found, -offset, 1, lambda chosen: lift(rest, chosen), rest.vertices)
-    return replace(outcome, states=ended.states, columns=columns)
+    return replace(outcome, states=ended.states, columns={**columns, **outcome.columns})
 
 
 def _impossible(colours: int) -> str:

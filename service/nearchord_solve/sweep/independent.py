@@ -63,7 +63,10 @@ def sweep(structure: Structure, weights: I64, fits: U8, monitor: Monitor) -> Swe
 def _empty_tries(structure: Structure, fits: U8) -> Tries:
     bags = structure.forest.bag_kind.size
     kept = int(structure.forest.figures[fits != 0, TABLE].sum())
-    room = kept + int(np.diff(structure.forest.bag_ptr).max(initial=0))
+    # behind the kept messages there is room for any one message, once more or of single vertices only
+    room = kept + max(
+        int(structure.forest.figures[:, TABLE].max(initial=0)), int(np.diff(structure.forest.bag_ptr).max(initial=0))
+    )
     return Tries(
         np.zeros(bags, np.int64),
         np.zeros(bags, np.int64),
