@@ -41,7 +41,7 @@ def gather(weights: I64, first: int, count: int, place: I32, residual: I64) -> N
 
 @inlined
 def take_home(p: int, residual: I64, chosen: U64, base: I64, gain: I64) -> None:
-    """Add what a place is worth to ``base``, and note it in ``gain`` and, as bits of what is positive, in ``chosen``."""
+    """Add what a place is worth to ``base``; note it in ``gain``, and as bits of what is positive in ``chosen``."""
     positive = np.uint64(0)
     wide = gain.shape[0]
     for r in range(wide):
@@ -221,9 +221,7 @@ def outward_wide(
             if cells[STOP] != 0:
                 return False
             if forest.bag_kind[b] & BAG_FILL:
-                choose_wide(
-                    b, forest, senders(b, first, following), tries, used, where, residual, chosen, ways
-                )
+                choose_wide(b, forest, senders(b, first, following), tries, used, where, residual, chosen, ways)
                 continue
             taken = np.uint64(0)
             for e in range(forest.bag_ptr[b], forest.bag_ptr[b + 1]):
