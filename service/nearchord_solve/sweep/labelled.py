@@ -75,14 +75,15 @@ def sweep_labelled(line: Line, weights: I64, colours: int, most: int, most_bytes
     closed = colours in CLOSED
     single = weights[line.order]
     pair = np.zeros(line.later.size if closed else 0, np.int64)
-    code, value, states, ptr, table = label_passes.inward(
-        line.forest, line.later_ptr, line.later, single, pair, colours, closed, most, most_bytes, monitor.cells
+    must = np.zeros(weights.size, np.uint8)
+    code, value, states, ptr, child, table = label_passes.inward(
+        line.forest, line.later_ptr, line.later, single, pair, must, colours, closed, most, most_bytes, monitor.cells
     )
     if code != label_passes.DONE:
         return Labelled(int(code), int(value), int(states), None)
     by_rank = np.zeros(weights.size, np.uint8)
     if not label_passes.outward(
-        line.forest, line.later_ptr, single, pair, colours, closed, ptr, table, by_rank, monitor.cells
+        line.forest, line.later_ptr, single, pair, must, colours, closed, ptr, child, table, by_rank, monitor.cells
     ):
         return Labelled(label_passes.STOPPED, int(value), int(states), None)
     colour = np.empty(weights.size, np.uint8)
