@@ -27,6 +27,7 @@ class Search(NamedTuple):
     own: I64  # [D+1] what the state is worth in the bag itself
     whole: I32  # [D+1, D+1] trees of the forest
     tied: I32  # [D+1, D+1] trees without the edges inside the adhesion
+    climbs: U64  # [W] vertices with a fill edge to a higher one
 
 
 @kernel
@@ -41,10 +42,15 @@ def new_search(bag: Bag, colours: int, deepest: int, candidates: U64) -> Search:
         allow[0, k] = candidates
     open_[0, 0] = candidates
     trees = rows if colours == 0 else 0
+    climbs = np.zeros(words, np.uint64)
+    for v in range(bag.near.shape[0]):
+        for w in range(v >> 6, words):
+            if bag.near[v, w] & _above(v, w) != 0:
+                climbs[v >> 6] |= ONE << np.uint64(v & 63)
     return Search(
         allow, open_, np.zeros((rows, words), np.uint64), np.zeros(rows, np.int32), np.zeros(rows, np.int32),
         np.zeros(rows, np.int64), np.zeros(rows, np.int64), np.zeros((trees, trees), np.int32),
-        np.zeros((trees, trees), np.int32),
+        np.zeros((trees, trees), np.int32), climbs,
     )  # fmt: skip
 
 
@@ -124,6 +130,25 @@ def _grow_trees(bag: Bag, search: Search, depth: int, v: int) -> None:
 
 
 @kernel
+def _drop_plain(bag: Bag, search: Search, v: int) -> None:
+    """Do not try a second vertex u next to ``v`` that makes a plain state from which only plain ones could grow.
+
+    A third vertex x, above both, has a fill edge to one of them: so u is below a fill neighbour of v, or climbs.
+    """
+    below = np.uint64(0)
+    for w in range(search.climbs.shape[0] - 1, -1, -1):
+        word = bag.near[v, w]
+        smeared = below
+        if below == 0 and word != 0:
+            smeared = word
+            for shift in (1, 2, 4, 8, 16, 32):
+                smeared |= smeared >> np.uint64(shift)
+            below = ~np.uint64(0)
+        for k in range(search.open_.shape[1]):
+            search.open_[1, k, w] &= smeared | search.climbs[w]
+
+
+@kernel
 def add_vertex(bag: Bag, search: Search, depth: int, v: int, kind: int, forest: bool) -> None:
     """Write row ``depth + 1``: the state of row ``depth`` with vertex ``v``, above all others, under label ``kind``."""
     below = depth + 1
@@ -140,6 +165,8 @@ def add_vertex(bag: Bag, search: Search, depth: int, v: int, kind: int, forest: 
         _grow_trees(bag, search, depth, v)
     else:
         _grow_classes(bag, search, depth, v, kind)
+    if bag.closed and depth == 0:
+        _drop_plain(bag, search, v)
 
 
 @kernel
