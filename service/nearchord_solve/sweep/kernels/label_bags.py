@@ -107,7 +107,7 @@ def open_bag(
 def most_chosen(bag: Bag, colours: int) -> int:
     """Most vertices of a state: two cliques of the fill graph make a forest."""
     size = bag.member.shape[0]
-    return min(size, max(colours, 2) * depth_limit(size, bag.edges))
+    return int(min(size, max(colours, 2) * depth_limit(size, bag.edges)))
 
 
 @kernel

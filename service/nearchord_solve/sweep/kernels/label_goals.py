@@ -48,7 +48,7 @@ class Goal(NamedTuple):
 
 @kernel
 def few_place(high: int, low: int) -> int:
-    """Where plain part (high, low) stands, see :func:`.label_bags.collect_few`: 0, or behind all with lower ``high``."""
+    """Where plain part (high, low) stands (see :func:`.label_bags.collect_few`): behind all with lower ``high``."""
     return 1 + high * (high - 1) // 2 + low if high > 0 else 0
 
 

@@ -36,6 +36,7 @@ from nearchord_solve.sweep.kernels.label_states import visit_states
 from nearchord_solve.sweep.kernels.label_table import Table, empty_table, find, table_bytes
 
 ONE = np.uint64(1)
+UNLIMITED = 2**62
 DONE, STOPPED, STATES, MEMORY, IMPOSSIBLE = 0, 1, 2, 3, 4
 
 
@@ -222,7 +223,7 @@ def choose_bag(bag: Bag, table: Table, colours: int, colour: U8, pick: I32, cell
     if bag.closed and (fixed.shape[0] < 2 or (fixed.shape[0] == 2 and name[1] == 1)):
         choose_few(bag, fixed, best)
     goal = Goal(CHOOSE, np.empty((0, 0), np.int64), best, no_belief())
-    visit_states(bag, table, colours, candidates, np.int64(2**62), goal, cells)
+    visit_states(bag, table, colours, candidates, int(np.int64(UNLIMITED)), goal, cells)
     apply_best(bag, best, colours > 0, colour, pick)
 
 
@@ -246,4 +247,4 @@ def outward(
             continue
         bag = open_bag(b, forest, later_ptr, single, pair, must, closed, child[ptr[b] : ptr[b + 1]], table, where)
         choose_bag(bag, table, colours, colour, pick, cells)
-    return cells[STOP] == 0
+    return bool(cells[STOP] == 0)

@@ -58,10 +58,10 @@ def _new_ways(children: int, room: int) -> Ways:
 @kernel
 def _meets(bag: Bag, search: Search, size: int, c: int) -> bool:
     """Whether a state has vertices in the adhesion of bag ``c`` below."""
+    common = np.uint64(0)
     for w in range(bag.inside.shape[1]):
-        if bag.inside[c, w] & search.set_[size, w] != 0:
-            return True
-    return False
+        common |= bag.inside[c, w] & search.set_[size, w]
+    return bool(common != 0)
 
 
 @kernel
