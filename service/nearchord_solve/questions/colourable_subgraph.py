@@ -20,7 +20,7 @@ from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
 from nearchord_solve.questions.independent_set import IndependentSet
-from nearchord_solve.questions.labelled import answer_labelled
+from nearchord_solve.questions.labelled import Asked, answer_labelled
 from nearchord_solve.questions.pins import pin_array
 
 MOST_COLOURS = 4
@@ -49,4 +49,4 @@ class ColourableSubgraph:
             outcome = IndependentSet(must, never).answer(graph, weights, budget, when_over, monitor, reuse)
             chosen = 0 if outcome.chosen is None else outcome.chosen.size
             return replace(outcome, columns={"colour": np.ones(chosen, np.uint32)})
-        return answer_labelled(self.colours, must, never, graph, weights, budget, when_over, monitor, reuse)
+        return answer_labelled(Asked(self.colours, must, never), graph, weights, budget, when_over, monitor, reuse)

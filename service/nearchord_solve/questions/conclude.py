@@ -18,6 +18,11 @@ def contradiction(pins: Contradiction, inside: str, outside: str, kind: str = "a
         reason = f"the pins contradict each other: vertex {pins.one} {inside} and {outside}"
     else:
         reason = f"the pins contradict each other: {kind} {pins.one} and {pins.other} both {inside}"
+    return infeasible(reason)
+
+
+def infeasible(reason: str) -> Outcome:
+    """The end of a question whose pins contradict each other."""
     nothing = np.empty(0, np.uint32)
     return Outcome(Verdict.INFEASIBLE, None, None, nothing, None, 0, None, 0, 0, 0, 0, "none", (), reason)
 

@@ -21,12 +21,13 @@ from nearchord_solve.tree import Partial, build_structure
 class Settled:
     """What a program found on a graph of known structure.
 
-    ``chosen`` uint8[n], feasible; ``bound`` is valid, and is the optimum if ``exact``.  ``states``: states that it
-    went through or would have to; ``reason``: how it was settled, or what was too small.  ``colour`` uint32[n]: classes
-    of the chosen vertices, for questions that have some.
+    ``chosen`` uint8[n], feasible, None if no feasible choice was found.  If ``exact``, ``bound`` is the optimum, or
+    there is no choice at all; otherwise it is valid.  ``states``: states that it went through or would have to;
+    ``reason``: how it was settled, or what was too small.  ``colour`` uint32[n]: classes of the chosen vertices, for
+    questions that have some.
     """
 
-    chosen: U8
+    chosen: U8 | None
     bound: int
     exact: bool
     states: int
@@ -94,6 +95,8 @@ def _close(task: Task, settled: Settled, structure: Structure | None, reason: st
     """End with a feasible choice and a bound: PROVEN if they meet."""
     if task.stop is Stop.CANCEL:
         return _cancelled(structure)
+    if settled.chosen is None:
+        return _without_choice(task, settled, structure, reason)
     value = task.weight(settled.chosen)
     task.gauge.incumbent(value)
     task.gauge.bound(settled.bound)
@@ -103,6 +106,16 @@ def _close(task: Task, settled: Settled, structure: Structure | None, reason: st
         reason += "; the choice found meets the bound all the same"
     found = Found(verdict, value, settled.bound, settled.chosen, structure, reason)
     return Concluded(found, states, settled.colour)
+
+
+def _without_choice(task: Task, settled: Settled, structure: Structure | None, reason: str) -> Concluded:
+    """End without a feasible choice: there is none, or none was found."""
+    states = settled.states if structure is not None else None
+    if settled.exact:
+        return Concluded(Found(Verdict.INFEASIBLE, None, None, None, structure, reason), states)
+    task.gauge.bound(settled.bound)
+    reason += "; no choice with all pins was found"
+    return Concluded(Found(Verdict.BOUNDED, None, settled.bound, None, structure, reason), states)
 
 
 def total_of(weights: I64, chosen: U8) -> int:

@@ -14,7 +14,7 @@ from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
-from nearchord_solve.questions.labelled import answer_labelled
+from nearchord_solve.questions.labelled import Asked, answer_labelled
 from nearchord_solve.questions.pins import pin_array
 
 
@@ -31,4 +31,4 @@ class InducedForest:
         """Answer for checked arguments; see :func:`nearchord_solve.solve`."""
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)
-        return answer_labelled(0, must, never, graph, weights, budget, when_over, monitor, reuse)
+        return answer_labelled(Asked(0, must, never), graph, weights, budget, when_over, monitor, reuse)
