@@ -64,7 +64,7 @@ class LabelledProgram:
         if states > budget.states:
             return self._over(task, structure, states)
         room = budget.memory - structure.held_bytes - 8 * line.later.size
-        swept = sweep_labelled(line, pinned, budget.states, room, monitor)
+        swept = sweep_labelled(line, pinned, budget.states, room, False, monitor)
         if swept.colour is not None:
             return self._settled(swept.colour, swept.value, True, swept.states, _reason(structure, swept))
         if swept.code == label_passes.IMPOSSIBLE:

@@ -32,7 +32,7 @@ class Bag(NamedTuple):
     gain: I64  # [b] what a vertex is worth here: 0 in the adhesion
     pair: I64  # [b, b] what two vertices are worth together, by (higher, lower)
     need: U64  # [W] homes that must be chosen
-    child: I32  # [C] bags below that send entries
+    child: I64  # [C] bags below that send entries
     inside: U64  # [C, W] the adhesion of each
     plain: I32  # [C] its entry for the empty set, -1 without
     base: int  # sum of the values of these entries
@@ -57,7 +57,7 @@ def _link(bag_member: I32, forest: Forest, where: I32, near: U64) -> int:
 @kernel
 def open_bag(
     number: int, forest: Forest, later_ptr: I64, single: I64, pair: I64, must: U8, closed: bool,
-    child: I32, table: Table, where: I32,
+    child: I64, table: Table, where: I32,
 ) -> Bag:  # fmt: skip
     """A bag as its states need it.  ``must`` uint8[n]: vertices that have to be chosen (not looked at if closed).
 
@@ -93,7 +93,7 @@ def open_bag(
             i = where[forest.bag_slot[e]]
             inside[c, i >> 6] |= ONE << np.uint64(i & 63)
         if not closed:
-            plain[c] = find(table, child[c], member, 0)
+            plain[c] = find(table, child[c], member, int(np.int64(0)))
             if plain[c] < 0:
                 missing += 1
             else:

@@ -1,17 +1,21 @@
-"""What is done with each state of a bag: record it for the bag above, compare it, or tell what it is worth in all."""
+"""What is done with each state of a bag.
+
+COLLECT: offer it to the bag above.  CHOOSE: keep the best.  MEASURE: collect, but only what plain parts are worth.
+BELIEVE: tell everything that it touches what it is worth in all, with the best of what lies outside.
+"""
 
 from typing import NamedTuple
 
 import numpy as np
 
-from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, ones
+from nearchord_solve.kernels.compiled import I32, I64, U8, kernel, ones
 from nearchord_solve.kernels.words import holds
 from nearchord_solve.sweep.kernels.label_bags import Bag
 from nearchord_solve.sweep.kernels.label_search import Search
 from nearchord_solve.sweep.kernels.label_table import Table, find, labelled, record
 
 ONE = np.uint64(1)
-COLLECT, CHOOSE, BELIEVE = 0, 1, 2
+COLLECT, CHOOSE, BELIEVE, MEASURE = 0, 1, 2, 3
 NOTHING = -(2**62)  # less than any value of a choice
 
 
@@ -21,7 +25,7 @@ class Best(NamedTuple):
     wanted: I32  # [lead] labels of the adhesion's chosen vertices, as named by the order of their first use
     value: I64  # [1]
     size: I64  # [1] vertices of the state
-    state: I32  # places in the bag
+    state: I64  # places in the bag
     label: I32
     picks: I32  # [C] the entry taken of each bag below, -1 for what needs none
 
@@ -34,7 +38,7 @@ class Belief(NamedTuple):
     few: I64  # best total with each
     chosen: I64  # [n] best total with a vertex
     left: I64  # [n] best total without it, for vertices in ``kept``
-    kept: U64  # [W] homes of the bag that the best choice holds
+    kept: U8  # [n] the best choice
 
 
 class Goal(NamedTuple):
@@ -56,20 +60,14 @@ def few_place(high: int, low: int) -> int:
 def no_best() -> Best:
     """Nothing to compare with."""
     nothing = np.empty(0, np.int32)
-    return Best(nothing, np.empty(1, np.int64), np.empty(1, np.int64), nothing, nothing, nothing)
-
-
-@kernel
-def no_belief() -> Belief:
-    """Nobody to tell."""
-    nothing = np.empty(0, np.int64)
-    return Belief(nothing, nothing, nothing, nothing, nothing, np.empty(0, np.uint64))
+    one = np.empty(1, np.int64)
+    return Best(nothing, one, one, one, nothing, nothing)
 
 
 @kernel
 def lead_of(bag: Bag, search: Search, size: int) -> int:
     """How many vertices of a state lie in the adhesion."""
-    lead = 0
+    lead = int(np.int64(0))
     while lead < size and search.chosen[lead] < bag.lead:
         lead += 1
     return lead
@@ -106,11 +104,13 @@ def reach(
     plain = bag.closed and (lead < 2 or (lead == 2 and name[0] != name[1]))
     high = search.chosen[lead - 1] + 1 if lead > 0 else 0
     low = search.chosen[lead - 2] + 1 if lead > 1 else 0
-    if plain and goal.mode == COLLECT:
+    if plain and goal.mode != BELIEVE:
         goal.few[high, low] = max(goal.few[high, low], value)
         return table
     if plain:
         _tell(bag, search, goal.belief, size, goal.few[high, low] + value, picks)
+        return table
+    if goal.mode == MEASURE:
         return table
     for i in range(lead):
         key[i] = bag.member[search.chosen[i]]
@@ -160,7 +160,7 @@ def _tell(bag: Bag, search: Search, belief: Belief, size: int, total: int, picks
         v = bag.member[search.chosen[i]]
         belief.chosen[v] = max(belief.chosen[v], total)
     for j in range(bag.lead, bag.member.shape[0]):
-        if holds(belief.kept, j) and not holds(search.set_[size], j):
+        if belief.kept[bag.member[j]] and not holds(search.set_[size], j):
             belief.left[bag.member[j]] = max(belief.left[bag.member[j]], total)
     for c in range(picks.shape[0]):
         if picks[c] >= 0:

@@ -21,7 +21,7 @@ class Search(NamedTuple):
     allow: U64  # [D+1, K, W] what may join each label
     open_: U64  # [D+1, K, W] what of it was not tried yet
     set_: U64  # [D+1, W]
-    chosen: I32  # [D+1] vertices, as places in the bag
+    chosen: I64  # [D+1] vertices, as places in the bag
     label: I32  # [D+1] their classes; 0 in forests
     used: I64  # [D+1] classes in use
     own: I64  # [D+1] what the state is worth in the bag itself
@@ -48,7 +48,7 @@ def new_search(bag: Bag, colours: int, deepest: int, candidates: U64) -> Search:
             if bag.near[v, w] & _above(v, w) != 0:
                 climbs[v >> 6] |= ONE << np.uint64(v & 63)
     return Search(
-        allow, open_, np.zeros((rows, words), np.uint64), np.zeros(rows, np.int32), np.zeros(rows, np.int32),
+        allow, open_, np.zeros((rows, words), np.uint64), np.zeros(rows, np.int64), np.zeros(rows, np.int32),
         np.zeros(rows, np.int64), np.zeros(rows, np.int64), np.zeros((trees, trees), np.int32),
         np.zeros((trees, trees), np.int32), climbs,
     )  # fmt: skip

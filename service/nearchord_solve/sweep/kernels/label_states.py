@@ -29,8 +29,9 @@ END, UNTRIED, PLAIN = -1, -2, -3  # in place of an entry: there is none; none wa
 class Ways(NamedTuple):
     """Room for completing one state: a row for each bag below that it meets, and one more."""
 
-    meets: I32  # which bags below
+    meets: I64  # which bags below
     where: I32  # [C+1, D] places of the key in the state
+    wanted: I32  # [C+1, D] its labels
     length: I64  # of the key
     head: I32  # first entry of the chain
     current: I32
@@ -48,7 +49,8 @@ class Ways(NamedTuple):
 def _new_ways(children: int, room: int) -> Ways:
     rows = children + 1
     return Ways(
-        np.empty(rows, np.int32), np.empty((rows, room), np.int32), np.zeros(rows, np.int64),
+        np.empty(rows, np.int64), np.empty((rows, room), np.int32), np.empty((rows, room), np.int32),
+        np.zeros(rows, np.int64),
         np.empty(rows, np.int32), np.empty(rows, np.int32), np.empty(rows, np.int64), np.empty((rows, room), np.int32),
         np.empty((rows, room), np.int32), np.empty(children, np.int32), np.empty(room, np.int32),
         np.empty(room, np.int32), np.empty(room, np.int32), np.empty(room, np.int32),
@@ -67,7 +69,7 @@ def _meets(bag: Bag, search: Search, size: int, c: int) -> bool:
 @kernel
 def _key(bag: Bag, search: Search, size: int, c: int, where: I32, key: I32, label: I32) -> int:
     """The part of a state in the adhesion of bag ``c`` below: its places, vertices and labels; returns its length."""
-    length = 0
+    length = int(np.int64(0))
     for i in range(size):
         if holds(bag.inside[c], search.chosen[i]):
             where[length] = i
@@ -78,41 +80,14 @@ def _key(bag: Bag, search: Search, size: int, c: int, where: I32, key: I32, labe
 
 
 @kernel
-def _complete_classes(bag: Bag, table: Table, search: Search, ways: Ways, goal: Goal, size: int) -> tuple[Table, int]:
-    """Complete classes by the entries below that have the same ones; returns (table, 1 if there are, else 0)."""
-    value = search.own[size] + bag.base
-    missing = bag.missing
-    for c in range(bag.child.shape[0]):
-        ways.picks[c] = bag.plain[c]
-        if not _meets(bag, search, size, c):
-            continue
-        length = _key(bag, search, size, c, ways.where[0], ways.key, ways.label)
-        if bag.closed and (length < 2 or (length == 2 and ways.label[0] != ways.label[1])):
-            continue
-        name_labels(ways.label, length, ways.name, ways.names)
-        entry = labelled(table, find(table, bag.child[c], ways.key, length), ways.name, length)
-        if entry < 0:
-            return table, 0
-        value += table.value[entry]
-        if not bag.closed and bag.plain[c] < 0:
-            missing -= 1
-        elif not bag.closed:
-            value -= table.value[bag.plain[c]]
-        ways.picks[c] = entry
-    if missing > 0:
-        return table, 0
-    return reach(bag, table, search, goal, size, value, search.label, ways.picks, ways.key), 1
-
-
-@kernel
-def _meet_forests(bag: Bag, table: Table, search: Search, ways: Ways, size: int) -> tuple[int, int, bool]:
+def _meet(bag: Bag, table: Table, search: Search, ways: Ways, size: int, forest: bool) -> tuple[int, int, bool]:
     """The bags below that have entries for a state, into ``ways``.
 
     Returns (how many, what the state is worth with none of them, whether all others go with it).
     """
     rest = search.own[size] + bag.base
     missing = bag.missing
-    depth = 0
+    depth = int(np.int64(0))  # a literal 0 would compile what it is passed to twice
     for c in range(bag.child.shape[0]):
         ways.picks[c] = bag.plain[c]
         if not _meets(bag, search, size, c):
@@ -120,8 +95,11 @@ def _meet_forests(bag: Bag, table: Table, search: Search, ways: Ways, size: int)
         length = _key(bag, search, size, c, ways.where[depth], ways.key, ways.label)
         if bag.closed and length < 2:
             continue
+        name_labels(ways.label, length, ways.wanted[depth], ways.names)
+        if bag.closed and not forest and length == 2 and ways.wanted[depth, 1] == 1:
+            continue
         head = find(table, bag.child[c], ways.key, length)
-        if bag.closed and length == 2 and head < 0:
+        if bag.closed and forest and length == 2 and head < 0:
             continue
         if not bag.closed and bag.plain[c] < 0:
             missing -= 1
@@ -151,15 +129,25 @@ def _graft(table: Table, entry: int, where: I32, length: int, size: int, whole: 
 
 
 @kernel
-def _try_entry(bag: Bag, table: Table, ways: Ways, level: int, size: int) -> bool:
-    """Move on to the next entry of the bag below at ``level`` that closes no cycle; False if there is none.
+def _fits(table: Table, ways: Ways, entry: int, level: int, size: int, forest: bool) -> bool:
+    """Whether an entry goes with what is connected in row ``level``; what it connects is joined in the next row."""
+    length = ways.length[level]
+    if forest:
+        for i in range(size):
+            ways.whole[level + 1, i] = ways.whole[level, i]
+            ways.tied[level + 1, i] = ways.tied[level, i]
+        if entry == PLAIN:
+            return True
+        return _graft(table, entry, ways.where[level], length, size, ways.whole[level + 1], ways.tied[level + 1])
+    return labelled(table, entry, ways.wanted[level], length) == entry
 
-    What it connects is joined in row ``level + 1`` of the trees.
-    """
-    c = ways.meets[level]
+
+@kernel
+def _try_entry(bag: Bag, table: Table, ways: Ways, level: int, size: int, forest: bool) -> bool:
+    """Move on to the next entry of the bag below at ``level`` that goes with the state; False if there is none."""
     while True:
         entry = ways.current[level]
-        if entry == UNTRIED and bag.closed and ways.length[level] == 2:
+        if entry == UNTRIED and bag.closed and forest and ways.length[level] == 2:
             entry = PLAIN
         elif entry < 0:
             entry = ways.head[level]
@@ -168,44 +156,36 @@ def _try_entry(bag: Bag, table: Table, ways: Ways, level: int, size: int) -> boo
         if entry == END:
             return False
         ways.current[level] = entry
-        for i in range(size):
-            ways.whole[level + 1, i] = ways.whole[level, i]
-            ways.tied[level + 1, i] = ways.tied[level, i]
-        if entry == PLAIN:
-            ways.picks[c] = -1
-            ways.value[level + 1] = ways.value[level]
-            return True
-        ways.picks[c] = entry
-        ways.value[level + 1] = ways.value[level] + table.value[entry]
-        if _graft(
-            table, entry, ways.where[level], ways.length[level], size, ways.whole[level + 1], ways.tied[level + 1]
-        ):
+        if _fits(table, ways, entry, level, size, forest):
+            ways.picks[ways.meets[level]] = max(entry, -1)
+            ways.value[level + 1] = ways.value[level] + (table.value[entry] if entry >= 0 else 0)
             return True
 
 
 @kernel
-def _complete_forest(
-    bag: Bag, table: Table, search: Search, ways: Ways, goal: Goal, size: int, most: int
+def _complete(
+    bag: Bag, table: Table, search: Search, ways: Ways, goal: Goal, size: int, forest: bool, most: int
 ) -> tuple[Table, int]:
-    """Complete a forest by entries of the bags below in all ways that close no cycle; returns (table, how many)."""
-    depth, rest, possible = _meet_forests(bag, table, search, ways, size)
+    """Complete a state by entries of the bags below in all ways that go together; returns (table, how many)."""
+    depth, rest, possible = _meet(bag, table, search, ways, size, forest)
+    found = int(np.int64(0))
+    level = int(np.int64(0))
     if not possible:
-        return table, 0
+        return table, found
     lead = lead_of(bag, search, size)
     for i in range(size):
-        ways.whole[0, i] = search.whole[size, i]
-        ways.tied[0, i] = search.tied[size, i]
+        if forest:
+            ways.whole[0, i] = search.whole[size, i]
+            ways.tied[0, i] = search.tied[size, i]
     ways.value[0] = rest
     ways.current[0] = UNTRIED
-    level = 0
-    found = 0
     while level >= 0 and found <= most:
         if level == depth:
             found += 1
-            name_labels(ways.tied[level], lead, ways.name, ways.names)
+            name_labels(ways.tied[level] if forest else search.label, lead, ways.name, ways.names)
             table = reach(bag, table, search, goal, size, ways.value[level], ways.name, ways.picks, ways.key)
             level -= 1
-        elif _try_entry(bag, table, ways, level, size):
+        elif _try_entry(bag, table, ways, level, size, forest):
             level += 1
             ways.current[level] = UNTRIED
         else:
@@ -214,17 +194,12 @@ def _complete_forest(
 
 
 @kernel
-def _complete(
-    bag: Bag, table: Table, search: Search, ways: Ways, goal: Goal, size: int, forest: bool, most: int
-) -> tuple[Table, int]:
-    """Complete a state, if it holds all homes that must be chosen; returns (table, states with their entries)."""
+def _lacks(bag: Bag, search: Search, size: int) -> bool:
+    """Whether a state leaves out a home that must be chosen."""
+    lacking = np.uint64(0)
     for w in range(bag.need.shape[0]):
-        if bag.need[w] & ~search.set_[size, w] != 0:
-            return table, 0
-    if not forest:
-        return _complete_classes(bag, table, search, ways, goal, size)
-    table, found = _complete_forest(bag, table, search, ways, goal, size, most)
-    return table, found - 1 if bag.closed and size == 2 else found
+        lacking |= bag.need[w] & ~search.set_[size, w]
+    return bool(lacking != 0)
 
 
 @kernel
@@ -241,13 +216,13 @@ def visit_states(
     deepest = most_chosen(bag, colours)
     search = new_search(bag, colours, deepest, candidates)
     ways = _new_ways(bag.child.shape[0], deepest + 1)
-    total = 0
-    depth = 0
+    total = int(np.int64(0))  # a literal 0 would compile what it is passed to twice
+    depth = int(np.int64(0))
     fresh = not bag.closed
     while depth >= 0 and total <= most and cells[STOP] == 0:
-        if fresh:
+        if fresh and not _lacks(bag, search, depth):
             table, more = _complete(bag, table, search, ways, goal, depth, forest, most - total)
-            total += more
+            total += more - 1 if bag.closed and forest and depth == 2 else more
         v, kind = next_vertex(search, depth)
         if v < 0:
             depth -= 1
