@@ -98,6 +98,23 @@ class InducedForest(Choice):
 
 
 @dataclass(frozen=True)
+class Colouring(Question):
+    """Fewest colours for all vertices, so that no edge has a colour at both ends: the channel plan for everybody."""
+
+    name: ClassVar[str] = "colouring"
+    maximises: ClassVar[bool] = False
+
+
+@dataclass(frozen=True)
+class FractionalColouring(Question):
+    """Shortest frame in which every vertex is on for its share, and no two ends of an edge at a time: the airtime plan.
+    The value is a fraction."""
+
+    name: ClassVar[str] = "fractional-colouring"
+    maximises: ClassVar[bool] = False
+
+
+@dataclass(frozen=True)
 class Fill(Question):
     """Fewest edges whose addition makes the graph chordal: how far the conflict data is from well-behaved, and which
     pairs break it. The answer has `fill_edges` and the classes that the graph belongs to (`recognition`)."""
@@ -117,7 +134,17 @@ class Structure(Question):
 
 QUESTIONS: dict[str, type[Question]] = {
     kind.name: kind
-    for kind in (IndependentSet, VertexCover, Clique, ColourableSubgraph, InducedForest, Fill, Structure)
+    for kind in (
+        IndependentSet,
+        VertexCover,
+        Clique,
+        ColourableSubgraph,
+        InducedForest,
+        Colouring,
+        FractionalColouring,
+        Fill,
+        Structure,
+    )
 }
 """Every question by its name on the command line and in metrics."""
 

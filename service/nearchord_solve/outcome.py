@@ -3,6 +3,7 @@
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from enum import Enum
+from fractions import Fraction
 
 from nearchord_solve.arrays import I64, U32
 from nearchord_solve.kept import Kept
@@ -58,20 +59,22 @@ class StructureReport:
 class Outcome:
     """The answer of a solve and what it took.
 
-    ``value``, ``bound``: int or None where there is none; ``bound`` is an upper bound when maximising, a lower
-    bound when minimising.  ``chosen`` uint32, ascending, None for questions that choose no vertices.
+    ``value``, ``bound``: int, or Fraction where a question deals in shares, or None where there is none; ``bound`` is
+    an upper bound when maximising, a lower bound when minimising; both of the first scenario where there are several.
+    ``count``: how many choices are as good as the best, of any size, None if not asked or not known.  ``chosen``
+    uint32, ascending, None for questions that choose no vertices.
     ``fill``: fill edges used, None if no triangulation was finished; ``fill_lower_bound``: no triangulation has fewer.
     ``states``: states in bags that hold fill (bags without fill need no table), None if not counted.  ``parts``: what
     remains when the tree of bags is cut at adhesions without fill; ``fill_cores``: parts that hold fill.  ``proof``:
     "search" if the bound can be recomputed only, "certificate" if a checker can confirm it, "none" if nothing is
     proven; ``proof_kinds``: one per fill core.  ``reason``: in words, never empty.  ``columns``: further arrays by
-    name, uint32 (vertices) or int64.  ``kept``: the structure of the graph, if it is new, for later solves on the
-    same graph.
+    name, uint32 (vertices or colours) or int64.  ``kept``: the structure of the graph, if it is new, for later solves
+    on the same graph.
     """
 
     verdict: Verdict
-    value: int | None
-    bound: int | None
+    value: int | Fraction | None
+    bound: int | Fraction | None
     chosen: U32 | None
     fill: int | None
     fill_lower_bound: int
@@ -87,3 +90,4 @@ class Outcome:
     recognition: Recognition | None = None
     report: StructureReport | None = None
     kept: Kept | None = None
+    count: int | None = None

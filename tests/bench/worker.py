@@ -49,8 +49,11 @@ def warm_up() -> float:
     return perf_counter() - begun
 
 
-def solve(problem: Problem, budget: ns.Budget, seconds: float, question: Any = None) -> Timing:
-    """Answer a question (None: the heaviest independent set) about a graph not known before; stops at ``seconds``."""
+def solve(problem: Problem, budget: ns.Budget, seconds: float, question: Any = None, weights: Any = None) -> Timing:
+    """Answer a question (None: the heaviest independent set) about a graph not known before; stops at ``seconds``.
+
+    ``weights``: None for those of the problem.
+    """
     row_ptr, targets = problem.canonical()
     cells = np.zeros(ns.Monitor.CELLS, np.int64)
     timer = Timer(seconds, cells.__setitem__, (ns.Monitor.STOP, int(ns.Stop.SECONDS)))
@@ -60,7 +63,8 @@ def solve(problem: Problem, budget: ns.Budget, seconds: float, question: Any = N
     watch = Watch()
     graph = ns.Graph.from_canonical(problem.n, row_ptr, targets)
     monitor = ns.Monitor(cells, phases.enter)
-    outcome = ns.solve(question or ns.IndependentSet(), graph, problem.weights, budget, "bound", monitor)
+    used = problem.weights if weights is None else weights
+    outcome = ns.solve(question or ns.IndependentSet(), graph, used, budget, "bound", monitor)
     spent = watch.read()
     timer.cancel()
     return Timing(spent, phases.seconds, replace(outcome, kept=None))

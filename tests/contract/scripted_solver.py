@@ -74,6 +74,12 @@ class Budget(SimpleNamespace):
 class IndependentSet:
     must: tuple[int, ...] = ()
     never: tuple[int, ...] = ()
+    prices: bool = False
+    conflict_prices: bool = False
+    best: int = 0
+    count: bool = False
+    limit: int | None = None
+    scenarios: int = 0
 
 
 @dataclass(frozen=True)
@@ -93,12 +99,26 @@ class ColourableSubgraph:
     colours: int = 2
     must: tuple[int, ...] = ()
     never: tuple[int, ...] = ()
+    prices: bool = False
+    scenarios: int = 0
 
 
 @dataclass(frozen=True)
 class InducedForest:
     must: tuple[int, ...] = ()
     never: tuple[int, ...] = ()
+    prices: bool = False
+    scenarios: int = 0
+
+
+@dataclass(frozen=True)
+class Colouring:
+    pass
+
+
+@dataclass(frozen=True)
+class FractionalColouring:
+    pass
 
 
 @dataclass(frozen=True)
@@ -117,6 +137,8 @@ QUESTIONS = {
     "clique": Clique,
     "colourable-subgraph": ColourableSubgraph,
     "induced-forest": InducedForest,
+    "colouring": Colouring,
+    "fractional-colouring": FractionalColouring,
     "fill": Fill,
     "structure": Structure,
 }
@@ -151,6 +173,7 @@ def outcome(verdict=Verdict.PROVEN, value=7, chosen=(0,), reason="scripted"):
         columns={},
         recognition=None,
         report=None,
+        count=None,
     )
 
 

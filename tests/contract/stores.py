@@ -105,8 +105,8 @@ def graph(tag: int = 0, vertices: int = 3, padding: int = 0) -> NewContent:
     return content(ContentKind.GRAPH, data, vertices, 2)
 
 
-def weights(tag: int = 0, vertices: int = 3) -> NewContent:
-    return content(ContentKind.WEIGHTS, struct.pack(f"<{vertices}q", *range(tag, tag + vertices)), vertices)
+def weights(tag: int = 0, entries: int = 3) -> NewContent:
+    return content(ContentKind.WEIGHTS, struct.pack(f"<{entries}q", *range(tag, tag + entries)), entries)
 
 
 def names(tag: int = 0, vertices: int = 3) -> NewContent:
@@ -183,6 +183,7 @@ def answer(verdict: Verdict = Verdict.PROVEN, **others: Any) -> Answer:
         ),
         "recognition": Recognition(chordal=False, interval=None, split=True, splittance=2**40),
         "structure": StructureReport(3, 70, (Prediction("induced-forest", 0, 2**65, True, 2**50, False),) * 2),
+        "count": "7" * 40,
     }
     return Answer(verdict=verdict, **{**defaults, **others})
 

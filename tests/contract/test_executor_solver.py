@@ -5,6 +5,7 @@ from __future__ import annotations
 import random
 import struct
 
+import nearchord_solve
 import numpy as np
 import pytest
 from bench.generators import time_windows
@@ -87,13 +88,13 @@ def test_pins_reach_the_solver(stage):
     assert solved(stage, 5, PENTAGON, must=(0, 1)).verdict is Verdict.INFEASIBLE
 
 
-@pytest.mark.parametrize("name", list(QuestionName))
+@pytest.mark.parametrize("name", [QuestionName(name) for name in nearchord_solve.QUESTIONS])
 def test_empty_graph(stage, name):
     """Nothing to choose from, and nothing to fill, is proven at once."""
     colours = {"colours": 2} if name is QuestionName.COLOURABLE_SUBGRAPH else {}
     answer = solved(stage, 0, [], name=name, **colours)
     assert (answer.verdict, answer.value) == (Verdict.PROVEN, (0, 1))
-    columns = {column.name: column.data for column in answer.columns}
+    columns = {column.name: column.data for column in answer.columns if not column.name.endswith("_denominator")}
     assert ("chosen" in columns) is name.chooses
     assert all(set(data) <= {0} for data in columns.values())
 

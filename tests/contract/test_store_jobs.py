@@ -199,6 +199,7 @@ def test_bare_answer_comes_back_exactly(home: Home) -> None:
         phase_seconds=(),
         recognition=None,
         structure=None,
+        count=None,
     )
     store = home.open()
     job = submit(store)
@@ -208,7 +209,8 @@ def test_bare_answer_comes_back_exactly(home: Home) -> None:
 
 @pytest.mark.parametrize("name", list(QuestionName))
 def test_every_question_is_kept_and_claimed_as_asked(home: Home, name: QuestionName) -> None:
-    asked = Question(name, must=(1,), never=(0, 2)) if name.chooses else Question(name)
+    add_ons = {field: True if field in ("prices", "conflict_prices", "count") else 3 for field in name.add_ons}
+    asked = Question(name, must=(1,), never=(0, 2), **add_ons) if name.chooses else Question(name)
     job = submit(home.open(), spec(question=asked))
     opened = home.open()
     assert opened.job(ANN, job.id).question == asked

@@ -9,7 +9,7 @@ from contract.stores import ANN, BEN, LIMITS, Home, graph, names, spec, submissi
 from nearchord_service.model.content import ContentKind, NewContent
 from nearchord_service.model.errors import ContentUnknown, FieldInvalid, QuotaExceeded, RequestIdReused
 from nearchord_service.model.event import Reached
-from nearchord_service.model.question import WhenOver
+from nearchord_service.model.question import Question, QuestionName, WhenOver
 from nearchord_service.model.stage import Stage
 from nearchord_service.store.port import Limits, Query
 
@@ -97,7 +97,21 @@ def test_request_id_with_other_content_is_refused(home: Home) -> None:
         (
             spec(names_address=names(vertices=4).address, inline=(graph(), names(vertices=4))),
             FieldInvalid,
-            r"specs\[1\]\.input\.names_address: .* 4 entries, the graph 3 vertices",
+            r"specs\[1\]\.input\.names_address: .* 4 entries, the graph 3 vertices; give one a vertex$",
+        ),
+        (
+            spec(weights_address=weights(entries=6).address, inline=(graph(), weights(entries=6))),
+            FieldInvalid,
+            r"specs\[1\]\.input\.weights_address: .* 6 entries, the graph 3 vertices; give one a vertex$",
+        ),
+        (
+            spec(
+                question=Question(QuestionName.INDUCED_FOREST, scenarios=2),
+                weights_address=weights().address,
+                inline=(graph(), weights()),
+            ),
+            FieldInvalid,
+            r"weights_address: .* 3 entries, the graph 3 vertices; give one .* for each of 2 scenarios, 6 in all$",
         ),
     ],
 )
@@ -111,6 +125,20 @@ def test_bad_spec_leaves_nothing_behind(home: Home, bad: object, error: type[Exc
         store.content(ANN, good.address)
     assert store.figures().waiting == 0
     assert store.jobs(ANN, Query()).jobs == ()
+
+
+def test_scenarios_have_as_many_vectors_and_one_list_of_names(home: Home) -> None:
+    """Inline first, then by address alone."""
+    store = home.open()
+    parts = (graph(), weights(entries=6), names())
+    told = {
+        "question": Question(QuestionName.INDUCED_FOREST, scenarios=2),
+        "weights_address": parts[1].address,
+        "names_address": parts[2].address,
+    }
+    submit(store, spec(**told, inline=parts))
+    submit(store, spec(parts[0].address, **told))
+    assert store.figures().waiting == 2
 
 
 def test_single_job_names_its_field_without_an_index(home: Home) -> None:

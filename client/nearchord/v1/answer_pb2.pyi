@@ -127,7 +127,7 @@ class StructureReport(_message.Message):
     def __init__(self, components: _Optional[int] = ..., largest_core: _Optional[int] = ..., predictions: _Optional[_Iterable[_Union[Prediction, _Mapping]]] = ...) -> None: ...
 
 class AnswerHead(_message.Message):
-    __slots__ = ("job_id", "batch_index", "label", "question", "verdict", "value", "bound", "reason", "fill", "fill_lower_bound", "states", "bags", "largest_bag", "parts", "fill_cores", "proof", "proof_kinds", "provenance", "columns", "names_address", "vertices", "recognition", "structure")
+    __slots__ = ("job_id", "batch_index", "label", "question", "verdict", "value", "bound", "reason", "fill", "fill_lower_bound", "states", "bags", "largest_bag", "parts", "fill_cores", "proof", "proof_kinds", "provenance", "columns", "names_address", "vertices", "recognition", "structure", "count")
     JOB_ID_FIELD_NUMBER: _ClassVar[int]
     BATCH_INDEX_FIELD_NUMBER: _ClassVar[int]
     LABEL_FIELD_NUMBER: _ClassVar[int]
@@ -151,6 +151,7 @@ class AnswerHead(_message.Message):
     VERTICES_FIELD_NUMBER: _ClassVar[int]
     RECOGNITION_FIELD_NUMBER: _ClassVar[int]
     STRUCTURE_FIELD_NUMBER: _ClassVar[int]
+    COUNT_FIELD_NUMBER: _ClassVar[int]
     job_id: str
     batch_index: int
     label: str
@@ -174,7 +175,8 @@ class AnswerHead(_message.Message):
     vertices: int
     recognition: Recognition
     structure: StructureReport
-    def __init__(self, job_id: _Optional[str] = ..., batch_index: _Optional[int] = ..., label: _Optional[str] = ..., question: _Optional[_Union[_question_pb2.Question, _Mapping]] = ..., verdict: _Optional[_Union[_job_pb2.Verdict, str]] = ..., value: _Optional[_Union[Rational, _Mapping]] = ..., bound: _Optional[_Union[Rational, _Mapping]] = ..., reason: _Optional[str] = ..., fill: _Optional[int] = ..., fill_lower_bound: _Optional[int] = ..., states: _Optional[int] = ..., bags: _Optional[int] = ..., largest_bag: _Optional[int] = ..., parts: _Optional[int] = ..., fill_cores: _Optional[int] = ..., proof: _Optional[_Union[ProofKind, str]] = ..., proof_kinds: _Optional[_Iterable[_Union[ProofKind, str]]] = ..., provenance: _Optional[_Union[Provenance, _Mapping]] = ..., columns: _Optional[_Iterable[_Union[ColumnInfo, _Mapping]]] = ..., names_address: _Optional[str] = ..., vertices: _Optional[int] = ..., recognition: _Optional[_Union[Recognition, _Mapping]] = ..., structure: _Optional[_Union[StructureReport, _Mapping]] = ...) -> None: ...
+    count: str
+    def __init__(self, job_id: _Optional[str] = ..., batch_index: _Optional[int] = ..., label: _Optional[str] = ..., question: _Optional[_Union[_question_pb2.Question, _Mapping]] = ..., verdict: _Optional[_Union[_job_pb2.Verdict, str]] = ..., value: _Optional[_Union[Rational, _Mapping]] = ..., bound: _Optional[_Union[Rational, _Mapping]] = ..., reason: _Optional[str] = ..., fill: _Optional[int] = ..., fill_lower_bound: _Optional[int] = ..., states: _Optional[int] = ..., bags: _Optional[int] = ..., largest_bag: _Optional[int] = ..., parts: _Optional[int] = ..., fill_cores: _Optional[int] = ..., proof: _Optional[_Union[ProofKind, str]] = ..., proof_kinds: _Optional[_Iterable[_Union[ProofKind, str]]] = ..., provenance: _Optional[_Union[Provenance, _Mapping]] = ..., columns: _Optional[_Iterable[_Union[ColumnInfo, _Mapping]]] = ..., names_address: _Optional[str] = ..., vertices: _Optional[int] = ..., recognition: _Optional[_Union[Recognition, _Mapping]] = ..., structure: _Optional[_Union[StructureReport, _Mapping]] = ..., count: _Optional[str] = ...) -> None: ...
 
 class ColumnChunk(_message.Message):
     __slots__ = ("name", "offset", "data")

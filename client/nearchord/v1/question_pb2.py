@@ -24,31 +24,35 @@ _sym_db = _symbol_database.Default()
 
 
 
-DESCRIPTOR = _descriptor_pool.Default().AddSerializedFile(b'\n\x1bnearchord/v1/question.proto\x12\x0cnearchord.v1\"-\n\x0eIndependentSet\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"*\n\x0bVertexCover\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"\x06\n\x04\x46ill\"\x0b\n\tStructure\"%\n\x06\x43lique\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"B\n\x12\x43olourableSubgraph\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\x12\x0f\n\x07\x63olours\x18\x03 \x01(\r\",\n\rInducedForest\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"\xf4\x02\n\x08Question\x12\x37\n\x0findependent_set\x18\x01 \x01(\x0b\x32\x1c.nearchord.v1.IndependentSetH\x00\x12\x31\n\x0cvertex_cover\x18\x02 \x01(\x0b\x32\x19.nearchord.v1.VertexCoverH\x00\x12\"\n\x04\x66ill\x18\x03 \x01(\x0b\x32\x12.nearchord.v1.FillH\x00\x12,\n\tstructure\x18\x04 \x01(\x0b\x32\x17.nearchord.v1.StructureH\x00\x12&\n\x06\x63lique\x18\x05 \x01(\x0b\x32\x14.nearchord.v1.CliqueH\x00\x12?\n\x13\x63olourable_subgraph\x18\x06 \x01(\x0b\x32 .nearchord.v1.ColourableSubgraphH\x00\x12\x35\n\x0einduced_forest\x18\x07 \x01(\x0b\x32\x1b.nearchord.v1.InducedForestH\x00\x42\n\n\x08question\"\x92\x01\n\x06\x42udget\x12\x11\n\x04\x66ill\x18\x01 \x01(\x03H\x00\x88\x01\x01\x12\x13\n\x06states\x18\x02 \x01(\x03H\x01\x88\x01\x01\x12\x14\n\x07seconds\x18\x03 \x01(\x01H\x02\x88\x01\x01\x12\x19\n\x0cmemory_bytes\x18\x04 \x01(\x03H\x03\x88\x01\x01\x42\x07\n\x05_fillB\t\n\x07_statesB\n\n\x08_secondsB\x0f\n\r_memory_bytes*N\n\x08WhenOver\x12\x19\n\x15WHEN_OVER_UNSPECIFIED\x10\x00\x12\x13\n\x0fWHEN_OVER_BOUND\x10\x01\x12\x12\n\x0eWHEN_OVER_STOP\x10\x02\x62\x06proto3')
+DESCRIPTOR = _descriptor_pool.Default().AddSerializedFile(b'\n\x1bnearchord/v1/question.proto\x12\x0cnearchord.v1\"\xa4\x01\n\x0eIndependentSet\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\x12\x0e\n\x06prices\x18\x03 \x01(\x08\x12\x17\n\x0f\x63onflict_prices\x18\x04 \x01(\x08\x12\x0c\n\x04\x62\x65st\x18\x05 \x01(\r\x12\r\n\x05\x63ount\x18\x06 \x01(\x08\x12\x12\n\x05limit\x18\x07 \x01(\rH\x00\x88\x01\x01\x12\x11\n\tscenarios\x18\x08 \x01(\rB\x08\n\x06_limit\"*\n\x0bVertexCover\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"\x06\n\x04\x46ill\"\x0b\n\tStructure\"%\n\x06\x43lique\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\"e\n\x12\x43olourableSubgraph\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\x12\x0f\n\x07\x63olours\x18\x03 \x01(\r\x12\x0e\n\x06prices\x18\x04 \x01(\x08\x12\x11\n\tscenarios\x18\x05 \x01(\r\"O\n\rInducedForest\x12\x0c\n\x04must\x18\x01 \x03(\r\x12\r\n\x05never\x18\x02 \x03(\r\x12\x0e\n\x06prices\x18\x03 \x01(\x08\x12\x11\n\tscenarios\x18\x04 \x01(\r\"\x0b\n\tColouring\"\x15\n\x13\x46ractionalColouring\"\xe5\x03\n\x08Question\x12\x37\n\x0findependent_set\x18\x01 \x01(\x0b\x32\x1c.nearchord.v1.IndependentSetH\x00\x12\x31\n\x0cvertex_cover\x18\x02 \x01(\x0b\x32\x19.nearchord.v1.VertexCoverH\x00\x12\"\n\x04\x66ill\x18\x03 \x01(\x0b\x32\x12.nearchord.v1.FillH\x00\x12,\n\tstructure\x18\x04 \x01(\x0b\x32\x17.nearchord.v1.StructureH\x00\x12&\n\x06\x63lique\x18\x05 \x01(\x0b\x32\x14.nearchord.v1.CliqueH\x00\x12?\n\x13\x63olourable_subgraph\x18\x06 \x01(\x0b\x32 .nearchord.v1.ColourableSubgraphH\x00\x12\x35\n\x0einduced_forest\x18\x07 \x01(\x0b\x32\x1b.nearchord.v1.InducedForestH\x00\x12,\n\tcolouring\x18\x08 \x01(\x0b\x32\x17.nearchord.v1.ColouringH\x00\x12\x41\n\x14\x66ractional_colouring\x18\t \x01(\x0b\x32!.nearchord.v1.FractionalColouringH\x00\x42\n\n\x08question\"\x92\x01\n\x06\x42udget\x12\x11\n\x04\x66ill\x18\x01 \x01(\x03H\x00\x88\x01\x01\x12\x13\n\x06states\x18\x02 \x01(\x03H\x01\x88\x01\x01\x12\x14\n\x07seconds\x18\x03 \x01(\x01H\x02\x88\x01\x01\x12\x19\n\x0cmemory_bytes\x18\x04 \x01(\x03H\x03\x88\x01\x01\x42\x07\n\x05_fillB\t\n\x07_statesB\n\n\x08_secondsB\x0f\n\r_memory_bytes*N\n\x08WhenOver\x12\x19\n\x15WHEN_OVER_UNSPECIFIED\x10\x00\x12\x13\n\x0fWHEN_OVER_BOUND\x10\x01\x12\x12\n\x0eWHEN_OVER_STOP\x10\x02\x62\x06proto3')
 
 _globals = globals()
 _builder.BuildMessageAndEnumDescriptors(DESCRIPTOR, _globals)
 _builder.BuildTopDescriptorsAndMessages(DESCRIPTOR, 'nearchord.v1.question_pb2', _globals)
 if not _descriptor._USE_C_DESCRIPTORS:
   DESCRIPTOR._loaded_options = None
-  _globals['_WHENOVER']._serialized_start=834
-  _globals['_WHENOVER']._serialized_end=912
-  _globals['_INDEPENDENTSET']._serialized_start=45
-  _globals['_INDEPENDENTSET']._serialized_end=90
-  _globals['_VERTEXCOVER']._serialized_start=92
-  _globals['_VERTEXCOVER']._serialized_end=134
-  _globals['_FILL']._serialized_start=136
-  _globals['_FILL']._serialized_end=142
-  _globals['_STRUCTURE']._serialized_start=144
-  _globals['_STRUCTURE']._serialized_end=155
-  _globals['_CLIQUE']._serialized_start=157
-  _globals['_CLIQUE']._serialized_end=194
-  _globals['_COLOURABLESUBGRAPH']._serialized_start=196
-  _globals['_COLOURABLESUBGRAPH']._serialized_end=262
-  _globals['_INDUCEDFOREST']._serialized_start=264
-  _globals['_INDUCEDFOREST']._serialized_end=308
-  _globals['_QUESTION']._serialized_start=311
-  _globals['_QUESTION']._serialized_end=683
-  _globals['_BUDGET']._serialized_start=686
-  _globals['_BUDGET']._serialized_end=832
+  _globals['_WHENOVER']._serialized_start=1173
+  _globals['_WHENOVER']._serialized_end=1251
+  _globals['_INDEPENDENTSET']._serialized_start=46
+  _globals['_INDEPENDENTSET']._serialized_end=210
+  _globals['_VERTEXCOVER']._serialized_start=212
+  _globals['_VERTEXCOVER']._serialized_end=254
+  _globals['_FILL']._serialized_start=256
+  _globals['_FILL']._serialized_end=262
+  _globals['_STRUCTURE']._serialized_start=264
+  _globals['_STRUCTURE']._serialized_end=275
+  _globals['_CLIQUE']._serialized_start=277
+  _globals['_CLIQUE']._serialized_end=314
+  _globals['_COLOURABLESUBGRAPH']._serialized_start=316
+  _globals['_COLOURABLESUBGRAPH']._serialized_end=417
+  _globals['_INDUCEDFOREST']._serialized_start=419
+  _globals['_INDUCEDFOREST']._serialized_end=498
+  _globals['_COLOURING']._serialized_start=500
+  _globals['_COLOURING']._serialized_end=511
+  _globals['_FRACTIONALCOLOURING']._serialized_start=513
+  _globals['_FRACTIONALCOLOURING']._serialized_end=534
+  _globals['_QUESTION']._serialized_start=537
+  _globals['_QUESTION']._serialized_end=1022
+  _globals['_BUDGET']._serialized_start=1025
+  _globals['_BUDGET']._serialized_end=1171
 # @@protoc_insertion_point(module_scope)

@@ -33,7 +33,7 @@ class ElementType(StrEnum):
 
 @dataclass(frozen=True)
 class Column:
-    """A named column of an answer; `chosen` holds vertices from 0, ascending, as UINT32."""
+    """A named column of an answer; what each holds is said in the contract, at `ColumnInfo`."""
 
     name: str
     type: ElementType
@@ -76,7 +76,8 @@ class Answer:
     """What a job came to.
 
     `value` and `bound` are exact (numerator, denominator) pairs, None where there is none; `reason` is never empty;
-    counts that were not reached are None.
+    counts that were not reached are None. `count` is the number of optima in decimal digits: it may be too long for
+    the whole numbers that Python reads, and no process but the worker's spends time on converting it.
     """
 
     verdict: Verdict
@@ -98,5 +99,6 @@ class Answer:
     seconds: float = 0.0
     peak_memory_bytes: int = 0
     columns: tuple[Column, ...] = field(default=())
+    count: str | None = None
     recognition: Recognition | None = None
     structure: StructureReport | None = None

@@ -14,13 +14,37 @@ class QuestionName(StrEnum):
     CLIQUE = "clique"
     COLOURABLE_SUBGRAPH = "colourable-subgraph"
     INDUCED_FOREST = "induced-forest"
+    COLOURING = "colouring"
+    FRACTIONAL_COLOURING = "fractional-colouring"
     FILL = "fill"
     STRUCTURE = "structure"
 
     @property
     def chooses(self) -> bool:
-        """Whether its answer is a set of vertices: only then does it take weights and pins."""
-        return self not in (QuestionName.FILL, QuestionName.STRUCTURE)
+        """Whether its answer is a set of vertices: only then does it take pins, and weights as what each is worth."""
+        return not self.takes_demands and self not in (QuestionName.FILL, QuestionName.STRUCTURE)
+
+    @property
+    def takes_demands(self) -> bool:
+        """Whether the weights of its job are demands: how much each vertex needs."""
+        return self in (QuestionName.COLOURING, QuestionName.FRACTIONAL_COLOURING)
+
+    @property
+    def takes_weights(self) -> bool:
+        """Whether its job may carry weights, be they worths or demands."""
+        return self.chooses or self.takes_demands
+
+    @property
+    def add_ons(self) -> tuple[str, ...]:
+        """Those fields of `Question` beside the pins that it takes, in the order of the contract."""
+        return _ADD_ONS.get(self, ())
+
+
+_ADD_ONS = {
+    QuestionName.INDEPENDENT_SET: ("prices", "conflict_prices", "best", "count", "limit", "scenarios"),
+    QuestionName.COLOURABLE_SUBGRAPH: ("colours", "prices", "scenarios"),
+    QuestionName.INDUCED_FOREST: ("prices", "scenarios"),
+}
 
 
 class WhenOver(StrEnum):
@@ -33,12 +57,28 @@ class WhenOver(StrEnum):
 @dataclass(frozen=True)
 class Question:
     """What a job asks. `must` and `never` are vertex numbers from 0, ascending, without repetition; both are empty
-    for a question that does not choose vertices. `colours` is 0 for a question that takes none."""
+    for a question that does not choose vertices.
+
+    The other fields keep their default for a question that does not take them. `colours`: how many. `prices`,
+    `conflict_prices`: of every vertex, of every edge. `best`: how many of the best sets; 0 and 1 give the choice alone.
+    `count`: the number of optima. `limit`: most vertices chosen, None for any number. `scenarios`: how many weight
+    vectors the weights of the job hold, 0 for one that is not called a scenario.
+    """
 
     name: QuestionName
     must: tuple[int, ...] = ()
     never: tuple[int, ...] = ()
     colours: int = 0
+    prices: bool = False
+    conflict_prices: bool = False
+    best: int = 0
+    count: bool = False
+    limit: int | None = None
+    scenarios: int = 0
+
+    def weights_of(self, vertices: int) -> int:
+        """Return how many weights a job has that asks this about so many vertices and has any."""
+        return vertices * max(1, self.scenarios)
 
 
 @dataclass(frozen=True)

@@ -41,9 +41,10 @@ def graph_rows(content: Bytes, vertices: int, edges: int) -> tuple[NDArray[np.ui
     return row_ptr, targets
 
 
-def weight_values(content: Bytes, vertices: int) -> NDArray[np.int64]:
-    """Return weights int64[n]; ValueError when their number differs."""
+def weight_values(content: Bytes, vertices: int, scenarios: int = 0) -> NDArray[np.int64]:
+    """Return weights int64[n], or int64[R, n] of R >= 1 scenarios; ValueError when their number differs."""
     values = np.frombuffer(buffer(content), "<i8") if vertices else np.zeros(0, np.int64)
-    if values.size != vertices:
-        raise ValueError(f"there are {values.size} weights for {vertices} vertices")
-    return values
+    if values.size != vertices * max(1, scenarios):
+        among = f" in each of {scenarios} scenarios" if scenarios else ""
+        raise ValueError(f"there are {values.size} weights for {vertices} vertices{among}")
+    return values.reshape(scenarios, vertices) if scenarios else values

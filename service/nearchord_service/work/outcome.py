@@ -6,6 +6,7 @@ not be stored or read back is a defect, and raises.
 
 from __future__ import annotations
 
+from decimal import Decimal
 from fractions import Fraction
 from typing import TYPE_CHECKING, Any
 
@@ -27,6 +28,9 @@ if TYPE_CHECKING:
 
 REASON_LENGTH = 2000
 PROOF_FORMAT = 1  # of the columns proof_*, as the contract describes them
+COUNT_DIGITS = 100_000  # converting so many takes a third of a second, and grows with their square
+_COUNT_LIMIT = 10**COUNT_DIGITS
+_COLOURS = frozenset({"colour", "scenario_colour"})
 
 
 def recorded(outcome: Any, vertices: int) -> Answer:
@@ -39,7 +43,8 @@ def recorded(outcome: Any, vertices: int) -> Answer:
     proven = any(name.startswith("proof_") for name in outcome.columns)
     return Answer(
         verdict=verdict,
-        reason=str(outcome.reason)[:REASON_LENGTH] or f"the solver gave no reason for {verdict}",
+        reason=_reason(outcome, verdict),
+        count=_decimal(outcome.count) if kept else None,
         value=_exact(outcome.value) if kept else None,
         bound=_exact(outcome.bound),
         fill=_count(outcome.fill),
@@ -82,7 +87,7 @@ def _column(name: str, values: NDArray[Any], vertices: int) -> Column:
         raise ValueError(f"column {name} has shape {values.shape} and type {values.dtype}")
     if values.dtype == np.int64:
         return Column(name, ElementType.INT64, values.astype("<i8", copy=False).tobytes())
-    if name != "colour" and values.size and int(values.max()) >= vertices:
+    if name not in _COLOURS and values.size and int(values.max()) >= vertices:
         raise ValueError(f"column {name} has vertex {int(values.max())} on {vertices} vertices")
     return Column(name, ElementType.UINT32, values.astype("<u4", copy=False).tobytes())
 
@@ -120,7 +125,24 @@ def _exact(value: int | Fraction | None) -> tuple[int, int] | None:
     if value is None:
         return None
     exact = Fraction(value)
+    if not -(2**63) <= exact.numerator < 2**63 or exact.denominator >= 2**63:
+        raise ValueError(f"{exact} is no fraction of two int64")
     return exact.numerator, exact.denominator
+
+
+def _decimal(count: int | None) -> str | None:
+    """Write a count in decimal digits; None for one that is too long."""
+    if count is None or count >= _COUNT_LIMIT:
+        return None
+    return str(Decimal(count))  # str of an int refuses more than some thousand digits
+
+
+def _reason(outcome: Any, verdict: Verdict) -> str:
+    reason = str(outcome.reason) or f"the solver gave no reason for {verdict}"
+    if outcome.count is not None and outcome.count >= _COUNT_LIMIT:
+        note = f"; the number of best choices has more than {COUNT_DIGITS} digits and is left out"
+        return reason[: REASON_LENGTH - len(note)] + note
+    return reason[:REASON_LENGTH]
 
 
 def _count(value: int | None) -> int | None:

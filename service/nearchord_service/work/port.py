@@ -25,7 +25,8 @@ class TaskKey:
 
 @dataclass(frozen=True)
 class Task:
-    """Everything a solve needs. `graph` and `weights` are canonical bytes; `weights` None means all ones.
+    """Everything a solve needs. `graph` and `weights` are canonical bytes; `weights` None means all ones. Weights are
+    demands where the question takes demands, and one vector after the other where it has scenarios.
 
     `owner` and `graph_address` say whose graph it is; without an address nothing is kept about it for later tasks.
     """

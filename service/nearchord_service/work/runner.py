@@ -91,7 +91,7 @@ def _solve(task: Task, solver: Any, cells: NDArray[np.int64], watch: PhaseClock,
         return unread.answer(task, predicted)
     monitor = solver.Monitor(cells, lambda phase: watch.enter(_phase(phase.name)))
     rows = graph_rows(task.graph, task.vertices, task.edges)
-    weights = None if task.weights is None else weight_values(task.weights, task.vertices)
+    weights = None if task.weights is None else weight_values(task.weights, task.vertices, task.question.scenarios)
     rest = (weights, _budget(task, solver), task.when_over, monitor)
     question = _question(task, solver)
     if shelf is None or not _keeps(task):

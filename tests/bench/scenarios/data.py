@@ -15,9 +15,9 @@ import nearchord
 import nearchord_solve as ns
 import numpy as np
 
-from bench import cliques, fresh, general, worker
-from bench.cliques import Groups
+from bench import cliques, fresh, general, models, worker
 from bench.general import Run
+from bench.models import Model
 from bench.options import Options
 from bench.problem import Problem
 from bench.report import Report, Row
@@ -46,7 +46,7 @@ def measure(options: Options) -> Report:
     threads = max(options.threads)
     report = Report("data", {"files": len(cases), "limit_seconds": limit, "threads": threads, "seed": options.seed})
     ours = fresh.run(solve_all, [case.problem for case in cases], limit).result
-    tasks = [(case.problem.weights, _groups(case.problem)) for case in cases] if options.general else []
+    tasks = [_model(case.problem) for case in cases] if options.general else []
     solvers = general.NAMES if options.general else ()
     theirs = {solver: fresh.run(run_all, solver, tasks, threads, limit).result for solver in solvers}
     rows = [_row(case, ours[i], {solver: runs[i] for solver, runs in theirs.items()}) for i, case in enumerate(cases)]
@@ -62,9 +62,9 @@ def solve_all(problems: list[Problem], limit: float) -> list[worker.Timing]:
     return [worker.solve(problem, ns.Budget(memory=MEMORY), limit) for problem in problems]
 
 
-def run_all(solver: str, tasks: list[tuple[np.ndarray, Groups]], threads: int, limit: float) -> list[Run]:
+def run_all(solver: str, tasks: list[Model], threads: int, limit: float) -> list[Run]:
     """Run each by a general solver."""
-    return [general.run(solver, weights, groups, threads, limit) for weights, groups in tasks]
+    return [general.run(solver, model, threads, limit) for model in tasks]
 
 
 def _cases(folder: Path, seed: int) -> list[Case]:
@@ -89,11 +89,12 @@ def as_problem(graph: nearchord.Graph) -> Problem:
     return Problem(graph.n, low.astype(np.uint32), high.astype(np.uint32), weights)
 
 
-def _groups(problem: Problem) -> Groups:
+def _model(problem: Problem) -> Model:
     try:
-        return cliques.maximal_cliques(problem, MOST_CLIQUES)
+        groups = cliques.maximal_cliques(problem, MOST_CLIQUES)
     except cliques.TooManyCliquesError:
-        return cliques.edges(problem)
+        groups = cliques.edges(problem)
+    return models.independent_set(problem.weights, groups)
 
 
 def _row(case: Case, ours: worker.Timing, theirs: dict[str, Run]) -> Row:

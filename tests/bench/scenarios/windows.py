@@ -10,7 +10,7 @@ from pathlib import Path
 from tempfile import TemporaryDirectory
 from typing import Any
 
-from bench import cliques, fresh, general, worker
+from bench import cliques, fresh, general, models, worker
 from bench.cliques import Groups
 from bench.general import Run
 from bench.options import Options
@@ -33,7 +33,7 @@ def measure(options: Options) -> Report:
         ours = _own(problem, Path(name), seconds, report)
         rows = [_own_row(ours)]
         if options.general:
-            rows += _general_rows(problem, Path(name), seconds, options.threads)
+            rows += _general_rows(problem, seconds, options.threads)
     for row in rows:
         row["ratio"] = row["seconds"] / ours.seconds
         row["CPU ratio"] = row["CPU s"] / ours.spent.cpu_seconds
@@ -67,13 +67,13 @@ def _own_row(timing: worker.Timing) -> Row:
     }
 
 
-def _general_rows(problem: Problem, folder: Path, seconds: float, threads: tuple[int, ...]) -> list[Row]:
+def _general_rows(problem: Problem, seconds: float, threads: tuple[int, ...]) -> list[Row]:
     rows = []
     for formulation, groups in (("cliques", cliques.maximal_cliques(problem)), ("edges", cliques.edges(problem))):
-        general.store(folder, formulation, problem.weights, groups)
+        model = models.independent_set(problem.weights, groups)
         for solver in general.NAMES:
             for count in threads:
-                run = fresh.run(general.run_stored, solver, folder, formulation, count, seconds).result
+                run = fresh.run(general.run, solver, model, count, seconds).result
                 rows.append(_general_row(solver, formulation, groups, count, run))
     return rows
 

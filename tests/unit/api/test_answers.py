@@ -17,6 +17,7 @@ from nearchord_service.model.answer import (
 )
 from nearchord_service.model.event import Phase
 from nearchord_service.model.stage import Verdict
+from nearchord_service.work.outcome import COUNT_DIGITS
 from unit.api.serving import DEADLINE, Serving, a_spec, an_answer, failure
 
 
@@ -81,6 +82,18 @@ def test_classes_and_structure_come_with_the_head(served: Serving) -> None:
     head, *_ = parts(served.jobs.ReadAnswer(pb.ReadAnswerRequest(job_id=plain.id)))
     assert not head.head.HasField("recognition")
     assert not head.head.HasField("structure")
+
+
+def test_a_count_of_any_size_comes_with_the_head(served: Serving) -> None:
+    """A head fits into a message even with the longest count; without one the field is absent."""
+    counted, plain = served.submit(request_id="counted"), served.submit(request_id="plain")
+    answers = {counted.id: an_answer(count="9" * COUNT_DIGITS), plain.id: an_answer()}
+    for lease in served.claim(2):
+        served.finish(lease, answers[lease.job.id])
+    head, *_ = parts(served.jobs.ReadAnswer(pb.ReadAnswerRequest(job_id=counted.id)))
+    assert head.head.count == "9" * COUNT_DIGITS
+    head, *_ = parts(served.jobs.ReadAnswer(pb.ReadAnswerRequest(job_id=plain.id)))
+    assert not head.head.HasField("count")
 
 
 def test_long_columns_come_in_pieces_of_whole_elements(served: Serving) -> None:

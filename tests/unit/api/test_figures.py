@@ -18,6 +18,8 @@ def test_the_server_says_what_it_can_do(served: Serving) -> None:
         "clique",
         "colourable-subgraph",
         "induced-forest",
+        "colouring",
+        "fractional-colouring",
         "fill",
         "structure",
     ]

@@ -149,7 +149,7 @@ WRONG: list[tuple[Callable[[job_pb2.JobSpec], object], str, str]] = [
 ]
 
 
-GRAPH_ONLY = [name for name in QuestionName if not name.chooses]
+GRAPH_ONLY = [name for name in QuestionName if not name.takes_weights]
 
 
 @pytest.mark.parametrize("name", GRAPH_ONLY)
@@ -187,8 +187,10 @@ def test_questions_about_the_graph_alone_take_no_weights(name: QuestionName, fie
 def test_the_written_question_is_the_one_read() -> None:
     """Every question of the model has a branch in the contract, and comes back as itself."""
     for name in QuestionName:
-        colours = 3 if name is QuestionName.COLOURABLE_SUBGRAPH else 0
-        asked = Question(name, (0, 2), (1,), colours) if name.chooses else Question(name)
+        add_ons = {field: True if field in ("prices", "conflict_prices", "count") else 3 for field in name.add_ons}
+        for apart in ("limit", "scenarios"):
+            add_ons.pop(apart, None)
+        asked = Question(name, (0, 2), (1,), **add_ons) if name.chooses else Question(name)
         written = from_question(asked)
         assert written.WhichOneof("question") == name.value.replace("-", "_")
         assert to_question(written, "question", CAPS, Violations()) == asked

@@ -10,6 +10,7 @@ from contract.stores import ANN, claim_one, finish, submit
 from nearchord_service.model.answer import Answer, Column, ElementType, ProofKind
 from nearchord_service.model.errors import StoreUnavailable
 from nearchord_service.model.event import Phase
+from nearchord_service.model.question import Budget, Question, QuestionName, WhenOver
 from nearchord_service.model.stage import Verdict
 from nearchord_service.store.sql import SqlStore, migrations
 from nearchord_service.store.sql.schema import metadata
@@ -98,6 +99,29 @@ def test_answers_recorded_before_there_were_classes_stay_readable(path: Path) ->
         peak_memory_bytes=9,
         columns=(Column("chosen", ElementType.UINT32, columns),),
     )
+    store.stop()
+
+
+FIRST_TERMS = (
+    '{"question":{"name":"colourable-subgraph","must":[1],"never":[],"colours":3},"budget":{"fill":null,"states":9,'
+    '"seconds":1.5,"memory_bytes":64},"when_over":"stop"}'
+)
+"""Terms as they were written before there were prices and scenarios."""
+
+
+def test_jobs_accepted_before_there_were_add_ons_stay_readable(path: Path) -> None:
+    store = SqlStore(path.parent)
+    store.start()
+    job = submit(store)
+    store.stop()
+    with sqlite3.connect(path) as connection:
+        connection.execute("UPDATE jobs SET terms = ?", (FIRST_TERMS,))
+    connection.close()
+    store = SqlStore(path.parent)
+    store.start()
+    found = store.job(ANN, job.id)
+    assert found.question == Question(QuestionName.COLOURABLE_SUBGRAPH, (1,), (), 3)
+    assert (found.budget, found.when_over) == (Budget(None, 9, 1.5, 64), WhenOver.STOP)
     store.stop()
 
 

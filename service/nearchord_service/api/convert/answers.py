@@ -65,6 +65,7 @@ def _head(job: Job, answer: Answer) -> answer_pb2.AnswerHead:
         vertices=job.vertices,
         recognition=_recognition(answer.recognition),
         structure=_structure(answer.structure),
+        count=answer.count,
     )
 
 

@@ -8,13 +8,11 @@ from typing import Any
 
 from nearchord.v1 import question_pb2
 
+from nearchord_service.api.convert.add_ons import check_add_ons, from_add_ons, to_add_ons
 from nearchord_service.api.convert.enums import QUESTION_FIELDS, QUESTIONS_BY_FIELD, WHEN_OVERS_BY_NUMBER
 from nearchord_service.api.convert.violations import Violations
 from nearchord_service.api.limits import Caps, Largest
 from nearchord_service.model.question import Budget, Question, QuestionName, WhenOver
-
-DEFAULT_COLOURS = 2
-MOST_COLOURS = 4
 
 
 def to_question(message: question_pb2.Question, place: str, caps: Caps, wrong: Violations) -> Question | None:
@@ -34,17 +32,7 @@ def to_question(message: question_pb2.Question, place: str, caps: Caps, wrong: V
         return None
     must = _pins(asked.must, f"{place}.{name}.must", wrong)
     never = _pins(asked.never, f"{place}.{name}.never", wrong)
-    return Question(question, must, never, _colours(asked, question, f"{place}.{name}", wrong))
-
-
-def _colours(asked: Any, question: QuestionName, place: str, wrong: Violations) -> int:
-    """Read the number of colours of a question that takes one."""
-    if question is not QuestionName.COLOURABLE_SUBGRAPH:
-        return 0
-    colours = int(asked.colours) or DEFAULT_COLOURS
-    if colours > MOST_COLOURS:
-        wrong.add(f"{place}.colours", f"is {colours}; it must be 1 to {MOST_COLOURS}, or absent for {DEFAULT_COLOURS}")
-    return colours
+    return Question(question, must, never, **to_add_ons(asked, question, f"{place}.{name}", wrong))
 
 
 def _pins(vertices: Sequence[int], place: str, wrong: Violations) -> tuple[int, ...]:
@@ -60,12 +48,18 @@ def _pins(vertices: Sequence[int], place: str, wrong: Violations) -> tuple[int, 
     return tuple(sorted(vertices))
 
 
-def check_pins(
+def depends_on_vertices(question: Question) -> bool:
+    """Say whether the number of vertices decides if a question may be asked."""
+    return bool(question.must or question.never) or question.best > 1 or question.scenarios > 1
+
+
+def check_vertices(
     message: question_pb2.Question, question: Question, vertices: int, place: str, wrong: Violations
 ) -> None:
-    """Note the first pin of each list that is no vertex of the graph."""
+    """Note the first pin of each list that is no vertex of the graph, and add-ons that are too much for so many."""
     name = QUESTION_FIELDS[question.name]
     asked = getattr(message, name)
+    check_add_ons(question, vertices, f"{place}.{name}", wrong)
     for option, pins in (("must", question.must), ("never", question.never)):
         if not pins or pins[-1] < vertices:
             continue
@@ -87,8 +81,7 @@ def from_question(question: Question) -> question_pb2.Question:
     if question.name.chooses:
         asked.must.extend(question.must)
         asked.never.extend(question.never)
-    if question.colours:
-        asked.colours = question.colours
+    from_add_ons(question, asked)
     return message
 
 

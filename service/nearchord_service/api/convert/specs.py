@@ -9,7 +9,13 @@ from dataclasses import dataclass
 from nearchord.v1 import job_pb2
 
 from nearchord_service.api.convert.content import address_of, to_new_content
-from nearchord_service.api.convert.questions import check_pins, to_budget, to_question, to_when_over
+from nearchord_service.api.convert.questions import (
+    check_vertices,
+    depends_on_vertices,
+    to_budget,
+    to_question,
+    to_when_over,
+)
 from nearchord_service.api.convert.times import from_timestamp
 from nearchord_service.api.convert.violations import Violations
 from nearchord_service.api.limits import PRIORITIES, Caps, check_address, check_batch, check_inline, label_fault, refuse
@@ -35,8 +41,9 @@ class SpecReader:
     """Reads the specs of one request, one after the other.
 
     `vertices_of` returns the number of vertices of a stored graph of the caller, None for an unknown one (blocking); it
-    is asked only about pinned graphs. An unknown graph passes: the store refuses it, unless the request is a repetition
-    whose graph has been deleted since. Equal inline content is checked and kept once. Blocking, one thread at a time.
+    is asked only where the question depends on it. An unknown graph passes: the store refuses it, unless the request
+    is a repetition whose graph has been deleted since. Equal inline content is checked and kept once. Blocking, one
+    thread at a time.
     """
 
     def __init__(self, caps: Caps, vertices_of: Callable[[str], int | None]) -> None:
@@ -88,19 +95,14 @@ class SpecReader:
             wrong.add(f"{place}.label", fault)
         if message.input.WhichOneof("graph") is None:
             wrong.add(f"{place}.input", "names no graph; give graph_address or graph_content")
-        weighted = message.input.WhichOneof("weights")
-        if weighted is not None and question is not None and not question.name.chooses:
-            wrong.add(
-                f"{place}.input.{weighted}",
-                f"is given, but the question {question.name} is about the graph alone and takes no weights; "
-                "leave it out",
-            )
+        if question is not None:
+            _check_weighted(message.input.WhichOneof("weights"), question, f"{place}.input", wrong)
         wrong.settle()
         assert question is not None, "a missing question is settled above"
         graph, weights, names = (self._named(message, part, place) for part in _KINDS)
         assert graph is not None, "a missing graph is settled above"
-        self._check_lengths(graph, weights, names, place)
-        self._check_pins(message, question, graph, place)
+        self._check_lengths(graph, weights, names, question, place)
+        self._check_vertices(message, question, graph, place)
         return JobSpec(
             graph_address=graph.address,
             weights_address=weights.address if weights else None,
@@ -134,15 +136,19 @@ class SpecReader:
             self._carried += len(data)
         return content
 
-    def _check_lengths(self, graph: _Named, weights: _Named | None, names: _Named | None, place: str) -> None:
+    def _check_lengths(
+        self, graph: _Named, weights: _Named | None, names: _Named | None, question: Question, place: str
+    ) -> None:
         """Compare what came inline; the store does so for what it holds."""
         if graph.content is None:
             return
         n = graph.content.vertices
-        if weights and weights.content and weights.content.vertices != n:
+        wanted = question.weights_of(n)
+        if weights and weights.content and weights.content.vertices != wanted:
             raise refuse(
                 f"{place}.input.weights_content",
-                f"has {weights.content.vertices} weights for {n} vertices; send one a vertex",
+                f"has {weights.content.vertices} weights for {n} vertices; send one a vertex"
+                + (f" for each of {question.scenarios} scenarios, {wanted} in all" if question.scenarios else ""),
             )
         if names and names.content and names.content.vertices != n:
             raise refuse(
@@ -150,20 +156,35 @@ class SpecReader:
                 f"has {names.content.vertices} names for {n} vertices; send one a vertex",
             )
 
-    def _check_pins(self, message: job_pb2.JobSpec, question: Question, graph: _Named, place: str) -> None:
-        if not question.must and not question.never:
+    def _check_vertices(self, message: job_pb2.JobSpec, question: Question, graph: _Named, place: str) -> None:
+        if not depends_on_vertices(question):
             return
         vertices = graph.content.vertices if graph.content else self._vertices_stored(graph.address)
         if vertices is None:
             return
         wrong = Violations()
-        check_pins(message.question, question, vertices, f"{place}.question", wrong)
+        check_vertices(message.question, question, vertices, f"{place}.question", wrong)
         wrong.settle()
 
     def _vertices_stored(self, address: str) -> int | None:
         if address not in self._stored_vertices:
             self._stored_vertices[address] = self._vertices_of(address)
         return self._stored_vertices[address]
+
+
+def _check_weighted(given: str | None, question: Question, place: str, wrong: Violations) -> None:
+    """Note weights that the question does not take, or their absence where it needs some."""
+    if given is not None and not question.name.takes_weights:
+        wrong.add(
+            f"{place}.{given}",
+            f"is given, but the question {question.name} is about the graph alone and takes no weights; leave it out",
+        )
+    if given is None and question.scenarios:
+        wrong.add(
+            place,
+            f"has no weights, but the question has {question.scenarios} scenarios; give a weight a vertex for each "
+            "of them, scenario by scenario",
+        )
 
 
 def _inline_bytes(message: job_pb2.JobSpec) -> int:

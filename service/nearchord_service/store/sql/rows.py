@@ -55,7 +55,7 @@ def terms_of(spec: JobSpec) -> str:
                 "name": question.name,
                 "must": question.must,
                 "never": question.never,
-                "colours": question.colours,
+                **{field: getattr(question, field) for field in question.name.add_ons},
             },
             "budget": {
                 "fill": budget.fill,
@@ -76,8 +76,10 @@ def question_name(row: Row) -> QuestionName:
 def _terms(text: str) -> tuple[Question, Budget, WhenOver]:
     terms = json.loads(text)
     asked = terms["question"]
-    name, colours = QuestionName(asked["name"]), asked.get("colours", 0)  # absent in rows written before colours were
-    question = Question(name, tuple(asked["must"]), tuple(asked["never"]), colours)
+    name = QuestionName(asked["name"])
+    # A row written by an earlier release has fewer add-ons, those that there were then.
+    add_ons = {field: asked[field] for field in name.add_ons if field in asked}
+    question = Question(name, tuple(asked["must"]), tuple(asked["never"]), **add_ons)
     return question, Budget(**terms["budget"]), WhenOver(terms["when_over"])
 
 
@@ -166,6 +168,8 @@ def answer_figures(answer: Answer) -> str:
     """Write down an answer without the bytes of its columns; whole numbers of any size stay exact."""
     figures = {name: getattr(answer, name) for name in _PLAIN}
     figures["columns"] = [(column.name, column.type, len(column.data)) for column in answer.columns]
+    if answer.count is not None:
+        figures["count"] = answer.count
     for name in _OPTIONAL:
         part = getattr(answer, name)
         if part is not None:
@@ -213,6 +217,7 @@ def answer_from(row: Row) -> Answer | None:
         proof_kinds=tuple(map(ProofKind, figures["proof_kinds"])),
         phase_seconds=tuple((Phase(phase), seconds) for phase, seconds in figures["phase_seconds"]),
         columns=_columns(figures["columns"], row["columns"]),
+        count=figures.get("count"),
         recognition=_recognition(figures.get("recognition")),
         structure=_structure(figures.get("structure")),
     )

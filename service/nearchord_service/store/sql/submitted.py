@@ -11,6 +11,7 @@ from functools import partial
 from nearchord_service.model.content import ContentKind, NewContent
 from nearchord_service.model.errors import ContentUnknown, FieldInvalid, FieldViolation
 from nearchord_service.model.job import JobSpec, Submission
+from nearchord_service.model.question import Question
 from nearchord_service.store.sql.content import INSERT_BLOB, INSERT_CONTENT, OWNED, SMALL_BYTES, TOUCH, bytes_at
 from nearchord_service.store.sql.disk import Disk, disk_trouble, new_file_name
 from nearchord_service.store.sql.writer import Transaction
@@ -77,8 +78,8 @@ class SubmittedContent:
                 wrong = f"{address} is stored as {held.kind}; name content of kind {kind}"
             elif kind is ContentKind.GRAPH:
                 graph = held
-            elif held.vertices != graph.vertices:
-                wrong = f"{address} has {held.vertices} entries, the graph {graph.vertices} vertices; give one a vertex"
+            else:
+                wrong = _wrong_length(held, graph, spec.question if kind is ContentKind.WEIGHTS else None, address)
             if wrong is not None:
                 raise FieldInvalid(FieldViolation(f"{path}.{name}_address", wrong))
         return graph
@@ -116,6 +117,17 @@ class SubmittedContent:
         for address, name in self._files.items():
             if bytes_at(transaction, self._disk, address).path != self._disk.path(name):
                 transaction.news.afterwards.append(partial(self._disk.remove, name))
+
+
+def _wrong_length(held: Held, graph: Held, weighing: Question | None, address: str) -> str | None:
+    """Say what is wrong with the length of names, or of the weights of a question, if anything."""
+    wanted = graph.vertices if weighing is None else weighing.weights_of(graph.vertices)
+    if held.vertices == wanted:
+        return None
+    said = f"{address} has {held.vertices} entries, the graph {graph.vertices} vertices; give one a vertex"
+    if weighing is not None and weighing.scenarios:
+        said += f" for each of {weighing.scenarios} scenarios, {wanted} in all"
+    return said
 
 
 def _needs(spec: JobSpec) -> Iterable[tuple[str, str, ContentKind]]:
