@@ -30,12 +30,15 @@ MOST_COLOURS = 4
 class ColourableSubgraph:
     """``colours``: 1 to 4; ``must``: vertices that have to be chosen; ``never``: vertices that may not be; 0-based.
 
-    The outcome has the column ``colour``, uint32: 1 to ``colours`` for each vertex of ``chosen``.
+    Add-ons: ``prices`` of the vertices, or ``scenarios``: so many vectors of weights.  The outcome has the column
+    ``colour``, uint32: 1 to ``colours`` for each vertex of ``chosen``.
     """
 
     colours: int = 2
     must: Sequence[int] | I64 = ()
     never: Sequence[int] | I64 = ()
+    prices: bool = False
+    scenarios: int = 0
 
     def answer(
         self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor, reuse: Reuse
@@ -45,8 +48,9 @@ class ColourableSubgraph:
             raise SolverError("question.colours", f"must be 1 to {MOST_COLOURS}, not {self.colours}")
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)
-        if self.colours == 1:
+        asked = Asked(self.colours, must, never, self.prices, self.scenarios)
+        if self.colours == 1 and not (self.prices or self.scenarios):
             outcome = IndependentSet(must, never).answer(graph, weights, budget, when_over, monitor, reuse)
             chosen = 0 if outcome.chosen is None else outcome.chosen.size
             return replace(outcome, columns={"colour": np.ones(chosen, np.uint32)})
-        return answer_labelled(Asked(self.colours, must, never), graph, weights, budget, when_over, monitor, reuse)
+        return answer_labelled(asked, graph, weights, budget, when_over, monitor, reuse)

@@ -24,11 +24,13 @@ class LabelledProgram:
     """The heaviest choice of one graph; ``colours`` 0 means forests.
 
     ``must`` int64, ascending: vertices that have to be chosen; ``start`` uint8[n]: colours with which they can be.
+    ``prices``: whether prices of the vertices are wanted.
     """
 
     colours: int
     must: I64 = field(default_factory=_nothing)
     start: U8 | None = None
+    prices: bool = False
 
     def quick(self, task: Task, ranking: Ranking | None) -> Settled:
         """What must be chosen, then greed by weight over (degree + 1), and a bound from independent sets.
@@ -64,15 +66,27 @@ class LabelledProgram:
         if states > budget.states:
             return self._over(task, structure, states)
         room = budget.memory - structure.held_bytes - 8 * line.later.size
-        swept = sweep_labelled(line, pinned, budget.states, room, False, monitor)
+        swept = sweep_labelled(line, pinned, budget.states, room, self.prices, monitor)
         if swept.colour is not None:
-            return self._settled(swept.colour, swept.value, True, swept.states, _reason(structure, swept))
+
+            def again(weights: I64) -> Settled | None:
+                other = Pinned.of(weights, self.must, self.colours)
+                once_more = sweep_labelled(line, other, budget.states, room, False, monitor)
+                return None if once_more.colour is None else self._swept(structure, once_more)
+
+            return replace(self._swept(structure, swept), again=again)
         if swept.code == label_passes.IMPOSSIBLE:
-            return Settled(None, 0, True, swept.states, "all states of the bags were tried")
+            nothing = np.zeros(task.graph.n, np.uint8)
+            return Settled(nothing, 0, True, swept.states, "all states of the bags were tried", feasible=False)
         if swept.code == label_passes.STATES:
             return self._over(task, structure, swept.states)
         reason = "memory budget: the tables of the bags do not fit" if swept.code == label_passes.MEMORY else late
         return replace(self.quick(task, structure.ranking), reason=reason, states=swept.states)
+
+    def _swept(self, structure: Structure, swept: Labelled) -> Settled:
+        assert swept.colour is not None
+        settled = self._settled(swept.colour, swept.value, True, swept.states, _reason(structure, swept))
+        return replace(settled, prices=swept.prices)
 
     def _over(self, task: Task, structure: Structure, states: int) -> Settled:
         reason = f"state budget: the bags (of up to {structure.largest_bag} vertices) have more than"
@@ -80,8 +94,9 @@ class LabelledProgram:
         return replace(self.quick(task, structure.ranking), reason=reason, states=states)
 
     def _settled(self, colour: U8, bound: int, exact: bool, states: int, reason: str) -> Settled:
-        chosen = (colour != 0).astype(np.uint8) if (colour[self.must] != 0).all() else None
-        return Settled(chosen, bound, exact, states, reason, colour.astype(np.uint32))
+        chosen = (colour != 0).astype(np.uint8)
+        feasible = bool(chosen[self.must].all())
+        return Settled(chosen, bound, exact, states, reason, colour.astype(np.uint32), feasible=feasible)
 
 
 def _reason(structure: Structure, swept: Labelled) -> str:

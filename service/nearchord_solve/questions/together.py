@@ -38,7 +38,7 @@ class Conflict:
             listed = f"{', '.join(names[:LISTED])}, ... ({len(names)} in all)"
         else:
             listed = f"{', '.join(names[:-1])} and {names[-1]}"
-        what = f"need more than {colours} colours" if colours else "close a cycle"
+        what = f"need more than {colours} colours" if colours > 1 else "are adjacent" if colours else "close a cycle"
         return f"the pins contradict each other: vertices {listed} must be chosen, but {what}"
 
 
@@ -91,6 +91,9 @@ def _settle(graph: Graph, colours: int, budget: Budget, monitor: Monitor) -> U8 
     before = np.zeros(graph.n, bool)
     before[sequence[:at]] = True
     v = int(sequence[at])
+    if colours == 1:
+        row = graph.adj[graph.ptr[v] : graph.ptr[v + 1]]
+        return Conflict(np.array([v, row[before[row]][0]], np.int64))
     if colours <= 2:
         return Conflict(_short_cycle(graph, v, before, colour if colours else None))
     return _clique_with(graph, v, before, colours) or _search(graph, sequence, colours, budget, monitor)
@@ -157,9 +160,10 @@ def _search(
         part = _within(graph, whole)
         task = Task(part, np.ones(part.n, np.int64), replace(budget, fill=None), "bound", Gauge(monitor, 0, 1))
         ended = run_program(task, LabelledProgram(colours))
-        if ended.found.bound is None or ended.found.value != ended.found.bound or ended.colour is None:
+        colour = None if ended.settled is None else ended.settled.colour
+        if ended.found.bound is None or ended.found.value != ended.found.bound or colour is None:
             return None
-        return ended.colour.astype(np.uint8) if ended.found.value == part.n else np.empty(0, np.uint8)
+        return colour.astype(np.uint8) if ended.found.value == part.n else np.empty(0, np.uint8)
 
     found = colour_of(sequence)
     if found is None or found.size:
