@@ -23,10 +23,11 @@ class Settled:
     """What a program found on a graph of known structure.
 
     ``chosen`` uint8[n] is feasible unless ``feasible`` says that no such choice was found.  If ``exact``, ``bound`` is
-    the optimum, or there is no feasible choice at all; otherwise it is valid.  ``states``: states that it went through or would have to;
-    ``reason``: how it was settled, or what was too small.  ``colour`` uint32[n]: classes of the chosen vertices, for
-    questions that have some.  ``prices`` int64[n] twice: what the value loses if a vertex is chosen, and if it is not,
-    -1 where that is impossible.  ``again`` settles other weights on the same structure, None if stopped.
+    the optimum, or there is no feasible choice at all; otherwise it is valid.  ``states``: states that it went through
+    or would have to; ``reason``: how it was settled, or what was too small.  ``colour`` uint32[n]: classes of the
+    chosen vertices, for questions that have some.  ``prices`` int64[n] twice: what the value loses if a vertex is
+    chosen, and if it is not, -1 where that is impossible.  ``again`` settles other weights on the same structure, None
+    if stopped.
     """
 
     chosen: U8
