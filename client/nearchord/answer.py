@@ -116,6 +116,11 @@ class Answer:
         return found
 
     @property
+    def proof_bytes(self) -> int:
+        """Bytes that the certificate of the bound takes, 0 where there is none: of all columns named `proof_`."""
+        return sum(column.nbytes for name, column in self.columns.items() if name.startswith("proof_"))
+
+    @property
     def fill_edges(self) -> NDArray[np.uint32]:
         """The pairs to add as uint32[k, 2], smaller end first, ascending; k = 0 unless the question is `fill`."""
         ends: NDArray[np.uint32] = self.columns.get("fill_edge", np.zeros(0, np.uint32))

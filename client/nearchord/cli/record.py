@@ -7,6 +7,7 @@ from collections.abc import Iterable, Iterator
 from typing import Any
 
 import nearchord
+from nearchord.cli import proof_file
 from nearchord.cli.answers import choice, fill, structure
 from nearchord.cli.layout import print_entry
 from nearchord.cli.names import Labels, Names
@@ -39,6 +40,7 @@ def record(answer: nearchord.Answer, names: Names) -> dict[str, Any]:
         "reason": answer.reason,
         "proof": str(answer.proof),
         "proof_kinds": [str(kind) for kind in answer.proof_kinds],
+        "proof_bytes": answer.proof_bytes,
         "vertices": answer.vertices,
         **_of_its_question(answer, labels),
         "provenance": _provenance(answer.provenance),
@@ -81,7 +83,8 @@ def _print(entries: Iterable[tuple[str, str]]) -> None:
 
 
 def _ending(answer: nearchord.Answer) -> Iterator[tuple[str, str]]:
-    yield "proof", str(answer.proof)
+    large = f" of {proof_file.size_of(answer)}" if answer.proof_bytes else ""
+    yield "proof", f"{answer.proof}{large}"
     yield "seconds", f"{answer.seconds:.3f}"
     yield "job", answer.job_id
 

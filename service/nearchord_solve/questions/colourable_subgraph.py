@@ -12,7 +12,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from nearchord_solve.arrays import I64
+from nearchord_solve.arrays import I64, U32
 from nearchord_solve.budget import Budget
 from nearchord_solve.errors import SolverError
 from nearchord_solve.graph import Graph
@@ -49,8 +49,17 @@ class ColourableSubgraph:
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)
         asked = Asked(self.colours, must, never, self.prices, self.scenarios)
-        if self.colours == 1 and not (self.prices or self.scenarios):
-            outcome = IndependentSet(must, never).answer(graph, weights, budget, when_over, monitor, reuse)
-            chosen = 0 if outcome.chosen is None else outcome.chosen.size
-            return replace(outcome, columns={"colour": np.ones(chosen, np.uint32)})
+        if self.colours == 1:
+            single = IndependentSet(must, never, prices=self.prices, scenarios=self.scenarios)
+            outcome = single.answer(graph, weights, budget, when_over, monitor, reuse)
+            return replace(outcome, columns={**outcome.columns, **_one_class(outcome)})
         return answer_labelled(asked, graph, weights, budget, when_over, monitor, reuse)
+
+
+def _one_class(outcome: Outcome) -> dict[str, U32 | I64]:
+    """The colours of an independent set, and of those of the scenarios."""
+    chosen = 0 if outcome.chosen is None else outcome.chosen.size
+    columns: dict[str, U32 | I64] = {"colour": np.ones(chosen, np.uint32)}
+    if "scenario_chosen" in outcome.columns:
+        columns["scenario_colour"] = np.ones(outcome.columns["scenario_chosen"].size, np.uint32)
+    return columns

@@ -12,6 +12,7 @@ from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Stop
 from nearchord_solve.order import Ranking, Unfinished
 from nearchord_solve.outcome import Verdict
+from nearchord_solve.proof import Proof
 from nearchord_solve.questions.heaviest import Found, Task
 from nearchord_solve.refine import over_fill, search_less_fill
 from nearchord_solve.structure import Structure
@@ -27,7 +28,7 @@ class Settled:
     or would have to; ``reason``: how it was settled, or what was too small.  ``colour`` uint32[n]: classes of the
     chosen vertices, for questions that have some.  ``prices`` int64[n] twice: what the value loses if a vertex is
     chosen, and if it is not, -1 where that is impossible.  ``again`` settles other weights on the same structure, None
-    if stopped.
+    if stopped.  ``proof``: of ``bound``, where there is one.
     """
 
     chosen: U8
@@ -39,6 +40,7 @@ class Settled:
     prices: tuple[I64, I64] | None = None
     again: Callable[[I64], "Settled | None"] | None = None
     feasible: bool = True
+    proof: Proof | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -110,7 +112,7 @@ def _close(task: Task, settled: Settled, structure: Structure | None, reason: st
     verdict = Verdict.PROVEN if value == settled.bound else Verdict.BOUNDED
     if value == settled.bound and not settled.exact:
         reason += "; the choice found meets the bound all the same"
-    found = Found(verdict, value, settled.bound, settled.chosen, structure, reason)
+    found = Found(verdict, value, settled.bound, settled.chosen, structure, reason, settled.proof)
     return Concluded(found, states, settled)
 
 

@@ -14,7 +14,7 @@ from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Stop
 from nearchord_solve.order import Unfinished
 from nearchord_solve.outcome import Verdict
-from nearchord_solve.proof import Certificate
+from nearchord_solve.proof import Proof
 from nearchord_solve.questions.branching import Branching
 from nearchord_solve.questions.gauge import Gauge
 from nearchord_solve.refine import over_fill, search_less_fill
@@ -27,7 +27,8 @@ from nearchord_solve.tree import Partial, build_structure
 class Found:
     """An answer: ``chosen`` uint8[n] is None only with CANCELLED and OVER_FILL.
 
-    ``proof``: a certificate, perhaps of a weaker bound; None where there is none.
+    ``proof``: a certificate, perhaps of a weaker bound; None where there is none.  ``swept``: the sweep that proved the
+    optimum, None if none did.
     """
 
     verdict: Verdict
@@ -36,7 +37,8 @@ class Found:
     chosen: U8 | None
     structure: Structure | None
     reason: str
-    proof: Certificate | None = None
+    proof: Proof | None = None
+    swept: Swept | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -175,7 +177,7 @@ def _proven(task: Task, structure: Structure, swept: Swept) -> Found:
     most = task.budget.fill
     if most is not None and structure.fill > most:
         reason += f" (more fill than the {most} budgeted, as the states allowed it)"
-    return Found(Verdict.PROVEN, value, value, chosen, structure, reason, swept.certify())
+    return Found(Verdict.PROVEN, value, value, chosen, structure, reason, swept.certify(), swept)
 
 
 def _too_many_states(task: Task, structure: Structure, fits: U8) -> str:

@@ -8,6 +8,7 @@ from nearchord_solve import bounds
 from nearchord_solve.arrays import I64, U8
 from nearchord_solve.kernels.greedy_classes import colour_in_order, grow_forest
 from nearchord_solve.order import Ranking
+from nearchord_solve.order_proof import certify_order
 from nearchord_solve.questions.frame import Settled
 from nearchord_solve.questions.heaviest import Task
 from nearchord_solve.structure import Structure
@@ -74,7 +75,10 @@ class LabelledProgram:
                 once_more = sweep_labelled(line, other, budget.states, room, False, monitor)
                 return None if once_more.colour is None else self._swept(structure, once_more)
 
-            return replace(self._swept(structure, swept), again=again)
+            weight = int(task.weights.sum())
+            weight += self.must.size * (weight + 1)
+            proof = certify_order(swept.value, line.order, line.forest, self.colours, swept.states, weight)
+            return replace(self._swept(structure, swept), again=again, proof=proof)
         if swept.code == label_passes.IMPOSSIBLE:
             nothing = np.zeros(task.graph.n, np.uint8)
             return Settled(nothing, 0, True, swept.states, "all states of the bags were tried", feasible=False)

@@ -89,7 +89,7 @@ def _conclude(ended: Concluded, rest: Rest, colours: int) -> Outcome:
     elif found.chosen is not None and colours and ended.settled is not None and ended.settled.colour is not None:
         columns = {"colour": ended.settled.colour[found.chosen != 0]}
     outcome = outcome_of(found, 0, 1, lambda chosen: lift(rest, chosen), rest.vertices)
-    return replace(outcome, states=ended.states, columns=columns)
+    return replace(outcome, states=ended.states, columns={**outcome.columns, **columns})
 
 
 def _add_prices(outcome: Outcome, settled: Settled, rest: Rest, n: int) -> Outcome:
@@ -133,7 +133,7 @@ def _add_scenarios(
         proof="search",
         proof_kinds=("search",) * len(outcome.proof_kinds),
         reason=f"{outcome.reason}; proven for {proven} of {len(cases)} scenarios",
-        columns={**outcome.columns, **columns},
+        columns={**{name: kept for name, kept in outcome.columns.items() if not name.startswith("proof_")}, **columns},
     )
 
 

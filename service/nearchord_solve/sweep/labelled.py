@@ -93,11 +93,10 @@ class Pinned:
 def count_states(line: Line, pinned: Pinned, most: int, monitor: Monitor) -> int:
     """States of all bags that need a table, cheaply; about ``most`` or more if above it.
 
-    0 where there is no cheap count; the sweep gives up in time.
+    0 where there is no count that is much cheaper than the sweep, which gives up in time: for forests, and where plain
+    states of two colours are in the table.
     """
-    if pinned.colours == 0 and pinned.closed:
-        return int(state_counts.forest_states(line.forest, most, monitor.cells))
-    if pinned.colours in CLOSED and not pinned.closed:
+    if pinned.colours == 0 or (pinned.colours in CLOSED and not pinned.closed):
         return 0
     return int(state_counts.colour_states(line.forest, pinned.colours, most, monitor.cells))
 
