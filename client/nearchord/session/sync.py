@@ -12,10 +12,11 @@ from typing import Any, Self, TypeVar
 import grpc
 
 from nearchord.answer import Answer
+from nearchord.budget import Budget
 from nearchord.graph import Graph
 from nearchord.jobs import Addresses, BatchInfo, Event, JobInfo, JobRequest
 from nearchord.load import Load, ServerInfo
-from nearchord.question import Budget, Question
+from nearchord.question import Question
 from nearchord.session import channel as channels
 from nearchord.session import flows_content, flows_jobs, flows_watch, requests, status
 from nearchord.session.caller import PATIENCE, Caller
