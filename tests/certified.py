@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 import random
-from dataclasses import replace
+from dataclasses import fields, replace
 from typing import Any
 
 import nearchord
@@ -21,7 +21,7 @@ def answered(
     """What the solver says, as a session would give it; pins are vertex numbers."""
     question = question or nearchord.IndependentSet()
     kind = ns.QUESTIONS[question.name]
-    asked = kind(must=list(question.must), never=list(question.never))
+    asked = kind(**{field.name: getattr(question, field.name) for field in fields(question)})
     u, v = graph.edges()
     pairs = list(zip(u.tolist(), v.tolist(), strict=True))
     weights = None if graph.weights is None else graph.weights.astype(np.int64)
@@ -42,10 +42,22 @@ def answered(
 
 def confirmed(graph: nearchord.Graph, answer: nearchord.Answer) -> bool:
     """Whether everything is confirmed, the bound included; CheckFailed counts as no."""
+    return verdict_on(graph, answer) == "confirmed"
+
+
+def verdict_on(graph: nearchord.Graph, answer: nearchord.Answer) -> str:
+    """How a check ends: confirmed, open, or refused; anything but CheckFailed is a defect and passes through."""
     try:
-        return not nearchord.check(graph, answer).not_confirmed
+        return "open" if nearchord.check(graph, answer).not_confirmed else "confirmed"
     except nearchord.CheckFailed:
-        return False
+        return "refused"
+
+
+def nothing_chosen(answer: nearchord.Answer, bound: int, **columns: Any) -> nearchord.Answer:
+    """An answer that chooses nothing, so that its bound can be as low as one likes."""
+    empty = {"chosen": np.zeros(0, np.uint32), "value": 0}
+    bare = {name: column for name, column in answer.columns.items() if name != "colour"}
+    return bounded(replace(answer, columns=bare, **empty), bound, **columns)
 
 
 def bounded(answer: nearchord.Answer, bound: int, **columns: Any) -> nearchord.Answer:

@@ -6,9 +6,10 @@ import hashlib
 
 from nearchord.answer import Answer
 from nearchord.canonical import little_endian
-from nearchord.checks.choice import check_choice, weights_of
+from nearchord.checks.choice import check_choice
 from nearchord.checks.confirmed import Confirmed
 from nearchord.checks.fill import check_fill
+from nearchord.checks.pins import weights_of
 from nearchord.checks.structure import check_structure
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph

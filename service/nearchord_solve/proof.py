@@ -25,6 +25,7 @@ So the certificate proves the bound of the sweep.
 """
 
 from dataclasses import dataclass
+from typing import Protocol
 
 import numpy as np
 
@@ -32,6 +33,17 @@ from nearchord_solve.arrays import I32, I64, U8, U32
 from nearchord_solve.kernels import splitting
 from nearchord_solve.kernels.layout import Cover
 from nearchord_solve.structure import Structure
+
+
+class Proof(Protocol):
+    """Whatever proves a bound to a checker that knows the graph."""
+
+    @property
+    def bound(self) -> int:
+        """What is proven."""
+
+    def columns(self, vertices: I64) -> dict[str, U32 | I64]:
+        """Columns of the answer; ``vertices`` int64: number of each vertex in the graph of the question."""
 
 
 @dataclass(frozen=True, eq=False)

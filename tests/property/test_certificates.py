@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import random
+from collections import Counter
 from dataclasses import replace
 
 import nearchord
@@ -11,7 +12,7 @@ import networkx as nx
 import numpy as np
 import pytest
 import strategies
-from certified import answered, bounded, confirmed, mutated
+from certified import answered, bounded, confirmed, mutated, verdict_on
 from definition import heaviest_independent
 from hypothesis import given, settings
 from hypothesis import strategies as st
@@ -71,16 +72,37 @@ def test_no_fault_in_a_proof_makes_a_bound_pass_that_is_too_good(seed: int) -> N
     edges, weights = near_chordal(rng, n)
     weights[0] += 1
     graph = weighted(n, edges, weights)
-    answer = answered(graph)
-    best = heaviest_independent(n, edges, weights)
-    assert answer.value == best
+    answer, cover = answered(graph), answered(graph, nearchord.VertexCover())
+    best, total = heaviest_independent(n, edges, weights), sum(weights)
+    assert (answer.value, cover.value) == (best, total - best)
     assert confirmed(graph, answer)
     nothing = replace(answer, chosen=np.zeros(0, np.uint32), value=0)
+    everything = replace(cover, chosen=np.arange(n, dtype=np.uint32), value=total)
     assert confirmed(graph, bounded(nothing, best))
+    assert confirmed(graph, bounded(everything, total - best))
     assert not confirmed(graph, bounded(nothing, best - 1))
+    assert not confirmed(graph, bounded(everything, total - best + 1))
     for _ in range(100):
         faulty = mutated(dict(answer.columns), rng, n)
         assert not confirmed(graph, bounded(nothing, best - 1, **faulty)), faulty
+        assert not confirmed(graph, bounded(everything, total - best + 1, **faulty)), faulty
+
+
+def test_faults_are_refused_and_not_merely_left_open() -> None:
+    """A thousand faults: each that changes anything is refused, or leaves a proof of the same bound. Few do."""
+    rng = random.Random(1)
+    ends: Counter[str] = Counter()
+    for _ in range(40):
+        n = rng.randrange(6, 13)
+        edges, weights = near_chordal(rng, n)
+        graph = weighted(n, edges, weights)
+        answer = answered(graph)
+        for _ in range(25):
+            faulty = mutated(dict(answer.columns), rng, n)
+            if any(not np.array_equal(column, answer.columns[name]) for name, column in faulty.items()):
+                ends[verdict_on(graph, replace(answer, columns=faulty))] += 1
+    assert ends["open"] == 0
+    assert ends["refused"] > 4 * ends["confirmed"]
 
 
 def test_most_faults_in_a_proof_are_found_even_where_the_bound_is_right() -> None:

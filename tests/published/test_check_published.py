@@ -11,10 +11,12 @@ import nearchord_solve
 import networkx as nx
 import numpy as np
 import pytest
+from certified import answered, nothing_chosen, verdict_on
 from definition import least_fill
 from nearchord.checks.classes import splittance
 from nearchord.checks.edges import Edges
 from nearchord.checks.packing import Packing
+from published.reference_graphs import read_dimacs, reference_rows, weightings
 
 
 def test_split_graphs_are_as_many_as_published() -> None:
@@ -92,3 +94,17 @@ def test_spoilt_packings_prove_no_more_than_the_least_fill() -> None:
                     lowered += proven < least
     assert refused > 100
     assert lowered > 10
+
+
+@pytest.mark.parametrize("row", reference_rows(), ids=lambda row: row["name"])
+def test_bounds_on_real_graphs_are_confirmed(row: dict[str, str]) -> None:
+    """What is PROVEN within 10^5 states says certificate, and the checker computes the same bound."""
+    n, edges, own = read_dimacs(row["name"])
+    weights = weightings(n, own)["seed"]
+    graph = nearchord.Graph.from_edges(n, edges, weights=weights.tolist())
+    for question in (nearchord.Clique(), nearchord.ColourableSubgraph(colours=2), nearchord.InducedForest()):
+        answer = answered(graph, question, nearchord_solve.Budget(states=10**5))
+        if answer.verdict is nearchord.Verdict.PROVEN:
+            assert answer.proof is nearchord.ProofKind.CERTIFICATE
+            assert nearchord.check(graph, answer).not_confirmed == (), question.name
+            assert verdict_on(graph, nothing_chosen(answer, answer.bound - 1)) == "refused", question.name

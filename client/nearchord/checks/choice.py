@@ -2,24 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
-
 import numpy as np
 from numpy.typing import NDArray
 
 from nearchord.answer import Answer
 from nearchord.canonical import weight_sum
+from nearchord.checks.bounds import check_bound
 from nearchord.checks.classes_of_choice import check_colours, check_forest
-from nearchord.checks.confirmed import Confirmed, check_sides, check_unanswered
-from nearchord.checks.edges import Edges
-from nearchord.checks.splitting import Splitting, has_splitting
-from nearchord.checks.states import TooManyStates
+from nearchord.checks.confirmed import Confirmed, check_unanswered
+from nearchord.checks.edges import Mask
+from nearchord.checks.pins import mask_of, weights_of
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph
-from nearchord.question import Choice, Clique, ColourableSubgraph, IndependentSet, InducedForest, Pin, VertexCover
-from nearchord.stages import ProofKind, Verdict
-
-Mask = NDArray[np.bool_]
+from nearchord.question import Choice, Clique, ColourableSubgraph, IndependentSet, InducedForest, VertexCover
+from nearchord.stages import Verdict
 
 
 def check_choice(graph: Graph, answer: Answer, question: Choice) -> Confirmed:
@@ -30,46 +26,13 @@ def check_choice(graph: Graph, answer: Answer, question: Choice) -> Confirmed:
         return check_unanswered(answer)
     chosen = _chosen_mask(graph, answer)
     done = [_check_definition(graph, question, chosen, answer.colour), _check_value(graph, answer, chosen)]
-    plain = _check_bound(graph, answer, question)
-    if plain is None and has_splitting(answer.columns):
-        try:
-            plain = _check_splitting(graph, answer, question)
-        except TooManyStates:
-            return Confirmed(tuple(done), (f"the bound {answer.bound}: checking its proof would take too long",))
-    if plain is not None:
-        return Confirmed((*done, plain), ())
-    if ProofKind.SEARCH in (answer.proof, *answer.proof_kinds):
-        return Confirmed(tuple(done), (f"the bound {answer.bound}: it rests on a search, which leaves no proof",))
-    return Confirmed(tuple(done), (f"the bound {answer.bound}: the answer carries no proof of it",))
-
-
-def _check_splitting(graph: Graph, answer: Answer, question: Choice) -> str:
-    """Words for a bound that the proof in the answer confirms; CheckFailed where it does not.
-
-    What must be in, or out, is decided before: a vertex that must be in a set counts in full, its neighbours and what
-    may not be in count for nothing. A cover is what an independent set leaves, with the pins the other way round.
-    """
-    must, never = (_mask(graph, pins, "pins") for pins in (question.must, question.never))
-    if isinstance(question, VertexCover):
-        must, never = never, must
-    weights = weights_of(graph)
-    u, v = graph.edges()
-    out = must | never
-    out[v[must[u]]] = True
-    out[u[must[v]]] = True
-    proof = Splitting(graph.n, answer.columns)
-    most = weight_sum(weights[must]) + proof.bound(Edges(graph.n, u, v), np.where(out, 0, weights))
-    bound = answer.bound
-    assert bound is not None, "check_sides refuses its absence"
-    proven = most if question.maximises else weight_sum(weights) - most
-    if (proven > bound) if question.maximises else (proven < bound):
-        raise CheckFailed(f"the bound is given as {bound}, but the proof comes to {proven}")
-    return f"the bound {bound}: {proof.summary}"
+    proven, left = check_bound(graph, answer, question)
+    return Confirmed((*done, *filter(None, (proven,))), tuple(filter(None, (left,))))
 
 
 def _check_infeasible(graph: Graph, question: Choice) -> Confirmed:
     """The pins have to contradict each other: a vertex in both lists, or two ends of an edge forced the wrong way."""
-    must, never = (_mask(graph, getattr(question, field), field) for field in ("must", "never"))
+    must, never = (mask_of(graph, getattr(question, field), field) for field in ("must", "never"))
     both = np.flatnonzero(must & never)
     if both.size:
         return Confirmed((f"the pins contradict each other: vertex {graph.label(int(both[0]))} is in both lists",), ())
@@ -98,16 +61,7 @@ def _chosen_mask(graph: Graph, answer: Answer) -> Mask:
     disorder = np.flatnonzero(np.diff(chosen) <= 0)
     if disorder.size:
         raise CheckFailed(f"the chosen vertices do not ascend at vertex {graph.label(int(chosen[disorder[0] + 1]))}")
-    return _mask(graph, chosen.tolist(), "chosen")
-
-
-def _mask(graph: Graph, vertices: Iterable[Pin], field: str) -> Mask:
-    mask = np.zeros(graph.n, np.bool_)
-    numbers = [graph.vertex(v) if isinstance(v, str) else v for v in vertices]
-    if numbers and max(numbers) >= graph.n:
-        raise CheckFailed(f"{field} has vertex {max(numbers)}, but the graph has {graph.n} vertices")
-    mask[numbers] = True
-    return mask
+    return mask_of(graph, chosen.tolist(), "chosen")
 
 
 def _edge_inside(graph: Graph, mask: Mask) -> str | None:
@@ -162,17 +116,12 @@ def _check_definition(graph: Graph, question: Choice, chosen: Mask, colour: NDAr
 
 
 def _check_pins(graph: Graph, question: Choice, chosen: Mask) -> None:
-    absent = np.flatnonzero(_mask(graph, question.must, "must") & ~chosen)
+    absent = np.flatnonzero(mask_of(graph, question.must, "must") & ~chosen)
     if absent.size:
         raise CheckFailed(f"vertex {graph.label(int(absent[0]))} must be chosen, but is not")
-    present = np.flatnonzero(_mask(graph, question.never, "never") & chosen)
+    present = np.flatnonzero(mask_of(graph, question.never, "never") & chosen)
     if present.size:
         raise CheckFailed(f"vertex {graph.label(int(present[0]))} must not be chosen, but is")
-
-
-def weights_of(graph: Graph) -> NDArray[np.int64]:
-    """The weights of a graph, written down."""
-    return np.ones(graph.n, np.int64) if graph.weights is None else graph.weights
 
 
 def _check_value(graph: Graph, answer: Answer, chosen: Mask) -> str:
@@ -180,20 +129,3 @@ def _check_value(graph: Graph, answer: Answer, chosen: Mask) -> str:
     if weight != answer.value:
         raise CheckFailed(f"the value is given as {answer.value}, but the chosen vertices weigh {weight}")
     return f"the chosen vertices weigh {weight}"
-
-
-def _check_bound(graph: Graph, answer: Answer, question: Choice) -> str | None:
-    """Words for a bound that is plain from the weights alone; None where it takes a proof.
-
-    Every solution holds all `must` vertices and no `never` vertex, so it weighs at least the first and at most all but
-    the second. A bound on the wrong side of the value, or a PROVEN one that does not meet it, is wrong in any case.
-    """
-    check_sides(answer)
-    bound = answer.bound
-    assert bound is not None, "check_sides refuses its absence"
-    weights = weights_of(graph)
-    if question.maximises and bound >= weight_sum(weights[~_mask(graph, question.never, "never")]):
-        return f"the bound {bound}: all vertices that may be chosen weigh no more"
-    if not question.maximises and bound <= weight_sum(weights[_mask(graph, question.must, "must")]):
-        return f"the bound {bound}: the vertices that must be chosen weigh no less"
-    return None

@@ -8,7 +8,7 @@ Table = dict[tuple[int, ...], int]
 
 
 class TooManyStates(Exception):
-    """There are more independent sets than may be tried."""
+    """There is more to try than a check may take; its text says what, where that is not plain."""
 
 
 @dataclass(frozen=True)

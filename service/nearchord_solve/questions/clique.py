@@ -17,6 +17,7 @@ from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.order import Ranking
+from nearchord_solve.order_proof import OrderCertificate
 from nearchord_solve.outcome import Outcome
 from nearchord_solve.questions.conclude import contradiction, outcome_of
 from nearchord_solve.questions.frame import Settled, run_program, total_of
@@ -25,6 +26,8 @@ from nearchord_solve.questions.heaviest import Task
 from nearchord_solve.questions.pins import Contradiction, Rest, keep_vertices, lift, pin_array
 from nearchord_solve.structure import Structure
 from nearchord_solve.sweep.kernels import bag_cliques
+
+MOST_NODES = 100_000  # of a search that a checker in plain Python is asked to do again
 
 
 @dataclass(frozen=True)
@@ -81,10 +84,10 @@ class CliqueProgram:
         graph, weights = task.graph, task.weights
         chosen = _greedy(graph, weights)
         if ranking is None:
-            bound = _bound_by_degree(graph, weights)
-        else:
-            bound = _bound_along(ranking, weights)
-        return Settled(chosen, max(bound, total_of(weights, chosen)), False, 0, "")
+            bound = max(_bound_by_degree(graph, weights), total_of(weights, chosen))
+            return Settled(chosen, bound, False, 0, "")
+        bound = max(_bound_along(ranking, weights), total_of(weights, chosen))
+        return Settled(chosen, bound, False, 0, "", proof=OrderCertificate(bound, ranking.order[::-1], None))
 
     def settle(self, task: Task, structure: Structure) -> Settled:
         """Look through all bags, those without fill first."""
@@ -107,7 +110,12 @@ class CliqueProgram:
         )
         by_vertex = np.empty(weights.size, np.uint8)
         by_vertex[numbering.order] = chosen
-        return Settled(by_vertex, int(bound), bound == value, int(nodes), self._reason(task, structure, nodes))
+        exact = bool(bound == value)
+        proof = None
+        if exact and nodes <= MOST_NODES:
+            proof = OrderCertificate(int(bound), numbering.order[::-1], None)
+        reason = self._reason(task, structure, nodes)
+        return Settled(by_vertex, int(bound), exact, int(nodes), reason, proof=proof)
 
     def _reason(self, task: Task, structure: Structure, nodes: int) -> str:
         if task.stop:

@@ -48,5 +48,5 @@ class ColourableSubgraph:
         if self.colours == 1:
             outcome = IndependentSet(must, never).answer(graph, weights, budget, when_over, monitor, reuse)
             chosen = 0 if outcome.chosen is None else outcome.chosen.size
-            return replace(outcome, columns={"colour": np.ones(chosen, np.uint32)})
+            return replace(outcome, columns={"colour": np.ones(chosen, np.uint32), **outcome.columns})
         return answer_labelled(self.colours, must, never, graph, weights, budget, when_over, monitor, reuse)

@@ -11,6 +11,7 @@ from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Stop
 from nearchord_solve.order import Ranking, Unfinished
 from nearchord_solve.outcome import Verdict
+from nearchord_solve.proof import Proof
 from nearchord_solve.questions.heaviest import Found, Task
 from nearchord_solve.refine import over_fill, search_less_fill
 from nearchord_solve.structure import Structure
@@ -23,7 +24,7 @@ class Settled:
 
     ``chosen`` uint8[n], feasible; ``bound`` is valid, and is the optimum if ``exact``.  ``states``: states that it
     went through or would have to; ``reason``: how it was settled, or what was too small.  ``colour`` uint32[n]: classes
-    of the chosen vertices, for questions that have some.
+    of the chosen vertices, for questions that have some.  ``proof``: of ``bound``, where there is one.
     """
 
     chosen: U8
@@ -32,6 +33,7 @@ class Settled:
     states: int
     reason: str
     colour: U32 | None = None
+    proof: Proof | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -101,7 +103,7 @@ def _close(task: Task, settled: Settled, structure: Structure | None, reason: st
     verdict = Verdict.PROVEN if value == settled.bound else Verdict.BOUNDED
     if value == settled.bound and not settled.exact:
         reason += "; the choice found meets the bound all the same"
-    found = Found(verdict, value, settled.bound, settled.chosen, structure, reason)
+    found = Found(verdict, value, settled.bound, settled.chosen, structure, reason, settled.proof)
     return Concluded(found, states, settled.colour)
 
 

@@ -14,7 +14,7 @@ from nearchord_solve.memory import predicted_bytes
 from nearchord_solve.monitor import Stop
 from nearchord_solve.order import Unfinished
 from nearchord_solve.outcome import Verdict
-from nearchord_solve.proof import Certificate
+from nearchord_solve.proof import Proof
 from nearchord_solve.questions.branching import Branching
 from nearchord_solve.questions.gauge import Gauge
 from nearchord_solve.refine import over_fill, search_less_fill
@@ -36,7 +36,7 @@ class Found:
     chosen: U8 | None
     structure: Structure | None
     reason: str
-    proof: Certificate | None = None
+    proof: Proof | None = None
 
 
 @dataclass(frozen=True, eq=False)
