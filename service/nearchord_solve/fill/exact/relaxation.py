@@ -5,37 +5,14 @@ from collections.abc import Mapping
 import highspy
 import numpy as np
 
-from nearchord_solve.arrays import F64, I64
+from nearchord_solve.arrays import F64
 from nearchord_solve.fill.exact.core import Core, Pair
 from nearchord_solve.fill.exact.cycles import Cycle
 from nearchord_solve.fill.exact.packing import sides_and_chords
-from nearchord_solve.kernels.cells import STOP
+from nearchord_solve.linear import quiet_solver
 from nearchord_solve.monitor import Monitor
 
 FORBIDDING = 1e5
-
-
-class _Silent(highspy.Highs):
-    """A solver that prints nothing, not even when it is made."""
-
-    def __init__(self) -> None:
-        super().__init__()  # type: ignore[no-untyped-call]
-
-    def enableCallbacks(self) -> None:  # noqa: N802
-        """Called on construction: silence comes first."""
-        self.silent()
-        super().enableCallbacks()  # type: ignore[no-untyped-call]
-
-
-class _Watch:
-    """Ends a run of the solver when the monitor says stop.  Holds the cells only, so that no cycle keeps it alive."""
-
-    def __init__(self, cells: I64) -> None:
-        self.cells = cells
-
-    def __call__(self, event: highspy.HighsCallbackEvent) -> None:
-        if self.cells[STOP] != 0:
-            event.interrupt()
 
 
 class Relaxation:
@@ -52,10 +29,7 @@ class Relaxation:
         self.known: set[Cycle] = set()
         self.idle: list[int] = []
         self._decided: dict[Pair, int] = {}
-        self._solver = _Silent()
-        self._solver.cbSimplexInterrupt.subscribe(_Watch(monitor.cells))
-        for option, value in (("threads", 1), ("parallel", "off"), ("presolve", "off"), ("random_seed", 0)):
-            self._solver.setOptionValue(option, value)
+        self._solver = quiet_solver(monitor)
 
     def add(self, cycles: list[Cycle]) -> int:
         """Add cuts that are not there yet; returns how many were."""

@@ -1,0 +1,1 @@
+"""Plans that serve every vertex: independent sets with lengths, put together part by part along clique adhesions."""

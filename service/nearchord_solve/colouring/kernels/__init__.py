@@ -1,0 +1,1 @@
+"""Kernels of the colouring questions, each beside the statement of what it computes."""
