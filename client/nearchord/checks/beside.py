@@ -17,7 +17,7 @@ AGAIN = "the answer carries no proof of it; computing it again confirms it"
 def check_beside(graph: Graph, answer: Answer, question: Choice) -> Confirmed:
     """Confirms what follows from the definition, and says what only a new computation confirms."""
     found = Findings()
-    if getattr(question, "prices", False) and _is_there(answer, "price_in", "the prices", found):
+    if getattr(question, "prices", False) and _are_there(answer, ("price_in", "price_out"), "the prices", found):
         found.confirm(check_prices(graph, answer, question))
         found.leave_open(f"that the prices are exact: {AGAIN}")
     if isinstance(question, IndependentSet):
@@ -26,10 +26,10 @@ def check_beside(graph: Graph, answer: Answer, question: Choice) -> Confirmed:
 
 
 def _check_sets(graph: Graph, answer: Answer, question: IndependentSet, found: Findings) -> None:
-    if question.conflict_prices and _is_there(answer, "conflict_price", "the prices of conflicts", found):
+    if question.conflict_prices and _are_there(answer, ("conflict_price",), "the prices of conflicts", found):
         found.confirm(check_conflict_prices(graph, answer, question))
         found.leave_open(f"that the prices of conflicts are exact: {AGAIN}")
-    if question.best > 1 and _is_there(answer, "best_value", "the best sets", found):
+    if question.best > 1 and _are_there(answer, ("best_value",), "the best sets", found):
         found.confirm(check_best(graph, answer, question))
         found.leave_open(f"that no other set is better than the last of these: {AGAIN}")
     if question.count and answer.count is not None:
@@ -39,9 +39,9 @@ def _check_sets(graph: Graph, answer: Answer, question: IndependentSet, found: F
     check_optima(answer, question)
 
 
-def _is_there(answer: Answer, column: str, what: str, found: Findings) -> bool:
-    """Whether the answer has it; only a proven one can."""
-    there = column in answer.columns
+def _are_there(answer: Answer, columns: tuple[str, ...], what: str, found: Findings) -> bool:
+    """Whether the answer has any of them; only a proven one can."""
+    there = any(column in answer.columns for column in columns)
     if there and answer.verdict is not Verdict.PROVEN:
         raise CheckFailed(f"the answer has {what}, but the verdict is {answer.verdict}")
     if not there:

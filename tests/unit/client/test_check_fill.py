@@ -11,6 +11,7 @@ from pathlib import Path
 import networkx as nx
 import numpy as np
 import pytest
+from add_on_answers import choice_answer
 from definition import least_fill, networkx_graph
 from fill_answers import (
     consecutive_cliques,
@@ -25,7 +26,7 @@ from fill_answers import (
 )
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from nearchord import CheckFailed, Graph, ProofKind, Recognition, Verdict, check
+from nearchord import CheckFailed, ColourableSubgraph, Graph, IndependentSet, ProofKind, Recognition, Verdict, check
 from nearchord.checks import splitting
 from nearchord.checks.chordal import check_chordless_cycle, check_elimination_order
 from nearchord.checks.classes import check_cliques, check_split, splittance
@@ -458,12 +459,12 @@ def test_the_contract_names_every_column_that_is_checked():
     """The names here are those of the wire contract."""
     names = set(fill_answer(SQUARE).columns) | set(fill_answer(Graph.from_edges(3, [(0, 1), (1, 2)])).columns)
     names |= {f"proof_{name}" for name in splitting.TYPES}
+    names |= set(choice_answer(SQUARE, IndependentSet(prices=True, conflict_prices=True, best=2)).columns)
+    names |= set(choice_answer(SQUARE, ColourableSubgraph(scenarios=[[1] * 4])).columns)
     assert names == {name for name in nearchord_columns() if not re.match(_OF_OTHER_QUESTIONS, name)}
 
 
-_OF_OTHER_QUESTIONS = (
-    r"chosen|colour|price_|conflict_price|best_|scenario_|share_|bottleneck_|proof_(order|fill|clique)$"
-)
+_OF_OTHER_QUESTIONS = r"chosen|colour_start|share_|bottleneck_|proof_(order|fill|clique)$"
 
 
 def nearchord_columns():
