@@ -469,7 +469,8 @@ _OF_OTHER_QUESTIONS = r"chosen|colour_start|share_|bottleneck_|proof_(order|fill
 
 def nearchord_columns():
     text = (Path(__file__).parents[3] / "proto" / "nearchord" / "v1" / "answer.proto").read_text(encoding="utf-8")
-    return set(re.findall(r"`(\w+)` \((?:UINT32|INT64)[,)]", text.replace("\n// ", " ")))
+    named = re.findall(r"((?:`\w+` and )?`\w+`) \((?:UINT32|INT64)[,)]", text.replace("\n// ", " "))
+    return {name for names in named for name in re.findall(r"\w{4,}", names)}
 
 
 def test_the_checker_of_fills_uses_nothing_of_the_solver():
