@@ -17,6 +17,8 @@ CAPTION = 9
 """Columns that captions take."""
 
 LISTING_LINES = 4
+TERMINAL_ROWS = 20
+"""Rows of a table that a terminal gets."""
 
 
 def print_json(value: dict[str, Any]) -> None:
@@ -66,6 +68,26 @@ def print_table(
     with console.capture() as capture:
         console.print(table)
     sys.stdout.writelines(f"{line.rstrip()}\n" for line in capture.get().splitlines())
+
+
+def rows_shown(count: int) -> int:
+    """How many of so many rows are printed: all, but on a terminal no more than fill it."""
+    return min(count, TERMINAL_ROWS) if sys.stdout.isatty() else count
+
+
+def print_first(
+    headings: Sequence[str],
+    rows: Sequence[Sequence[str]],
+    total: int,
+    *,
+    flexible: str,
+    numbers: frozenset[str] = frozenset(),
+) -> None:
+    """Print a table below a blank line, and how many of its `total` rows are left out."""
+    sys.stdout.write("\n")
+    print_table(headings, rows, flexible=flexible, numbers=numbers)
+    if len(rows) < total:
+        sys.stdout.write(f"... and {total - len(rows):,} more (--json has all)\n")
 
 
 def print_entry(caption: str, text: str) -> None:

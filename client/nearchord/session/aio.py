@@ -168,6 +168,10 @@ class AsyncService:
         """Stores a graph with its weights and names, so that many jobs can name them by address."""
         return await self._carrier.run(flows_content.upload(self._caller, graph))
 
+    async def graph(self, address: str) -> Graph:
+        """The graph stored at an address, without weights and names."""
+        return await self._carrier.run(flows_watch.graph(self._caller, address))
+
     async def names(self, address: str) -> tuple[str, ...]:
         """The vertex names stored at an address; none for the empty address."""
         return await self._carrier.run(flows_watch.names(self._caller, address))

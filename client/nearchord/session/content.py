@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from nearchord.canonical import little_endian
 from nearchord.errors import BadInput
-from nearchord.graph import Graph
+from nearchord.graph import HEADER, Graph
 from nearchord.v1 import content_pb2
 
 
@@ -92,6 +92,16 @@ def content_of(graph: Graph, vectors: NDArray[np.int64] | None = None) -> InputC
 def weight_content(vectors: NDArray[np.int64]) -> Content:
     """The stored form of weights or demands, int64[n], or of the scenarios int64[R, n], one after the other."""
     return Content(content_pb2.CONTENT_KIND_WEIGHTS, [little_endian(vectors.reshape(-1))])
+
+
+def graph_from(data: bytes) -> Graph:
+    """The graph in stored bytes, which the server has checked."""
+    n, m = HEADER.unpack_from(data)
+    row_ptr = np.frombuffer(data, "<u8", n + 1, HEADER.size).astype(np.uint64)
+    targets = np.frombuffer(data, "<u4", m, HEADER.size + row_ptr.nbytes).astype(np.uint32)
+    for array in (row_ptr, targets):
+        array.flags.writeable = False
+    return Graph(n, m, row_ptr, targets)
 
 
 def names_bytes(names: Sequence[str]) -> bytes:

@@ -171,6 +171,10 @@ class Service:
         """Stores a graph with its weights and names, so that many jobs can name them by address."""
         return self._carrier.run(flows_content.upload(self._caller, graph))
 
+    def graph(self, address: str) -> Graph:
+        """The graph stored at an address, without weights and names."""
+        return self._carrier.run(flows_watch.graph(self._caller, address))
+
     def names(self, address: str) -> tuple[str, ...]:
         """The vertex names stored at an address; none for the empty address."""
         return self._carrier.run(flows_watch.names(self._caller, address))
