@@ -119,10 +119,8 @@ class _Reader:
     def _columns(self) -> dict[str, Any]:
         columns: dict[str, Any] = {}
         if self._found.get("question") in (nearchord.Colouring.name, nearchord.FractionalColouring.name):
-            return self._taken(
-                "colour, shares or bottleneck", lambda found: plan.columns(found, self._of, self._graph.n)
-            )
-        if isinstance(self._found.get("colour"), dict):
+            columns.update(self._taken("colour, shares or bottleneck", self._plan))
+        elif isinstance(self._found.get("colour"), dict):
             columns["colour"] = self._colour()
         columns.update(self._taken("best or scenarios", lambda found: sets.columns(found, self._of)))
         columns.update(self._taken("price_in, price_out or conflict_prices", self._prices))

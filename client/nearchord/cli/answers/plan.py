@@ -12,7 +12,7 @@ import numpy as np
 
 import nearchord
 from nearchord.cli.answers.choice import structure_lines
-from nearchord.cli.layout import print_first, print_listing, rows_shown
+from nearchord.cli.layout import CAPTION, print_first, print_listing, rows_shown
 from nearchord.cli.numbers import number
 from nearchord.cli.subject import Subject
 
@@ -75,12 +75,12 @@ def _show_colours(answer: nearchord.Answer, subject: Subject) -> None:
     if "colour_start" in answer.columns:
         vertex = np.repeat(vertex, np.diff(answer.columns["colour_start"]))
     colours = int(answer.colour.max())
-    shown = rows_shown(colours)
+    shown, width = rows_shown(colours), max(CAPTION, len(f"colour {colours} "))
     for colour in range(1, shown + 1):
         names = subject.labels.of(vertex[answer.colour == colour].tolist())
-        print_listing(f"colour {colour}", [str(name) for name in names])
+        print_listing(f"colour {colour}", [str(name) for name in names], width)
     if shown < colours:
-        print_listing("", [f"... and {colours - shown:,} more colours (--json has all)"])
+        print_listing("", [f"... and {colours - shown:,} more colours (--json has all)"], width)
 
 
 def _show_shares(answer: nearchord.Answer, subject: Subject) -> None:
