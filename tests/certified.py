@@ -30,6 +30,12 @@ def answered(
     outcome = ns.solve(
         asked, ns.Graph.from_edges(graph.n, pairs), weights, budget or ns.Budget(), "bound", ns.Monitor()
     )
+    return answer_of(graph, question, outcome)
+
+
+def answer_of(graph: nearchord.Graph, question: nearchord.Question, outcome: ns.Outcome) -> nearchord.Answer:
+    """An outcome about a graph, with its weights, as the answer that a session would give."""
+    weights = graph.weights
     address = "" if weights is None else hashlib.sha256(weights.astype("<i8").tobytes()).hexdigest()
     origin = nearchord.Provenance(
         graph.address, address, "1", 1, nearchord.Budget(), WhenOver.BOUND, 1, (), 0.0, 0.0, 0, None

@@ -139,6 +139,11 @@ class Answer:
         return tuple(self.colour[self.chosen == vertex].tolist()) if self.colour.size else ()
 
     @property
+    def proof_bytes(self) -> int:
+        """Bytes that the certificate of the bound takes, 0 where there is none: of all columns named `proof_`."""
+        return sum(column.nbytes for name, column in self.columns.items() if name.startswith("proof_"))
+
+    @property
     def fill_edges(self) -> NDArray[np.uint32]:
         """The pairs to add as uint32[k, 2], smaller end first, ascending; k = 0 unless the question is `fill`."""
         return self._vertices("fill_edge").reshape(-1, 2)

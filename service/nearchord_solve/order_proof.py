@@ -8,7 +8,7 @@ that a clique inside one of these sets weighs is a bound, in any order; no fill 
 *Colour classes and forests.*  The dynamic program over the bags {v} + L(v), the bag of v below that of the first
 vertex of L(v), is exact whenever the order is a perfect elimination order of G + fill: a checker computes the very
 optimum from the definition, so order and fill prove every bound that holds.  They only have to be good enough for its
-work to be small, which is why such a certificate is written within limits only, see :func:`checkable`.
+work to be small, which is why such a certificate is written within limits only, see :func:`certify_order`.
 """
 
 from dataclasses import dataclass
@@ -43,11 +43,21 @@ class OrderCertificate:
         return {"proof_order": order, "proof_fill": vertices[self.fill].reshape(-1).astype(np.uint32)}
 
 
-def checkable(forest: Forest, colours: int, states: int, weight: int) -> bool:
-    """Whether a checker is asked to compute the optimum itself; ``colours`` 0 means forests.
+def certify_order(
+    bound: int, order: I32, forest: Forest, colours: int, states: int, weight: int
+) -> OrderCertificate | None:
+    """The certificate of an optimum; None where a checker would have too much to do.
 
-    ``states``: of all bags that the solver keeps a table of; ``weight``: sum of all weights, extras of pins included.
+    ``order`` int32[n]: the vertex of each rank of ``forest``, the highest goes first.  ``colours`` 0 means forests.
+    ``states``: of all bags that count for a state budget.  ``weight``: of all vertices, those that must be chosen
+    with more than all others on top.
     """
+    if not _checkable(forest, colours, states, weight):
+        return None
+    return OrderCertificate(bound, order[::-1], _fill_pairs(order, forest.slot_fill_ptr, forest.slot_fill))
+
+
+def _checkable(forest: Forest, colours: int, states: int, weight: int) -> bool:
     sizes = np.diff(forest.bag_ptr)
     q = colours or 2
     if q > 2:  # the checker needs no states in bags without fill
@@ -58,9 +68,8 @@ def checkable(forest: Forest, colours: int, states: int, weight: int) -> bool:
     return bool(small) and states <= MOST_STATES and weight < HEAVIEST
 
 
-def fill_pairs(order: I32, ptr: I64, low: I32) -> I32:
-    """Pairs of vertices int32[f, 2], the smaller first, of ranks r and ``low[ptr[r]:ptr[r+1]]``; ``order``: the vertex
-    of each rank."""
+def _fill_pairs(order: I32, ptr: I64, low: I32) -> I32:
+    """Pairs of vertices int32[f, 2], the smaller first, of ranks r and ``low[ptr[r]:ptr[r+1]]``."""
     ends = np.empty((low.size, 2), np.int32)
     ends[:, 0] = np.repeat(order, np.diff(ptr))
     ends[:, 1] = order[low]

@@ -10,6 +10,7 @@ from nearchord.canonical import weight_sum
 from nearchord.checks.bounds import check_bound
 from nearchord.checks.classes_of_choice import check_colours, check_forest
 from nearchord.checks.confirmed import Confirmed, check_unanswered
+from nearchord.checks.contradictions import check_must
 from nearchord.checks.edges import Mask
 from nearchord.checks.pins import mask_of, weights_of
 from nearchord.errors import CheckFailed
@@ -44,7 +45,7 @@ def _check_infeasible(graph: Graph, question: Choice) -> Confirmed:
         if pair is not None:
             return Confirmed((f"the pins contradict each other: {pair} is no edge",), ())
     if isinstance(question, ColourableSubgraph | InducedForest):
-        return Confirmed((), ("that the pins contradict each other: the answer carries no proof of it",))
+        return check_must(graph, question, must)
     clash = None if isinstance(question, Clique) else _edge_inside(graph, _forced(question, must, never))
     if clash is None:
         raise CheckFailed("the verdict is INFEASIBLE, but the pins do not contradict each other")

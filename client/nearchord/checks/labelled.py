@@ -50,15 +50,15 @@ FORESTS = Rules(2, forest_states.best_by_trees, forest_states.renamed, forest_st
 
 
 def extra_weight(weights: Ints, must: int, q: int) -> int:
-    """E: more than all weights together, or as much as so many pins leave room for.
+    """E: more than all weights together; 0 without pins.
 
     Worths of q vertices are sums of 2^(q - 1) values less as many; TooManyStates where int64 would not hold them.
     """
     total = weight_sum(weights)
-    room = (2**63 - 1 >> (q - 1)) - total
-    if room < 0:
+    extra = total + 1 if must else 0
+    if total + extra * must > 2**63 - 1 >> (q - 1):
         raise TooManyStates("its weights are larger than this client computes with")
-    return min(total + 1, room // must) if must else 0
+    return extra
 
 
 @dataclass

@@ -38,6 +38,8 @@ def check(graph_file: str, answer_file: str, source: Source, vectors: VectorFile
     confirmed = nearchord.check(graph, answer, question=asked)
     sys.stdout.writelines(f"confirmed: {what}\n" for what in confirmed.what)
     sys.stdout.writelines(f"not confirmed: {what}\n" for what in confirmed.not_confirmed)
+    if answer.proof_bytes:
+        print(f"the proof takes {proof_file.size_of(answer)}")
     return Exit.OTHER if confirmed.not_confirmed else Exit.ANSWERED
 
 

@@ -9,6 +9,7 @@ from typing import Any
 import numpy as np
 
 import nearchord
+from nearchord.cli.numbers import size
 
 PREFIXES = ("proof_", "bottleneck_")
 """Columns of the certificate; bottleneck prices belong to it, because their proof is about their very numerators."""
@@ -31,6 +32,11 @@ def write(file: str, answer: nearchord.Answer) -> bool:
     except OSError as error:
         raise nearchord.FileProblem(file, None, f"the proof cannot be written ({error})", "give another file") from None
     return True
+
+
+def size_of(answer: nearchord.Answer) -> str:
+    """What the proof of `answer` takes, in all and for each vertex."""
+    return f"{size(answer.proof_bytes)} ({answer.proof_bytes / max(answer.vertices, 1):.1f} bytes a vertex)"
 
 
 def read(file: str, graph: nearchord.Graph) -> dict[str, Any]:

@@ -7,6 +7,7 @@ from collections.abc import Iterable, Iterator
 from typing import Any
 
 import nearchord
+from nearchord.cli import proof_file
 from nearchord.cli.answers import choice, fill, plan, structure
 from nearchord.cli.layout import print_entry
 from nearchord.cli.numbers import exact
@@ -40,6 +41,7 @@ def record(answer: nearchord.Answer, subject: Subject) -> dict[str, Any]:
         "reason": answer.reason,
         "proof": str(answer.proof),
         "proof_kinds": [str(kind) for kind in answer.proof_kinds],
+        "proof_bytes": answer.proof_bytes,
         "vertices": answer.vertices,
         **_of_its_question(answer, subject),
         "provenance": _provenance(answer.provenance),
@@ -85,7 +87,8 @@ def _print(entries: Iterable[tuple[str, str]]) -> None:
 
 
 def _ending(answer: nearchord.Answer) -> Iterator[tuple[str, str]]:
-    yield "proof", str(answer.proof)
+    large = f" of {proof_file.size_of(answer)}" if answer.proof_bytes else ""
+    yield "proof", f"{answer.proof}{large}"
     yield "seconds", f"{answer.seconds:.3f}"
     yield "job", answer.job_id
 

@@ -18,7 +18,7 @@ from nearchord_solve.kept import Reuse
 from nearchord_solve.kernels.greedy_classes import colour_in_order, grow_forest
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.order import Ranking
-from nearchord_solve.order_proof import OrderCertificate, checkable, fill_pairs
+from nearchord_solve.order_proof import certify_order
 from nearchord_solve.outcome import Outcome, Verdict
 from nearchord_solve.questions.conclude import contradiction, outcome_of
 from nearchord_solve.questions.frame import Concluded, Settled, run_program
@@ -27,7 +27,7 @@ from nearchord_solve.questions.heaviest import Found, Task
 from nearchord_solve.questions.pins import Contradiction, Rest, keep_vertices, lift
 from nearchord_solve.structure import Structure
 from nearchord_solve.sweep.kernels import label_passes
-from nearchord_solve.sweep.labelled import Labelled, Line, count_states, line_up, sweep_labelled
+from nearchord_solve.sweep.labelled import Labelled, count_states, line_up, sweep_labelled
 
 HEAVIEST = 2**61  # sums of weights with the extras of pins stay below
 
@@ -71,7 +71,9 @@ class LabelledProgram:
         swept = sweep_labelled(line, task.weights, self.colours, budget.states, room, monitor)
         if swept.colour is not None:
             settled = self._settled(swept.colour, swept.value, True, swept.states, _reason(structure, swept))
-            return replace(settled, proof=_certified(line, self.colours, states, swept.value, task.weights))
+            weight = int(task.weights.sum())
+            proof = certify_order(swept.value, line.order, line.forest, self.colours, states, weight)
+            return replace(settled, proof=proof)
         if swept.code == label_passes.STATES:
             return self._over(task, structure, swept.states)
         reason = "memory budget: the tables of the bags do not fit" if swept.code == label_passes.MEMORY else late
@@ -85,14 +87,6 @@ class LabelledProgram:
     def _settled(self, colour: U8, bound: int, exact: bool, states: int, reason: str) -> Settled:
         chosen = (colour != 0).astype(np.uint8)
         return Settled(chosen, bound, exact, states, reason, colour.astype(np.uint32))
-
-
-def _certified(line: Line, colours: int, states: int, value: int, weights: I64) -> OrderCertificate | None:
-    """The order that was swept, with its fill; None where a checker would have too much to do."""
-    if not checkable(line.forest, colours, states, int(weights.sum())):
-        return None
-    pairs = fill_pairs(line.order, line.forest.slot_fill_ptr, line.forest.slot_fill)
-    return OrderCertificate(value, line.order[::-1], pairs)
 
 
 def _reason(structure: Structure, swept: Labelled) -> str:

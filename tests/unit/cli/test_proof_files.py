@@ -11,6 +11,14 @@ import pytest
 from certified import answered
 from nearchord.cli import proof_file
 
+ORDERED = (
+    nearchord.Clique(must=(0,)),
+    nearchord.ColourableSubgraph(colours=2, never=(0,)),
+    nearchord.InducedForest(must=(2,), never=(0,)),
+)
+HOUSE = nearchord.Graph.from_edges(
+    6, [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4), (3, 5), (4, 5)], weights=[3, 4, 5, 6, 7, 8]
+)
 SQUARE = nearchord.Graph.from_edges(4, [(0, 1), (1, 2), (2, 3), (0, 3)], weights=[3, 1, 4, 1])
 
 
@@ -28,6 +36,26 @@ def test_a_proof_that_was_written_confirms_the_bound(tmp_path: Path) -> None:
     assert nearchord.check(SQUARE, bare).not_confirmed
     whole = replace(bare, columns=proof_file.read(file, SQUARE))
     assert not nearchord.check(SQUARE, whole).not_confirmed
+
+
+@pytest.mark.parametrize("question", ORDERED, ids=str)
+def test_an_order_that_was_written_confirms_the_bound(tmp_path: Path, question: nearchord.Question) -> None:
+    """Pins included: they decide which vertices it has to have."""
+    answer, file = answered(HOUSE, question), str(tmp_path / "p")
+    answer = replace(answer, provenance=replace(answer.provenance, proof_format=1))
+    assert proof_file.write(file, answer)
+    bare = replace(answer, columns={name: column for name, column in answer.columns.items() if name == "colour"})
+    assert nearchord.check(HOUSE, bare).not_confirmed
+    whole = replace(bare, columns={**bare.columns, **proof_file.read(file, HOUSE)})
+    assert not nearchord.check(HOUSE, whole).not_confirmed
+    assert whole.proof_bytes == answer.proof_bytes > 0
+
+
+def test_the_size_of_a_proof_is_told_for_each_vertex() -> None:
+    """Eight columns for a square."""
+    answer = proven()
+    taken = sum(column.nbytes for column in answer.columns.values())
+    assert proof_file.size_of(answer) == f"{taken} B ({taken / 4:.1f} bytes a vertex)"
 
 
 def test_no_file_is_written_without_a_proof(tmp_path: Path) -> None:

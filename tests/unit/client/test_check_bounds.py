@@ -7,7 +7,7 @@ from dataclasses import replace
 import nearchord
 import numpy as np
 import pytest
-from certified import answered, nothing_chosen, verdict_on
+from certified import answered, bounded, nothing_chosen, verdict_on
 from elimination import columns_of
 from nearchord import Clique, ColourableSubgraph, Graph, IndependentSet, InducedForest
 from nearchord.checks import cliques, elimination, labelled
@@ -147,3 +147,6 @@ def test_weights_beyond_the_numbers_of_the_checker_are_left_open() -> None:
     two = answered(graph, ColourableSubgraph(colours=2))
     assert verdict_on(graph, nothing_chosen(two, 2**59, **proof)) == "confirmed"
     assert verdict_on(graph, nothing_chosen(two, 2**59 - 1, **proof)) == "refused"
+    pinned = replace(two, question=ColourableSubgraph(must=tuple(two.chosen.tolist()), colours=2))
+    (left,) = nearchord.check(graph, bounded(pinned, 2**59 + 1, **proof)).not_confirmed
+    assert "larger than this client computes with" in left

@@ -4,9 +4,12 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+import networkx as nx
 import numpy as np
 import pytest
-from nearchord import CheckFailed, Clique, ColourableSubgraph, Graph, InducedForest, Verdict, check
+from definition import is_colourable, is_forest
+from nearchord import Answer, CheckFailed, Clique, ColourableSubgraph, Graph, InducedForest, Verdict, check
+from nearchord.checks import contradictions
 from unit.client.test_check import answer
 
 KITE = Graph.from_edges(5, [(0, 1), (0, 2), (1, 2), (1, 3), (2, 3), (3, 4)], weights=[3, 1, 4, 1, 5])
@@ -45,3 +48,32 @@ def test_infeasible_cliques_rest_on_a_pair_without_an_edge() -> None:
     wrong = replace(answer(KITE, Clique(must=[0, 1]), [], None, None, Verdict.INFEASIBLE), bound=None)
     with pytest.raises(CheckFailed, match="do not contradict"):
         check(KITE, wrong)
+
+
+def refused(graph: Graph, given: Answer) -> bool:
+    """Whether the checker finds that the pins do not contradict each other; otherwise it confirms that they do."""
+    try:
+        return bool(check(graph, given).not_confirmed)
+    except CheckFailed:
+        return True
+
+
+def test_infeasible_colours_and_forests_are_confirmed_from_the_definition() -> None:
+    """Over graphs of the atlas, with every vertex to be chosen: confirmed if and only if that is impossible."""
+    for source in nx.graph_atlas_g()[1:1253:7]:
+        n, edges = len(source), sorted(tuple(sorted(edge)) for edge in source.edges)
+        graph = Graph.from_edges(n, edges)
+        for question in (InducedForest(must=range(n)), *(ColourableSubgraph(range(n), (), q) for q in (1, 2, 3, 4))):
+            given = replace(answer(graph, question, [], None, None, Verdict.INFEASIBLE), bound=None)
+            holds = is_forest(edges, range(n))
+            if isinstance(question, ColourableSubgraph):
+                holds = is_colourable(edges, range(n), question.colours)
+            assert refused(graph, given) == holds, (edges, question)
+
+
+def test_colours_that_take_too_long_to_rule_out_are_left_open(monkeypatch: pytest.MonkeyPatch) -> None:
+    """The search has a limit."""
+    monkeypatch.setattr(contradictions, "MOST_STEPS", 4)
+    question = ColourableSubgraph(must=range(5), colours=2)
+    given = replace(answer(KITE, question, [], None, None, Verdict.INFEASIBLE), bound=None)
+    assert "too long" in check(KITE, given).not_confirmed[0]
