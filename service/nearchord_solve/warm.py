@@ -14,7 +14,9 @@ from nearchord_solve.order import Unfinished, eliminate, rank, rank_by_degree
 from nearchord_solve.questions import (
     Clique,
     ColourableSubgraph,
+    Colouring,
     Fill,
+    FractionalColouring,
     IndependentSet,
     InducedForest,
     Structure,
@@ -76,7 +78,7 @@ def _choosing() -> Iterator[None]:
 
 
 def _labelling() -> Iterator[None]:
-    """Cliques, colours and forests."""
+    """Cliques, colours and forests, and plans, which take little to compile."""
     square = Graph.from_edges(5, [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4)])
     solve(Clique(), square, None, Budget(), "bound", Monitor())
     solve(Clique(), square, None, Budget(memory=1), "bound", Monitor())
@@ -84,6 +86,17 @@ def _labelling() -> Iterator[None]:
     for question in (InducedForest(), ColourableSubgraph(2), ColourableSubgraph(3)):
         solve(question, _braced_ring(7), None, Budget(), "bound", Monitor())
         solve(question, square, None, Budget(memory=1), "bound", Monitor())
+        yield
+    yield from _serving()
+
+
+def _serving() -> Iterator[None]:
+    """Plans that serve everybody: a graph that keeps all steps busy, as it needs two colours more than a clique has."""
+    ring = [(v, (v + 1) % 5) for v in range(5)]
+    crown = [(a, b + 5) for u, v in ring for a, b in ((u, v), (v, u))]
+    pairs = [(min(pair), max(pair)) for pair in [*ring, *crown, *((v, 10) for v in range(5, 10))]]
+    for question in (Colouring(), FractionalColouring()):
+        solve(question, Graph.from_edges(11, sorted(pairs)), None, Budget(), "bound", Monitor())
         yield
 
 
@@ -111,7 +124,7 @@ def _braced_ring(n: int) -> Graph:
 PARTS: dict[str, tuple[Callable[[], Iterator[None]], int]] = {
     "choosing": (_choosing, 11),
     "filling": (_filling, 7),
-    "labelling": (_labelling, 4),
+    "labelling": (_labelling, 6),
 }
 """Name of a part: its stages one by one, and how many they are."""
 WARM_PARTS = tuple(PARTS)

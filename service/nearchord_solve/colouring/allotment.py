@@ -1,6 +1,7 @@
 """The time given to every vertex of a whole graph."""
 
 from collections.abc import Sequence
+from fractions import Fraction
 
 import numpy as np
 
@@ -103,17 +104,43 @@ class Allotment:
         return row[self._times.pieces[row] >= 0].astype(np.int64)
 
     @property
+    def frame(self) -> Fraction:
+        """When the last vertex is served, in units."""
+        return Fraction(self.length, self.unit)
+
+    @property
     def length(self) -> int:
         """When the last vertex is served, in steps."""
         return int(self._times.end[: self._used].max(initial=0))
 
     def intervals(self) -> tuple[I64, I64, I64]:
         """All intervals: (vertices, starts, ends), by vertex and time.  Every vertex must have its time."""
-        times = self._times
-        counts = times.pieces
-        vertex = np.repeat(np.arange(counts.size), counts)
-        at = np.arange(vertex.size) + np.repeat(times.first - np.cumsum(counts) + counts, counts)
-        return vertex, times.start[at], times.end[at]
+        vertex, at = self._gathered()
+        return vertex, self._times.start[at], self._times.end[at]
+
+    def _gathered(self) -> tuple[I64, I64]:
+        """The vertex of each interval and where the interval stands."""
+        pieces = self._times.pieces
+        before = np.cumsum(pieces) - pieces
+        vertex = np.repeat(np.arange(pieces.size), pieces)
+        return vertex, np.arange(vertex.size) + np.repeat(self._times.first - before, pieces)
+
+    @property
+    def entries(self) -> int:
+        """How long the lists of all segments' vertices are together."""
+        _, _, first, last = self.segments()
+        return int((last - first).sum())
+
+    def close_gaps(self) -> None:
+        """Take out of the frame whatever time serves nobody."""
+        lengths, _, first, last = self.segments()
+        if not lengths.size:
+            return
+        change = np.bincount(first, minlength=lengths.size + 1) - np.bincount(last, minlength=lengths.size + 1)
+        lengths[np.cumsum(change[:-1]) == 0] = 0
+        cuts = np.concatenate((np.zeros(1, np.int64), np.cumsum(lengths)))
+        _, at = self._gathered()
+        self._times.start[at], self._times.end[at] = cuts[first], cuts[last]
 
     def segments(self) -> tuple[I64, I64, I64, I64]:
         """Cut the frame wherever an interval begins or ends.

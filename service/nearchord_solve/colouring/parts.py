@@ -17,6 +17,8 @@ from nearchord_solve.graph import Graph
 from nearchord_solve.kernels.bags import fill_parts
 from nearchord_solve.structure import Structure
 
+GRID = 256  # steps that a frame is divided into where a plan would have too many pieces
+
 
 @dataclass(frozen=True, eq=False)
 class Part:
@@ -61,8 +63,10 @@ class Parts:
         """O(n log n) and the size of the bags of the cores."""
         self._graph = graph
         self.sequence: I32 = np.ascontiguousarray(structure.elimination_order()[::-1])
+        self._structure = structure
         forest, order = structure.forest, structure.numbering.order
         _, part = fill_parts(forest.bag_above, forest.bag_kind)
+        self._bag_part: I32 = part
         sizes = np.diff(forest.bag_ptr)
         inside = np.arange(forest.bag_slot.size) - np.repeat(forest.bag_ptr[:-1], sizes)
         at_home = inside >= np.repeat(forest.bag_adhesion, sizes)
@@ -76,3 +80,35 @@ class Parts:
     def __getitem__(self, number: int) -> Part:
         vertices = self._vertex[self._ptr[number] : self._ptr[number + 1]].astype(np.int64)
         return Part(vertices, (self.part[vertices] == number).astype(np.uint8), self._graph)
+
+    def raised(self, demand: I64, frame: int) -> I64:
+        """Demands int64[n] rounded up to a grid wherever ``frame`` has time to spare, so that plans have fewer pieces.
+
+        A clique outside the parts with fill keeps its demands if it would not fit with all of them raised, and so does
+        a part with fill unless each of its bags fits, which suffices for first fit.  ``frame`` must do for ``demand``
+        itself; it does for the result.  O(n + m).
+        """
+        numbering, forest = self._structure.numbering, self._structure.forest
+        grid = max(1, frame // GRID)
+        exact = demand[numbering.order]
+        rough = -(-exact // grid) * grid
+        full = rough + _row_sums(rough, numbering.low, numbering.low_ptr) > frame
+        full &= numbering.core < 0
+        kept = full.copy()
+        kept[numbering.low[np.repeat(full, np.diff(numbering.low_ptr))]] = True
+        places = forest.slot_place[forest.bag_slot]
+        tight = _row_sums(rough, places, forest.bag_ptr) > frame
+        bad_part = np.zeros(len(self) + 1, bool)  # the last one is for bags without fill
+        bad_part[self._bag_part[tight]] = True
+        kept[places[np.repeat(tight | (bad_part[self._bag_part] & (self._bag_part >= 0)), np.diff(forest.bag_ptr))]] = (
+            True
+        )
+        found = np.empty_like(demand)
+        found[numbering.order] = np.where(kept, exact, rough)
+        return found
+
+
+def _row_sums(values: I64, entries: I32, ptr: I64) -> I64:
+    """Sums of ``values`` over rows of ``entries``; the running sum may wrap, its differences do not."""
+    running = np.concatenate((np.zeros(1, np.int64), np.cumsum(values[entries])))
+    return running[ptr[1:]] - running[ptr[:-1]]

@@ -19,8 +19,10 @@ from nearchord_solve.monitor import Monitor, Stop
 
 @dataclass(frozen=True, eq=False)
 class Planned:
-    """When each vertex is served, the best bound, and how many parts with fill took more than first fit."""
+    """When each vertex is served, unless it was cancelled and is not ``complete``; the best bound; and how many parts
+    with fill took more than first fit."""
 
+    complete: bool
     allotment: Allotment
     evidence: Evidence
     settled: int
@@ -50,7 +52,7 @@ class Planner:
         while True:
             code, v = allotment.advance()
             if code == DONE or self._monitor.stop is Stop.CANCEL:
-                return Planned(allotment, self._evidence, len(self._plans))
+                return Planned(code == DONE, allotment, self._evidence, len(self._plans))
             number = int(self._parts.part[v])
             if code == STOPPED:
                 allotment.heed(np.zeros(Monitor.CELLS, np.int64))

@@ -6,7 +6,7 @@ chordal graph the heaviest clique by demand is always met.  In a fill core the b
 fractions of units, rounded up, or the end of a search that tried all colourings with fewer colours.
 """
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -16,8 +16,8 @@ from nearchord_solve.colouring.allotment import Allotment
 from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
-from nearchord_solve.outcome import Outcome, Verdict
-from nearchord_solve.questions.served import Request, outcome_of_plan, serve
+from nearchord_solve.outcome import Outcome
+from nearchord_solve.questions.served import Request, outcome_of_plan, serve, without_plan
 
 MOST_COLOURS_GIVEN = 10**7
 
@@ -40,12 +40,11 @@ class Colouring:
             return served
         if int(weights.sum()) <= MOST_COLOURS_GIVEN:
             return outcome_of_plan(request, served, lambda allotment: _columns(allotment, weights))
-        outcome = outcome_of_plan(request, served, lambda _: {})
-        return replace(
-            outcome, verdict=Verdict.BOUNDED, value=None,
-            reason=f"the demands add up to more than the {MOST_COLOURS_GIVEN} colours that a plan can list; scale them"
-            " down, or ask for fractional-colouring, which gives shares",
-        )  # fmt: skip
+        return without_plan(
+            outcome_of_plan(request, served, lambda _: {}),
+            f"the demands add up to more than the {MOST_COLOURS_GIVEN} colours that a plan can list; give them in a"
+            " coarser unit, or ask for fractional-colouring, which gives shares",
+        )
 
 
 def _columns(allotment: Allotment, demand: I64) -> dict[str, U32 | I64]:

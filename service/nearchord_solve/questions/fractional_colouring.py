@@ -19,7 +19,7 @@ from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
-from nearchord_solve.questions.served import Request, outcome_of_plan, serve
+from nearchord_solve.questions.served import MOST_ENTRIES, Request, outcome_of_plan, serve, without_plan
 
 
 @dataclass(frozen=True)
@@ -36,7 +36,14 @@ class FractionalColouring:
         """Answer for checked arguments; see :func:`nearchord_solve.solve`."""
         request = Request(graph, weights, False, budget, when_over, monitor, reuse)
         served = serve(request)
-        return served if isinstance(served, Outcome) else outcome_of_plan(request, served, _columns)
+        if isinstance(served, Outcome):
+            return served
+        if served.allotment.entries <= MOST_ENTRIES:
+            return outcome_of_plan(request, served, _columns)
+        return without_plan(
+            outcome_of_plan(request, served, lambda _: {}),
+            f"the sets of a plan would list more than {MOST_ENTRIES} vertices; give demands in a coarser unit",
+        )
 
 
 def _columns(allotment: Allotment) -> dict[str, U32 | I64]:

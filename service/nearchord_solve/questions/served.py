@@ -1,7 +1,7 @@
 """The flow of the questions that serve every vertex as long as it demands: structure, plan, bound, and the outcome."""
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 
 import numpy as np
@@ -11,7 +11,7 @@ from nearchord_solve.budget import Budget
 from nearchord_solve.colouring.allotment import LONGEST, Allotment
 from nearchord_solve.colouring.evidence import Evidence
 from nearchord_solve.colouring.parts import Parts
-from nearchord_solve.colouring.planner import Planner
+from nearchord_solve.colouring.planner import Planned, Planner
 from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
 from nearchord_solve.memory import predicted_bytes
@@ -27,6 +27,8 @@ from nearchord_solve.structure import Structure
 from nearchord_solve.tree import Partial, build_structure
 
 Columns = dict[str, U32 | I64]
+MOST_ENTRIES = 20_000_000  # vertices that the sets of a plan in fractions may list together
+MANY_ENTRIES = 2_000_000  # above so many a plan with fewer pieces is looked for
 
 
 @dataclass(frozen=True, eq=False)
@@ -37,11 +39,6 @@ class Served:
     evidence: Evidence
     structure: Structure | None
     reason: str
-
-    @property
-    def frame(self) -> Fraction:
-        """How long the plan takes."""
-        return Fraction(self.allotment.length, self.allotment.unit)
 
 
 @dataclass(frozen=True, eq=False)
@@ -89,14 +86,25 @@ def _serve(request: Request) -> Served | Outcome:
     return _along(request, structure)
 
 
-def _along(request: Request, structure: Structure) -> Served:
+def _along(request: Request, structure: Structure) -> Served | Outcome:
     """Put a plan together over the parts."""
     graph, monitor = request.graph, request.monitor
     clique = CliqueProgram().settle(request.task, structure)
     heaviest = np.flatnonzero(clique.chosen)
     monitor.bound(int(request.demand[heaviest].sum()))
     parts = Parts(graph, structure)
-    planned = Planner(graph, request.demand, parts, heaviest, request.whole, request.budget, monitor).run()
+
+    def plan(demand: I64) -> Planned:
+        return Planner(graph, demand, parts, heaviest, request.whole, request.budget, monitor).run()
+
+    planned = plan(request.demand)
+    if monitor.stop is Stop.CANCEL:
+        return without_structure(monitor, "")
+    if not request.whole and planned.allotment.entries > MANY_ENTRIES:
+        frame = planned.allotment.frame
+        other = plan(parts.raised(request.demand, int(frame)))
+        if other.complete and other.allotment.frame <= frame:
+            planned = replace(planned, allotment=other.allotment)
     if monitor.stop is Stop.SECONDS:
         reason = "seconds ran out while planning"
     elif structure.fill == 0:
@@ -139,7 +147,8 @@ def _over_fill(request: Request, structure: Structure) -> Served | Outcome:
 def outcome_of_plan(request: Request, served: Served, plan: Callable[[Allotment], Columns]) -> Outcome:
     """The outcome with the plan as columns; value and bound are whole numbers where units are."""
     structure, evidence = served.structure, served.evidence
-    frame, bound = served.frame, evidence.bound
+    served.allotment.close_gaps()
+    frame, bound = served.allotment.frame, evidence.bound
     value = int(frame) if request.whole else frame
     request.monitor.incumbent(-(-frame.numerator // frame.denominator))
     proven = frame == bound
@@ -162,3 +171,10 @@ def outcome_of_plan(request: Request, served: Served, plan: Callable[[Allotment]
         reason=served.reason,
         columns={**plan(served.allotment), **evidence.columns(request.graph.n, request.whole)},
     )
+
+
+def without_plan(outcome: Outcome, reason: str) -> Outcome:
+    """The same bound, where the plan is too long to be written."""
+    if outcome.verdict is not Verdict.PROVEN and outcome.reason:
+        reason = f"{reason}; {outcome.reason}"
+    return replace(outcome, verdict=Verdict.BOUNDED, value=None, reason=reason)

@@ -71,12 +71,12 @@ def first_fit(
             continue
         if planned[v]:
             return PLANNED, at, logged, used
-        size = 0
+        size = int(np.int64(0))  # a literal 0 would compile what it is passed to twice
         for e in range(ptr[v], ptr[v + 1]):
             size += max(0, times.pieces[adj[e]])
         low = grown64(low, size)
         high = grown64(high, size)
-        size = 0
+        size = int(np.int64(0))
         for e in range(ptr[v], ptr[v + 1]):
             u = adj[e]
             for i in range(times.first[u], times.first[u] + max(0, times.pieces[u])):

@@ -35,6 +35,7 @@ def mend(ptr: I64, adj: I32, colours: int, colour: I32, turns: int, random: U64,
     around, conflicts = count_around(ptr, adj, colours, colour)
     barred = np.zeros((n, colours), np.int64)
     fewest = conflicts
+    spread = int(np.int64(10))  # a literal would compile what it is passed to anew
     for turn in range(1, turns + 1):
         if conflicts == 0 or ((turn & 255) == 0 and cells[STOP] != 0):
             break
@@ -70,5 +71,5 @@ def mend(ptr: I64, adj: I32, colours: int, colour: I32, turns: int, random: U64,
         colour[mover] = target
         conflicts += best
         fewest = min(fewest, conflicts)
-        barred[mover, old] = turn + (clashing * 3) // 5 + draw(random, 10) + 1
+        barred[mover, old] = turn + (clashing * 3) // 5 + draw(random, spread) + 1
     return conflicts
