@@ -44,7 +44,7 @@ def _add_on(question: Question, field: str) -> object:
     return max(1, value) if field == "best" else value
 
 
-def numbers_of(graph: Graph, answer: Answer, asked: Question) -> Ints:
+def vectors_of(graph: Graph, answer: Answer, asked: Question) -> Ints:
     """The weights, demands or scenarios (int64[R, n]) that the answer is about; O(n) to compare their addresses.
 
     Weights are those of the graph; scenarios and demands those of the question as it was asked, because an answer does

@@ -13,7 +13,7 @@ import numpy as np
 
 from nearchord.answer import Answer
 from nearchord.checks.choice import chosen_mask
-from nearchord.checks.column import numbers
+from nearchord.checks.columns import numbers_of
 from nearchord.checks.edges import Ints, Mask
 from nearchord.checks.pins import pins_of, weights_of
 from nearchord.errors import CheckFailed
@@ -27,7 +27,7 @@ NEVER = -1
 def check_prices(graph: Graph, answer: Answer, question: Choice) -> str:
     """Words for prices of vertices that the definition does not contradict; CheckFailed for others. O(n + m)."""
     chosen, pins, weights = chosen_mask(graph, answer.chosen), pins_of(graph, question), weights_of(graph)
-    price_in, price_out = (numbers(answer, name, graph.n) for name in ("price_in", "price_out"))
+    price_in, price_out = (numbers_of(answer, name, graph.n) for name in ("price_in", "price_out"))
     _refuse(graph, (price_in < NEVER) | (price_out < NEVER), "has a price below 0")
     _refuse(graph, np.where(chosen, price_in, price_out) != 0, "is where the choice has it, but not at the price 0")
     _refuse(graph, pins.must & (price_out != NEVER), "must be chosen, but has a price out")
@@ -63,7 +63,7 @@ def _refuse(graph: Graph, wrong: Mask, what: str) -> None:
 
 def check_conflict_prices(graph: Graph, answer: Answer, question: IndependentSet) -> str:
     """Words for prices of conflicts that the definition does not contradict; CheckFailed for others. O(n + m)."""
-    price, pins, weights = numbers(answer, "conflict_price", graph.m), pins_of(graph, question), weights_of(graph)
+    price, pins, weights = numbers_of(answer, "conflict_price", graph.m), pins_of(graph, question), weights_of(graph)
     u, v = graph.edges()
     free = np.iinfo(np.int64).max
     most = np.minimum(np.where(pins.must[u], free, weights[u]), np.where(pins.must[v], free, weights[v]))

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from nearchord.answer import Answer
 from nearchord.canonical import weight_sum
 from nearchord.checks.choice import check_definition, chosen_mask
-from nearchord.checks.column import lists, numbers
+from nearchord.checks.columns import column_of, lists_of
 from nearchord.checks.pins import weights_of
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph
@@ -22,8 +22,8 @@ def check_best(graph: Graph, answer: Answer, question: IndependentSet) -> str:
     Each has to meet the question, to be worth its value, to differ from the others and to be no better than the one
     before; the first is the choice of the answer.
     """
-    values = numbers(answer, "best_value")
-    sets = lists(answer, "best_start", "best_chosen", values.size)
+    values = column_of(answer, "best_value", np.int64)
+    sets = lists_of(answer, "best_start", "best_chosen", values.size)
     if not 1 <= values.size <= question.best:
         raise CheckFailed(f"there are {values.size} best sets, but {question.best} were asked for")
     if not np.array_equal(sets[0], answer.chosen) or int(values[0]) != answer.value:

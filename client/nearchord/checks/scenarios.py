@@ -9,7 +9,7 @@ import numpy as np
 
 from nearchord.answer import Answer
 from nearchord.checks.choice import check_choice
-from nearchord.checks.column import lists, numbers
+from nearchord.checks.columns import lists_of, numbers_of
 from nearchord.checks.confirmed import Confirmed, check_unanswered
 from nearchord.checks.edges import Ints
 from nearchord.errors import CheckFailed
@@ -49,10 +49,10 @@ def check_scenarios(graph: Graph, answer: Answer, question: Choice, vectors: Int
 
 def _one_by_one(answer: Answer, question: Choice, count: int) -> list[Answer]:
     """The answer that each scenario is: PROVEN claims that value and bound meet in every one."""
-    values, bounds = (numbers(answer, f"scenario_{name}", count).tolist() for name in ("value", "bound"))
-    chosen = lists(answer, "scenario_start", "scenario_chosen", count)
+    values, bounds = (numbers_of(answer, f"scenario_{name}", count).tolist() for name in ("value", "bound"))
+    chosen = lists_of(answer, "scenario_start", "scenario_chosen", count)
     colours = (
-        lists(answer, "scenario_start", "scenario_colour", count)
+        lists_of(answer, "scenario_start", "scenario_colour", count)
         if isinstance(question, ColourableSubgraph)
         else [np.zeros(0, np.uint32)] * count
     )
