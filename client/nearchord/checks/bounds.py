@@ -32,7 +32,8 @@ def check_bound(graph: Graph, answer: Answer, question: Choice) -> tuple[str | N
     """
     check_sides(answer)
     bound = answer.bound
-    assert isinstance(bound, int), "check_sides refuses its absence, and weights are whole"
+    if not isinstance(bound, int):
+        raise CheckFailed(f"the bound is given as {bound}, but weights are whole numbers")
     plain = _plain(graph, bound, question)
     if plain is not None:
         return plain, None

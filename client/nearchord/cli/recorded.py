@@ -90,16 +90,8 @@ class _Reader:
 
     def _add_ons(self, kind: type[nearchord.Question]) -> dict[str, Any]:
         """What was asked for beside the choice: what is said under `add_ons`, or is there."""
-        there = {
-            "prices": self._found.get("price_in") is not None,
-            "conflict_prices": self._found.get("conflict_prices") is not None,
-            "best": len(self._found.get("best") or ()),
-            "count": self._found.get("count") is not None,
-            "scenarios": len(self._found.get("scenarios") or ()),
-            "colours": self._found.get("colours", 2),
-        }
         said = self._found.get("add_ons")
-        asked = {**there, **(said if isinstance(said, dict) else {})}
+        asked = {**self._taken("best or scenarios", _there), **(said if isinstance(said, dict) else {})}
         return {name: asked[name] for name in kind.add_ons() if name in asked}
 
     def _proof_kinds(self) -> tuple[nearchord.ProofKind, ...]:
@@ -229,6 +221,18 @@ class _Reader:
 
     def _problem(self, key: str, problem: str, remedy: str) -> nearchord.FileProblem:
         return nearchord.FileProblem(self._file, None, f'"{key}" {problem}', remedy)
+
+
+def _there(found: dict[str, Any]) -> dict[str, Any]:
+    """The add-ons that an object without `add_ons` has to be about."""
+    return {
+        "prices": found.get("price_in") is not None,
+        "conflict_prices": found.get("conflict_prices") is not None,
+        "best": len(found.get("best") or ()),
+        "count": found.get("count") is not None,
+        "scenarios": len(found.get("scenarios") or ()),
+        "colours": found.get("colours", 2),
+    }
 
 
 def _weights_address(graph: nearchord.Graph) -> str:

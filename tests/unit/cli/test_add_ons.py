@@ -232,6 +232,8 @@ def changed(file: Path, **changes: Any) -> str:
         ({"conflict_prices": [["ash", "cedar", 1]]}, 2, "'ash' and 'cedar' are in no conflict"),
         ({"conflict_prices": [["ash", "birch"]]}, 2, "cannot be read"),
         ({"best": [{"value": 7, "chosen": ["ash", "birch"]}]}, 1, "the first of the best sets is not the choice"),
+        ({"best": 7}, 2, '"best or scenarios" cannot be read'),
+        ({"verdict": "BOUNDED", "bound": "17/2"}, 1, "the bound is given as 17/2, but weights are whole numbers"),
         ({"best": [{"chosen": []}]}, 2, '"best or scenarios" cannot be read'),
         ({"count": 3}, 1, "the number of best sets is not the 1 of greatest value"),
         ({"count": "x"}, 2, '"count" cannot be read'),
