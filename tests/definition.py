@@ -154,3 +154,21 @@ def largest_by_trial(
         if v not in barred and holds(edges, [*chosen, v]):
             open_sets.append((v + 1, [*chosen, v]))
     return best
+
+
+def all_independent(n: int, edges: Pairs, weights: Sequence[int]) -> list[tuple[int, frozenset[int]]]:
+    """All independent sets with their weights, the heaviest first."""
+    later = [0] * n
+    for u, v in edges:
+        later[min(u, v)] |= 1 << max(u, v)
+    found = []
+    open_sets: list[tuple[int, int, tuple[int, ...], int]] = [(0, 0, (), (1 << n) - 1)]
+    while open_sets:
+        v, value, chosen, allowed = open_sets.pop()
+        if v == n:
+            found.append((value, frozenset(chosen)))
+            continue
+        open_sets.append((v + 1, value, chosen, allowed))
+        if allowed >> v & 1:
+            open_sets.append((v + 1, value + weights[v], (*chosen, v), allowed & ~later[v]))
+    return sorted(found, key=lambda one: -one[0])

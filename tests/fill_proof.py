@@ -1,7 +1,7 @@
 """Checks of exact-fill answers, written from the definitions; they share no code with the solver."""
 
 from fractions import Fraction
-from itertools import combinations, product
+from itertools import combinations, pairwise, product
 
 import networkx as nx
 from nearchord_solve.fill.exact import Branch, FillResult, Packing, PieceProof, ProofKind
@@ -53,7 +53,7 @@ def spare(graph: nx.Graph, fill: list[Pair]) -> list[Pair]:
 
 def inner_non_edges(graph: nx.Graph, piece: PieceProof) -> set[Pair]:
     """Pairs of the piece that are not edges."""
-    return {pair for pair in combinations(piece.vertices, 2) if not graph.has_edge(*pair)}
+    return {pair for pair in combinations(piece.vertices.tolist(), 2) if not graph.has_edge(*pair)}
 
 
 def confirm_piece(graph: nx.Graph, piece: PieceProof) -> None:
@@ -88,6 +88,12 @@ def confirm_tree(graph: nx.Graph, piece: PieceProof, tree: tuple[Branch, ...]) -
     assert visited == len(tree)
 
 
+def rings(packing: Packing) -> list[list[list[int]]]:
+    """The groups of each ring."""
+    groups = [packing.vertex[a:b].tolist() for a, b in pairwise(packing.group.tolist())]
+    return [groups[a:b] for a, b in pairwise(packing.ring.tolist())]
+
+
 def packing_value(graph: nx.Graph, piece: PieceProof, packing: Packing, decided: dict[Pair, int]) -> Fraction:
     """What the packing proves: the inequality of each ring times its multiplier, summed.
 
@@ -98,13 +104,13 @@ def packing_value(graph: nx.Graph, piece: PieceProof, packing: Packing, decided:
     assert packing.denominator > 0
     constant = Fraction(0)
     load: dict[Pair, Fraction] = {}
-    for ring, numerator in zip(packing.rings, packing.numerators, strict=True):
+    for ring, numerator in zip(rings(packing), packing.numerators.tolist(), strict=True):
         assert numerator > 0
         c = len(ring)
         vertices = [v for group in ring for v in group]
         assert c >= 4
         assert len(vertices) == len(set(vertices))
-        assert set(vertices) <= set(piece.vertices)
+        assert set(vertices) <= set(piece.vertices.tolist())
         y = Fraction(numerator, packing.denominator)
         open_sides = 0
         for i, j in combinations(range(c), 2):

@@ -56,15 +56,17 @@ def _tabled(structure: Structure, budget: Budget, monitor: Monitor) -> Iterator[
     for colours in COLOURS:
         plain = 0 if colours == 2 else sum(count * colour_states(size, colours) for size, count in sizes)
         inside = state_counts.colour_states(structure.forest, colours, budget.states - plain, monitor.cells)
-        yield _prediction("colourable-subgraph", colours, plain + int(inside), structure, budget, monitor)
-    inside = state_counts.forest_states(structure.forest, budget.states, monitor.cells)
-    yield _prediction("induced-forest", 0, int(inside), structure, budget, monitor)
+        whole = not structure.forest.bag_kind.size or (plain + int(inside) <= budget.states and not monitor.stop)
+        yield _prediction("colourable-subgraph", colours, plain + int(inside), whole, structure, budget)
+    room = budget.memory - structure.held_bytes
+    states, whole = state_counts.forest_states(structure.forest, budget.states, room, monitor.cells)
+    yield _prediction("induced-forest", 0, int(states), bool(whole), structure, budget)
 
 
 def _prediction(
-    question: str, colours: int, states: int, structure: Structure, budget: Budget, monitor: Monitor
+    question: str, colours: int, states: int, whole: bool, structure: Structure, budget: Budget
 ) -> Prediction:
     within = states <= budget.states
     memory = structure.held_bytes + state_bytes(states)
-    partial = structure.forest.bag_kind.size > 0 and (not within or bool(monitor.stop))
+    partial = not whole
     return Prediction(question, colours, states, partial, memory, within and not partial and memory <= budget.memory)

@@ -20,7 +20,7 @@ def search_less_fill(graph: Graph, structure: Structure, budget: Budget, monitor
 
     Goes on until the fill number is known, or known to be above the budget, or until stopped.
     """
-    found = fill_of_graph(graph, structure, budget.fill, monitor)
+    found = fill_of_graph(graph, structure, budget.fill, monitor, budget.memory)
     if budget.fill is not None and found.upper_bound <= budget.fill:
         other = with_fill(structure, found.edges, found.lower_bound, budget, monitor)
         if isinstance(other, Structure):

@@ -27,7 +27,8 @@ def solve(
 ) -> Outcome:
     """Answer ``question`` about ``graph`` within ``budget``.
 
-    ``weights`` int64[n], non-negative, sum below 2**62; None for all ones.  ``when_over``: "bound" to go on
+    ``weights`` int64[n], non-negative, sum below 2**62; None for all ones; int64[R, n], and not None, where the question
+    has R >= 1 scenarios.  ``when_over``: "bound" to go on
     with bounds when the fill or state budget does not suffice, "stop" to end there.  A STOP written to the
     monitor's cells ends the solve soon: SECONDS with the best feasible choice and a valid bound, CANCEL with
     nothing.  ``kept``: what an earlier outcome on the same graph left; it saves time and changes nothing else.
@@ -36,7 +37,7 @@ def solve(
     """
     if when_over not in ("bound", "stop"):
         raise SolverError("when_over", f"must be 'bound' or 'stop', not {when_over!r}")
-    checked = check_weights(weights, graph.n)
+    checked = check_weights(weights, graph.n, getattr(question, "scenarios", 0))
     monitor.enter(Phase.READ)
     if kept is not None and (kept.n, kept.m) != (graph.n, graph.m):
         raise SolverError("kept", f"is of a graph of {kept.n} vertices and {kept.m} edges")
@@ -46,17 +47,32 @@ def solve(
     return replace(outcome, kept=reuse.made)
 
 
-def check_weights(weights: I64 | None, n: int) -> I64:
-    """Weights as a contiguous read-only int64 array; SolverError names the first bad vertex."""
+def check_weights(weights: I64 | None, n: int, scenarios: int = 0) -> I64:
+    """Weights as a contiguous read-only int64 array; SolverError names the first bad vertex.
+
+    With ``scenarios`` there is a row of weights for each of them.
+    """
+    shape = (scenarios, n) if scenarios > 0 else (n,)
     if weights is None:
+        if scenarios > 0:
+            raise SolverError("weights", f"are needed for the {scenarios} scenarios")
         weights = np.ones(n, np.int64)
-    if weights.dtype != np.int64 or weights.shape != (n,):
-        raise SolverError("weights", f"must be an int64 array of {n}, got {weights.dtype.name}{weights.shape}")
+    if weights.dtype != np.int64 or weights.shape != shape:
+        expected = " x ".join(map(str, shape))
+        raise SolverError("weights", f"must be an int64 array of {expected}, got {weights.dtype.name}{weights.shape}")
     if n and weights.min() < 0:
-        v = int(np.argmax(weights < 0))
-        raise SolverError("weights", f"vertex {v}: weight {weights[v]} is negative")
-    if n and int(weights.max()) * n >= MOST_WEIGHT and sum(weights.tolist()) >= MOST_WEIGHT:
-        raise SolverError("weights", "must sum to less than 2**62")
+        at = np.unravel_index(int(np.argmax(weights < 0)), shape)
+        raise SolverError("weights", f"{_place(at)}: weight {weights[at]} is negative")
+    if n and int(weights.max()) * n >= MOST_WEIGHT:
+        for row in weights.reshape(-1, n):
+            if sum(row.tolist()) >= MOST_WEIGHT:
+                raise SolverError("weights", "must sum to less than 2**62")
     plain = np.require(weights, requirements=["C", "A"]).view()
     plain.flags.writeable = False
     return plain
+
+
+def _place(at: tuple[np.intp, ...]) -> str:
+    """The vertex, and scenario if there are some, that an index means."""
+    vertex = f"vertex {at[-1]}"
+    return vertex if len(at) == 1 else f"scenario {at[0]}, {vertex}"

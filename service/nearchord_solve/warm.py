@@ -71,6 +71,8 @@ def _choosing() -> Iterator[None]:
     yield
     solve(IndependentSet(), _braced_ring(7), None, Budget(states=1), "bound", monitor)
     yield
+    solve(IndependentSet(best=100, count=True), _square_over_roof(), None, Budget(), "bound", monitor)
+    yield
     solve(IndependentSet(), square, None, Budget(memory=1), "bound", monitor)
     monitor = Monitor(on_phase=lambda phase: _stop_in_fill(monitor, phase))
     solve(IndependentSet(), square, None, Budget(), "bound", monitor)
@@ -121,9 +123,14 @@ def _braced_ring(n: int) -> Graph:
     return Graph.from_edges(n + 1, [*sorted(pairs), (n - 1, n)])
 
 
+def _square_over_roof() -> Graph:
+    """A graph whose only core has bags of all kinds: without fill, with it, and with it in the adhesion."""
+    return Graph.from_edges(6, [(0, 1), (0, 5), (1, 2), (2, 3), (2, 4), (2, 5), (3, 4), (4, 5)])
+
+
 PARTS: dict[str, tuple[Callable[[], Iterator[None]], int]] = {
-    "choosing": (_choosing, 11),
-    "filling": (_filling, 7),
+    "choosing": (_choosing, 12),
+    "filling": (_filling, 8),
     "labelling": (_labelling, 6),
 }
 """Name of a part: its stages one by one, and how many they are."""

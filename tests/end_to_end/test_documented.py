@@ -17,7 +17,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import pytest
-from server_process import DEADLINE, ROOT, ServerProcess, environment
+from end_to_end.server_process import DEADLINE, ROOT, ServerProcess, environment
 
 PAGES = sorted((ROOT / "client" / "docs").glob("*.md"))
 GRAPHS = ROOT / "deploy" / "demo" / "graphs"

@@ -43,9 +43,16 @@ def check_bound(graph: Graph, answer: Answer, question: Choice) -> tuple[str | N
         return None, f"the bound {bound}: {str(limit) or 'checking its proof would take too long'}"
     if proven is not None:
         return proven, None
+    return None, f"the bound {bound}: {_without_proof(answer)}"
+
+
+def _without_proof(answer: Answer) -> str:
+    """Why the bound of an answer without proof columns stays open, and what can be done about it."""
+    if ProofKind.CERTIFICATE in (answer.proof, *answer.proof_kinds):
+        return "its proof is not at hand; `solve --proof FILE` writes it, `check --proof FILE` reads it"
     if ProofKind.SEARCH in (answer.proof, *answer.proof_kinds):
-        return None, f"the bound {bound}: it rests on a search, which leaves no proof"
-    return None, f"the bound {bound}: the answer carries no proof of it"
+        return "it rests on a search, which leaves no proof"
+    return "the answer carries no proof of it"
 
 
 def _plain(graph: Graph, bound: int, question: Choice) -> str | None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from nearchord.answer import Answer, Recognition
+from nearchord.checks.branches import Branches
 from nearchord.checks.chordal import check_chordless_cycle, check_elimination_order, check_known, pair_label
 from nearchord.checks.classes import check_cliques, check_split, splittance
 from nearchord.checks.confirmed import Confirmed, Findings, check_sides, check_unanswered
@@ -144,14 +145,26 @@ class _FillCheck:
             raise CheckFailed(f"the verdict is OVER_FILL, but the bound {bound} is not above the budget {budget}")
         if bound is None or bound <= 0:
             return
+        packing = Packing(self._graph, self._answer.columns)
+        trees = Branches(self._graph, self._answer.columns)
+        by = _means(len(trees))
         try:
-            proven = Packing(self._graph, self._answer.columns).bound(self._edges)
+            packed, pairs = packing.bound_beside(self._edges, trees.vertices())
+            proven = packed + trees.bound(self._edges, pairs)
         except TooLarge:
-            self._found.leave_open(f"the bound {bound:,}: the packing is too large to be checked here")
+            self._found.leave_open(f"the bound {bound:,}: {by} is too large to be checked here")
             return
         if proven >= bound:
-            self._found.confirm(f"the bound {bound:,}: rings of the packing need as many fill edges")
+            self._found.confirm(f"the bound {bound:,}: rings of {by} need as many fill edges")
             return
-        others = sorted(set(self._answer.proof_kinds) - {ProofKind.PACKING, ProofKind.NONE})
+        witnessed = {ProofKind.PACKING, ProofKind.NONE, *([ProofKind.BRANCH] if len(trees) else [])}
+        others = sorted(set(self._answer.proof_kinds) - witnessed)
         rest = f"rests on {' and '.join(others)}" if others else "has no witness in the answer"
-        self._found.leave_open(f"the bound {bound:,}: the packing proves {proven:,} of it, what is missing {rest}")
+        self._found.leave_open(f"the bound {bound:,}: {by} proves {proven:,} of it, what is missing {rest}")
+
+
+def _means(trees: int) -> str:
+    """What a bound is worked out from, in words."""
+    if not trees:
+        return "the packing"
+    return f"the packing with {trees:,} tree{'' if trees == 1 else 's'} of cases"

@@ -38,19 +38,18 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from nearchord.checks.chordal import check_known
-from nearchord.checks.classes import check_starts
 from nearchord.checks.edges import Edges, Ints, Mask, pair_keys
-from nearchord.checks.rings import Ring, RingCheck
-from nearchord.errors import CheckFailed
+from nearchord.checks.rings import Ring, Rings
 from nearchord.graph import Graph
 
 MOST_PAIRS = 20_000_000
 """Pairs that may be looked at, which takes about 2 GiB; a packing with more is left unconfirmed."""
+MOST_BITS = 1 << 14
+"""Of the least common denominator of all shares."""
 
 
 class TooLarge(Exception):
-    """The packing has more pairs than this check takes in."""
+    """The rings have more pairs than this check takes in."""
 
 
 @dataclass(frozen=True)
@@ -67,55 +66,35 @@ class Packing:
     """Rings with shares, from the columns `packing_*` of an answer; their form is checked here, not their claims."""
 
     def __init__(self, graph: Graph, columns: Mapping[str, NDArray[Any]]) -> None:
-        ring, group, vertex, numerator, denominator = (
-            columns.get(f"packing_{name}", np.zeros(0, np.int64)).astype(np.int64)
-            for name in ("ring", "group", "vertex", "numerator", "denominator")
-        )
-        ring, group = (start if start.size else np.zeros(1, np.int64) for start in (ring, group))
-        check_known(graph, vertex, "a ring of the packing")
-        check_starts(group, vertex.size, "groups of the packing")
-        check_starts(ring, group.size - 1, "rings of the packing")
-        if not ring.size - 1 == numerator.size == denominator.size:
-            raise CheckFailed(f"the packing has {ring.size - 1} rings, but not as many shares")
-        if bool((numerator < 0).any()) or bool((denominator < 1).any()):
-            raise CheckFailed("a share of the packing is negative, or has a denominator below 1")
-        self._graph = graph
-        self._ring, self._group, self._vertex = ring, group, vertex
-        self._shares = list(zip(numerator.tolist(), denominator.tolist(), strict=True))
+        self._found = Rings(graph, columns, "packing", "the packing")
+        self._shares = self._found.shares
 
     def bound(self, edges: Edges) -> int:
-        """How many fill edges the packing proves to be needed; CheckFailed where a ring is none of this graph.
+        """How many fill edges the packing proves to be needed; CheckFailed where a ring is none of this graph."""
+        return self.bound_beside(edges, np.zeros(edges.n, np.bool_))[0]
+
+    def bound_beside(self, edges: Edges, others: Mask) -> tuple[int, Ints]:
+        """The same, and the keys of those pairs of the rings that have both ends in `others`, and perhaps of more.
 
         Time O(m + sum over the rings of the degrees of their vertices + p log p), memory O(n + m + p), for p pairs of
-        vertices that lie in several rings; TooLarge when these are more than MOST_PAIRS.
+        vertices that lie in several rings or in others; TooLarge when these are more than MOST_PAIRS.
         """
         if not self._shares:
-            return 0
-        rings = self._rings(edges)
-        kept = self._kept(rings)
+            return 0, np.zeros(0, np.int64)
+        rings = self._found.read(edges)
+        kept = self._kept(rings, others)
         loads, unit = self._loads(rings, kept)
         cluster, excess = self._clusters(loads, unit)
         needs: dict[int, int] = {}
         for number, (ring, (p, q)) in enumerate(zip(rings, self._shares, strict=True)):
             home = cluster[number]
             needs[home] = needs.get(home, 0) + ring.needs * p * (unit // q) - excess[number]
-        return sum(max(0, -(-need // unit)) for need in needs.values())
+        return sum(max(0, -(-need // unit)) for need in needs.values()), np.unique(loads.keys)
 
-    def _rings(self, edges: Edges) -> list[Ring]:
-        inside = np.zeros(edges.n, np.bool_)
-        inside[self._vertex] = True
-        one = RingCheck(self._graph, edges, inside)
-        found = []
-        for number in range(len(self._shares)):
-            cuts = self._group[self._ring[number] : self._ring[number + 1] + 1]
-            what = f"ring {number} of the packing"
-            found.append(one.ring(self._vertex[cuts[0] : cuts[-1]], np.diff(cuts), what))
-        return found
-
-    def _kept(self, rings: list[Ring]) -> list[Mask]:
+    def _kept(self, rings: list[Ring], others: Mask) -> list[Mask]:
         """Of each ring the vertices whose pairs matter: a pair in one ring of a share up to 1 has a load up to 1, and
         is common to no others."""
-        several = np.bincount(self._vertex, minlength=self._graph.n) > 1
+        several = (np.bincount(self._found.vertex, minlength=others.size) > 1) | others
         kept = [
             several[ring.vertices] if p <= q else np.ones(ring.vertices.size, np.bool_)
             for ring, (p, q) in zip(rings, self._shares, strict=True)
@@ -137,6 +116,8 @@ class Packing:
             factors = (1, 3 - len(ring.sizes))
             fractions += [(p * factors[kind & 1], q * (kind >> 1)) for kind in kinds.tolist()]
         unit = math.lcm(*(q for _, q in self._shares), *{q for _, q in fractions})
+        if unit.bit_length() > MOST_BITS:
+            raise TooLarge
         order = np.argsort(np.concatenate(keys), kind="stable")
         sorted_keys, sorted_rings, sorted_what = (np.concatenate(parts)[order] for parts in (keys, whose, what))
         return _Loads(sorted_keys, sorted_rings, sorted_what, [p * (unit // q) for p, q in fractions]), unit

@@ -2,11 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
-from nearchord.checks.chordal import pair_label
+from nearchord.checks.chordal import check_known, pair_label
+from nearchord.checks.classes import check_starts
 from nearchord.checks.edges import Edges, Ints, Mask, Neighbours
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph
@@ -72,3 +76,45 @@ class RingCheck:
         if partly.size:
             raise CheckFailed(f"group {int(partly[0])} of {what} is neither joined to the next one nor apart from it")
         return Ring(vertices, group, sizes, joined == 0)
+
+
+class Rings:
+    """Rings with shares, from columns of an answer; their form is checked here, not what they say about the graph.
+
+    `shares`: numerator and denominator of each ring; `vertex` int64, the vertices of all rings, one after the other.
+    """
+
+    def __init__(self, graph: Graph, columns: Mapping[str, NDArray[Any]], prefix: str, what: str) -> None:
+        ring, group, vertex, numerator, denominator = (
+            columns.get(f"{prefix}_{name}", np.zeros(0, np.int64)).astype(np.int64)
+            for name in ("ring", "group", "vertex", "numerator", "denominator")
+        )
+        ring, group = (start if start.size else np.zeros(1, np.int64) for start in (ring, group))
+        check_known(graph, vertex, f"a ring of {what}")
+        check_starts(group, vertex.size, f"groups of {what}")
+        check_starts(ring, group.size - 1, f"rings of {what}")
+        if not ring.size - 1 == numerator.size == denominator.size:
+            raise CheckFailed(f"{what} has {ring.size - 1} rings, but not as many shares")
+        if bool((numerator < 0).any()) or bool((denominator < 1).any()):
+            raise CheckFailed(f"a share of {what} is negative, or has a denominator below 1")
+        self._graph, self._what = graph, what
+        self._ring, self._group = ring, group
+        self.vertex = vertex
+        self.shares: list[tuple[int, int]] = list(zip(numerator.tolist(), denominator.tolist(), strict=True))
+
+    def sizes(self) -> Ints:
+        """How many vertices each ring has."""
+        found: Ints = np.diff(self._group[self._ring])
+        return found
+
+    def read(self, edges: Edges) -> list[Ring]:
+        """All rings; CheckFailed where one is none of this graph. O(m + sum of the degrees of their vertices)."""
+        inside = np.zeros(edges.n, np.bool_)
+        inside[self.vertex] = True
+        one = RingCheck(self._graph, edges, inside)
+        found = []
+        for number in range(len(self.shares)):
+            cuts = self._group[self._ring[number] : self._ring[number + 1] + 1]
+            what = f"ring {number} of {self._what}"
+            found.append(one.ring(self.vertex[cuts[0] : cuts[-1]], np.diff(cuts), what))
+        return found

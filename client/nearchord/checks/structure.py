@@ -24,7 +24,7 @@ def check_structure(graph: Graph, answer: Answer) -> Confirmed:
         count = components(graph)
         if answer.structure.components != count:
             raise CheckFailed(f"the components are given as {answer.structure.components}, but there are {count}")
-        found.confirm(f"the graph has {count:,} connected components")
+        found.confirm(f"the graph has {count:,} connected component{'' if count == 1 else 's'}")
         _check_cores(graph, answer, answer.structure.largest_core, found)
         found.leave_open("the predictions: confirming them means computing them again")
     found.leave_open(f"the fill range {answer.bound:,} to {answer.value:,}: ask the question fill for witnesses")

@@ -57,7 +57,7 @@ class _Reader:
             largest_bag=self._count("largest_bag"),
             parts=self._count("parts"),
             fill_cores=self._count("fill_cores"),
-            proof=nearchord.ProofKind.NONE,
+            proof=self._proof(),
             proof_kinds=self._proof_kinds(),
             seconds=0.0,
             vertices=self._graph.n,
@@ -93,6 +93,14 @@ class _Reader:
         said = self._found.get("add_ons")
         asked = {**self._taken("best or scenarios", _there), **(said if isinstance(said, dict) else {})}
         return {name: asked[name] for name in kind.add_ons() if name in asked}
+
+    def _proof(self) -> nearchord.ProofKind:
+        kind = self._found.get("proof") or nearchord.ProofKind.NONE
+        try:
+            return nearchord.ProofKind(kind)
+        except ValueError:
+            known = ", ".join(nearchord.ProofKind)
+            raise self._problem("proof", f"is {kind!r}", f"give one of {known}") from None
 
     def _proof_kinds(self) -> tuple[nearchord.ProofKind, ...]:
         kinds = self._found.get("proof_kinds") or ()

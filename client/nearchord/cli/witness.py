@@ -2,12 +2,12 @@
 
 Lists of vertices stay lists of names; cliques in a consecutive order become one pair of positions a vertex, the first
 and the last clique that has it, because cliques overlap and their lists would repeat most names many times.
-A ring of a packing is a list of its groups.
+A ring of a packing is a list of its groups; a branch tree is the list of its nodes, each with a pair or a packing.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from fractions import Fraction
 from itertools import pairwise
 from typing import Any
@@ -28,11 +28,8 @@ def to_json(columns: Columns, labels: Labels, vertices: int) -> dict[str, Any]:
         name: labels.of(columns[name].tolist()) if name in columns and columns[name].size else None for name in LISTS
     }
     found["intervals"] = _intervals(columns, vertices)
-    shares = zip(_numbers(columns, "packing_numerator"), _numbers(columns, "packing_denominator"), strict=True)
-    found["packing"] = [
-        {"ring": [labels.of(group) for group in ring], "share": _share(Fraction(*share))}
-        for ring, share in zip(_rings(columns), shares, strict=True)
-    ]
+    found["packing"] = _packing(columns, "packing", labels)
+    found["branches"] = list(_trees(columns, labels))
     found["cores"] = [labels.of(core) for core in _cut(columns, "core")]
     return found
 
@@ -46,10 +43,23 @@ def _cut(columns: Columns, name: str) -> list[list[int]]:
     return [vertex[a:b] for a, b in pairwise(start)]
 
 
-def _rings(columns: Columns) -> list[list[list[int]]]:
-    vertex, group, ring = (_numbers(columns, f"packing_{name}") for name in ("vertex", "group", "ring"))
-    groups = [vertex[a:b] for a, b in pairwise(group)]
-    return [groups[a:b] for a, b in pairwise(ring)]
+def _packing(columns: Columns, prefix: str, labels: Labels) -> list[dict[str, Any]]:
+    vertex, group, ring, numerator, denominator = (
+        _numbers(columns, f"{prefix}_{name}") for name in ("vertex", "group", "ring", "numerator", "denominator")
+    )
+    groups = [labels.of(vertex[a:b]) for a, b in pairwise(group)]
+    shares = [_share(Fraction(*share)) for share in zip(numerator, denominator, strict=True)]
+    return [{"ring": groups[a:b], "share": share} for (a, b), share in zip(pairwise(ring), shares, strict=True)]
+
+
+def _trees(columns: Columns, labels: Labels) -> Iterator[list[dict[str, Any]]]:
+    """Trees with their nodes in the order of the columns: `pair` is decided, `packing` stands in a leaf."""
+    rings = _packing(columns, "branch", labels)
+    pair = _numbers(columns, "branch_pair")
+    packings = (rings[a:b] for a, b in pairwise(_numbers(columns, "branch_leaf")))
+    for begin, end in pairwise(_numbers(columns, "branch_tree")):
+        pairs = [pair[2 * node : 2 * node + 2] for node in range(begin, end)]
+        yield [{"packing": next(packings)} if u == v else {"pair": labels.of([u, v])} for u, v in pairs]
 
 
 def _share(share: Fraction) -> int | str:
@@ -78,17 +88,35 @@ def from_json(found: Mapping[str, Any], vertex: Callable[[object], int], vertice
             columns[name] = np.array([vertex(label) for label in found[name]], np.uint32)
     if found.get("intervals") is not None:
         columns.update(_cliques(np.array(found["intervals"], np.int64).reshape(-1, 2), vertices))
-    packing = found.get("packing") or []
+    columns.update(_rings("packing", found.get("packing") or [], vertex))
+    columns.update(_cases(found.get("branches") or [], vertex))
+    columns.update(_joined("core", [[vertex(label) for label in core] for core in found.get("cores") or []]))
+    return columns
+
+
+def _rings(prefix: str, packing: list[Any], vertex: Callable[[object], int]) -> dict[str, Column]:
     shares = [Fraction(one["share"]) for one in packing]
     rings = [[[vertex(label) for label in group] for group in one["ring"]] for one in packing]
     groups = [group for ring in rings for group in ring]
-    columns["packing_ring"] = np.cumsum([0, *map(len, rings)]).astype(np.int64)
-    columns["packing_group"] = np.cumsum([0, *map(len, groups)]).astype(np.int64)
-    columns["packing_vertex"] = np.array([v for group in groups for v in group], np.uint32)
-    columns["packing_numerator"] = np.array([share.numerator for share in shares], np.int64)
-    columns["packing_denominator"] = np.array([share.denominator for share in shares], np.int64)
-    columns.update(_joined("core", [[vertex(label) for label in core] for core in found.get("cores") or []]))
-    return columns
+    return {
+        f"{prefix}_ring": np.cumsum([0, *map(len, rings)]).astype(np.int64),
+        f"{prefix}_group": np.cumsum([0, *map(len, groups)]).astype(np.int64),
+        f"{prefix}_vertex": np.array([v for group in groups for v in group], np.uint32),
+        f"{prefix}_numerator": np.array([share.numerator for share in shares], np.int64),
+        f"{prefix}_denominator": np.array([share.denominator for share in shares], np.int64),
+    }
+
+
+def _cases(trees: list[list[Mapping[str, Any]]], vertex: Callable[[object], int]) -> dict[str, Column]:
+    nodes = [node for tree in trees for node in tree]
+    leaves = [node["packing"] for node in nodes if "packing" in node]
+    pairs = [(0, 0) if "packing" in node else tuple(map(vertex, node["pair"])) for node in nodes]
+    return {
+        "branch_tree": np.cumsum([0, *map(len, trees)]).astype(np.int64),
+        "branch_pair": np.array(pairs, np.uint32).ravel(),
+        "branch_leaf": np.cumsum([0, *map(len, leaves)]).astype(np.int64),
+        **_rings("branch", [one for leaf in leaves for one in leaf], vertex),
+    }
 
 
 def _joined(name: str, lists: list[list[int]]) -> dict[str, Column]:

@@ -24,8 +24,17 @@ U64 = NDArray[Any]
 
 
 def kernel(function: F) -> F:
-    """Compile ``function`` without the interpreter lock, cached on disk."""
-    return cast(F, numba.njit(nogil=True, cache=True)(function))
+    """Compile ``function`` without the interpreter lock, cached on disk; without an entry for C, which nobody uses."""
+    return cast(F, numba.njit(nogil=True, cache=True, no_cfunc_wrapper=True)(function))
+
+
+def inlined(function: F) -> F:
+    """Write ``function`` out wherever a kernel calls it, instead of compiling it by itself.
+
+    numba compiles what a kernel calls once more with each kernel that calls it, at every level.  For steps of a
+    pass, which have one or two callers, that is most of the time of a cold start.
+    """
+    return cast(F, numba.njit(nogil=True, inline="always")(function))
 
 
 def _ones(_context: Any, _word: Any) -> Any:

@@ -15,9 +15,12 @@ from nearchord_solve.sweep.independent import as_vertices
 def contradiction(pins: Contradiction, inside: str, outside: str, kind: str = "adjacent vertices") -> Outcome:
     """INFEASIBLE, naming the vertex or the pair, which is of a ``kind``; vertices are 0-based."""
     if pins.one == pins.other:
-        reason = f"the pins contradict each other: vertex {pins.one} {inside} and {outside}"
-    else:
-        reason = f"the pins contradict each other: {kind} {pins.one} and {pins.other} both {inside}"
+        return infeasible(f"the pins contradict each other: vertex {pins.one} {inside} and {outside}")
+    return infeasible(f"the pins contradict each other: {kind} {pins.one} and {pins.other} both {inside}")
+
+
+def infeasible(reason: str) -> Outcome:
+    """INFEASIBLE, and why."""
     nothing = np.empty(0, np.uint32)
     return Outcome(Verdict.INFEASIBLE, None, None, nothing, None, 0, None, 0, 0, 0, 0, "none", (), reason)
 

@@ -10,7 +10,7 @@ import numpy as np
 from nearchord_solve.arrays import I32, I64
 from nearchord_solve.budget import Budget
 from nearchord_solve.fill.exact import GraphFill, PartFill, ProofKind, fill_of_graph
-from nearchord_solve.fill.exact.witness import packing_columns
+from nearchord_solve.fill.exact.witness import proof_columns
 from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
 from nearchord_solve.memory import predicted_bytes
@@ -41,7 +41,7 @@ class Fill:
         if isinstance(structure, Partial):
             return without_structure(monitor, structure.reason)
         recognition, columns = recognise(graph, structure, monitor)
-        found = fill_of_graph(graph, structure, budget.fill, monitor)
+        found = fill_of_graph(graph, structure, budget.fill, monitor, budget.memory)
         if monitor.stop is Stop.CANCEL:
             return without_structure(monitor, "")
         return _conclude(graph, structure, found, recognition, columns, budget, monitor)
@@ -67,7 +67,7 @@ def _conclude(
     proven = found.lower_bound == found.upper_bound
     monitor.incumbent(found.upper_bound)
     monitor.bound(found.lower_bound)
-    witness, complete = packing_columns(found.parts)
+    witness, complete = proof_columns(found.parts)
     columns: Columns = {
         "fill_edge": found.edges.ravel().astype(np.uint32),
         "elimination_order": order.astype(np.uint32),
@@ -125,15 +125,16 @@ def _cores(part: PartFill) -> list[_Core]:
         return [_Core(part.vertices, str(ProofKind.NONE))]
     found = []
     for piece in part.result.pieces:
-        vertices = part.vertices[list(piece.vertices)]
+        vertices = part.vertices[piece.vertices]
         fill = int(np.isin(part.edges, vertices).all(axis=1).sum())
         found.append(_Core(vertices, str(piece.kind if piece.bound == fill else ProofKind.NONE)))
     return found
 
 
 def _proof(cores: list[_Core], complete: bool) -> str:
-    """A certificate only if the columns prove the bound of every core; the trees of branch proofs are not in them."""
-    return "certificate" if complete and all(core.kind == ProofKind.PACKING for core in cores) else "search"
+    """A certificate only if the columns prove the bound of every core."""
+    witnessed = (ProofKind.PACKING, ProofKind.BRANCH)
+    return "certificate" if complete and all(core.kind in witnessed for core in cores) else "search"
 
 
 def _reason(found: GraphFill, budget: Budget, monitor: Monitor) -> str:

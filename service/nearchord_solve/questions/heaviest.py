@@ -27,7 +27,8 @@ from nearchord_solve.tree import Partial, build_structure
 class Found:
     """An answer: ``chosen`` uint8[n] is None only with CANCELLED and OVER_FILL.
 
-    ``proof``: a certificate, perhaps of a weaker bound; None where there is none.
+    ``proof``: a certificate, perhaps of a weaker bound; None where there is none.  ``swept``: the sweep that proved the
+    optimum, None if none did.
     """
 
     verdict: Verdict
@@ -37,6 +38,7 @@ class Found:
     structure: Structure | None
     reason: str
     proof: Proof | None = None
+    swept: Swept | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -175,7 +177,7 @@ def _proven(task: Task, structure: Structure, swept: Swept) -> Found:
     most = task.budget.fill
     if most is not None and structure.fill > most:
         reason += f" (more fill than the {most} budgeted, as the states allowed it)"
-    return Found(Verdict.PROVEN, value, value, chosen, structure, reason, swept.certify())
+    return Found(Verdict.PROVEN, value, value, chosen, structure, reason, swept.certify(), swept)
 
 
 def _too_many_states(task: Task, structure: Structure, fits: U8) -> str:

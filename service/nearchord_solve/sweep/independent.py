@@ -18,12 +18,15 @@ class Swept:
     """``bound`` is the optimum if all cores were settled exactly, else an upper bound; ``chosen`` uint8[n].
 
     ``chosen`` is None if the sweep was stopped before the choice was complete.  ``certify`` writes the proof of the
-    bound, once.
+    bound, once.  ``residual`` int64[n], by place, and ``tries``: as the inward pass left them.
     """
 
     bound: int
     chosen: U8 | None
     certify: Callable[[], Certificate]
+    structure: Structure
+    residual: I64
+    tries: Tries
 
 
 def sweep(structure: Structure, weights: I64, fits: U8, monitor: Monitor) -> Swept | None:
@@ -51,16 +54,19 @@ def sweep(structure: Structure, weights: I64, fits: U8, monitor: Monitor) -> Swe
     by_place = np.empty(n, np.uint8)
     done = kernels.outward(numbering, forest, cores.ptr, cores.place, fits, tries, residual, by_place, monitor.cells)
     if not done:
-        return Swept(int(bound), None, certify)
+        return Swept(int(bound), None, certify, structure, residual, tries)
     chosen = np.empty(n, np.uint8)
     chosen[numbering.order] = by_place
-    return Swept(int(bound), chosen, certify)
+    return Swept(int(bound), chosen, certify, structure, residual, tries)
 
 
 def _empty_tries(structure: Structure, fits: U8) -> Tries:
     bags = structure.forest.bag_kind.size
     kept = int(structure.forest.figures[fits != 0, TABLE].sum())
-    room = kept + int(np.diff(structure.forest.bag_ptr).max(initial=0))
+    # behind the kept messages there is room for any one message, once more or of single vertices only
+    room = kept + max(
+        int(structure.forest.figures[:, TABLE].max(initial=0)), int(np.diff(structure.forest.bag_ptr).max(initial=0))
+    )
     return Tries(
         np.zeros(bags, np.int64),
         np.zeros(bags, np.int64),

@@ -50,9 +50,12 @@ def line_up(graph: Graph, structure: Structure, monitor: Monitor) -> Line | None
 
 
 def count_states(line: Line, colours: int, most: int, monitor: Monitor) -> int:
-    """States of all bags that need a table; about ``most`` or more if above it."""
+    """States of all bags that need a table, cheaply; about ``most`` or more if above it.  0 for forests: see below.
+
+    Forests have no count that is much cheaper than the sweep, which gives up in time.
+    """
     if colours == 0:
-        return int(state_counts.forest_states(line.forest, most, monitor.cells))
+        return 0
     return int(state_counts.colour_states(line.forest, colours, most, monitor.cells))
 
 

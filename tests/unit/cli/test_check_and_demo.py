@@ -44,6 +44,13 @@ def test_choice_and_value_are_confirmed_the_bound_is_not(nearchord_command: Any,
     assert len(lines) >= 3
 
 
+def test_a_certificate_that_was_left_behind_is_asked_for(nearchord_command: Any, square: Path, tmp_path: Path) -> None:
+    """The object says `certificate`, but the proof stands in a file of its own."""
+    ran = nearchord_command("check", str(square), written(tmp_path, proof="certificate"))
+    assert ran.code == 1
+    assert "`solve --proof FILE` writes it, `check --proof FILE` reads it" in ran.out.splitlines()[-1]
+
+
 @pytest.mark.parametrize(
     ("changes", "words"),
     [
@@ -71,6 +78,8 @@ def test_wrong_answers_are_not_confirmed(
         ({"value": 7.5}, ["value", "7.5"]),
         ({"chosen": 3}, ["chosen", "list"]),
         ({"chosen": [1, 9]}, ["chosen", "9"]),
+        ({"proof": "vision"}, ["proof", "vision", "certificate"]),
+        ({"proof": ["search"]}, ["proof", "search", "certificate"]),
     ],
 )
 def test_objects_that_do_not_fit_are_bad_input(

@@ -62,6 +62,7 @@ def test_json_of_a_fill_has_the_promised_keys(service: FakeService, nearchord_co
         "chordless_cycle": [1, 2, 3, 4],
         "split_clique": None,
         "intervals": None,
+        "branches": [],
         "packing": [{"ring": [[1], [2], [3], [4]], "share": 1}],
         "cores": [[1, 2, 3, 4]],
     }
@@ -167,6 +168,12 @@ def test_people_get_the_structure_as_a_table(service: FakeService, nearchord_com
     ]
 
 
+def test_one_component_is_told_in_the_singular(service: FakeService, nearchord_command: Any, square: Path) -> None:
+    """Not "1 connected components"."""
+    ran = ask(service, nearchord_command, square, structure(structure=replace(STRUCTURE, components=1)))
+    assert "1, in 1 connected component" in [line.removeprefix("parts").strip() for line in ran.out.splitlines()]
+
+
 @pytest.mark.parametrize(
     ("count", "words"),
     [(0, "0 B"), (1023, "1023 B"), (1024, "1.0 KiB"), (3 * 2**29, "1.5 GiB"), (2**52, "4,096.0 TiB")],
@@ -244,7 +251,7 @@ def test_a_structure_that_was_printed_is_checked_as_far_as_it_goes(
     printed.write_text(ask(service, nearchord_command, square, answer, "--json").out, encoding="utf-8")
     ran = nearchord_command("check", str(square), str(printed))
     assert ran.code == 1
-    assert "confirmed: the graph has 1 connected components" in ran.out.splitlines()
+    assert "confirmed: the graph has 1 connected component" in ran.out.splitlines()
     printed.write_text(json.dumps({**json.loads(printed.read_text()), "components": 3}), encoding="utf-8")
     ran = nearchord_command("check", str(square), str(printed))
     assert (ran.code, ran.out) == (1, "")

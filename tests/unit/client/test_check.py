@@ -66,6 +66,20 @@ def test_a_right_answer_is_confirmed_but_for_its_bound():
     assert confirmed.what[0] == "the 2 chosen vertices touch all 3 edges"
 
 
+@pytest.mark.parametrize(
+    ("proof", "words"),
+    [
+        ("certificate", "its proof is not at hand; `solve --proof FILE` writes it, `check --proof FILE` reads it"),
+        ("search", "it rests on a search, which leaves no proof"),
+        ("none", "the answer carries no proof of it"),
+    ],
+)
+def test_a_bound_without_its_proof_stays_open_and_says_what_to_do(proof, words):
+    """An answer whose certificate was left behind says where to get it."""
+    given = replace(answer(PATH, IndependentSet(), [0, 2], 7), proof=ProofKind(proof))
+    assert check(PATH, given).not_confirmed == (f"the bound 7: {words}",)
+
+
 def test_plain_bounds_are_confirmed():
     """Where all vertices are chosen, or only those that must be, no proof is needed."""
     free = Graph.from_edges(3, [], weights=[1, 2, 3])

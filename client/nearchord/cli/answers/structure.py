@@ -42,7 +42,8 @@ def lines(answer: nearchord.Answer) -> Iterator[tuple[str, str]]:
         yield "fill", f"{answer.value:,}" if exactly else f"{answer.bound or 0:,} to {answer.value:,}"
     if answer.structure is not None:
         parts = "unknown" if answer.parts is None else f"{answer.parts:,}"
-        yield "parts", f"{parts}, in {answer.structure.components:,} connected components"
+        components = answer.structure.components
+        yield "parts", f"{parts}, in {components:,} connected component{'' if components == 1 else 's'}"
         if answer.fill_cores:
             yield "cores", f"{answer.fill_cores:,}, the largest with {answer.structure.largest_core:,} vertices"
     if answer.bags:

@@ -8,7 +8,7 @@
 ([[0, 2]], 1, 'packing')
 """
 
-from nearchord_solve.fill.exact.result import Branch, FillResult, Packing, PieceProof, ProofKind, packing_bound
+from nearchord_solve.fill.exact.result import Branch, FillResult, Packing, PieceProof, ProofKind
 from nearchord_solve.fill.exact.search import fill_of_parts, minimum_fill
 from nearchord_solve.fill.exact.whole import GraphFill, PartFill, fill_of_graph
 
@@ -23,5 +23,4 @@ __all__ = [
     "fill_of_graph",
     "fill_of_parts",
     "minimum_fill",
-    "packing_bound",
 ]

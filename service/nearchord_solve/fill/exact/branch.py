@@ -9,10 +9,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from nearchord_solve.fill.exact.core import Core, Pair
+from nearchord_solve.arrays import I64
+from nearchord_solve.fill.exact.core import Core
 from nearchord_solve.fill.exact.cycles import violated
-from nearchord_solve.fill.exact.packing import exact_bound, packing_of, rounded
-from nearchord_solve.fill.exact.relaxation import Relaxation
+from nearchord_solve.fill.exact.packing import packing_of
+from nearchord_solve.fill.exact.relaxation import ADDED, LEFT_OUT, Relaxation
 from nearchord_solve.fill.exact.result import Branch, Packing
 from nearchord_solve.fill.exact.root import Bounds, guided, selected
 from nearchord_solve.monitor import Monitor
@@ -24,14 +25,20 @@ ROUNDS_A_CASE = 15
 LEAST_PROGRESS = 0.02
 PATIENCE = 6
 WHOLE = 1e-6
+LEAF = Branch(None, -1, -1, None)
 
 
-@dataclass
+@dataclass(frozen=True, eq=False)
 class _Case:
-    """Pairs decided on the way to a node of the tree: 1 in the fill, 0 not."""
+    """A node of the tree, and what is decided on the way to it: columns of the relaxation and their values."""
 
     node: int
-    decided: dict[Pair, int]
+    columns: I64
+    values: I64
+
+    def with_decision(self, node: int, column: int, value: int) -> "_Case":
+        """The case in which one pair more is decided."""
+        return _Case(node, np.append(self.columns, column), np.append(self.values, value))
 
 
 class CaseSearch:
@@ -43,9 +50,9 @@ class CaseSearch:
         self.bounds = bounds
         self.most = most
         self.monitor = monitor
-        self.tree = [Branch(None, -1, -1, None)]
+        self.tree = [LEAF]
         self.checkable = True
-        self._stack = [_Case(0, {})]
+        self._stack = [_Case(0, np.empty(0, np.int64), np.empty(0, np.int64))]
 
     @property
     def target(self) -> int:
@@ -58,27 +65,27 @@ class CaseSearch:
             if self.monitor.stop or len(self.tree) >= most_nodes:
                 return False
             case = self._stack.pop()
-            self.relaxation.decide(case.decided)
-            packing, pair = self._work(case)
+            self.relaxation.decide(case.columns, case.values)
+            packing, column = self._work(case)
             if packing is not None:
                 self.tree[case.node] = Branch(None, -1, -1, packing)
-            elif pair is not None:
-                self._split(case, pair)
+            elif column is not None:
+                self._split(case, column)
             else:
                 self._stack.append(case)
                 return False
         self.bounds.lower = max(self.bounds.lower, self.target + 1)
         return True
 
-    def _work(self, case: _Case) -> tuple[Packing | None, Pair | None]:
-        """Cut until the case is closed (its packing) or progress ends (a pair to decide); neither if stopped."""
+    def _work(self, case: _Case) -> tuple[Packing | None, int | None]:
+        """Cut until the case is closed (its packing) or progress ends (a column to decide); neither if stopped."""
         values: list[float] = []
         turn = 0
         while not self.monitor.stop:
             value = self.relaxation.solve()
             if value is None:
                 break
-            packing = self._closed(case, value)
+            packing = self._closed(value)
             if packing is not None:
                 return packing, None
             point = self.relaxation.point()
@@ -88,45 +95,45 @@ class CaseSearch:
             turn += 1
             fractional = self.relaxation.fractional(WHOLE)
             stalled = turn > 3 and value - values[-4] < LEAST_PROGRESS
-            if fractional and (stalled or turn > ROUNDS_A_CASE):
-                return None, self._choose(case, value)
+            if fractional.size and (stalled or turn > ROUNDS_A_CASE):
+                return None, self._choose(case, value, fractional)
             self.relaxation.drop_idle(PATIENCE)
             cycles = violated(self.core, point, THRESHOLDS, 2 * CUTS_A_ROUND, self.monitor.cells)
-            if not self.relaxation.add(selected(cycles, CUTS_A_ROUND)):
-                if fractional:
-                    return None, self._choose(case, value)
+            if not self.relaxation.add(selected(self.core, cycles, CUTS_A_ROUND)):
+                if fractional.size:
+                    return None, self._choose(case, value, fractional)
                 self.bounds.offer(self.core, self.relaxation.support())
         return None, None
 
-    def _closed(self, case: _Case, value: float) -> Packing | None:
+    def _closed(self, value: float) -> Packing | None:
         """The packing that closes the case, if the multipliers reach beyond the target."""
         if np.ceil(value - WHOLE) <= self.target:
             return None
-        numerators = rounded(self.relaxation.duals().tolist())
-        if exact_bound(self.core, self.relaxation.cycles, numerators, case.decided) <= self.target:
+        multipliers = self.relaxation.multipliers()
+        if self.relaxation.bound(multipliers) <= self.target:
             return None
-        return packing_of(self.core, self.relaxation.cycles, numerators)
+        return packing_of(self.core, self.relaxation.cuts.cycles, multipliers)
 
-    def _choose(self, case: _Case, value: float) -> Pair:
+    def _choose(self, case: _Case, value: float, fractional: I64) -> int:
         """The fractional pair whose worse and better case raise the relaxation most, together."""
-        best, choice = -1.0, None
-        for pair in self.relaxation.fractional(WHOLE)[:CANDIDATES]:
+        best, choice = -1.0, int(fractional[0])
+        for column in fractional[:CANDIDATES].tolist():
             gains = []
-            for decision in (0, 1):
-                self.relaxation.decide({**case.decided, pair: decision})
+            for decision in (LEFT_OUT, ADDED):
+                trial = case.with_decision(-1, column, decision)
+                self.relaxation.decide(trial.columns, trial.values)
                 reached = self.relaxation.solve()
                 gains.append(min((reached if reached is not None else value) - value, 10.0 + self.target - value))
             score = max(gains[0], 1e-3) * max(gains[1], 1e-3)
             if score > best:
-                best, choice = score, pair
-        assert choice is not None
+                best, choice = score, column
         return choice
 
-    def _split(self, case: _Case, pair: Pair) -> None:
-        self.checkable &= self.core.sizes[pair[0]] * self.core.sizes[pair[1]] == 1
+    def _split(self, case: _Case, column: int) -> None:
+        self.checkable &= int(self.relaxation.weights[column]) == 1
         first = len(self.tree)
-        self.tree += [Branch(None, -1, -1, None), Branch(None, -1, -1, None)]
-        named = (self.core.classes[pair[0]][0], self.core.classes[pair[1]][0])
-        self.tree[case.node] = Branch((min(named), max(named)), first, first + 1, None)
-        self._stack.append(_Case(first, {**case.decided, pair: 1}))
-        self._stack.append(_Case(first + 1, {**case.decided, pair: 0}))
+        self.tree += [LEAF, LEAF]
+        u, v = self.core.member[self.core.start[self.relaxation.pairs[column]]].tolist()
+        self.tree[case.node] = Branch((min(u, v), max(u, v)), first, first + 1, None)
+        self._stack.append(case.with_decision(first, column, ADDED))
+        self._stack.append(case.with_decision(first + 1, column, LEFT_OUT))

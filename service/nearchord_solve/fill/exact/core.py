@@ -1,139 +1,93 @@
-"""Small weighted graphs on which the exact search works, with vertex sets as bit masks.
+"""Small weighted graphs on which the exact search works, as flat arrays.
 
-A core has at most a few thousand vertices.  Vertex sets are Python integers (bit v = vertex v): one machine
-word for 60 vertices, and set operations at memory speed beyond.  A vertex of a core stands for a class of true
-twins of the part it comes from; a fill edge between two classes costs the product of their sizes.
+A vertex of a core stands for a class of true twins of the part it comes from; a fill edge between two classes costs the
+product of their sizes.  Pairs are int32[k, 2], smaller end first.
 """
 
-from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
-from nearchord_solve.arrays import I32, I64
+from nearchord_solve.arrays import I32, I64, U64
+from nearchord_solve.fill.exact.kernels.words import induced, lifted, set_pairs, written
+from nearchord_solve.fill.exact.ragged import picked
 
-Pair = tuple[int, int]
-Mask = int
-
-
-def members(mask: Mask) -> Iterator[int]:
-    """Vertices of a set, ascending."""
-    while mask:
-        low = mask & -mask
-        yield low.bit_length() - 1
-        mask ^= low
+NO_PAIRS: I32 = np.empty((0, 2), np.int32)
 
 
 @dataclass(frozen=True, eq=False)
 class Core:
-    """A graph on vertices 0..n-1 given by neighbour masks (symmetric, without the vertex itself).
+    """A graph on vertices 0..n-1.
 
-    ``classes[v]`` are the vertices of the part that v stands for, ascending; they are pairwise adjacent and have
-    the same neighbours.  ``sizes[v]`` is their number.
+    ``rows`` uint64[n, W], W = ceil(n / 64), at least 1: bit u of row v says that u and v are adjacent (symmetric, no
+    loops).  Vertex v stands for ``member[start[v]:start[v+1]]`` of the part, ascending: pairwise adjacent vertices
+    with the same neighbours.  ``start`` int64[n+1], ``member`` int32.
     """
 
-    adj: list[Mask]
-    classes: list[tuple[int, ...]]
-    sizes: list[int] = field(init=False)
-
-    def __post_init__(self) -> None:
-        object.__setattr__(self, "sizes", [len(c) for c in self.classes])
+    rows: U64
+    start: I64
+    member: I32
 
     @classmethod
     def from_rows(cls, ptr: I64, adj: I32) -> "Core":
-        """Read symmetric compressed rows, each vertex its own class."""
+        """Read symmetric compressed rows, each vertex its own class.  O(n W + m).
+
+        Rows may be read-only, and the kernel knows one type only: they are copied.
+        """
         n = ptr.size - 1
-        masks = [0] * n
-        for v in range(n):
-            for u in adj[ptr[v] : ptr[v + 1]].tolist():
-                masks[v] |= 1 << u
-        return cls(masks, [(v,) for v in range(n)])
+        return cls(written(ptr.copy(), adj.copy()), np.arange(n + 1), np.arange(n, dtype=np.int32))
 
     @property
     def n(self) -> int:
         """Number of vertices (classes)."""
-        return len(self.adj)
+        return int(self.rows.shape[0])
+
+    @cached_property
+    def sizes(self) -> I64:
+        """Vertices in each class: int64[n]."""
+        return np.diff(self.start)
 
     @property
-    def everything(self) -> Mask:
-        """All vertices."""
-        return (1 << len(self.adj)) - 1
+    def plain(self) -> bool:
+        """Whether every class is a single vertex."""
+        return self.member.size == self.n
 
-    def induced(self, kept: Mask) -> "Core":
-        """The core on ``kept``, renumbered in ascending order."""
-        old = list(members(kept))
-        new = {v: i for i, v in enumerate(old)}
-        adj = [mask_of(new[u] for u in members(self.adj[v] & kept)) for v in old]
-        return Core(adj, [self.classes[v] for v in old])
+    @cached_property
+    def vertices(self) -> I32:
+        """All vertices of the part that the core stands for, ascending."""
+        return np.sort(self.member)
 
-    def with_edges(self, pairs: Sequence[Pair]) -> "Core":
+    def induced(self, kept: I32) -> "Core":
+        """The core on ``kept``, ascending, renumbered in this order.  O(k W) and its edges."""
+        if kept.size == self.n:
+            return self
+        start, at = picked(self.start, kept)
+        return Core(induced(self.rows, kept), start, self.member[at])
+
+    def with_edges(self, pairs: I32) -> "Core":
         """The same core with further edges."""
-        return Core(joined(self.adj, pairs), self.classes)
+        return Core(with_pairs(self.rows.copy(), pairs), self.start, self.member)
 
-    def cost(self, pairs: Sequence[Pair]) -> int:
-        """Fill edges of the part that the pairs of classes stand for."""
-        return sum(self.sizes[a] * self.sizes[b] for a, b in pairs)
+    def weights(self, pairs: I32) -> I64:
+        """Fill edges of the part that each pair of classes stands for."""
+        return self.sizes[pairs[:, 0]] * self.sizes[pairs[:, 1]]
 
-    def lift(self, pairs: Sequence[Pair]) -> list[Pair]:
+    def cost(self, pairs: I32) -> int:
+        """Fill edges of the part that the pairs of classes stand for, together."""
+        return int(pairs.shape[0]) if self.plain else int(self.weights(pairs).sum())
+
+    def lift(self, pairs: I32) -> I32:
         """The pairs of the part, each with its smaller end first."""
-        return [(min(u, v), max(u, v)) for a, b in pairs for u in self.classes[a] for v in self.classes[b]]
+        return lifted(pairs, self.start, self.member)
 
 
-def mask_of(vertices: Iterator[int] | Sequence[int]) -> Mask:
-    """The set of the given vertices."""
-    mask = 0
-    for v in vertices:
-        mask |= 1 << v
-    return mask
-
-
-def joined(adj: Sequence[Mask], pairs: Sequence[Pair]) -> list[Mask]:
-    """Neighbour masks after adding ``pairs``."""
-    rows = list(adj)
-    for a, b in pairs:
-        rows[a] |= 1 << b
-        rows[b] |= 1 << a
+def with_pairs(rows: U64, pairs: I32) -> U64:
+    """The rows after adding pairs to them, in place."""
+    set_pairs(rows, pairs)
     return rows
 
 
-def reach(adj: Sequence[Mask], start: Mask, within: Mask) -> Mask:
-    """Vertices of ``within`` joined to ``start`` (a subset of it) by paths inside ``within``."""
-    found = frontier = start
-    while frontier:
-        grown = 0
-        for v in members(frontier):
-            grown |= adj[v]
-        frontier = grown & within & ~found
-        found |= frontier
-    return found
-
-
-def components(adj: Sequence[Mask], within: Mask) -> Iterator[Mask]:
-    """Components of the graph induced on ``within``, by lowest vertex."""
-    while within:
-        part = reach(adj, within & -within, within)
-        yield part
-        within &= ~part
-
-
-def around(adj: Sequence[Mask], inside: Mask) -> Mask:
-    """Neighbours of a set, outside it."""
-    seen = 0
-    for v in members(inside):
-        seen |= adj[v]
-    return seen & ~inside
-
-
-def missing(adj: Sequence[Mask], inside: Mask) -> list[Pair]:
-    """Non-adjacent pairs inside a set, lexicographic."""
-    return [(a, b) for a in members(inside) for b in members(inside & ~adj[a] & ~((2 << a) - 1))]
-
-
-def is_clique(adj: Sequence[Mask], inside: Mask) -> bool:
-    """Whether all pairs inside are adjacent."""
-    return all(not inside & ~adj[v] & ~(1 << v) for v in members(inside))
-
-
-def pair_array(pairs: Sequence[Pair]) -> I32:
-    """The pairs sorted, as int32[k, 2]."""
-    return np.array(sorted(pairs), np.int32).reshape(-1, 2)
+def sorted_pairs(pairs: I32) -> I32:
+    """The pairs in ascending order."""
+    return np.ascontiguousarray(pairs[np.lexsort((pairs[:, 1], pairs[:, 0]))])

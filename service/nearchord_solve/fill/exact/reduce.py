@@ -22,34 +22,45 @@ s(u) s(x), and x gave back at least s(c) s(x) >= s(u) s(x) for some c in C.  So 
 """
 
 from dataclasses import dataclass
+from itertools import pairwise
 
+import numpy as np
+
+from nearchord_solve.arrays import I32, I64
 from nearchord_solve.fill.exact.atoms import atoms
-from nearchord_solve.fill.exact.core import Core, Mask, Pair, around, components, is_clique, members
+from nearchord_solve.fill.exact.core import NO_PAIRS, Core
+from nearchord_solve.fill.exact.kernels.reduce import add_safe_edges, stripped
+from nearchord_solve.fill.exact.keys import row_keys
+from nearchord_solve.fill.exact.ragged import starts
 from nearchord_solve.monitor import Monitor
 
+MOST_SAFE = 2**32  # n^2 W of a core in which safe edges are looked for: about 6,500 vertices
 
-@dataclass(frozen=True)
+
+@dataclass(frozen=True, eq=False)
 class Reduced:
     """What remains of a core: independent cores, and edges (of the part) that some minimum fill contains."""
 
     cores: list[Core]
-    added: list[Pair]
+    added: I32
 
 
 def decompose(core: Core, monitor: Monitor) -> list[Core]:
     """Atoms without universal and simplicial vertices: rules 1 and 2 only.  Their fill numbers add up."""
-    waiting = [core.everything]
+    waiting = [(core, np.arange(core.n, dtype=np.int32))]
     found = []
     while waiting:
-        kept = waiting.pop()
-        inside = stripped(core.adj, kept)
-        if not inside:
+        whole, piece = waiting.pop()
+        current = whole.induced(piece)
+        kept = stripped(current.rows, monitor.cells)
+        if not kept.size:
             continue
-        pieces = atoms(core.adj, inside, monitor.cells)
-        if len(pieces) == 1:
-            found.append(core.induced(pieces[0]))
+        inside = current.induced(kept)
+        ptr, vertex = atoms(inside.rows, monitor.cells)
+        if ptr.size == 2:
+            found.append(inside)
         else:
-            waiting.extend(reversed(pieces))
+            waiting.extend((inside, vertex[begin:end]) for end, begin in pairwise(ptr[::-1].tolist()))
     return found
 
 
@@ -57,86 +68,56 @@ def reduce_core(core: Core, monitor: Monitor) -> Reduced:
     """Apply all rules until nothing changes.  Cores come in a fixed order."""
     waiting = [core]
     found: list[Core] = []
-    added: list[Pair] = []
+    added = [NO_PAIRS]
     while waiting:
         current = waiting.pop()
         pieces = decompose(current, monitor)
         if len(pieces) != 1 or pieces[0].n < current.n:
             waiting.extend(reversed(pieces))
             continue
-        safe = [] if monitor.stop else safe_edges(current)
-        if safe:
-            added += current.lift(safe)
-            waiting.append(current.with_edges(safe))
+        reduced, pairs = with_safe_edges(current, monitor)
+        if pairs.shape[0]:
+            added.append(current.lift(pairs))
+            waiting.append(reduced)
             continue
         contracted = contract_twins(current)
         if contracted.n < current.n:
             waiting.append(contracted)
         else:
             found.append(current)
-    return Reduced(found, added)
+    return Reduced(found, np.concatenate(added))
 
 
-def stripped(adj: list[Mask], kept: Mask) -> Mask:
-    """What is left of ``kept`` after deleting universal and simplicial vertices again and again."""
-    changed = True
-    while changed:
-        changed = False
-        for v in members(kept):
-            near = adj[v] & kept
-            if near | 1 << v == kept or is_clique(adj, near):
-                kept ^= 1 << v
-                changed = True
-    return kept
-
-
-def safe_edges(core: Core) -> list[Pair]:
-    """Edges by rule 3, each found in the graph with the earlier ones added.  O(n^2 m) bit operations."""
-    adj = list(core.adj)
-    found: list[Pair] = []
-    changed = True
-    while changed:
-        changed = False
-        for y in range(core.n):
-            for far in list(components(adj, core.everything & ~adj[y] & ~(1 << y))):
-                pair = _almost_clique(adj, around(adj, far))
-                if pair is not None and _sizes_allow(core, pair, y, far):
-                    found.append(pair)
-                    adj[pair[0]] |= 1 << pair[1]
-                    adj[pair[1]] |= 1 << pair[0]
-                    changed = True
-    return found
-
-
-def _almost_clique(adj: list[Mask], inside: Mask) -> Pair | None:
-    """The only non-adjacent pair inside, or None if there are none or several."""
-    found = None
-    for v in members(inside):
-        lacking = inside & ~adj[v] & ~((2 << v) - 1)
-        if lacking:
-            if found is not None or lacking & (lacking - 1):
-                return None
-            found = (v, lacking.bit_length() - 1)
-    return found
-
-
-def _sizes_allow(core: Core, pair: Pair, y: int, far: Mask) -> bool:
-    sizes = core.sizes
-    most = sizes[y]
-    if sizes[pair[0]] > most or sizes[pair[1]] > most:
-        return False
-    return min(sizes[pair[0]], sizes[pair[1]]) <= min(sizes[c] for c in members(far))
+def with_safe_edges(core: Core, monitor: Monitor) -> tuple[Core, I32]:
+    """The core with edges by rule 3, each found in the graph with the earlier ones added; none in very large cores."""
+    rows = core.rows.copy()
+    if core.n * rows.size > MOST_SAFE:
+        return core, NO_PAIRS
+    pairs = add_safe_edges(rows, core.sizes, monitor.cells)
+    return Core(rows, core.start, core.member), pairs
 
 
 def contract_twins(core: Core) -> Core:
-    """One vertex for each class of true twins, in order of their lowest vertex."""
-    first: dict[Mask, int] = {}
-    joined: dict[int, list[int]] = {}
-    for v in range(core.n):
-        head = first.setdefault(core.adj[v] | 1 << v, v)
-        joined.setdefault(head, []).extend(core.classes[v])
-    kept = 0
-    for v in joined:
-        kept |= 1 << v
-    smaller = core.induced(kept)
-    return Core(smaller.adj, [tuple(sorted(joined[v])) for v in members(kept)])
+    """One vertex for each class of true twins, in order of their lowest vertex.
+
+    Twins are found by keys of their rows, then compared; should vertices that are no twins ever have the same key,
+    twins of the higher ones stay apart.  O(n W + n log n).
+    """
+    head = _first_twins(core)
+    heads = np.flatnonzero(head == np.arange(core.n)).astype(np.int32)
+    if heads.size == core.n:
+        return core
+    smaller = core.induced(heads)
+    owner = np.searchsorted(heads, np.repeat(head, core.sizes))
+    order = np.lexsort((core.member, owner))
+    return Core(smaller.rows, starts(np.bincount(owner, minlength=heads.size)), core.member[order])
+
+
+def _first_twins(core: Core) -> I64:
+    """The lowest twin of each vertex."""
+    closed = core.rows.copy()
+    vertices = np.arange(core.n)
+    closed[vertices, vertices >> 6] |= np.uint64(1) << (vertices & 63).astype(np.uint64)
+    _, first, place = np.unique(row_keys(closed), return_index=True, return_inverse=True)
+    head = first[place]
+    return np.where((closed == closed[head]).all(axis=1), head, vertices)

@@ -3,9 +3,14 @@
 from collections.abc import Iterator
 from itertools import product
 
+import numpy as np
+
 from nearchord_solve.budget import Budget
 from nearchord_solve.fill.exact.blocks import solve_blocks
 from nearchord_solve.fill.exact.core import Core
+from nearchord_solve.fill.exact.greedy import coarse_portfolio
+from nearchord_solve.fill.exact.kernels.reduce import add_safe_edges
+from nearchord_solve.fill.exact.packing import disjoint
 from nearchord_solve.fill.exact.subsets import solve_subsets
 from nearchord_solve.fill.exact.whole import fill_of_graph
 from nearchord_solve.graph import Graph
@@ -30,8 +35,13 @@ def rehearse() -> Iterator[None]:
     recognise_interval(Graph.from_edges(3, [(0, 1), (1, 2)]), Monitor())
     yield
     solve_subsets(core, MANY, cells)
+    add_safe_edges(core.rows.copy(), core.sizes, cells)
     yield
-    solve_blocks(core, MANY, {}, 0, MANY, cells)
+    fill = coarse_portfolio(core, Monitor())
+    assert fill is not None
+    disjoint(core, fill, cells)
+    yield
+    solve_blocks(core, MANY, np.zeros((core.n, core.n), np.int64), 0, MANY, cells)
     yield
     structure = build_structure(grid, Budget(), Monitor())
     assert isinstance(structure, Structure)

@@ -1,96 +1,94 @@
 """The linear relaxation: least cost x on the non-edges of a core, subject to the cuts found so far."""
 
-from collections.abc import Mapping
-
 import highspy
 import numpy as np
 
-from nearchord_solve.arrays import F64
-from nearchord_solve.fill.exact.core import Core, Pair
-from nearchord_solve.fill.exact.cycles import Cycle
-from nearchord_solve.fill.exact.packing import sides_and_chords
+from nearchord_solve.arrays import F64, I32, I64
+from nearchord_solve.fill.exact.core import Core
+from nearchord_solve.fill.exact.cuts import Cuts, Multipliers, excess, rounded_up, unnumbered
+from nearchord_solve.fill.exact.cycles import Cycles
 from nearchord_solve.linear import quiet_solver
 from nearchord_solve.monitor import Monitor
 
 FORBIDDING = 1e5
+OPEN, ADDED, LEFT_OUT = -1, 1, 0
 
 
 class Relaxation:
     """A growing linear program over x in [0, 1], solved again from its last basis.
 
-    ``pairs`` are the columns: non-edges that occur in a cut; ``cycles`` are the rows.  Both in order of addition.
+    ``pairs`` int32[c, 2] are the columns: non-edges that occur in a cut, in order of addition; ``weights`` int64[c] is
+    what they cost.  ``cuts`` are the rows, ``column`` int64 the columns of their entries.  ``decided`` int64[c]:
+    OPEN, ADDED or LEFT_OUT.
     """
 
     def __init__(self, core: Core, monitor: Monitor) -> None:
         self.core = core
-        self.pairs: list[Pair] = []
-        self.column: dict[Pair, int] = {}
-        self.cycles: list[Cycle] = []
-        self.known: set[Cycle] = set()
-        self.idle: list[int] = []
-        self._decided: dict[Pair, int] = {}
+        self.pairs: I32 = np.empty((0, 2), np.int32)
+        self.weights: I64 = np.empty(0, np.int64)
+        self.decided: I64 = np.empty(0, np.int64)
+        self.cuts = Cuts.of(core, Cycles.none())
+        self.column: I64 = np.empty(0, np.int64)
+        self._keys = self.cuts.cycles.keys()
+        self._idle: I64 = np.empty(0, np.int64)
+        self._numbers: I64 = np.empty(0, np.int64)  # of the pairs, ascending
+        self._columns: I64 = np.empty(0, np.int64)  # of the pairs with these numbers
         self._solver = quiet_solver(monitor)
 
-    def add(self, cycles: list[Cycle]) -> int:
+    def add(self, cycles: Cycles) -> int:
         """Add cuts that are not there yet; returns how many were."""
-        fresh = [c for c in cycles if c not in self.known]
-        rows = [self._row(cycle) for cycle in fresh]
-        self._create_columns()
-        self.known.update(fresh)
-        self.cycles += fresh
-        self.idle += [0] * len(fresh)
-        if fresh:
-            sizes = [len(columns) for columns, _, _ in rows]
-            self._solver.addRows(
-                len(fresh),
-                np.array([side for _, _, side in rows]),
-                np.full(len(fresh), highspy.kHighsInf),
-                sum(sizes),
-                np.cumsum([0, *sizes[:-1]]).astype(np.int32),
-                np.array([i for columns, _, _ in rows for i in columns], np.int32),
-                np.array([a for _, coefficients, _ in rows for a in coefficients]),
-            )
-        return len(fresh)
+        keys = cycles.keys()
+        fresh = np.flatnonzero(~np.isin(keys, self._keys))
+        if not fresh.size:
+            return 0
+        cuts = Cuts.of(self.core, cycles.take(fresh))
+        column = self._columns_of(cuts.pair)
+        self._solver.addRows(
+            cuts.count,
+            cuts.least.astype(np.float64),
+            np.full(cuts.count, highspy.kHighsInf),
+            column.size,
+            cuts.start[:-1].astype(np.int32),
+            column.astype(np.int32),
+            cuts.coefficient.astype(np.float64),
+        )
+        self.cuts = self.cuts.joined(cuts)
+        self.column = np.concatenate((self.column, column))
+        self._keys = np.concatenate((self._keys, keys[fresh]))
+        self._idle = np.concatenate((self._idle, np.zeros(fresh.size, np.int64)))
+        return cuts.count
 
-    def _row(self, cycle: Cycle) -> tuple[list[int], list[float], float]:
-        """Columns, coefficients and right side of a cut."""
-        sides, chords = sides_and_chords(cycle)
-        need = float(len(cycle) - 3)
-        open_sides = [pair for pair in sides if not self.core.adj[pair[0]] >> pair[1] & 1]
-        columns = [self._column(pair) for pair in (*chords, *open_sides)]
-        return columns, [1.0] * len(chords) + [-need] * len(open_sides), need * (1 - len(open_sides))
+    def _columns_of(self, numbers: I64) -> I64:
+        """Columns of pairs, made where no cut has used a pair before."""
+        met, first = np.unique(numbers, return_index=True)
+        fresh = numbers[np.sort(first[~np.isin(met, self._numbers)])]
+        if fresh.size:
+            old = self.weights.size
+            ends = unnumbered(fresh, self.core.n)
+            self.pairs = np.concatenate((self.pairs, ends))
+            self.weights = np.concatenate((self.weights, self.core.weights(ends)))
+            self.decided = np.concatenate((self.decided, np.full(fresh.size, OPEN)))
+            columns = np.arange(old, old + fresh.size)
+            numbered = np.concatenate((self._numbers, fresh))
+            order = np.argsort(numbered)
+            self._numbers, self._columns = numbered[order], np.concatenate((self._columns, columns))[order]
+            self._solver.addVars(fresh.size, np.zeros(fresh.size), np.ones(fresh.size))
+            self._solver.changeColsCost(fresh.size, columns.astype(np.int32), self.weights[old:].astype(np.float64))
+        return self._columns[np.searchsorted(self._numbers, numbers)]
 
-    def _column(self, pair: Pair) -> int:
-        found = self.column.setdefault(pair, len(self.pairs))
-        if found == len(self.pairs):
-            self.pairs.append(pair)
-        return found
-
-    def _create_columns(self) -> None:
-        """Columns of pairs that no cut has used before."""
-        old = self._solver.getNumCol()
-        count = len(self.pairs) - old
-        if count:
-            self._solver.addVars(count, np.zeros(count), np.ones(count))
-            costs = [float(self.core.sizes[a] * self.core.sizes[b]) for a, b in self.pairs[old:]]
-            self._solver.changeColsCost(count, np.arange(old, old + count, dtype=np.int32), np.array(costs))
-
-    def decide(self, decided: Mapping[Pair, int]) -> None:
-        """Put the given pairs in (1) or out (0), and undo earlier decisions about others.
+    def decide(self, columns: I64, values: I64) -> None:
+        """Put the pairs of columns in (ADDED) or out (LEFT_OUT), and undo earlier decisions about others.
 
         A pair that is out costs so much that it is taken only where the cuts cannot hold otherwise; then the value
         tells.  The program stays feasible, so there are always multipliers.
         """
-        for pair in [*self._decided, *decided]:
-            if self._decided.get(pair) == decided.get(pair):
-                continue
-            column = self._column(pair)
-            self._create_columns()
-            value = decided.get(pair)
-            self._solver.changeColBounds(column, 1.0 if value == 1 else 0.0, 1.0)
-            size = self.core.sizes[pair[0]] * self.core.sizes[pair[1]]
-            self._solver.changeColCost(column, FORBIDDING if value == 0 else float(size))
-        self._decided = dict(decided)
+        wanted = np.full(self.decided.size, OPEN)
+        wanted[columns] = values
+        for column in np.flatnonzero(wanted != self.decided).tolist():
+            value = wanted[column]
+            self._solver.changeColBounds(column, 1.0 if value == ADDED else 0.0, 1.0)
+            self._solver.changeColCost(column, FORBIDDING if value == LEFT_OUT else float(self.weights[column]))
+        self.decided = wanted
 
     def solve(self) -> float | None:
         """Optimal value, or None if infeasible or not solved."""
@@ -99,42 +97,49 @@ class Relaxation:
             return None
         return float(self._solver.getObjectiveValue())
 
+    def values(self) -> F64:
+        """x by column."""
+        found: F64 = np.array(self._solver.getSolution().col_value)
+        return np.clip(found, 0.0, 1.0)
+
     def point(self) -> F64:
         """x as a symmetric float64[n, n] matrix."""
         x = np.zeros((self.core.n, self.core.n))
-        values = np.clip(np.array(self._solver.getSolution().col_value), 0.0, 1.0)
-        ends = np.array(self.pairs, np.int64).reshape(-1, 2)
-        x[ends[:, 0], ends[:, 1]] = values
-        x[ends[:, 1], ends[:, 0]] = values
+        x[self.pairs[:, 0], self.pairs[:, 1]] = x[self.pairs[:, 1], self.pairs[:, 0]] = self.values()
         return x
 
-    def duals(self) -> F64:
-        """Multiplier of each cut, >= 0."""
-        found: F64 = np.array(self._solver.getSolution().row_dual)
-        return np.clip(found, 0.0, None)
+    def multipliers(self) -> Multipliers:
+        """Those of the cuts."""
+        return Multipliers.near(np.array(self._solver.getSolution().row_dual), self.cuts)
 
-    def fractional(self, tolerance: float) -> list[Pair]:
-        """Pairs with x neither 0 nor 1, the most costly and undecided ones first."""
-        values = np.array(self._solver.getSolution().col_value)
+    def bound(self, multipliers: Multipliers) -> int:
+        """Fill edges of the part that any fill needs which agrees with what is decided."""
+        load = self.cuts.loads(multipliers.numerators, self.column, self.weights.size)
+        over = excess(load, self.weights, multipliers.denominator)
+        added = self.decided == ADDED
+        total = int(self.cuts.least @ multipliers.numerators) - int(over[self.decided == OPEN].sum())
+        total += int((self.weights[added] * multipliers.denominator - load[added]).sum())
+        return rounded_up(total, multipliers.denominator)
+
+    def fractional(self, tolerance: float) -> I64:
+        """Columns with x neither 0 nor 1 that are not decided, the most doubtful first."""
+        values = self.values()
         doubt = np.minimum(values, 1.0 - values)
-        found = np.flatnonzero(doubt > tolerance)
-        order = np.lexsort((found, -doubt[found].round(6)))
-        return [self.pairs[i] for i in found[order] if self.pairs[i] not in self._decided]
+        found = np.flatnonzero((doubt > tolerance) & (self.decided == OPEN))
+        return found[np.lexsort((found, -doubt[found].round(6)))]
 
-    def support(self) -> list[Pair]:
+    def support(self) -> I32:
         """Pairs with x nearer to 1 than to 0."""
-        values = self._solver.getSolution().col_value
-        return [pair for pair, x in zip(self.pairs, values, strict=True) if x > 0.5]
+        return self.pairs[self.values() > 0.5]
 
     def drop_idle(self, patience: int) -> None:
         """Remove cuts whose multiplier has been zero in the last ``patience`` calls."""
-        duals = self.duals()
-        self.idle = [0 if y > 1e-9 else rest + 1 for y, rest in zip(duals, self.idle, strict=True)]
-        gone = [i for i, rest in enumerate(self.idle) if rest > patience]
-        if not gone:
+        duals = np.array(self._solver.getSolution().row_dual)
+        self._idle = np.where(duals > 1e-9, 0, self._idle + 1)
+        gone = np.flatnonzero(self._idle > patience)
+        if not gone.size:
             return
-        self._solver.deleteRows(len(gone), np.array(gone, np.int32))
-        lost = set(gone)
-        self.known.difference_update(self.cycles[i] for i in gone)
-        self.cycles = [c for i, c in enumerate(self.cycles) if i not in lost]
-        self.idle = [r for i, r in enumerate(self.idle) if i not in lost]
+        self._solver.deleteRows(gone.size, gone.astype(np.int32))
+        kept = np.flatnonzero(self._idle <= patience)
+        self.column = self.column[np.repeat(self._idle <= patience, np.diff(self.cuts.start))]
+        self.cuts, self._keys, self._idle = self.cuts.take(kept), self._keys[kept], self._idle[kept]

@@ -17,16 +17,12 @@ When pairs are known to be in F, such a pair contributes 1 - L(e) instead, and a
 contributes nothing.  |F| is an integer, so the bound is rounded up.
 """
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from enum import StrEnum
-from fractions import Fraction
 
-from nearchord_solve.arrays import I32
-from nearchord_solve.fill.exact.core import Pair
+from nearchord_solve.arrays import I32, I64
 
-Group = tuple[int, ...]
-Ring = tuple[Group, ...]
+Pair = tuple[int, int]
 
 
 class ProofKind(StrEnum):
@@ -38,16 +34,23 @@ class ProofKind(StrEnum):
     NONE = "none"
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Packing:
-    """Rings with multipliers ``numerators[i] / denominator``."""
+    """Rings with multipliers ``numerators[i] / denominator``.
 
-    rings: tuple[Ring, ...]
-    numerators: tuple[int, ...]
+    The groups of ring i are those from ``ring[i]`` to ``ring[i+1] - 1``, the vertices of group g are
+    ``vertex[group[g]:group[g+1]]``, ascending.  ``ring`` int64[r+1], ``group`` int64[g+1], ``vertex`` int32,
+    ``numerators`` int64[r].
+    """
+
+    ring: I64
+    group: I64
+    vertex: I32
+    numerators: I64
     denominator: int
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Branch:
     """A case distinction: in each node the pair is in the fill (node ``added``) or not (node ``forbidden``).
 
@@ -60,22 +63,23 @@ class Branch:
     packing: Packing | None
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class PieceProof:
     """The bound of one atom of a part.
 
-    ``bound`` fill edges are needed among pairs of ``vertices``; no non-edge lies in two pieces, so bounds add up.
+    ``bound`` fill edges are needed among pairs of ``vertices`` int32, ascending; no non-edge lies in two pieces, so
+    bounds add up.
     ``packing`` for kind PACKING; ``tree`` for kind BRANCH, its root first.
     """
 
     kind: ProofKind
-    vertices: tuple[int, ...]
+    vertices: I32
     bound: int
     packing: Packing | None = None
     tree: tuple[Branch, ...] = ()
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class FillResult:
     """The fill of one part.
 
@@ -90,49 +94,3 @@ class FillResult:
     proof: ProofKind
     pieces: tuple[PieceProof, ...]
     over: bool
-
-
-def loads(packing: Packing, neighbours: Sequence[frozenset[int]]) -> tuple[Fraction, dict[Pair, Fraction]]:
-    """Constant term and load of each pair of a packing, straight from the definition above.
-
-    Raises ValueError where a ring is not what it should be.
-    """
-    constant = Fraction(0)
-    load: dict[Pair, Fraction] = {}
-    for ring, numerator in zip(packing.rings, packing.numerators, strict=True):
-        c = len(ring)
-        y = Fraction(numerator, packing.denominator)
-        if c < 4 or numerator < 0 or len({v for group in ring for v in group}) != sum(map(len, ring)):
-            raise ValueError(f"not a ring of disjoint groups with a multiplier: {ring}")
-        open_sides = 0
-        for i in range(c):
-            for j in range(i + 1, c):
-                side = j == i + 1 or (i == 0 and j == c - 1)
-                pairs = [(min(u, v), max(u, v)) for u in ring[i] for v in ring[j]]
-                edges = sum(v in neighbours[u] for u, v in pairs)
-                if side and edges == len(pairs):
-                    continue
-                if edges:
-                    raise ValueError(f"groups {i} and {j} of {ring} are neither joined nor apart")
-                open_sides += side
-                share = y / len(pairs) * (-(c - 3) if side else 1)
-                for pair in pairs:
-                    load[pair] = load.get(pair, Fraction(0)) + share
-        constant += y * (c - 3) * (1 - open_sides)
-    return constant, load
-
-
-def packing_bound(
-    packing: Packing,
-    neighbours: Sequence[frozenset[int]],
-    added: frozenset[Pair] = frozenset(),
-    forbidden: frozenset[Pair] = frozenset(),
-) -> int:
-    """The bound of a packing, given decisions about some pairs.  ``neighbours[v]`` are those in the graph."""
-    value, load = loads(packing, neighbours)
-    for pair, total in load.items():
-        if pair not in added and pair not in forbidden:
-            value -= max(Fraction(0), total - 1)
-    for pair in added:
-        value += 1 - load.get(pair, Fraction(0))
-    return -((-value.numerator) // value.denominator)

@@ -11,11 +11,14 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+import numpy as np
+
 from nearchord_solve.arrays import I32, I64
 from nearchord_solve.fill.exact.branch import CaseSearch
-from nearchord_solve.fill.exact.core import Core, Pair, pair_array
+from nearchord_solve.fill.exact.core import NO_PAIRS, Core
 from nearchord_solve.fill.exact.engines import first_bounds, search_core
-from nearchord_solve.fill.exact.greedy import minimal
+from nearchord_solve.fill.exact.greedy import PRODUCTS, completed, is_large, minimal
+from nearchord_solve.fill.exact.kernels.greedy import BY_DEGREE
 from nearchord_solve.fill.exact.packing import packing_of
 from nearchord_solve.fill.exact.reduce import contract_twins, decompose, reduce_core
 from nearchord_solve.fill.exact.relaxation import Relaxation
@@ -31,34 +34,45 @@ PROOF_NODES = 150
 class Piece:
     """An atom without twins, and what is known about its fill number.
 
-    ``fill``: the cheapest fill found, in vertices of the part.  ``relaxation`` is kept while the bounds are apart.
-    ``lower``: the best lower bound; ``packed``: the one that the multipliers in ``bounds`` prove.
+    ``fill`` int32[k, 2]: the cheapest fill found, in vertices of the part.  ``relaxation`` is kept while the bounds are
+    apart, and never made for large cores.  ``lower``: the best lower bound; ``packed``: the one that the multipliers in
+    ``bounds`` prove.
     """
 
     core: Core
     bounds: Bounds
     relaxation: Relaxation | None
-    fill: list[Pair]
+    fill: I32
     lower: int
     packed: int
     tree: tuple[Branch, ...] = ()
 
     @property
+    def upper(self) -> int:
+        """Edges of the fill."""
+        return int(self.fill.shape[0])
+
+    @property
     def closed(self) -> bool:
         """Whether the fill is known to be a minimum one."""
-        return self.lower >= len(self.fill)
+        return self.lower >= self.upper
 
     @property
     def packing(self) -> Packing | None:
         """The packing that proves ``lower``, if the multipliers do."""
         if self.lower > self.packed:
             return None
-        return packing_of(self.core, self.bounds.cycles, self.bounds.numerators)
+        return packing_of(self.core, self.bounds.cycles, self.bounds.multipliers)
 
     @property
     def narrow(self) -> bool:
         """Whether a few cases may close the gap."""
-        return len(self.fill) - self.lower <= 2 + self.lower // 25
+        return self.upper - self.lower <= 2 + self.lower // 25
+
+    def take(self, fill: I32) -> None:
+        """Keep a fill if it is cheaper."""
+        if fill.shape[0] < self.upper:
+            self.fill = fill
 
 
 @dataclass
@@ -86,7 +100,7 @@ class Tally:
 
     def note(self, number: int, pieces: Sequence["Piece"]) -> None:
         """Take over what the atoms of a part say."""
-        fill = min(self.fills[number], sum(len(piece.fill) for piece in pieces))
+        fill = min(self.fills[number], sum(piece.upper for piece in pieces))
         lower = max(self.lowers[number], sum(piece.lower for piece in pieces))
         self.fill += fill - self.fills[number]
         self.lower += lower - self.lowers[number]
@@ -108,10 +122,11 @@ def minimum_fill(ptr: I64, adj: I32, limit: int | None, monitor: Monitor) -> Fil
     unless stopped.
     """
     found = fill_of_parts([(ptr, adj)], limit, monitor)[0]
-    if found is None:
-        core = Core.from_rows(ptr, adj)
-        return summed(core, [bounded(atom, UNLIMITED, monitor) for atom in decompose(core, monitor)], False)
-    return found
+    if found is not None:
+        return found
+    core = Core.from_rows(ptr, adj)
+    fill = completed(core, BY_DEGREE, PRODUCTS, np.zeros(core.n))
+    return FillResult(fill, 0, fill.shape[0], ProofKind.NONE if fill.size else ProofKind.PACKING, (), False)
 
 
 def fill_of_parts(
@@ -137,7 +152,7 @@ def fill_of_parts(
         tally.note(number, own)
         monitor.cells[Monitor.STEP] = step + 1
     over = tally.lower > most
-    return [None if own is None else summed(core, own, over) for core, own in zip(cores, pieces, strict=True)]
+    return [None if own is None else summed(core, own, over, monitor) for core, own in zip(cores, pieces, strict=True)]
 
 
 def bounded_parts(cores: Sequence[Core], most: int, tally: Tally, monitor: Monitor) -> list[list[Piece] | None]:
@@ -146,12 +161,12 @@ def bounded_parts(cores: Sequence[Core], most: int, tally: Tally, monitor: Monit
     atoms: list[tuple[int, Core]] = []
     due = [0] * len(cores)
     pieces: list[list[Piece] | None] = [None] * len(cores)
-    for number, core in enumerate(cores):
+    for number, core in sorted(enumerate(cores), key=lambda item: item[1].n):
         if monitor.stop:
             return pieces
-        monitor.cells[Monitor.STEP] = number
         own = decompose(core, monitor)
         due[number] = len(own)
+        monitor.cells[Monitor.STEP] += 1
         atoms += [(number, atom) for atom in own]
     monitor.enter(Phase.FILL, len(atoms))
     done: list[list[Piece]] = [[] for _ in cores]
@@ -159,7 +174,10 @@ def bounded_parts(cores: Sequence[Core], most: int, tally: Tally, monitor: Monit
         if monitor.stop or tally.lower > most:
             break
         most_here = most - tally.lower - sum(piece.lower for piece in done[number])
-        done[number].append(bounded(atom, most_here, monitor))
+        piece = bounded(atom, most_here, monitor)
+        if piece is None:
+            break
+        done[number].append(piece)
         if len(done[number]) == due[number]:
             pieces[number] = done[number]
             tally.note(number, done[number])
@@ -167,11 +185,13 @@ def bounded_parts(cores: Sequence[Core], most: int, tally: Tally, monitor: Monit
     return pieces
 
 
-def bounded(atom: Core, most: int, monitor: Monitor) -> Piece:
-    """Portfolio and packing bound of an atom; a bound above ``most`` is good enough."""
+def bounded(atom: Core, most: int, monitor: Monitor) -> Piece | None:
+    """Portfolio and packing bound of an atom; a bound above ``most`` is good enough.  None: stopped in a large one."""
     core = contract_twins(atom)
     bounds = first_bounds(core, monitor)
-    relaxation = None if monitor.stop else cut(core, bounds, most, monitor)
+    if bounds is None:
+        return None
+    relaxation = None if monitor.stop or is_large(core) else cut(core, bounds, most, monitor)
     kept = None if bounds.closed else relaxation
     return Piece(core, bounds, kept, core.lift(bounds.best), bounds.lower, bounds.lower)
 
@@ -185,12 +205,11 @@ def search_piece(piece: Piece, most: int, monitor: Monitor) -> None:
 
 def by_cases(piece: Piece, most: int, monitor: Monitor) -> bool:
     """Try a few cases; whether they settled it.  They are a proof if no case is about several pairs at once."""
-    assert piece.relaxation is not None
+    if piece.relaxation is None:
+        return False
     cases = CaseSearch(piece.core, piece.relaxation, piece.bounds, most, monitor)
     settled = cases.run(PROOF_NODES)
-    found = piece.core.lift(piece.bounds.best)
-    if len(found) < len(piece.fill):
-        piece.fill = found
+    piece.take(piece.core.lift(piece.bounds.best))
     if settled:
         piece.lower = piece.bounds.lower
         if cases.checkable:
@@ -202,36 +221,33 @@ def by_engines(piece: Piece, most: int, monitor: Monitor) -> None:
     """Reduce the atom further and search each of its cores."""
     reduced = reduce_core(piece.core, monitor)
     states = [first_bounds(core, monitor) for core in reduced.cores]
-    lower = len(reduced.added)
+    found = [NO_PAIRS, reduced.added]
+    lower = reduced.added.shape[0]
     for core, state in zip(reduced.cores, states, strict=True):
-        if monitor.stop:
-            break
-        search_core(core, state, most - lower, monitor)
-        lower += state.lower
-        if lower > most:
-            break
-    found = list(reduced.added)
-    for core, state in zip(reduced.cores, states, strict=True):
-        found += core.lift(state.best)
-    if len(found) < len(piece.fill):
-        piece.fill = found
+        if state is None:
+            return
+        if lower <= most and not monitor.stop:
+            search_core(core, state, most - lower, monitor)
+            lower += state.lower
+        found.append(core.lift(state.best))
+    piece.take(np.concatenate(found))
     piece.lower = max(piece.lower, lower)
 
 
-def summed(core: Core, pieces: list[Piece], over: bool) -> FillResult:
+def summed(core: Core, pieces: list[Piece], over: bool, monitor: Monitor) -> FillResult:
     """The answer for one part: fills together, made minimal; bounds added up."""
-    fill = minimal(core, [pair for piece in pieces for pair in piece.fill])
+    fill = minimal(core, np.concatenate([NO_PAIRS, *(piece.fill for piece in pieces)]), monitor.cells)
     lower = sum(piece.lower for piece in pieces)
     proofs = [proof_of(piece) for piece in pieces]
     order = list(ProofKind)
     weakest = max((proof.kind for proof in proofs), key=order.index, default=ProofKind.PACKING)
-    kind = weakest if lower == len(fill) else ProofKind.NONE
-    return FillResult(pair_array(fill), lower, len(fill), kind, tuple(proofs), over)
+    kind = weakest if lower == fill.shape[0] else ProofKind.NONE
+    return FillResult(fill, lower, fill.shape[0], kind, tuple(proofs), over)
 
 
 def proof_of(piece: Piece) -> PieceProof:
     """What backs the lower bound of an atom."""
-    vertices = tuple(sorted(v for group in piece.core.classes for v in group))
+    vertices = piece.core.vertices
     if len(piece.tree) > 1:
         return PieceProof(ProofKind.BRANCH, vertices, piece.lower, None, piece.tree)
     packing = piece.tree[0].packing if piece.tree else piece.packing

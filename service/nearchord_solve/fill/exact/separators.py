@@ -14,87 +14,46 @@ G - a.
 every clique of its triangulation has d(missing pairs) <= k - base, and so has each of its subsets; all sets
 that the rules above start from, Omega - a and S, are subsets of the clique they lead to.  T need not be within
 budget, so separators themselves are enumerated without one.
+
+Minimal separators start from neighbourhoods N(C), C a component of G - N[v], and close under S -> N(C), C a component
+of G - S - N(x), x in S (Berry, Bordat, Cogis, Int. J. Found. Comput. Sci. 11 (2000) 397-403).
 """
 
 import numpy as np
+from numpy.typing import NDArray
 
 from nearchord_solve.arrays import I64, U64
-from nearchord_solve.fill.exact.core import Mask, around, components, members
-from nearchord_solve.fill.exact.kernels.separators import accepted, affordable, full_sides, separating
+from nearchord_solve.fill.exact.kernels.separators import accepted, affordable, all_separators, extended, separating
 from nearchord_solve.kernels.cells import STOP
 
-
-def minimal_separators(adj: list[Mask], within: Mask, most: int, cells: I64) -> list[Mask] | None:
-    """All minimal separators of the connected graph induced on ``within``, or None if more than ``most`` or stopped.
-
-    Starts from neighbourhoods N(C), C a component of G - N[v], and closes under S -> N(C), C a component of
-    G - S - N(x), x in S (Berry, Bordat, Cogis, Int. J. Found. Comput. Sci. 11 (2000) 397-403).
-    """
-    found: dict[Mask, None] = {}
-    waiting: list[Mask] = []
-    for v in members(within):
-        waiting.extend(_close_by(adj, within & ~adj[v] & ~(1 << v), found))
-    while waiting:
-        separator = waiting.pop()
-        for x in members(separator):
-            waiting.extend(_close_by(adj, within & ~separator & ~adj[x], found))
-        if len(found) > most or cells[STOP]:
-            return None
-    return list(found)
+BOOL = NDArray[np.bool_]
 
 
-def _close_by(adj: list[Mask], outside: Mask, found: dict[Mask, None]) -> list[Mask]:
-    """Record the neighbourhoods of the components of ``outside``; returns the new ones."""
-    fresh = []
-    for part in components(adj, outside):
-        separator = around(adj, part)
-        if separator and separator not in found:
-            found[separator] = None
-            fresh.append(separator)
-    return fresh
-
-
-def connected_order(adj: list[Mask]) -> list[int]:
-    """An order in which every beginning is connected: next a vertex with most neighbours so far, then the lowest."""
-    order = [0]
-    done = 1
-    while len(order) < len(adj):
-        reachable = around(adj, done)
-        v = max(members(reachable), key=lambda u: ((adj[u] & done).bit_count(), -u))
-        order.append(v)
-        done |= 1 << v
-    return order
+def minimal_separators(rows: U64, most: int, cells: I64) -> U64 | None:
+    """All minimal separators of a connected graph, uint64[s, W], or None if more than ``most`` or stopped."""
+    complete, found = all_separators(rows, most, cells)
+    return found if complete else None
 
 
 def potential_cliques(rows: U64, separators: U64, prices: I64, slack: int, most: int, cells: I64) -> U64 | None:
-    """All potential maximal cliques whose missing pairs cost at most ``slack``.
+    """All potential maximal cliques whose missing pairs cost at most ``slack``: uint64[k, W].
 
-    ``rows`` uint64[n, W] of a graph numbered by :func:`connected_order`; ``separators`` uint64[s, W] all its minimal
-    separators; ``prices`` int64[n, n], sums below 2^62.  None if there are more than ``most`` on the way, or stopped.
+    ``rows`` uint64[n, W] of a graph in which every beginning 0..a is connected; ``separators`` uint64[s, W] all its
+    minimal separators; ``prices`` int64[n, n], sums below 2^62.  None if there are more than ``most`` on the way, or
+    stopped.
     """
     n = rows.shape[0]
     levels = _separators_by_level(rows, separators)
     found = np.zeros((1, rows.shape[1]), np.uint64)
     found[0, 0] = 1
     for a in range(1, n):
-        if cells[STOP] != 0:
-            return None
         now, before = levels[a], levels[a - 1]
-        candidates = [found, with_vertex(found, a), with_vertex(now, a)]
-        kept = [distinct(np.concatenate(candidates))]
-        kept[0] = kept[0][accepted(rows, a + 1, kept[0], prices, slack)]
-        known = {row.tobytes() for row in before}
-        starts = now[[not _in(row, a) and row.tobytes() not in known for row in now]]
+        kept = distinct(np.concatenate((found, with_vertex(found, a), with_vertex(now, a))))
+        kept = kept[accepted(rows, a + 1, kept, prices, slack)]
+        starts = now[~_holding(now, a) & ~_among(now, before)]
         starts = starts[affordable(starts, prices, slack)]
-        for start in starts:
-            if cells[STOP] != 0:
-                return None
-            for full in full_sides(rows, a + 1, start):
-                extended = distinct(now & full)
-                extended = extended[extended.any(axis=1)] | start
-                kept.append(extended[accepted(rows, a + 1, extended, prices, slack)])
-        found = distinct(np.concatenate(kept))
-        if found.shape[0] > most:
+        found = distinct(np.concatenate((kept, extended(rows, a + 1, now, starts, prices, slack, cells))))
+        if cells[STOP] != 0 or found.shape[0] > most:
             return None
     return found
 
@@ -134,5 +93,14 @@ def without_vertex(sets: U64, a: int) -> U64:
     return shrunk
 
 
-def _in(words: U64, a: int) -> bool:
-    return bool(words[a >> 6] >> np.uint64(a & 63) & np.uint64(1))
+def _holding(sets: U64, a: int) -> BOOL:
+    """Which sets hold a."""
+    found: BOOL = (sets[:, a >> 6] & np.uint64(1 << (a & 63))) != 0
+    return found
+
+
+def _among(sets: U64, others: U64) -> BOOL:
+    """Which of the sets are among the others; each of both without repetition."""
+    _, place, times = np.unique(np.concatenate((others, sets)), axis=0, return_inverse=True, return_counts=True)
+    found: BOOL = times[place.ravel()[others.shape[0] :]] == 2
+    return found

@@ -11,10 +11,12 @@ Time O(2^k n^2) word operations and 3 * 2^k bytes for k vertices outside the cli
 
 import numpy as np
 
-from nearchord_solve.arrays import I64
-from nearchord_solve.fill.exact.core import Core, Mask, Pair, members, missing
-from nearchord_solve.fill.exact.kernels.subsets import sweep
+from nearchord_solve.arrays import I32, I64
+from nearchord_solve.fill.exact.core import NO_PAIRS, Core, sorted_pairs
+from nearchord_solve.fill.exact.kernels.subsets import largest_clique, replay, sweep
+from nearchord_solve.fill.exact.kernels.words import permuted
 from nearchord_solve.fill.exact.status import Status
+from nearchord_solve.fill.kernels.dense import list_fill
 
 MOST_FREE = 24
 MOST_VERTICES = 62
@@ -22,63 +24,33 @@ MOST_TRIES = 20_000
 _MOST_COST = 2**16 - 2
 
 
-def largest_clique(core: Core) -> Mask:
-    """A clique of most vertices as far as :data:`MOST_TRIES` steps of branch and bound can tell."""
-    best = 0
-    stack = [(0, core.everything)]
-    for _ in range(MOST_TRIES):
-        if not stack:
-            break
-        chosen, open_ = stack.pop()
-        if not open_:
-            if chosen.bit_count() > best.bit_count():
-                best = chosen
-            continue
-        if chosen.bit_count() + open_.bit_count() <= best.bit_count():
-            continue
-        v = max(members(open_), key=lambda u: ((core.adj[u] & open_).bit_count(), -u))
-        stack.append((chosen, open_ & ~(1 << v)))
-        stack.append((chosen | 1 << v, open_ & core.adj[v]))
-    return best
+def split_off_clique(core: Core) -> tuple[I64, int]:
+    """The vertices, a clique of most vertices last, and how many are outside it; at most 62 vertices.
+
+    The clique is largest as far as :data:`MOST_TRIES` steps of branch and bound can tell.
+    """
+    clique = int(largest_clique(core.rows.ravel(), MOST_TRIES))
+    inside = clique >> np.arange(core.n) & 1
+    return np.argsort(inside, kind="stable"), core.n - clique.bit_count()
 
 
 def free_vertices(core: Core) -> int:
     """Vertices outside a largest clique: the exponent of the engine's cost; a large number if the core is too big."""
-    if core.n > MOST_VERTICES:
-        return core.n
-    return core.n - largest_clique(core).bit_count()
+    return core.n if core.n > MOST_VERTICES else split_off_clique(core)[1]
 
 
-def solve_subsets(core: Core, limit: int, cells: I64) -> tuple[Status, list[Pair]]:
+def solve_subsets(core: Core, limit: int, cells: I64) -> tuple[Status, I32]:
     """A minimum fill of at most ``limit`` edges.
 
-    Returns (FOUND, fill), (NONE, []) if every fill costs more than ``limit``, or (STOPPED, []).  At most 62
+    Returns (FOUND, fill), (NONE, none) if every fill costs more than ``limit``, or (STOPPED, none).  At most 62
     vertices, at most 24 of them outside a largest clique.
     """
-    clique = largest_clique(core)
-    order = [*members(core.everything & ~clique), *members(clique)]
-    free = core.n - clique.bit_count()
-    place = {v: i for i, v in enumerate(order)}
-    adj = np.array([sum(1 << place[u] for u in members(core.adj[v])) for v in order], np.uint64)
-    sizes = np.array([core.sizes[v] for v in order], np.int64)
+    order, free = split_off_clique(core)
+    rows = permuted(core.rows, order)
     last = np.full(1 << free, -1, np.int8)
-    status = Status(sweep(adj, sizes, free, min(limit, _MOST_COST), last, cells))
+    status = Status(sweep(rows.ravel(), core.sizes[order], free, min(limit, _MOST_COST), last, cells))
     if status is not Status.FOUND:
-        return status, []
-    gone = (1 << free) - 1
-    pairs: list[Pair] = []
-    sequence = []
-    while gone:
-        v = int(last[gone])
-        sequence.append(v)
-        gone ^= 1 << v
-    rows = [int(a) for a in adj]
-    left = core.everything
-    for v in reversed(sequence):
-        left &= ~(1 << v)
-        near = rows[v] & left
-        lacking = [(order[u], order[x]) for u, x in missing(rows, near)]
-        pairs += [(min(pair), max(pair)) for pair in lacking]
-        for u in members(near):
-            rows[u] |= near & ~(1 << u)
-    return Status.FOUND, pairs
+        return status, NO_PAIRS
+    filled = rows.copy()
+    replay(filled.ravel(), free, last)
+    return status, sorted_pairs(np.sort(order[list_fill(rows, filled)], axis=1).astype(np.int32))

@@ -15,7 +15,7 @@ STEPS = 200_000  # about the vertices that the shortest paths of one core may lo
 
 
 @kernel
-def _shortest_path(real: U64, a: int, b: int, v: int, before: I32, queue: I32) -> int:
+def shortest_path(real: U64, a: int, b: int, v: int, before: I32, queue: I32) -> int:
     """Shortest path from a to b that avoids v and its other neighbours; ``before`` holds it backwards from b.
 
     Returns its number of vertices, 0 if there is none.  With v it closes a chordless cycle.
@@ -51,7 +51,7 @@ def _shortest_path(real: U64, a: int, b: int, v: int, before: I32, queue: I32) -
 
 
 @kernel
-def _take(real: U64, used: U64, cycle: I32, length: int) -> bool:
+def take(real: U64, used: U64, cycle: I32, length: int) -> bool:
     """Mark the non-edges of the cycle as used, if none is."""
     for i in range(length):
         for j in range(i):
@@ -96,7 +96,7 @@ def pack_cycles(real: U64, pairs: I32, minimal: bool, cells: I64) -> int:
                     v = (w << 6) + lowest(word)
                     word &= word - ONE
                     tries += 1
-                    length = _shortest_path(real, a, b, v, before, queue) + 1
+                    length = shortest_path(real, a, b, v, before, queue) + 1
                     if length < 4 or length > longest:
                         continue
                     y = b
@@ -104,6 +104,6 @@ def pack_cycles(real: U64, pairs: I32, minimal: bool, cells: I64) -> int:
                         cycle[i] = y
                         y = before[y]
                     cycle[length - 1] = v
-                    if _take(real, used, cycle, length):
+                    if take(real, used, cycle, length):
                         total += length - 3
     return total

@@ -4,10 +4,11 @@ import numpy as np
 
 from nearchord_solve.kernels.cells import STOP
 from nearchord_solve.kernels.cliques import count_cliques, touched
-from nearchord_solve.kernels.compiled import I32, I64, U64, kernel
+from nearchord_solve.kernels.compiled import I32, I64, U8, U64, kernel
 from nearchord_solve.kernels.layout import ADHESION_FILL, BAG_FILL, Forest
 from nearchord_solve.sweep.kernels.classes import count_classes
-from nearchord_solve.sweep.kernels.forests import count_forests
+from nearchord_solve.sweep.kernels.forests import Touched, count_forests, symmetric
+from nearchord_solve.sweep.kernels.joints import joint_bytes, mixed, no_joints
 from nearchord_solve.sweep.kernels.passes import link_bags
 
 ONE = np.uint64(1)
@@ -65,50 +66,72 @@ def colour_states(forest: Forest, colours: int, most: int, cells: I64) -> int:
 
 
 @kernel
-def reached_below(bag: int, slots: I32, first: I32, following: I32, forest: Forest, where: I32) -> tuple[U64, bool]:
-    """Which touched slots of a bag lie in an adhesion with fill to a bag below; whether there is any.
+def _below(bag: int, slots: I32, first: I32, following: I32, busy: U8, forest: Forest, where: I32) -> tuple[I32, U64]:
+    """The bags below a bag that have joints, int32[C], and which touched slots their adhesions hold, uint64[C, W].
 
     ``where`` int32[slots] must be -1 everywhere and is so again on return.
     """
-    outside = np.zeros((slots.shape[0] + 63) >> 6, np.uint64)
-    found = False
-    for i in range(slots.shape[0]):
-        where[slots[i]] = i
+    found = 0
     child = first[bag]
     while child >= 0:
-        begin = forest.bag_ptr[child]
-        for e in range(begin, begin + forest.bag_adhesion[child]):
-            i = where[forest.bag_slot[e]]
-            if i >= 0:
-                outside[i >> 6] |= ONE << np.uint64(i & 63)
-                found = True
+        found += busy[child]
+        child = following[child]
+    children = np.empty(found, np.int32)
+    inside = np.zeros((found, (slots.shape[0] + 63) >> 6), np.uint64)
+    for i in range(slots.shape[0]):
+        where[slots[i]] = i
+    found = 0
+    child = first[bag]
+    while child >= 0:
+        if busy[child]:
+            children[found] = child
+            begin = forest.bag_ptr[child]
+            for e in range(begin, begin + forest.bag_adhesion[child]):
+                i = where[forest.bag_slot[e]]
+                if i >= 0:
+                    inside[found, i >> 6] |= ONE << np.uint64(i & 63)
+            found += 1
         child = following[child]
     for i in range(slots.shape[0]):
         where[slots[i]] = -1
-    return outside, found
+    return children, inside
 
 
 @kernel
-def forest_states(forest: Forest, most: int, cells: I64) -> int:
-    """States of the forest program in bags with fill; about ``most`` or more if above it."""
+def forest_states(forest: Forest, most: int, most_bytes: int, cells: I64) -> tuple[int, bool]:
+    """States of the forest program in bags with fill, and whether these are all.
+
+    Counting ends above ``most``, when told to, or when the joints take more than ``most_bytes``.
+    """
     total = 0
     where = np.full(forest.slot_place.shape[0], -1, np.int32)
     first, following = link_bags(forest.bag_above, forest.bag_kind)
-    for b in range(forest.bag_kind.shape[0]):
+    busy = np.zeros(forest.bag_kind.shape[0], np.uint8)
+    joints = no_joints(64)
+    for b in range(forest.bag_kind.shape[0] - 1, -1, -1):
         begin, end = forest.bag_ptr[b], forest.bag_ptr[b + 1]
         if not forest.bag_kind[b] & BAG_FILL:
             continue
         slots, rows, edges = touched(forest.bag_slot, begin, end, forest.slot_fill_ptr, forest.slot_fill, where)
         t = slots.shape[0]
+        sends = forest.bag_kind[b] & ADHESION_FILL != 0
         lead = 0
-        while lead < t and slots[lead] <= forest.bag_slot[begin + forest.bag_adhesion[b] - 1]:
-            lead += 1
-        outside, found = reached_below(b, slots, first, following, forest, where)
-        joined = found and forest.bag_kind[b] & ADHESION_FILL != 0
+        if sends:
+            while lead < t and slots[lead] <= forest.bag_slot[begin + forest.bag_adhesion[b] - 1]:
+                lead += 1
+        hub = end - begin - forest.bag_adhesion[b] > t - lead
+        children, inside = _below(b, slots, first, following, busy, forest, where)
         others = end - begin - t
         total += choices(others, 2)
         total += others * (1 + t + count_cliques(rows, t, edges, most - total, cells))
-        total += count_forests(rows, edges, lead, outside, joined, most - total, cells)
-        if total > most or cells[STOP] != 0:
-            break
-    return total
+        known = joints.used[0]
+        code = np.empty(t, np.uint64)
+        for i in range(t):
+            code[i] = mixed(np.uint64(1), slots[i])
+        bag = Touched(b, code, symmetric(rows), lead, sends, hub, children, inside)
+        joints, more = count_forests(bag, edges, most - total, most_bytes, joints, cells)
+        total += more
+        busy[b] = joints.used[0] > known
+        if total > most or cells[STOP] != 0 or joint_bytes(joints) > most_bytes:
+            return total, False
+    return total, True

@@ -1,6 +1,6 @@
 """The stages of the exact search, each against the slow oracle."""
 
-from itertools import combinations
+from itertools import combinations, pairwise, product
 
 import networkx as nx
 import numpy as np
@@ -11,15 +11,16 @@ from hypothesis import strategies as st
 from nearchord_solve import Graph, Monitor
 from nearchord_solve.fill.exact.blocks import solve_blocks
 from nearchord_solve.fill.exact.branch import CaseSearch
-from nearchord_solve.fill.exact.core import Core, components, is_clique, mask_of, members, missing
+from nearchord_solve.fill.exact.core import Core
+from nearchord_solve.fill.exact.cuts import Cuts, price_matrix
 from nearchord_solve.fill.exact.engines import first_bounds
-from nearchord_solve.fill.exact.packing import prices
-from nearchord_solve.fill.exact.reduce import contract_twins, decompose, reduce_core, safe_edges
-from nearchord_solve.fill.exact.root import cut
-from nearchord_solve.fill.exact.separators import connected_order, minimal_separators, potential_cliques
+from nearchord_solve.fill.exact.kernels.separators import connected_order
+from nearchord_solve.fill.exact.kernels.words import permuted
+from nearchord_solve.fill.exact.reduce import contract_twins, decompose, reduce_core, with_safe_edges
+from nearchord_solve.fill.exact.root import Bounds, cut
+from nearchord_solve.fill.exact.separators import minimal_separators, potential_cliques
 from nearchord_solve.fill.exact.status import Status
-from nearchord_solve.fill.exact.subsets import largest_clique, solve_subsets
-from nearchord_solve.fill.exact.words import masks_of, rows_of
+from nearchord_solve.fill.exact.subsets import solve_subsets, split_off_clique
 from strategies import Edges, arbitrary_graphs, near_chordal_graphs
 
 PLENTY = 10**6
@@ -30,15 +31,38 @@ def core_of(edges: Edges) -> Core:
     return Core.from_rows(part.ptr, part.adj)
 
 
+def joined(core: Core, u: int, v: int) -> bool:
+    """Whether two vertices of a core are adjacent."""
+    return bool(int(core.rows[u, v >> 6]) >> (v & 63) & 1)
+
+
+def drawn(core: Core) -> nx.Graph:
+    """The classes as vertices of a graph."""
+    graph = nx.empty_graph(core.n)
+    graph.add_edges_from((u, v) for u, v in combinations(range(core.n), 2) if joined(core, u, v))
+    return graph
+
+
 def spread(core: Core) -> Edges:
     """The graph that a core with classes stands for, its vertices renumbered."""
-    owner = [a for a in range(core.n) for _ in core.classes[a]]
+    owner = np.repeat(np.arange(core.n), core.sizes).tolist()
     pairs = [
         (u, v)
         for u, v in combinations(range(len(owner)), 2)
-        if owner[u] == owner[v] or core.adj[owner[u]] >> owner[v] & 1
+        if owner[u] == owner[v] or joined(core, owner[u], owner[v])
     ]
     return len(owner), pairs
+
+
+def bounds_of(core: Core) -> Bounds:
+    bounds = first_bounds(core, Monitor())
+    assert bounds is not None
+    return bounds
+
+
+def free(core: Core) -> np.ndarray:
+    """Prices that always hold."""
+    return np.zeros((core.n, core.n), np.int64)
 
 
 @st.composite
@@ -47,8 +71,8 @@ def sized_cores(draw: st.DrawFn) -> Core:
     n, edges = draw(arbitrary_graphs(most=6))
     sizes = draw(st.lists(st.sampled_from((1, 1, 2, 3)), min_size=n, max_size=n))
     sizes = [size if sum(sizes[:v]) <= 8 else 1 for v, size in enumerate(sizes)]
-    starts = np.concatenate(([0], np.cumsum(sizes))).astype(int).tolist() if n else [0]
-    return Core(core_of((n, edges)).adj, [tuple(range(starts[v], starts[v + 1])) for v in range(n)])
+    starts = np.cumsum([0, *sizes]).astype(np.int64)
+    return Core(core_of((n, edges)).rows, starts, np.arange(starts[-1], dtype=np.int32))
 
 
 @settings(deadline=None)
@@ -57,7 +81,7 @@ def test_reductions_keep_the_fill_number(edges: Edges) -> None:
     """Edges added for good plus the fill of what remains."""
     reduced = reduce_core(core_of(edges), Monitor())
     rest = sum(least_fill(*spread(core)) for core in reduced.cores)
-    assert len(reduced.added) + rest == least_fill(*edges)
+    assert reduced.added.shape[0] + rest == least_fill(*edges)
 
 
 @settings(deadline=None)
@@ -74,27 +98,48 @@ def test_atoms_add_up(edges: Edges) -> None:
 @given(sized_cores())
 def test_safe_edges_are_safe_with_sizes(core: Core) -> None:
     """Adding them costs as much as it saves."""
-    pairs = safe_edges(core)
+    filled, pairs = with_safe_edges(core, Monitor())
     assert core.cost(pairs) + least_fill(*spread(core.with_edges(pairs))) == least_fill(*spread(core))
+    assert np.array_equal(filled.rows, core.with_edges(pairs).rows)
 
 
 def test_a_safe_edge_is_found() -> None:
     """K_{2,3} plus a path: the two hubs miss one edge, and a single vertex sees both."""
     core = core_of((5, [(0, 2), (1, 2), (0, 3), (1, 3), (0, 4), (1, 4)]))
-    assert (0, 1) in safe_edges(core)
-
-
-def drawn(edges: Edges) -> nx.Graph:
-    graph = nx.empty_graph(edges[0])
-    graph.add_edges_from(edges[1])
-    return graph
+    assert [0, 1] in with_safe_edges(core, Monitor())[1].tolist()
 
 
 def test_twins_become_one_class() -> None:
     """A complete graph is one class."""
     core = contract_twins(core_of((4, list(combinations(range(4), 2)))))
-    assert core.classes == [(0, 1, 2, 3)]
-    assert core.sizes == [4]
+    assert (core.start.tolist(), core.member.tolist()) == ([0, 4], [0, 1, 2, 3])
+    assert core.sizes.tolist() == [4]
+
+
+@settings(deadline=None)
+@given(sized_cores())
+def test_classes_are_those_of_the_definition(core: Core) -> None:
+    """Vertices with the same closed neighbours, in order of the lowest; nothing else is lost."""
+    graph = drawn(core)
+    twins = sorted({tuple(u for u in graph if {u, *graph[u]} == {v, *graph[v]}) for v in graph})
+    found = contract_twins(core)
+    groups = [sorted(m for v in group for m in core.member[core.start[v] : core.start[v + 1]]) for group in twins]
+    assert [found.member[a:b].tolist() for a, b in pairwise(found.start.tolist())] == groups
+    assert set(drawn(found).edges) == {
+        (i, j) for i, j in combinations(range(len(twins)), 2) if graph.has_edge(twins[i][0], twins[j][0])
+    }
+
+
+@settings(deadline=None)
+@given(sized_cores(), st.data())
+def test_pairs_of_classes_stand_for_all_pairs_of_their_vertices(core: Core, data: st.DataObject) -> None:
+    """The cost counts them, the lifting names them."""
+    chosen = data.draw(st.lists(st.sampled_from(list(combinations(range(max(2, core.n)), 2))), unique=True))
+    pairs = np.array([pair for pair in chosen if pair[1] < core.n], np.int32).reshape(-1, 2)
+    groups = [core.member[a:b].tolist() for a, b in pairwise(core.start.tolist())]
+    expected = [tuple(sorted(pair)) for a, b in pairs.tolist() for pair in product(groups[a], groups[b])]
+    assert sorted(map(tuple, core.lift(pairs).tolist())) == sorted(expected)
+    assert core.cost(pairs) == len(expected)
 
 
 @settings(deadline=None)
@@ -110,25 +155,24 @@ def test_subsets_find_a_least_fill_or_show_that_there_is_none(core: Core) -> Non
     assert solve_subsets(core, least - 1, cells)[0] is Status.NONE
 
 
-def connected(core: Core) -> bool:
-    return len(list(components(core.adj, core.everything))) == 1
-
-
 @settings(deadline=None)
 @given(sized_cores())
 def test_blocks_find_a_least_fill_or_show_that_there_is_none(core: Core) -> None:
     """With and without prices from the relaxation."""
-    if not connected(core):
+    if core.n == 0 or not nx.is_connected(drawn(core)):
         return
     least = least_fill(*spread(core))
-    bounds = first_bounds(core, Monitor())
+    bounds = bounds_of(core)
     cut(core, bounds, PLENTY, Monitor())
-    for base, listed in ((0, {}), prices(core, bounds.cycles, bounds.numerators)):
-        status, pairs = solve_blocks(core, least, listed, base, PLENTY, Monitor().cells)
-        assert status is Status.FOUND
-        assert core.cost(pairs) == least
-        if least:
-            assert solve_blocks(core, least - 1, listed, base, PLENTY, Monitor().cells)[0] is Status.NONE
+    base, prices = price_matrix(core, Cuts.of(core, bounds.cycles), bounds.multipliers)
+    for limit in (least, least - 1):
+        for price, slack in ((free(core), 0), (prices, limit * bounds.multipliers.denominator - base)):
+            status, pairs = solve_blocks(core, limit, price, slack, PLENTY, Monitor().cells)
+            if limit == least:
+                assert status is Status.FOUND
+                assert core.cost(pairs) == least
+            else:
+                assert status is Status.NONE
 
 
 @settings(deadline=None)
@@ -137,7 +181,7 @@ def test_cases_close_every_gap(core: Core) -> None:
     """Branch and cut ends with the fill number below and above, and honours a limit."""
     least = least_fill(*spread(core))
     for most in (PLENTY, least - 1):
-        bounds = first_bounds(core, Monitor())
+        bounds = bounds_of(core)
         relaxation = cut(core, bounds, most, Monitor())
         if not bounds.closed and bounds.lower <= most:
             assert CaseSearch(core, relaxation, bounds, most, Monitor()).run(PLENTY)
@@ -150,38 +194,36 @@ def test_cases_close_every_gap(core: Core) -> None:
 def test_separators_and_potential_cliques_are_all_there(edges: Edges) -> None:
     """Against their definitions over all vertex sets."""
     core = core_of(edges)
-    if core.n == 0 or not connected(core):
+    if core.n == 0 or not nx.is_connected(drawn(core)):
         return
-    order = connected_order(core.adj)
-    place = {v: i for i, v in enumerate(order)}
-    adj = [mask_of(place[u] for u in members(core.adj[v])) for v in order]
-    separators = minimal_separators(adj, core.everything, PLENTY, Monitor().cells)
+    rows = permuted(core.rows, connected_order(core.rows))
+    graph = drawn(Core(rows, core.start, core.member))
+    assert all(nx.is_connected(graph.subgraph(range(a + 1))) for a in graph)
+    separators = minimal_separators(rows, PLENTY, Monitor().cells)
     assert separators is not None
-    assert set(separators) == {s for s in range(1, 1 << core.n) if full_count(adj, s) >= 2}
-    rows = rows_of(adj)
-    sets = np.array([[s] for s in separators], np.uint64).reshape(-1, 1)
-    none = np.zeros((core.n, core.n), np.int64)
-    found = potential_cliques(rows, sets, none, 0, PLENTY, Monitor().cells)
+    assert sorted(separators[:, 0].tolist()) == [s for s in range(1, 1 << core.n) if full_count(graph, s) >= 2]
+    found = potential_cliques(rows, separators, free(core), 0, PLENTY, Monitor().cells)
     assert found is not None
-    assert sorted(masks_of(found)) == [s for s in range(1, 1 << core.n) if is_potential(adj, s)]
+    assert sorted(found[:, 0].tolist()) == [s for s in range(1, 1 << core.n) if is_potential(graph, s)]
 
 
-def full_count(adj: list[int], chosen: int) -> int:
-    return sum(seen_by(adj, part) == chosen for part in components(adj, ((1 << len(adj)) - 1) & ~chosen))
+def seen_by_sides(graph: nx.Graph, chosen: int) -> tuple[set[int], list[set[int]]]:
+    """A set, and what of it each component of the rest sees."""
+    inside = {v for v in graph if chosen >> v & 1}
+    sides = nx.connected_components(graph.subgraph(set(graph) - inside))
+    return inside, [inside & {u for v in side for u in graph[v]} for side in sides]
 
 
-def seen_by(adj: list[int], part: int) -> int:
-    seen = 0
-    for v in members(part):
-        seen |= adj[v]
-    return seen & ~part
+def full_count(graph: nx.Graph, chosen: int) -> int:
+    inside, seen = seen_by_sides(graph, chosen)
+    return seen.count(inside)
 
 
-def is_potential(adj: list[int], chosen: int) -> bool:
-    parts = [seen_by(adj, part) for part in components(adj, ((1 << len(adj)) - 1) & ~chosen)]
-    if chosen in parts:
+def is_potential(graph: nx.Graph, chosen: int) -> bool:
+    inside, seen = seen_by_sides(graph, chosen)
+    if inside in seen:
         return False
-    return all(any(s >> u & 1 and s >> v & 1 for s in parts) for u, v in missing(adj, chosen))
+    return all(graph.has_edge(u, v) or any({u, v} <= side for side in seen) for u, v in combinations(inside, 2))
 
 
 @settings(deadline=None)
@@ -189,22 +231,30 @@ def is_potential(adj: list[int], chosen: int) -> bool:
 def test_the_largest_clique_is_largest(edges: Edges) -> None:
     """Against networkx."""
     core = core_of(edges)
-    found = largest_clique(core)
-    assert is_clique(core.adj, found)
-    assert found.bit_count() == max(map(len, nx.find_cliques(drawn(edges))), default=0)
+    order, count = split_off_clique(core)
+    graph = drawn(core)
+    assert sorted(order.tolist()) == list(range(core.n))
+    assert all(graph.has_edge(u, v) for u, v in combinations(order[count:].tolist(), 2))
+    assert core.n - count == max(map(len, nx.find_cliques(graph)), default=0)
 
 
-@pytest.mark.parametrize("solve", [solve_subsets, lambda core, k, cells: solve_blocks(core, k, {}, 0, PLENTY, cells)])
-def test_engines_heed_a_stop(solve: object) -> None:
+@pytest.mark.parametrize("engine", ["subsets", "blocks"])
+def test_engines_heed_a_stop(engine: str) -> None:
     """They say so and claim nothing."""
     monitor = Monitor()
     monitor.cells[Monitor.STOP] = 1
     grid = nx.convert_node_labels_to_integers(nx.grid_2d_graph(4, 4))
-    assert solve(core_of((16, list(grid.edges))), 18, monitor.cells) == (Status.STOPPED, [])  # type: ignore[operator]
+    core = core_of((16, list(grid.edges)))
+    if engine == "subsets":
+        status, pairs = solve_subsets(core, 18, monitor.cells)
+    else:
+        status, pairs = solve_blocks(core, 18, free(core), 0, PLENTY, monitor.cells)
+    assert status is Status.STOPPED
+    assert pairs.shape == (0, 2)
 
 
 def test_too_many_separators_are_declined() -> None:
     """The 4 x 4 grid has more than ten."""
     grid = nx.convert_node_labels_to_integers(nx.grid_2d_graph(4, 4))
     core = core_of((16, list(grid.edges)))
-    assert solve_blocks(core, 18, {}, 0, 10, Monitor().cells)[0] is Status.TOO_LARGE
+    assert solve_blocks(core, 18, free(core), 0, 10, Monitor().cells)[0] is Status.TOO_LARGE

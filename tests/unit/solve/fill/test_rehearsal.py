@@ -22,7 +22,7 @@ def entries() -> dict[str, Dispatcher]:
 
 def test_every_kernel_has_been_called_with_one_set_of_types() -> None:
     """More than one would be compiled again in production."""
-    assert len(list(rehearse())) == 5
+    assert len(list(rehearse())) == 6
     assert len(entries()) > 15
     for name, kernel in entries().items():
         assert len(kernel.signatures) == 1, f"{name}: {kernel.signatures}"

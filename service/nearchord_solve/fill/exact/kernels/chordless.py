@@ -9,18 +9,20 @@ import numpy as np
 from nearchord_solve.fill.exact.kernels.words import F64, unpack
 from nearchord_solve.fill.kernels.dense import holds, set_pair
 from nearchord_solve.kernels.cells import STOP
-from nearchord_solve.kernels.compiled import I64, U64, kernel, lowest
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest
 
 
 @kernel
-def adjacency(rows: U64) -> F64:
-    """1.0 at edges and 0.0 elsewhere: float64[n, n]."""
+def presence(rows: U64, x: F64) -> F64:
+    """1.0 at edges and x elsewhere: float64[n, n].  ``x`` float64[n, n], or of shape (0, 0) for 0 everywhere."""
     n = rows.shape[0]
     matrix = np.zeros((n, n), np.float64)
     for a in range(n):
         for b in range(n):
             if holds(rows, a, b):
                 matrix[a, b] = 1.0
+            elif x.shape[0] > 0:
+                matrix[a, b] = x[a, b]
     return matrix
 
 
@@ -35,12 +37,14 @@ def round_up(present: F64, threshold: float, rows: U64) -> None:
 
 
 @kernel
-def four_cycles(graph: U64, present: F64, least: float, room: I64, gain: F64) -> int:
+def four_cycles(graph: U64, present: F64, least: float) -> tuple[I32, F64]:
     """Violated cuts of 4-cycles a b c d: for each non-adjacent a < c and each b the best d after b.
 
-    ``room`` int64[k, 4] and ``gain`` float64[k] are overwritten up to the returned count, which never passes k.
+    Returns the cycles int32[k, 4] and by how much their cuts are violated, float64[k].
     """
     n = graph.shape[0]
+    room = np.empty((64, 4), np.int32)
+    gain = np.empty(64, np.float64)
     count = 0
     near = np.empty(n, np.int64)
     beside = np.empty(n, np.int64)
@@ -61,14 +65,17 @@ def four_cycles(graph: U64, present: F64, least: float, room: I64, gain: F64) ->
                     found += 1
             for i in range(found):
                 partner, value = _opposite(graph, present, a, c, near, i, found)
-                if value > least and count < room.shape[0]:
+                if value > least:
+                    if count == gain.shape[0]:
+                        room = np.concatenate((room, np.empty_like(room)))
+                        gain = np.concatenate((gain, np.empty_like(gain)))
                     room[count, 0] = a
                     room[count, 1] = near[i]
                     room[count, 2] = c
                     room[count, 3] = partner
                     gain[count] = value
                     count += 1
-    return count
+    return room[:count], gain[:count]
 
 
 @kernel
@@ -162,14 +169,15 @@ def _worst_through(
 
 
 @kernel
-def long_cycles(rounded: U64, present: F64, least: float, cells: I64) -> tuple[I64, I64, F64]:
+def long_cycles(rounded: U64, present: F64, least: float, cells: I64) -> tuple[I32, I64, F64]:
     """Violated cuts of cycles that are chordless in ``rounded`` uint64[n, W], which contains the graph.
 
     For each b and each neighbour a of b the most violated one of those found.  Returns the vertices of all cycles
-    one after another, the end of each, the violation of each; fewer when stopped.  O(n m) searches of O(n W).
+    one after another int32, the end of each int64, the violation of each float64; fewer when stopped.
+    O(n m) searches of O(n W).
     """
     n = rounded.shape[0]
-    flat = np.empty(1024, np.int64)
+    flat = np.empty(1024, np.int32)
     ends = np.empty(128, np.int64)
     gains = np.empty(128, np.float64)
     used = 0
@@ -188,7 +196,7 @@ def long_cycles(rounded: U64, present: F64, least: float, cells: I64) -> tuple[I
             if value <= least:
                 continue
             if used + length > flat.shape[0]:
-                flat = np.concatenate((flat, np.empty(used + length, np.int64)))
+                flat = np.concatenate((flat, np.empty(used + length, np.int32)))
             if count == ends.shape[0]:
                 ends = np.concatenate((ends, np.empty(count, np.int64)))
                 gains = np.concatenate((gains, np.empty(count, np.float64)))

@@ -21,8 +21,9 @@ def _score(rows: U64, left: U64, v: int, rule: int, price: F64, size: F64, near:
     for i in range(count):
         a = near[i]
         for j in range(i + 1, count):
-            if not holds(rows, a, near[j]):
-                total += price[a, near[j]]
+            b = near[j]
+            if not holds(rows, a, b):
+                total += size[a] * size[b] if price.shape[0] == 0 else price[a, b]
     return total
 
 
@@ -42,8 +43,9 @@ def eliminate(rows: U64, rule: int, price: F64, size: F64, noise: F64) -> None:
     """Eliminate a vertex of least score + noise at a time and add the missing pairs among its neighbours.
 
     ``rows`` uint64[n, W] is overwritten with the triangulation.  ``rule`` BY_DEGREE or BY_FILL; ``price`` float64[n, n]
-    symmetric, ``size`` and ``noise`` float64[n].  Ties go to the lowest vertex.  Invariant: the scores of the
-    vertices left are up to date.  O(n) rounds, each O(affected vertices * degree^2).
+    symmetric, or of shape (0, 0) for the products of sizes; ``size`` and ``noise`` float64[n].  Ties go to the lowest
+    vertex.  Invariant: the scores of the vertices left are up to date.  O(n) rounds, each
+    O(affected vertices * degree^2).
     """
     n, width = rows.shape
     left = np.empty(width, np.uint64)

@@ -8,7 +8,9 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from nearchord_solve.fill.exact.kernels.words import contains, fill_up, side, unpack
+from nearchord_solve.fill.exact.kernels.hashed import enter, roomier
+from nearchord_solve.fill.exact.kernels.words import contains, fill_up, leave_out, side, unpack
+from nearchord_solve.kernels.cells import STOP
 from nearchord_solve.kernels.compiled import I64, U64, kernel
 
 Bools = NDArray[Any]
@@ -128,3 +130,106 @@ def accepted(rows: U64, count: int, sets: U64, prices: I64, slack: int) -> Bools
                         seen[i, w] |= near[w] & sets[s, w]
         fine[s] = fine[s] and _covered(sets[s], inside, size, seen)
     return fine
+
+
+@kernel
+def extended(rows: U64, count: int, sets: U64, starts: U64, prices: I64, slack: int, cells: I64) -> U64:
+    """The sets S + (T & C) that are potential maximal cliques within ``slack``: uint64[found, W], with repetition.
+
+    S runs over ``starts``, C over the full components of the rest, T over ``sets``, as far as T & C is not empty.
+    Fewer when stopped.
+    """
+    width = rows.shape[1]
+    kept = np.empty((16, width), np.uint64)
+    found = 0
+    fresh = np.empty((0, width), np.uint64)
+    table = np.empty(0, np.int64)
+    joined = np.empty(width, np.uint64)
+    for s in range(starts.shape[0]):
+        sides = full_sides(rows, count, starts[s])
+        for c in range(sides.shape[0]):
+            if cells[STOP] != 0:
+                return kept[:found]
+            new = 0
+            table[:] = -1
+            for t in range(sets.shape[0]):
+                any_inside = np.uint64(0)
+                for w in range(width):
+                    any_inside |= sets[t, w] & sides[c, w]
+                    joined[w] = starts[s, w] | (sets[t, w] & sides[c, w])
+                if any_inside != 0:
+                    fresh, table = roomier(fresh, new, table)
+                    new = max(new, enter(joined, fresh, new, table) + 1)
+            fine = accepted(rows, count, fresh[:new], prices, slack)
+            for i in range(new):
+                if fine[i]:
+                    if found == kept.shape[0]:
+                        kept = np.concatenate((kept, np.empty_like(kept)))
+                    kept[found] = fresh[i]
+                    found += 1
+    return kept[:found]
+
+
+@kernel
+def all_separators(rows: U64, most: int, cells: I64) -> tuple[bool, U64]:
+    """All minimal separators of a connected graph: uint64[s, W], in a fixed order.
+
+    Starts from neighbourhoods N(C), C a component of G - N[v], and closes under S -> N(C), C a component of
+    G - S - N(x), x in S.  Returns (False, those found) if there are more than ``most``, or when stopped.
+    """
+    n, width = rows.shape
+    sets = np.empty((0, width), np.uint64)
+    table = np.empty(0, np.int64)
+    left = np.empty(width, np.uint64)
+    part = np.empty(width, np.uint64)
+    near = np.empty(width, np.uint64)
+    stack = np.empty(n, np.int64)
+    inside = np.empty(n, np.int64)
+    count = 0
+    for turn in range(-n, most + 1):
+        if turn >= count:
+            return True, sets[:count]
+        if turn < 0:
+            size = 1
+            inside[0] = turn + n
+        else:
+            size = unpack(sets[turn], inside)
+        for i in range(size):
+            if cells[STOP] != 0 or count > most:
+                return False, sets[:count]
+            fill_up(left, n)
+            leave_out(left, inside[i])
+            for w in range(width):
+                left[w] &= ~rows[inside[i], w]
+                if turn >= 0:
+                    left[w] &= ~sets[turn, w]
+            for v in range(n):
+                if not contains(left, v):
+                    continue
+                side(rows, v, left, part, near, stack)
+                for w in range(width):
+                    near[w] &= ~part[w]
+                if near.any():
+                    sets, table = roomier(sets, count, table)
+                    count = max(count, enter(near, sets, count, table) + 1)
+    return False, sets[:count]
+
+
+@kernel
+def connected_order(rows: U64) -> I64:
+    """An order in which every beginning is connected: next a vertex with most neighbours so far, then the lowest."""
+    n = rows.shape[0]
+    order = np.empty(n, np.int64)
+    seen = np.zeros(n, np.int64)
+    near = np.empty(n, np.int64)
+    for place in range(n):
+        best = -1
+        for v in range(n):
+            if seen[v] >= 0 and (best < 0 or seen[v] > seen[best]):
+                best = v
+        order[place] = best
+        seen[best] = -1
+        for i in range(unpack(rows[best], near)):
+            if seen[near[i]] >= 0:
+                seen[near[i]] += 1
+    return order

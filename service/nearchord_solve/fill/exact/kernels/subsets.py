@@ -111,3 +111,57 @@ def sweep(adj: U64, sizes: I64, free: int, limit: int, last: Any, cells: I64) ->
                 best[after] = cost
                 last[after] = v
     return FOUND if best[(1 << free) - 1] <= limit else NONE
+
+
+@kernel
+def largest_clique(adj: U64, tries: int) -> Any:
+    """A clique of most vertices as far as ``tries`` steps of branch and bound can tell, as one word.
+
+    ``adj`` uint64[n].  Branches on the vertex with most neighbours among the candidates, ties to the lowest.
+    """
+    n = adj.shape[0]
+    chosen = np.zeros(n + 2, np.uint64)
+    candidates = np.zeros(n + 2, np.uint64)
+    candidates[0] = (ONE << np.uint64(n)) - ONE
+    best = np.uint64(0)
+    height = 1
+    while height > 0 and tries > 0:
+        tries -= 1
+        height -= 1
+        inside = chosen[height]
+        rest = candidates[height]
+        if rest == 0 and ones(inside) > ones(best):
+            best = inside
+        if rest == 0 or ones(inside) + ones(rest) <= ones(best):
+            continue
+        v = lowest(rest)
+        left = rest
+        while left != 0:
+            u = lowest(left)
+            left &= left - ONE
+            if ones(adj[u] & rest) > ones(adj[v] & rest):
+                v = u
+        candidates[height] = rest & ~(ONE << np.uint64(v))
+        chosen[height + 1] = inside | ONE << np.uint64(v)
+        candidates[height + 1] = rest & adj[v]
+        height += 2
+    return best
+
+
+@kernel
+def replay(adj: U64, free: int, last: Any) -> None:
+    """Eliminate the free vertices as ``last`` of :func:`sweep` says; ``adj`` uint64[n] gains the fill."""
+    sequence = np.empty(free, np.int64)
+    gone = (1 << free) - 1
+    for i in range(free - 1, -1, -1):
+        sequence[i] = last[gone]
+        gone ^= 1 << sequence[i]
+    left = (ONE << np.uint64(adj.shape[0])) - ONE
+    for i in range(free):
+        left &= ~(ONE << np.uint64(sequence[i]))
+        near = adj[sequence[i]] & left
+        rest = near
+        while rest != 0:
+            u = lowest(rest)
+            rest &= rest - ONE
+            adj[u] |= near & ~(ONE << np.uint64(u))
