@@ -21,10 +21,12 @@ def answered(
     """What the solver says, as a session would give it; pins are vertex numbers."""
     question = question or nearchord.IndependentSet()
     kind = ns.QUESTIONS[question.name]
-    asked = kind(**{field.name: getattr(question, field.name) for field in fields(question)})
+    values = {"scenarios": question.scenario_count}
+    asked = kind(**{field.name: values.get(field.name, getattr(question, field.name, 0)) for field in fields(kind)})
     u, v = graph.edges()
     pairs = list(zip(u.tolist(), v.tolist(), strict=True))
-    weights = None if graph.weights is None else graph.weights.astype(np.int64)
+    given = graph.weights if question.vectors is None else question.vectors
+    weights = None if given is None else given.astype(np.int64)
     outcome = ns.solve(
         asked, ns.Graph.from_edges(graph.n, pairs), weights, budget or ns.Budget(), "bound", ns.Monitor()
     )
@@ -43,6 +45,7 @@ def answer_of(graph: nearchord.Graph, question: nearchord.Question, outcome: ns.
         outcome.chosen, outcome.reason, outcome.fill, outcome.fill_lower_bound, outcome.states, outcome.bags,
         outcome.largest_bag, outcome.parts, outcome.fill_cores, nearchord.ProofKind(outcome.proof),
         tuple(map(nearchord.ProofKind, outcome.proof_kinds)), 0.0, graph.n, "", origin, outcome.columns,
+        count=getattr(outcome, "count", None),
     )  # fmt: skip
 
 

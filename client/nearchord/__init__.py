@@ -8,7 +8,8 @@ with nearchord.connect("127.0.0.1:7411") as service:
 nearchord.check(graph, answer)
 """
 
-from nearchord.answer import Answer, Prediction, Provenance, Recognition, StructureReport
+from nearchord.answer import Answer, Prediction, Provenance, Recognition, Scenario, StructureReport
+from nearchord.budget import Budget
 from nearchord.check import check
 from nearchord.checks.confirmed import Confirmed
 from nearchord.child import embedded, embedded_async
@@ -35,7 +36,6 @@ from nearchord.jobs import Addresses, BatchInfo, Event, JobInfo, JobRequest, Pro
 from nearchord.load import Load, QuestionLoad, ServerInfo, Slots
 from nearchord.question import (
     QUESTIONS,
-    Budget,
     Clique,
     ColourableSubgraph,
     Colouring,
@@ -95,6 +95,7 @@ __all__ = [
     "QuotaExceeded",
     "Recognition",
     "Rejected",
+    "Scenario",
     "ServerFault",
     "ServerInfo",
     "Service",

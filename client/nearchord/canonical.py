@@ -56,43 +56,47 @@ def vertex_count(n: Any) -> int:
     return int(n)
 
 
-def weight_vector(n: int, weights: Any) -> NDArray[np.int64]:
-    """`weights` as read-only int64[n]; BadInput when one is negative or broken, or their sum reaches 2^62."""
+def weight_vector(n: int, weights: Any, what: str = "weight") -> NDArray[np.int64]:
+    """`weights` as read-only int64[n]; BadInput when one is negative or broken, or their sum reaches 2^62.
+
+    `what` is what messages call one of them.
+    """
     array = np.asarray(weights)
     if array.shape != (n,):
-        raise BadInput(f"weights have shape {array.shape}, but the graph has {n} vertices", f"give {n} weights")
-    whole = _whole_weights(array)
+        raise BadInput(f"{what}s have shape {array.shape}, but the graph has {n} vertices", f"give {n} {what}s")
+    whole = _whole_weights(array, what)
     if n and int(whole.min()) < 0:
         place = int((whole < 0).argmax())
-        raise BadInput(f"weight {place} is {whole[place]}, which is negative", "give weights of at least 0")
+        raise BadInput(f"{what} {place} is {whole[place]}, which is negative", f"give {what}s of at least 0")
     if n and int(whole.max()) * n >= WEIGHT_LIMIT and weight_sum(whole) >= WEIGHT_LIMIT:
-        raise BadInput("the weights add up to 2^62 or more", "count in a larger unit: divide all weights")
+        raise BadInput(f"the {what}s add up to 2^62 or more", f"count in a larger unit: divide all {what}s")
     result = np.array(whole, np.int64)
     result.flags.writeable = False
     return result
 
 
-def _whole_weights(array: NDArray[Any]) -> NDArray[np.int64]:
+def _whole_weights(array: NDArray[Any], what: str) -> NDArray[np.int64]:
     if array.size == 0:
         return np.zeros(0, np.int64)
     if array.dtype.kind == "i":
         return array.astype(np.int64, copy=False)
     if array.dtype.kind not in "uOf":
-        raise BadInput(f"weights have dtype {array.dtype}", "give whole numbers")
-    return np.fromiter((_whole_weight(place, w) for place, w in enumerate(array.tolist())), np.int64, array.size)
+        raise BadInput(f"{what}s have dtype {array.dtype}", "give whole numbers")
+    listed = enumerate(array.tolist())
+    return np.fromiter((_whole_weight(place, weight, what) for place, weight in listed), np.int64, array.size)
 
 
-def _whole_weight(place: int, weight: Any) -> int:
+def _whole_weight(place: int, weight: Any, what: str) -> int:
     if isinstance(weight, float) and weight.is_integer():
         weight = int(weight)
     if isinstance(weight, bool) or not isinstance(weight, int | np.integer):
         raise BadInput(
-            f"weight {place} is {weight!r}, which is not a whole number",
-            "multiply all weights by a power of ten that makes them whole",
+            f"{what} {place} is {weight!r}, which is not a whole number",
+            f"multiply all {what}s by a power of ten that makes them whole",
         )
     if weight >= WEIGHT_LIMIT:
         raise BadInput(
-            f"weight {place} is {weight}, which is 2^62 or more", "count in a larger unit: divide all weights"
+            f"{what} {place} is {weight}, which is 2^62 or more", f"count in a larger unit: divide all {what}s"
         )
     return max(int(weight), -(2**62))
 

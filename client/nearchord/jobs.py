@@ -6,7 +6,8 @@ from dataclasses import dataclass, replace
 from datetime import datetime
 from typing import TYPE_CHECKING
 
-from nearchord.question import Budget, Choice, Question
+from nearchord.budget import Budget
+from nearchord.question import Question
 from nearchord.stages import Phase, Stage, Verdict, WhenOver
 
 if TYPE_CHECKING:
@@ -36,8 +37,8 @@ class JobRequest:
 
     @property
     def subject(self) -> Graph | Addresses:
-        """What is sent of `graph`: without its weights for a question about the graph alone, which takes none."""
-        if isinstance(self.question, Choice):
+        """What is sent of `graph`: without its weights where the question takes none, or brings others instead."""
+        if self.question.takes_weights and self.question.vectors is None:
             return self.graph
         if isinstance(self.graph, Addresses):
             return replace(self.graph, weights="")

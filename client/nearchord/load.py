@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from datetime import datetime
 
-from nearchord.question import Budget
+from nearchord.budget import Budget
 from nearchord.stages import Verdict
 
 

@@ -1,12 +1,16 @@
-"""What a job asks of a graph, and what it may spend."""
+"""What a job asks of a graph."""
 
 from __future__ import annotations
 
 import operator
-from collections.abc import Iterable
-from dataclasses import dataclass
-from typing import ClassVar
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, field, fields
+from typing import Any, ClassVar
 
+import numpy as np
+from numpy.typing import NDArray
+
+from nearchord import add_ons
 from nearchord.errors import BadInput
 
 MOST_COLOURS = 4
@@ -17,10 +21,27 @@ Pin = int | str
 
 @dataclass(frozen=True)
 class Question:
-    """Base of all questions. `maximises`: whether a larger value is better; `bound` is on the other side of it."""
+    """Base of all questions. `maximises`: whether a larger value is better; `bound` is on the other side of it.
+    `takes_weights`: whether the weights of the graph are a part of it."""
 
     name: ClassVar[str] = ""
     maximises: ClassVar[bool] = True
+    takes_weights: ClassVar[bool] = False
+
+    @property
+    def vectors(self) -> NDArray[np.int64] | None:
+        """What the job has in the place of the graph's weights: int64[n] demands, or int64[R, n] scenarios; or None."""
+        return None
+
+    @property
+    def scenario_count(self) -> int:
+        """How many weight vectors it is asked for; 0 where the graph's weights are the only ones."""
+        return 0
+
+    @classmethod
+    def add_ons(cls) -> list[str]:
+        """Its fields beside pins and demands."""
+        return [one.name for one in fields(cls) if one.name in add_ons.NAMES]
 
 
 @dataclass(frozen=True)
@@ -29,14 +50,35 @@ class Choice(Question):
 
     `must` are vertices that have to be chosen, `never` vertices that must not be; each is a number from 0 or a name of
     the graph. Pins that contradict each other are no error: the verdict says INFEASIBLE.
+
+    Some take `scenarios`: weight vectors, one a row, that are answered each for itself in one job (`Answer.scenarios`);
+    the weights of the graph are not used then. A number of scenarios instead of vectors stands in the question of an
+    answer, and beside `Addresses` whose weights hold so many vectors. Questions are compared without their vectors.
+    Some take `prices`: what each vertex would cost (`Answer.price_in`, `Answer.price_out`).
     """
 
+    takes_weights: ClassVar[bool] = True
     must: tuple[Pin, ...] = ()
     never: tuple[Pin, ...] = ()
 
     def __post_init__(self) -> None:
-        for field in ("must", "never"):
-            object.__setattr__(self, field, _pins(field, getattr(self, field)))
+        for name in ("must", "never"):
+            self._set(name, _pins(name, getattr(self, name)))
+
+    def _set(self, field: str, value: object) -> None:
+        object.__setattr__(self, field, value)
+
+    @property
+    def vectors(self) -> NDArray[np.int64] | None:
+        """See `Question.vectors`."""
+        given = getattr(self, "scenarios", None)
+        return given if isinstance(given, np.ndarray) else None
+
+    @property
+    def scenario_count(self) -> int:
+        """See `Question.scenario_count`."""
+        given = getattr(self, "scenarios", None)
+        return len(given) if isinstance(given, np.ndarray) else given or 0
 
 
 def _pins(field: str, pins: Iterable[Pin]) -> tuple[Pin, ...]:
@@ -56,9 +98,39 @@ def _vertex(field: str, pin: object) -> int:
 
 @dataclass(frozen=True)
 class IndependentSet(Choice):
-    """Heaviest set of vertices with no edge inside: the best conflict-free choice on one channel."""
+    """Heaviest set of vertices with no edge inside: the best conflict-free choice on one channel.
+
+    `conflict_prices`: what dropping each edge would gain (`Answer.conflict_price`). `best`: how many of the best sets,
+    0 to 1,000 (`Answer.best`; 0 and 1 give the choice alone). `count`: how many sets are as heavy as the best
+    (`Answer.count`). `limit`: most vertices chosen, None for any number. `limit` and `scenarios` go with pins only.
+    """
 
     name: ClassVar[str] = "independent-set"
+    prices: bool = False
+    conflict_prices: bool = False
+    best: int = 0
+    count: bool = False
+    limit: int | None = None
+    scenarios: add_ons.Vectors | int | None = field(default=None, compare=False)
+
+    def __post_init__(self) -> None:
+        super().__post_init__()
+        for name in ("prices", "conflict_prices", "count"):
+            self._set(name, add_ons.flag(name, getattr(self, name)))
+        self._set("best", add_ons.whole("best", self.best, add_ons.MOST_BEST))
+        if self.limit is not None:
+            self._set("limit", add_ons.whole("limit", self.limit, add_ons.MOST_LIMIT))
+        self._set("scenarios", add_ons.scenario_rows(self.scenarios))
+        add_ons.check_company(
+            {
+                "prices": self.prices,
+                "conflict_prices": self.conflict_prices,
+                "best": self.best > 1,
+                "count": self.count,
+                "limit": self.limit is not None,
+                "scenarios": self.scenario_count > 0,
+            }
+        )
 
 
 @dataclass(frozen=True)
@@ -83,11 +155,16 @@ class ColourableSubgraph(Choice):
 
     name: ClassVar[str] = "colourable-subgraph"
     colours: int = 2
+    prices: bool = False
+    scenarios: add_ons.Vectors | int | None = field(default=None, compare=False)
 
     def __post_init__(self) -> None:
         super().__post_init__()
         if not isinstance(self.colours, int) or not 1 <= self.colours <= MOST_COLOURS:
             raise BadInput(f"colours is {self.colours!r}", f"give a whole number from 1 to {MOST_COLOURS}")
+        self._set("prices", add_ons.flag("prices", self.prices))
+        self._set("scenarios", add_ons.scenario_rows(self.scenarios))
+        add_ons.check_company({"prices": self.prices, "scenarios": self.scenario_count > 0})
 
 
 @dataclass(frozen=True)
@@ -95,23 +172,50 @@ class InducedForest(Choice):
     """Heaviest induced forest: the loop-free choice; what is left out is the cheapest feedback vertex set."""
 
     name: ClassVar[str] = "induced-forest"
+    prices: bool = False
+    scenarios: add_ons.Vectors | int | None = field(default=None, compare=False)
+
+    def __post_init__(self) -> None:
+        super().__post_init__()
+        self._set("prices", add_ons.flag("prices", self.prices))
+        self._set("scenarios", add_ons.scenario_rows(self.scenarios))
+        add_ons.check_company({"prices": self.prices, "scenarios": self.scenario_count > 0})
 
 
 @dataclass(frozen=True)
-class Colouring(Question):
-    """Fewest colours for all vertices, so that no edge has a colour at both ends: the channel plan for everybody."""
+class Plan(Question):
+    """Base of the questions about everybody: no vertex is left out, and the weights of the graph play no part.
+
+    `demands`: how much each vertex needs, n whole numbers of at least 0; None for 1 each. They do not stand in the
+    question of an answer, and questions are compared without them.
+    """
+
+    maximises: ClassVar[bool] = False
+    demands: NDArray[Any] | Sequence[int] | None = field(default=None, compare=False)
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "demands", add_ons.demand_vector(self.demands))
+
+    @property
+    def vectors(self) -> NDArray[np.int64] | None:
+        """See `Question.vectors`."""
+        return self.demands if isinstance(self.demands, np.ndarray) else None
+
+
+@dataclass(frozen=True)
+class Colouring(Plan):
+    """Fewest colours for all vertices, so that no edge has a colour at both ends: the channel plan for everybody. A
+    vertex gets as many colours as it needs (`Answer.colours_of`)."""
 
     name: ClassVar[str] = "colouring"
-    maximises: ClassVar[bool] = False
 
 
 @dataclass(frozen=True)
-class FractionalColouring(Question):
+class FractionalColouring(Plan):
     """Shortest frame in which every vertex is on for its share, and no two ends of an edge at a time: the airtime plan.
-    The value is a fraction."""
+    The value is an exact fraction; the answer has `shares`, and `bottleneck` where the bound was reached."""
 
     name: ClassVar[str] = "fractional-colouring"
-    maximises: ClassVar[bool] = False
 
 
 @dataclass(frozen=True)
@@ -152,34 +256,3 @@ QUESTIONS: dict[str, type[Question]] = {
 def pins_of(question: Question) -> tuple[tuple[Pin, ...], tuple[Pin, ...]]:
     """`must` and `never` of a question; both empty where it takes none."""
     return (question.must, question.never) if isinstance(question, Choice) else ((), ())
-
-
-@dataclass(frozen=True)
-class Budget:
-    """What a job may spend; None takes the server's default.
-
-    `fill`: fill edges of a triangulation, 0 for chordal graphs only. `states`: states of the dynamic program, at least
-    1. `seconds`: running time, queue wait not counted, above 0. `memory`: bytes, at least 1.
-    """
-
-    fill: int | None = None
-    states: int | None = None
-    seconds: float | None = None
-    memory: int | None = None
-
-    def __post_init__(self) -> None:
-        for field in ("fill", "states", "memory"):
-            self._whole(field, getattr(self, field))
-        if self.seconds is not None and not isinstance(self.seconds, int | float):
-            raise BadInput(f"budget seconds={self.seconds!r} is not a number", "give seconds, such as 30")
-
-    def _whole(self, field: str, value: object) -> None:
-        if value is None:
-            return
-        try:
-            whole = operator.index(value)  # type: ignore[arg-type]
-        except TypeError:
-            raise BadInput(f"budget {field}={value!r} is not a whole number", "give a whole number") from None
-        if not -(2**63) <= whole < 2**63:
-            raise BadInput(f"budget {field}={whole} is out of range", "give a number below 2^63")
-        object.__setattr__(self, field, whole)

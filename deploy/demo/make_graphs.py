@@ -6,6 +6,9 @@
   with a few cleared pairs. Without them the graph is chordal (subtrees of a tree).
 - `sites-*`: radio sites on the Lume plain. Two sites conflict when they stand closer than the separation distance.
 
+Beside them stand `night-channels.txt` and `night-seasons.txt`, with how many channels the windows of one night need and
+what they are worth in three seasons.
+
 Every request has a value in the planner's smallest unit, which becomes its weight. Needs numpy and networkx:
 
     python deploy/demo/make_graphs.py [FOLDER]      (default: the folder `graphs` beside this script)
@@ -132,6 +135,21 @@ def as_node_link(conflicts: Conflicts) -> bytes:
     return (json.dumps(nx.node_link_data(as_networkx(conflicts), edges="edges"), indent=0) + "\n").encode()
 
 
+def as_demands(conflicts: Conflicts, rng: Generator) -> bytes:
+    """CSV of what each request needs: one channel, or now and then two or three."""
+    needs = rng.choice([1, 2, 3], size=len(conflicts.names), p=[0.7, 0.2, 0.1])
+    rows = [f"{name},{need}" for name, need in zip(conflicts.names, needs, strict=True)]
+    return ("\n".join(["name,demand", *rows]) + "\n").encode()
+
+
+def as_scenarios(conflicts: Conflicts, titles: tuple[str, ...], rng: Generator) -> bytes:
+    """CSV of what each request is worth in some scenarios: from half to twice its value."""
+    factors = rng.integers(50, 200, size=(len(conflicts.names), len(titles)))
+    worths = np.array(conflicts.values)[:, None] * factors // 100
+    rows = [",".join([name, *map(str, worth)]) for name, worth in zip(conflicts.names, worths.tolist(), strict=True)]
+    return ("\n".join([",".join(["request", *titles]), *rows]) + "\n").encode()
+
+
 def packed(write: Callable[[Conflicts], bytes]) -> Callable[[Conflicts], bytes]:
     """The same file gzipped, without a time stamp in it."""
     return lambda conflicts: gzip.compress(write(conflicts), compresslevel=9, mtime=0)
@@ -155,6 +173,9 @@ def main() -> None:
     ]
     for name, conflicts, write in files:
         (folder / name).write_bytes(write(conflicts))
+    night = files[0][1]
+    (folder / "night-channels.txt").write_bytes(as_demands(night, rng))
+    (folder / "night-seasons.txt").write_bytes(as_scenarios(night, ("dry", "wet", "frost"), rng))
 
 
 if __name__ == "__main__":

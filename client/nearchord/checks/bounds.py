@@ -32,7 +32,8 @@ def check_bound(graph: Graph, answer: Answer, question: Choice) -> tuple[str | N
     """
     check_sides(answer)
     bound = answer.bound
-    assert isinstance(bound, int), "check_sides refuses its absence, and weights are whole"
+    if not isinstance(bound, int):
+        raise CheckFailed(f"the bound is given as {bound}, but weights are whole numbers")
     plain = _plain(graph, bound, question)
     if plain is not None:
         return plain, None
@@ -63,9 +64,20 @@ def _plain(graph: Graph, bound: int, question: Choice) -> str | None:
     weights = weights_of(graph)
     if question.maximises and bound >= weight_sum(weights[~mask_of(graph, question.never, "never")]):
         return f"the bound {bound}: all vertices that may be chosen weigh no more"
+    if isinstance(question, IndependentSet) and question.limit is not None:
+        most = _heaviest(weights, pins_of(graph, question), question.limit)
+        if bound >= most:
+            return f"the bound {bound}: no {question.limit} vertices that may be chosen weigh more"
     if not question.maximises and bound <= weight_sum(weights[mask_of(graph, question.must, "must")]):
         return f"the bound {bound}: the vertices that must be chosen weigh no less"
     return None
+
+
+def _heaviest(weights: Ints, pins: Pins, limit: int) -> int:
+    """What so many vertices weigh at most: those that must be chosen, and the heaviest of the others."""
+    room = max(0, limit - int(pins.must.sum()))
+    others = np.sort(weights[~pins.must & ~pins.never])
+    return weight_sum(weights[pins.must]) + weight_sum(others[max(0, others.size - room) :])
 
 
 def _proven(graph: Graph, answer: Answer, bound: int, question: Choice) -> str | None:

@@ -25,18 +25,21 @@ def check_choice(graph: Graph, answer: Answer, question: Choice) -> Confirmed:
         return _check_infeasible(graph, question)
     if answer.value is None:
         return check_unanswered(answer)
-    chosen = _chosen_mask(graph, answer)
-    done = [_check_definition(graph, question, chosen, answer.colour), _check_value(graph, answer, chosen)]
+    chosen = chosen_mask(graph, answer.chosen)
+    done = [check_definition(graph, question, chosen, answer.colour), _check_value(graph, answer, chosen)]
     proven, left = check_bound(graph, answer, question)
     return Confirmed((*done, *filter(None, (proven,))), tuple(filter(None, (left,))))
 
 
 def _check_infeasible(graph: Graph, question: Choice) -> Confirmed:
-    """The pins have to contradict each other: a vertex in both lists, or two ends of an edge forced the wrong way."""
+    """The pins have to contradict each other, or the limit: a vertex in both lists, or two ends of an edge forced the
+    wrong way, or more vertices forced than allowed."""
     must, never = (mask_of(graph, getattr(question, field), field) for field in ("must", "never"))
     both = np.flatnonzero(must & never)
     if both.size:
         return Confirmed((f"the pins contradict each other: vertex {graph.label(int(both[0]))} is in both lists",), ())
+    if isinstance(question, IndependentSet) and question.limit is not None and int(must.sum()) > question.limit:
+        return Confirmed((f"{int(must.sum())} vertices must be chosen, but the limit is {question.limit}",), ())
     if isinstance(question, Clique):
         pair = _no_edge_inside(graph, must)
         if pair is not None:
@@ -54,9 +57,9 @@ def _forced(question: Choice, must: Mask, never: Mask) -> Mask:
     return never if isinstance(question, VertexCover) else must
 
 
-def _chosen_mask(graph: Graph, answer: Answer) -> Mask:
-    """The choice as a mask; its vertices have to ascend and to exist."""
-    chosen = answer.chosen.astype(np.int64)
+def chosen_mask(graph: Graph, vertices: NDArray[np.uint32]) -> Mask:
+    """A choice as a mask; its vertices have to ascend and to exist."""
+    chosen = vertices.astype(np.int64)
     if chosen.size and int(chosen.max()) >= graph.n:
         raise CheckFailed(f"vertex {int(chosen.max())} is chosen, but the graph has {graph.n} vertices")
     disorder = np.flatnonzero(np.diff(chosen) <= 0)
@@ -91,8 +94,8 @@ def _no_edge_inside(graph: Graph, mask: Mask) -> str | None:
     return f"{{{graph.label(one)}, {graph.label(int(np.flatnonzero(far)[0]))}}}"
 
 
-def _check_definition(graph: Graph, question: Choice, chosen: Mask, colour: NDArray[np.uint32]) -> str:
-    """The choice meets the definition of the question and its pins."""
+def check_definition(graph: Graph, question: Choice, chosen: Mask, colour: NDArray[np.uint32]) -> str:
+    """Words for a choice that meets the definition of the question and its pins; CheckFailed where it does not."""
     _check_pins(graph, question, chosen)
     if isinstance(question, ColourableSubgraph):
         return check_colours(graph, chosen, colour, question.colours)
@@ -102,7 +105,7 @@ def _check_definition(graph: Graph, question: Choice, chosen: Mask, colour: NDAr
         clash = _edge_inside(graph, chosen)
         if clash is not None:
             raise CheckFailed(f"the chosen set has the edge {clash} inside")
-        return f"no edge lies inside the {int(chosen.sum())} chosen vertices"
+        return f"no edge lies inside the {_within(question, chosen)} chosen vertices"
     if isinstance(question, VertexCover):
         clash = _edge_inside(graph, ~chosen)
         if clash is not None:
@@ -114,6 +117,16 @@ def _check_definition(graph: Graph, question: Choice, chosen: Mask, colour: NDAr
             raise CheckFailed(f"the chosen vertices {pair} are not adjacent")
         return f"the {int(chosen.sum())} chosen vertices are pairwise adjacent"
     raise CheckFailed(f"this client cannot check the question {question.name!r}; update it")
+
+
+def _within(question: IndependentSet, chosen: Mask) -> str:
+    """The number of chosen vertices, which the limit allows."""
+    count = int(chosen.sum())
+    if question.limit is None:
+        return str(count)
+    if count > question.limit:
+        raise CheckFailed(f"{count} vertices are chosen, but the limit is {question.limit}")
+    return f"{count} (at most {question.limit})"
 
 
 def _check_pins(graph: Graph, question: Choice, chosen: Mask) -> None:

@@ -16,6 +16,10 @@ class Confirmed:
     what: tuple[str, ...]
     not_confirmed: tuple[str, ...]
 
+    def and_also(self, other: Confirmed) -> Confirmed:
+        """Both checks together."""
+        return Confirmed(self.what + other.what, self.not_confirmed + other.not_confirmed)
+
 
 class Findings:
     """Collects words while a check goes on."""

@@ -15,7 +15,7 @@ import numpy as np
 from nearchord.answer import Answer
 from nearchord.checks.columns import column_of
 from nearchord.checks.edges import Edges, Ints
-from nearchord.checks.splitting import Splitting
+from nearchord.checks.splitting import Splitting, has_splitting
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph
 
@@ -32,7 +32,7 @@ def check_plan_bound(graph: Graph, answer: Answer, demand: Ints, whole: bool) ->
         return f"the bound {bound}: one vertex alone demands as much"
     if "proof_clique" in answer.columns:
         return _check_clique(graph, answer, demand, bound)
-    if "bottleneck_numerator" in answer.columns:
+    if "bottleneck_numerator" in answer.columns and has_splitting(answer.columns):
         return _check_prices(graph, answer, demand, bound, whole)
     return None
 

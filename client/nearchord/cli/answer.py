@@ -12,10 +12,10 @@ from nearchord.cli.connection import STANDARD_SERVER, detaching, remote
 from nearchord.cli.exits import of_verdicts
 from nearchord.cli.follow import follow, follow_batch
 from nearchord.cli.layout import print_json, print_table
-from nearchord.cli.names import Names
 from nearchord.cli.numbers import exact
 from nearchord.cli.progress import BatchDisplay, JobDisplay
 from nearchord.cli.record import record, show
+from nearchord.cli.subject import Subject
 
 
 @click.command(short_help="Print the answer of a job or a batch.")
@@ -41,11 +41,11 @@ def _of_job(service: nearchord.Service, identity: str, no_wait: bool, as_json: b
         raise nearchord.NotReady(f"job {identity} has not ended; leave out --no-wait to wait for it")
     with JobDisplay() as display:
         found = follow(service, job, display)
-        names = stored_names(service, found)
+        about = stored_subject(service, found)
     if as_json:
-        print_json(record(found, names))
+        print_json(record(found, about))
     else:
-        show(found, names)
+        show(found, about)
     return of_verdicts([found.verdict])
 
 
@@ -64,16 +64,19 @@ def _of_batch(service: nearchord.Service, identity: str, no_wait: bool, as_json:
             for each in found:
                 verdicts.append(each.verdict)
                 with display.aside():
-                    print_json(record(each, stored_names(service, each)))
+                    print_json(record(each, stored_subject(service, each)))
             return of_verdicts(verdicts)
         answers = list(found)
     _show_all(answers)
     return of_verdicts([each.verdict for each in answers])
 
 
-def stored_names(service: nearchord.Service, found: nearchord.Answer) -> Names:
-    """The names that the job carried, or None."""
-    return service.names(found.names_address) if found.names_address else None
+def stored_subject(service: nearchord.Service, found: nearchord.Answer) -> Subject:
+    """What the answer is about: the names that the job carried, and the edges where the answer speaks of edges."""
+    names = service.names(found.names_address) if found.names_address else None
+    if not found.conflict_price.size:
+        return Subject(names)
+    return Subject(names, service.graph(found.provenance.graph_address))
 
 
 def _show_all(answers: Iterable[nearchord.Answer]) -> None:

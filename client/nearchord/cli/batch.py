@@ -21,6 +21,7 @@ from nearchord.cli.layout import write_json
 from nearchord.cli.options import Ask, Source
 from nearchord.cli.progress import BatchDisplay
 from nearchord.cli.record import record
+from nearchord.cli.subject import Subject
 
 
 @click.command(short_help="Answer a question about many graphs.")
@@ -38,14 +39,16 @@ def batch(places: tuple[str, ...], ask: Ask, source: Source, out: str | None, se
     """
     files = collect(places)
     graphs = read_all(files, source)
-    requests = [ask.request(graph, Path(file).name[:200]) for file, graph in zip(files, graphs, strict=True)]
+    asked = [ask.about(graph) for graph in graphs]
+    requests = [ask.request(graphs[at], asked[at], Path(file).name[:200]) for at, file in enumerate(files)]
     verdicts: list[nearchord.Verdict] = []
     with _lines(out) as lines, BatchDisplay(len(files)) as display, remote_or_private(server, display) as service:
         submitted = service.submit_batch(requests, label=ask.label)
         with detaching("batch", submitted.id, server):
             for answer in follow_batch(service, submitted, display):
                 verdicts.append(answer.verdict)
-                line = {"file": files[answer.batch_index], **record(answer, graphs[answer.batch_index].names)}
+                at = answer.batch_index
+                line = {"file": files[at], **record(answer, Subject.of(graphs[at], asked[at].titles))}
                 with nullcontext() if out else display.aside():
                     write_json(line, lines)
     if sys.stderr.isatty():

@@ -17,6 +17,8 @@ CAPTION = 9
 """Columns that captions take."""
 
 LISTING_LINES = 4
+TERMINAL_ROWS = 20
+"""Rows of a table that a terminal gets."""
 
 
 def print_json(value: dict[str, Any]) -> None:
@@ -68,22 +70,47 @@ def print_table(
     sys.stdout.writelines(f"{line.rstrip()}\n" for line in capture.get().splitlines())
 
 
+def rows_shown(count: int) -> int:
+    """How many of so many rows are printed: all, but on a terminal no more than fill it."""
+    return min(count, TERMINAL_ROWS) if sys.stdout.isatty() else count
+
+
+def print_first(
+    headings: Sequence[str],
+    rows: Sequence[Sequence[str]],
+    total: int,
+    *,
+    flexible: str,
+    numbers: frozenset[str] = frozenset(),
+) -> None:
+    """Print a table below a blank line, and how many of its `total` rows are left out."""
+    sys.stdout.write("\n")
+    print_table(headings, rows, flexible=flexible, numbers=numbers)
+    if len(rows) < total:
+        sys.stdout.write(f"... and {total - len(rows):,} more (--json has all)\n")
+
+
 def print_entry(caption: str, text: str) -> None:
     """Print a caption with its text, wrapped beside the caption on a terminal."""
-    sys.stdout.write(f"{caption:<{CAPTION}}" + ("\n" + " " * CAPTION).join(_beside_caption(text)) + "\n")
+    _print_beside(caption, CAPTION, _beside_caption(text, CAPTION))
 
 
-def print_listing(caption: str, words: Sequence[str]) -> None:
-    """Print words like an entry; a terminal gets a few lines of them and the number left out."""
-    lines = _beside_caption(" ".join(words))
+def print_listing(caption: str, words: Sequence[str], width: int = CAPTION) -> None:
+    """Print words like an entry whose caption takes `width` columns; a terminal gets a few lines of them and the number
+    left out."""
+    lines = _beside_caption(" ".join(words), width)
     if len(lines) > LISTING_LINES:
         shown = sum(len(line.split(" ")) for line in lines[:LISTING_LINES])
         lines = [*lines[:LISTING_LINES], f"... and {len(words) - shown:,} more (--json has all)"]
-    sys.stdout.write(f"{caption:<{CAPTION}}" + ("\n" + " " * CAPTION).join(lines) + "\n")
+    _print_beside(caption, width, lines)
 
 
-def _beside_caption(text: str) -> list[str]:
+def _print_beside(caption: str, width: int, lines: Sequence[str]) -> None:
+    sys.stdout.write(f"{caption:<{width}}" + ("\n" + " " * width).join(lines) + "\n")
+
+
+def _beside_caption(text: str, width: int) -> list[str]:
     if not sys.stdout.isatty():
         return [text]
-    width = max(20, shutil.get_terminal_size().columns - CAPTION)
-    return textwrap.wrap(text, width, break_long_words=False, break_on_hyphens=False) or [""]
+    room = max(20, shutil.get_terminal_size().columns - width)
+    return textwrap.wrap(text, room, break_long_words=False, break_on_hyphens=False) or [""]

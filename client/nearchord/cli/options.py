@@ -12,9 +12,8 @@ from typing import Any
 import click
 
 import nearchord
-from nearchord.cli.exits import usage
+from nearchord.cli.asking import OPTIONS, QUESTION, VECTORS, Asked, VectorFiles, question_of
 from nearchord.files import FORMATS
-from nearchord.question import Choice
 
 Command = Callable[..., int]
 
@@ -26,17 +25,22 @@ class Ask:
     """What is asked of each graph, and on which terms."""
 
     question: nearchord.Question
+    vectors: VectorFiles
     budget: nearchord.Budget
     when_over: str
     priority: int
     not_after: dt.datetime | None
     label: str
 
-    def request(self, graph: nearchord.Graph, label: str = "") -> nearchord.JobRequest:
+    def about(self, graph: nearchord.Graph) -> Asked:
+        """The question about one graph, with the numbers from its files."""
+        return self.vectors.read(self.question, graph)
+
+    def request(self, graph: nearchord.Graph, asked: Asked, label: str = "") -> nearchord.JobRequest:
         """The request for one graph of a batch; `label` serves when the caller gave none."""
         return nearchord.JobRequest(
             graph,
-            self.question,
+            asked.question,
             budget=self.budget,
             when_over=self.when_over,
             priority=self.priority,
@@ -44,11 +48,11 @@ class Ask:
             label=self.label or label,
         )
 
-    def submit(self, service: nearchord.Service, graph: nearchord.Graph) -> nearchord.Job:
+    def submit(self, service: nearchord.Service, graph: nearchord.Graph, asked: Asked) -> nearchord.Job:
         """Submit one graph as a job of its own."""
         return service.submit(
             graph,
-            self.question,
+            asked.question,
             budget=self.budget,
             when_over=self.when_over,
             priority=self.priority,
@@ -64,16 +68,6 @@ class Source:
     format: str | None
     scale: int | None
     weights: str | None
-
-
-class NameList(click.ParamType[tuple[str, ...]]):
-    """Vertex names separated by commas."""
-
-    name = "V,.."
-
-    def convert(self, value: Any, param: click.Parameter | None, ctx: click.Context | None) -> tuple[str, ...]:
-        """Split, trim, and drop empty entries."""
-        return tuple(part for part in (piece.strip() for piece in str(value).split(",")) if part)
 
 
 class Size(click.ParamType[int]):
@@ -112,12 +106,6 @@ server = click.option(
 as_json = click.option("--json", "as_json", is_flag=True, help="Print JSON for programs.")
 whole_batch = click.option("--batch", "is_batch", is_flag=True, help="The id names a batch.")
 
-_QUESTION = [
-    click.option("--question", required=True, type=click.Choice(list(nearchord.QUESTIONS)), help="What to ask."),
-    click.option("-q", "colours", type=int, metavar="N", help="Colours, for colourable-subgraph.  [default: 2]"),
-    click.option("--must", type=NameList(), multiple=True, help="Vertices that have to be in the answer."),
-    click.option("--never", type=NameList(), multiple=True, help="Vertices that must not be in the answer."),
-]
 _BUDGET = [
     click.option("--fill", type=int, metavar="K", help="Fill edges allowed; 0: chordal only.  [default: any]"),
     click.option("--states", type=int, metavar="N", help="States of the dynamic program.  [default: 10000000]"),
@@ -156,9 +144,6 @@ def asks(command: Command) -> Command:
     def gathering(
         *,
         question: str,
-        colours: int | None,
-        must: tuple[tuple[str, ...], ...],
-        never: tuple[tuple[str, ...], ...],
         fill: int | None,
         states: int | None,
         seconds: float | None,
@@ -167,35 +152,22 @@ def asks(command: Command) -> Command:
         priority: int,
         not_after: dt.datetime | None,
         label: str,
-        **rest: object,
+        **rest: Any,
     ) -> int:
-        asked = _question(question, colours, sum(must, ()), sum(never, ()), rest.get("weights"))
+        given = {field: rest.get(field) for field in OPTIONS}
+        for pins in ("must", "never"):
+            given[pins] = sum(given[pins] or (), ())
+        asked = question_of(question, given)
+        vectors = VectorFiles(given["scenarios"], given["demands"], rest.get("scale"))
         budget = nearchord.Budget(fill=fill, states=states, seconds=seconds, memory=memory)
-        return command(ask=Ask(asked, budget, when_over, priority, not_after, label), **rest)
+        ask = Ask(asked, vectors, budget, when_over, priority, not_after, label)
+        return command(ask=ask, **{name: value for name, value in rest.items() if name not in _OF_THE_QUESTION})
 
-    return _with([*_QUESTION, *_BUDGET, *_QUEUE], gathering)
-
-
-def _question(
-    name: str, colours: int | None, must: tuple[str, ...], never: tuple[str, ...], weights: object
-) -> nearchord.Question:
-    """The question with its options; those that it does not take are refused."""
-    kind = nearchord.QUESTIONS[name]
-    if kind is nearchord.ColourableSubgraph:
-        return nearchord.ColourableSubgraph(must=must, never=never, colours=2 if colours is None else colours)
-    if colours is not None:
-        raise usage(f"-q does not go with the question {name}", "leave it out, or ask colourable-subgraph")
-    if issubclass(kind, Choice):
-        return kind(must=must, never=never)
-    for option, given in (("--must", must), ("--never", never), ("--weights", weights)):
-        if given:
-            raise usage(f"{option} does not go with the question {name}", f"leave it out, or ask {_choices()}")
-    return kind()
+    return _with([*QUESTION, *_BUDGET, *_QUEUE], gathering)
 
 
-def _choices() -> str:
-    *names, last = [name for name, kind in nearchord.QUESTIONS.items() if issubclass(kind, Choice)]
-    return f"{', '.join(names)} or {last}"
+_OF_THE_QUESTION = OPTIONS.keys() - {"weights"}
+"""Options that end in the question; the weights of a file end in the graph."""
 
 
 def reads(command: Command) -> Command:
@@ -206,6 +178,16 @@ def reads(command: Command) -> Command:
         return command(source=Source(format, scale, weights), **rest)
 
     return _with(_SOURCE, gathering)
+
+
+def brings_vectors(command: Command) -> Command:
+    """Give a command the options of the numbers that an answer does not carry, as one `vectors`."""
+
+    @wraps(command)
+    def gathering(*, scenarios: str | None, demands: str | None, **rest: Any) -> int:
+        return command(vectors=VectorFiles(scenarios, demands, rest.get("scale")), **rest)
+
+    return _with(VECTORS, gathering)
 
 
 def graph_argument(command: Command) -> Command:

@@ -11,15 +11,16 @@ import numpy as np
 import nearchord
 from nearchord.cli.numbers import size
 
-PREFIX = "proof_"
+PREFIXES = ("proof_", "bottleneck_")
+"""Columns of the certificate; bottleneck prices belong to it, because their proof is about their very numerators."""
 FORMAT = 1
 MOST_BYTES = 1 << 30
 
 
 def write(file: str, answer: nearchord.Answer) -> bool:
     """Write the proof of `answer`; False, and no file, without one. FileProblem if it cannot be written."""
-    columns = {name: column for name, column in answer.columns.items() if name.startswith(PREFIX)}
-    if not columns:
+    columns = {name: column for name, column in answer.columns.items() if name.startswith(PREFIXES)}
+    if not any(name.startswith(PREFIXES[0]) for name in columns):
         return False
     found = {
         "proof_format": answer.provenance.proof_format,
@@ -48,7 +49,7 @@ def read(file: str, graph: nearchord.Graph) -> dict[str, Any]:
             raise ValueError(f"its format is {found['proof_format']!r}, this client reads {FORMAT}")
         if found["graph_address"] != graph.address:
             raise ValueError(f"it is about the graph {found['graph_address']}, not about this one ({graph.address})")
-        return {name: _column(column) for name, column in found["columns"].items() if name.startswith(PREFIX)}
+        return {name: _column(column) for name, column in found["columns"].items() if name.startswith(PREFIXES)}
     except (AttributeError, KeyError, OSError, OverflowError, RecursionError, TypeError, ValueError) as error:
         why = f"this is no proof for this graph: {error}"
         raise nearchord.FileProblem(file, None, why, "give what `solve --proof` wrote") from None

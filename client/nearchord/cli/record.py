@@ -8,16 +8,17 @@ from typing import Any
 
 import nearchord
 from nearchord.cli import proof_file
-from nearchord.cli.answers import choice, fill, structure
+from nearchord.cli.answers import choice, fill, plan, structure
 from nearchord.cli.layout import print_entry
-from nearchord.cli.names import Labels, Names
 from nearchord.cli.numbers import exact
-from nearchord.question import pins_of
+from nearchord.cli.subject import Subject
+from nearchord.question import Plan, pins_of
 
 
-def record(answer: nearchord.Answer, names: Names) -> dict[str, Any]:
-    """The object of `--json`: every key of a question is always there, null where a figure was not reached."""
-    labels = Labels(names)
+def record(answer: nearchord.Answer, subject: Subject) -> dict[str, Any]:
+    """The object of `--json`: every key of a question, and of the add-ons that were asked for, is always there, null
+    where a figure was not reached."""
+    labels = subject.labels
     must, never = pins_of(answer.question)
     return {
         "job": answer.job_id,
@@ -42,39 +43,42 @@ def record(answer: nearchord.Answer, names: Names) -> dict[str, Any]:
         "proof_kinds": [str(kind) for kind in answer.proof_kinds],
         "proof_bytes": answer.proof_bytes,
         "vertices": answer.vertices,
-        **_of_its_question(answer, labels),
+        **_of_its_question(answer, subject),
         "provenance": _provenance(answer.provenance),
     }
 
 
-def _of_its_question(answer: nearchord.Answer, labels: Labels) -> dict[str, Any]:
+def _of_its_question(answer: nearchord.Answer, subject: Subject) -> dict[str, Any]:
     match answer.question:
         case nearchord.Fill():
-            return fill.record(answer, labels)
+            return fill.record(answer, subject.labels)
         case nearchord.Structure():
             return structure.record(answer)
-        case nearchord.ColourableSubgraph():
-            return choice.colour_record(answer, answer.question, labels)
-    return {}
+        case Plan():
+            return plan.record(answer, subject)
+    return choice.record(answer, subject)
 
 
-def show(answer: nearchord.Answer, names: Names) -> None:
+def show(answer: nearchord.Answer, subject: Subject) -> None:
     """Print an answer for people."""
     print_entry("verdict", f"{answer.verdict}: {answer.reason}")
-    labels = Labels(names)
     match answer.question:
         case nearchord.Fill():
             _print(fill.lines(answer))
             _print(_ending(answer))
-            fill.show_pairs(answer, labels)
+            fill.show_pairs(answer, subject.labels)
         case nearchord.Structure():
             _print(structure.lines(answer))
             _print(_ending(answer))
             structure.show_predictions(answer)
+        case Plan():
+            _print(plan.lines(answer))
+            _print(_ending(answer))
+            plan.show(answer, subject)
         case _:
             _print(choice.lines(answer))
             _print(_ending(answer))
-            choice.show_names(answer, labels)
+            choice.show(answer, subject)
 
 
 def _print(entries: Iterable[tuple[str, str]]) -> None:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 import sys
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from fractions import Fraction
 from pathlib import Path
 from typing import Any
@@ -14,6 +14,7 @@ import numpy as np
 
 import nearchord
 from nearchord.cli import witness
+from nearchord.cli.answers import plan, prices, sets
 from nearchord.question import Choice
 
 
@@ -78,16 +79,20 @@ class _Reader:
             columns=self._columns(),
             recognition=self._recognition(),
             structure=self._structure(),
+            count=self._taken("count", sets.count_from),
         )
 
     def _question(self) -> nearchord.Question:
         kind = nearchord.QUESTIONS[self._word("question", nearchord.QUESTIONS)]
-        if kind is nearchord.ColourableSubgraph:
-            colours = self._found.get("colours", 2)
-            return nearchord.ColourableSubgraph(self._vertices("must"), self._vertices("never"), colours)
-        if issubclass(kind, Choice):
-            return kind(must=self._vertices("must"), never=self._vertices("never"))
-        return kind()
+        if not issubclass(kind, Choice):
+            return kind()
+        return kind(must=self._vertices("must"), never=self._vertices("never"), **self._add_ons(kind))
+
+    def _add_ons(self, kind: type[nearchord.Question]) -> dict[str, Any]:
+        """What was asked for beside the choice: what is said under `add_ons`, or is there."""
+        said = self._found.get("add_ons")
+        asked = {**self._taken("best or scenarios", _there), **(said if isinstance(said, dict) else {})}
+        return {name: asked[name] for name in kind.add_ons() if name in asked}
 
     def _proof(self) -> nearchord.ProofKind:
         kind = self._found.get("proof") or nearchord.ProofKind.NONE
@@ -113,14 +118,36 @@ class _Reader:
 
     def _columns(self) -> dict[str, Any]:
         columns: dict[str, Any] = {}
-        if isinstance(self._found.get("colour"), dict):
+        if self._found.get("question") in (nearchord.Colouring.name, nearchord.FractionalColouring.name):
+            columns.update(self._taken("colour, shares or bottleneck", self._plan))
+        elif isinstance(self._found.get("colour"), dict):
             columns["colour"] = self._colour()
+        columns.update(self._taken("best or scenarios", lambda found: sets.columns(found, self._of)))
+        columns.update(self._taken("price_in, price_out or conflict_prices", self._prices))
         pairs = self._pairs("fill_edges")
         if self._found.get("witness") is not None:
-            columns = self._witness()
+            columns.update(self._taken("witness", self._witness))
         if pairs is not None:
             columns["fill_edge"] = pairs
         return columns
+
+    def _plan(self, found: dict[str, Any]) -> dict[str, Any]:
+        return plan.columns(found, self._of, self._graph.n)
+
+    def _prices(self, found: dict[str, Any]) -> dict[str, Any]:
+        return prices.columns(found, self._of, self._graph)
+
+    def _of(self, name: object) -> int:
+        return self._vertex("a column", name)
+
+    def _taken(self, key: str, read: Callable[[dict[str, Any]], Any]) -> Any:
+        """What a reader of some keys makes of the object; what it cannot read is a problem of these keys."""
+        try:
+            return read(self._found)
+        except nearchord.BadInput:
+            raise
+        except (ArithmeticError, AttributeError, IndexError, KeyError, TypeError, ValueError) as error:
+            raise self._problem(key, f"cannot be read ({error})", "give what `--json` printed") from None
 
     def _colour(self) -> Any:
         """Colours by the ascending order of their vertices."""
@@ -142,13 +169,8 @@ class _Reader:
             raise self._problem(key, "is not a list of pairs", "give two names of vertices in each") from None
         return np.array(sorted((min(pair), max(pair)) for pair in ends), np.uint32).reshape(-1)
 
-    def _witness(self) -> dict[str, Any]:
-        try:
-            return witness.from_json(self._found["witness"], lambda name: self._vertex("witness", name), self._graph.n)
-        except nearchord.BadInput:
-            raise
-        except (ArithmeticError, AttributeError, IndexError, KeyError, TypeError, ValueError) as error:
-            raise self._problem("witness", f"cannot be read ({error})", "give what `--json` printed") from None
+    def _witness(self, found: dict[str, Any]) -> dict[str, Any]:
+        return witness.from_json(found["witness"], lambda name: self._vertex("witness", name), self._graph.n)
 
     def _recognition(self) -> nearchord.Recognition | None:
         if "chordal" not in self._found:
@@ -207,6 +229,18 @@ class _Reader:
 
     def _problem(self, key: str, problem: str, remedy: str) -> nearchord.FileProblem:
         return nearchord.FileProblem(self._file, None, f'"{key}" {problem}', remedy)
+
+
+def _there(found: dict[str, Any]) -> dict[str, Any]:
+    """The add-ons that an object without `add_ons` has to be about."""
+    return {
+        "prices": found.get("price_in") is not None,
+        "conflict_prices": found.get("conflict_prices") is not None,
+        "best": len(found.get("best") or ()),
+        "count": found.get("count") is not None,
+        "scenarios": len(found.get("scenarios") or ()),
+        "colours": found.get("colours", 2),
+    }
 
 
 def _weights_address(graph: nearchord.Graph) -> str:

@@ -13,6 +13,7 @@ from nearchord.cli.layout import print_json
 from nearchord.cli.options import Ask, Source
 from nearchord.cli.progress import JobDisplay
 from nearchord.cli.record import record, show
+from nearchord.cli.subject import Subject
 
 
 @click.command(short_help="Answer a question about one graph.")
@@ -29,14 +30,16 @@ def solve(file: str, ask: Ask, source: Source, server: str | None, as_json: bool
     how to come back to it.
     """
     graph = read(file, source)
+    asked = ask.about(graph)
     with JobDisplay() as display, remote_or_private(server, display) as service:
-        job = ask.submit(service, graph)
+        job = ask.submit(service, graph, asked)
         with detaching("job", job.id, server):
             answer = follow(service, job, display)
     if proof is not None and not proof_file.write(proof, answer):
         click.echo(f"note: no proof was written to {proof}, as the answer carries none ({answer.proof})", err=True)
+    about = Subject.of(graph, asked.titles)
     if as_json:
-        print_json(record(answer, graph.names))
+        print_json(record(answer, about))
     else:
-        show(answer, graph.names)
+        show(answer, about)
     return of_verdict(answer.verdict)

@@ -24,7 +24,8 @@ def submit(file: str, ask: Ask, source: Source, server: str | None) -> int:
     The job is durable once its id is printed: `watch`, `answer` and `cancel` take the id.
     """
     graph = read(file, source)
+    asked = ask.about(graph)
     with remote(server) as service:
-        job = ask.submit(service, graph)
+        job = ask.submit(service, graph, asked)
     sys.stdout.write(f"{job.id}\n")
     return Exit.ANSWERED

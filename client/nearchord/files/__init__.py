@@ -12,6 +12,9 @@ from dataclasses import replace
 from os import PathLike
 from typing import IO
 
+import numpy as np
+from numpy.typing import NDArray
+
 from nearchord.errors import BadInput
 from nearchord.files import csv_edges, detect, dimacs, graphml, node_link
 from nearchord.files import weights as weight_files
@@ -19,7 +22,7 @@ from nearchord.files.document import LIMIT_BYTES, Document, Source, load
 from nearchord.files.number import checked_scale
 from nearchord.graph import Graph
 
-__all__ = ["FORMATS", "LIMIT_BYTES", "read", "read_weights", "write_dimacs"]
+__all__ = ["FORMATS", "LIMIT_BYTES", "read", "read_demands", "read_scenarios", "read_weights", "write_dimacs"]
 
 READERS: dict[str, Callable[[Document, int], Graph]] = {
     "csv": csv_edges.read,
@@ -59,6 +62,21 @@ def read_weights(source: Source, graph: Graph, scale: int | None = None, *, limi
     """`graph` under the weights of a file: one number a line, or CSV with header name,weight (names of the graph)."""
     factor = checked_scale(scale)
     return _said(weight_files.apply(load(source, limit_bytes), graph, factor), scale)
+
+
+def read_demands(
+    source: Source, graph: Graph, scale: int | None = None, *, limit_bytes: int = LIMIT_BYTES
+) -> NDArray[np.int64]:
+    """Demands, int64[n], from a file like one of weights: one number a line, or CSV with header name,demand."""
+    return weight_files.vector(load(source, limit_bytes), graph, checked_scale(scale), "demand")
+
+
+def read_scenarios(
+    source: Source, graph: Graph, scale: int | None = None, *, limit_bytes: int = LIMIT_BYTES
+) -> tuple[tuple[str, ...], NDArray[np.int64]]:
+    """Titles of scenarios and their weight vectors, int64[R, n], from CSV: names of vertices in the first column, then
+    one column a scenario under its title."""
+    return weight_files.scenarios(load(source, limit_bytes), graph, checked_scale(scale))
 
 
 def _said(graph: Graph, scale: int | None) -> Graph:

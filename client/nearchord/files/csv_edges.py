@@ -27,7 +27,8 @@ class Rows:
         self.separator = max(SEPARATORS, key=first.count)
         self._document = document
         self._reader = csv.reader(io.StringIO(text, newline=""), delimiter=self.separator, strict=True)
-        self.header = [word.strip().lower() for word in next(self._rows(), [])]
+        self.header_as_written = [word.strip() for word in next(self._rows(), [])]
+        self.header = [word.lower() for word in self.header_as_written]
 
     @property
     def line(self) -> int:

@@ -22,35 +22,35 @@ def checked_scale(scale: int | None) -> int:
     return scale
 
 
-def weight_from(text: str, scale: int) -> int:
-    """`text` times `scale`; BadInput unless that is a whole number from 0 to below 2^62."""
+def weight_from(text: str, scale: int, what: str = "weight") -> int:
+    """`text` times `scale`; BadInput unless that is a whole number from 0 to below 2^62. `what` it is, for messages."""
     text = text.strip()
     if WHOLE.fullmatch(text):
-        return _in_range(text, int(text) * scale)
+        return _in_range(text, int(text) * scale, what)
     if not DECIMAL.fullmatch(text) or len(text) > 400:
-        raise BadInput(f"weight {text[:40]!r} is not a number", "write a whole number of at least 0")
-    return _in_range(text, _scaled(text, scale))
+        raise BadInput(f"{what} {text[:40]!r} is not a number", "write a whole number of at least 0")
+    return _in_range(text, _scaled(text, scale, what), what)
 
 
-def _scaled(text: str, scale: int) -> int:
+def _scaled(text: str, scale: int, what: str) -> int:
     number = Decimal(text)
     if number.adjusted() > LARGEST_EXPONENT:
         return WEIGHT_LIMIT if number > 0 else -1
-    numerator, denominator = (0, 1) if number.adjusted() < -LARGEST_EXPONENT and not number else _ratio(number)
+    numerator, denominator = (0, 1) if number.adjusted() < -LARGEST_EXPONENT and not number else _ratio(number, what)
     if numerator * scale % denominator:
         needed = _whole_scale(denominator)
         raise BadInput(
-            f"weight {text} times the scale {scale} is not a whole number"
+            f"{what} {text} times the scale {scale} is not a whole number"
             if scale > 1
-            else f"weight {text} is not a whole number",
-            f"multiply all weights: scale={needed} (on the command line --scale {needed})",
+            else f"{what} {text} is not a whole number",
+            f"multiply all {what}s: scale={needed} (on the command line --scale {needed})",
         )
     return numerator * scale // denominator
 
 
-def _ratio(number: Decimal) -> tuple[int, int]:
+def _ratio(number: Decimal, what: str) -> tuple[int, int]:
     if number and number.adjusted() < -LARGEST_EXPONENT:
-        raise BadInput(f"weight {number} is too close to 0", "write a whole number of at least 0")
+        raise BadInput(f"{what} {number} is too close to 0", "write a whole number of at least 0")
     return number.as_integer_ratio()
 
 
@@ -62,9 +62,9 @@ def _whole_scale(denominator: int) -> int:
     return power
 
 
-def _in_range(text: str, weight: int) -> int:
+def _in_range(text: str, weight: int, what: str) -> int:
     if weight < 0:
-        raise BadInput(f"weight {text} is negative", "give weights of at least 0")
+        raise BadInput(f"{what} {text} is negative", f"give {what}s of at least 0")
     if weight >= WEIGHT_LIMIT:
-        raise BadInput(f"weight {text} is 2^62 or more", "count in a larger unit: divide all weights")
+        raise BadInput(f"{what} {text} is 2^62 or more", f"count in a larger unit: divide all {what}s")
     return weight

@@ -13,10 +13,11 @@ from typing import Any, Self, TypeVar
 import grpc.aio
 
 from nearchord.answer import Answer
+from nearchord.budget import Budget
 from nearchord.graph import Graph
 from nearchord.jobs import Addresses, BatchInfo, Event, JobInfo, JobRequest
 from nearchord.load import Load, ServerInfo
-from nearchord.question import Budget, Question
+from nearchord.question import Question
 from nearchord.session import channel as channels
 from nearchord.session import flows_content, flows_jobs, flows_watch, requests, status
 from nearchord.session.caller import PATIENCE, Caller
@@ -166,6 +167,10 @@ class AsyncService:
     async def upload(self, graph: Graph) -> Addresses:
         """Stores a graph with its weights and names, so that many jobs can name them by address."""
         return await self._carrier.run(flows_content.upload(self._caller, graph))
+
+    async def graph(self, address: str) -> Graph:
+        """The graph stored at an address, without weights and names."""
+        return await self._carrier.run(flows_watch.graph(self._caller, address))
 
     async def names(self, address: str) -> tuple[str, ...]:
         """The vertex names stored at an address; none for the empty address."""

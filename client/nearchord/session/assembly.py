@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from decimal import Decimal
 from types import MappingProxyType
 from typing import Any, Literal
 
@@ -18,6 +19,9 @@ DTYPES: dict[answer_pb2.ElementType, np.dtype[Any]] = {
     answer_pb2.ELEMENT_TYPE_UINT32: np.dtype("<u4"),
     answer_pb2.ELEMENT_TYPE_INT64: np.dtype("<i8"),
 }
+
+PAIRS = frozenset({"fill_edge", "proof_fill"})
+"""Columns that hold pairs, one after the other."""
 
 _NONE_CHOSEN = np.zeros(0, np.uint32)
 _NONE_CHOSEN.flags.writeable = False
@@ -62,8 +66,8 @@ class AnswerAssembly:
             raise ServerFault(f"the column {info.name!r} of job {head.job_id} came incomplete; try again")
         column = np.frombuffer(bytes(data), DTYPES[info.type])
         native: NDArray[Any] = column.astype(column.dtype.newbyteorder("="), copy=False)
-        if info.name == "fill_edge" and native.size % 2:
-            raise ServerFault(f"the column 'fill_edge' of job {head.job_id} has half a pair; try again")
+        if info.name in PAIRS and native.size % 2:
+            raise ServerFault(f"the column {info.name!r} of job {head.job_id} has half a pair; try again")
         native.flags.writeable = False
         return native
 
@@ -90,6 +94,7 @@ def answer(head: answer_pb2.AnswerHead, columns: dict[str, NDArray[Any]]) -> Ans
         columns=MappingProxyType({name: column for name, column in columns.items() if name != "chosen"}),
         recognition=_recognition(head.recognition) if head.HasField("recognition") else None,
         structure=_structure(head.structure) if head.HasField("structure") else None,
+        count=_digits(head) if head.HasField("count") else None,
     )
 
 
@@ -98,6 +103,13 @@ FIGURES = ("fill", "fill_lower_bound", "states", "bags", "largest_bag", "parts",
 
 def _known(head: answer_pb2.AnswerHead, field: str) -> int | None:
     return int(getattr(head, field)) if head.HasField(field) else None
+
+
+def _digits(head: answer_pb2.AnswerHead) -> int:
+    """A number of any size; by way of Decimal, because int() refuses to read more than a few thousand digits."""
+    if not head.count.isascii() or not head.count.isdecimal():
+        raise ServerFault(f"the count of job {head.job_id} came as something else than digits; try again")
+    return int(Decimal(head.count))
 
 
 def _verdict(head: answer_pb2.AnswerHead) -> Verdict:

@@ -7,9 +7,12 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 
+import numpy as np
+from numpy.typing import NDArray
+
 from nearchord.canonical import little_endian
 from nearchord.errors import BadInput
-from nearchord.graph import Graph
+from nearchord.graph import HEADER, Graph
 from nearchord.v1 import content_pb2
 
 
@@ -59,9 +62,9 @@ class GraphContent(Content):
 
 @dataclass(frozen=True)
 class InputContent:
-    """Everything of a graph that a job can carry."""
+    """Everything that a job can carry; `graph` is None where only what stands beside a stored one is sent."""
 
-    graph: Content
+    graph: Content | None
     weights: Content | None
     names: Content | None
 
@@ -76,14 +79,29 @@ class InputContent:
         return sum(content.size for content in self.present)
 
 
-def content_of(graph: Graph) -> InputContent:
-    """The stored form of a graph, its weights and its names."""
-    weights = names = None
-    if graph.weights is not None:
-        weights = Content(content_pb2.CONTENT_KIND_WEIGHTS, [little_endian(graph.weights)])
+def content_of(graph: Graph, vectors: NDArray[np.int64] | None = None) -> InputContent:
+    """The stored form of a graph, its weights (or of `vectors` in their place) and its names."""
+    names = None
+    given = graph.weights if vectors is None else vectors
+    weights = None if given is None else weight_content(given)
     if graph.names is not None:
         names = Content(content_pb2.CONTENT_KIND_NAMES, [memoryview(names_bytes(graph.names))])
     return InputContent(GraphContent(content_pb2.CONTENT_KIND_GRAPH, graph.canonical(), graph), weights, names)
+
+
+def weight_content(vectors: NDArray[np.int64]) -> Content:
+    """The stored form of weights or demands, int64[n], or of the scenarios int64[R, n], one after the other."""
+    return Content(content_pb2.CONTENT_KIND_WEIGHTS, [little_endian(vectors.reshape(-1))])
+
+
+def graph_from(data: bytes) -> Graph:
+    """The graph in stored bytes, which the server has checked."""
+    n, m = HEADER.unpack_from(data)
+    row_ptr = np.frombuffer(data, "<u8", n + 1, HEADER.size).astype(np.uint64)
+    targets = np.frombuffer(data, "<u4", m, HEADER.size + row_ptr.nbytes).astype(np.uint32)
+    for array in (row_ptr, targets):
+        array.flags.writeable = False
+    return Graph(n, m, row_ptr, targets)
 
 
 def names_bytes(names: Sequence[str]) -> bytes:

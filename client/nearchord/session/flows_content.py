@@ -56,7 +56,7 @@ def store_all(caller: Caller, content: InputContent) -> Flow[Addresses]:
         yield from storing.end()
         caller.stored.add(storing.content.address)
     return Addresses(
-        content.graph.address,
+        "" if content.graph is None else content.graph.address,
         "" if content.weights is None else content.weights.address,
         "" if content.names is None else content.names.address,
     )

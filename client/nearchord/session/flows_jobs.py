@@ -11,7 +11,7 @@ from nearchord.graph import Graph
 from nearchord.jobs import Addresses, BatchInfo, JobInfo, JobRequest
 from nearchord.session import replies, requests
 from nearchord.session.caller import Caller
-from nearchord.session.content import InputContent, content_of
+from nearchord.session.content import InputContent, content_of, weight_content
 from nearchord.session.flows_content import caps, store_all
 from nearchord.session.retry import Retry
 from nearchord.session.steps import Call, Emit, Flow, Method, Now, Pause, Send
@@ -36,13 +36,14 @@ def submit(caller: Caller, request: JobRequest, request_id: str | None) -> Flow[
             reply = yield Call(Method.SUBMIT_JOB, message)
             return replies.job_info(reply.job)
         except NotFound as error:
-            forget(caller, request.graph, error, last)
+            forget(caller, request, error, last)
     raise AssertionError("unreachable")
 
 
-def forget(caller: Caller, graph: Graph | Addresses, error: NotFound, last: bool) -> None:
+def forget(caller: Caller, request: JobRequest, error: NotFound, last: bool) -> None:
     """Content this session had stored is gone (deleted, or past its retention): store it anew, once."""
-    if last or isinstance(graph, Addresses) or error.reason != "CONTENT_UNKNOWN":
+    named = isinstance(request.graph, Addresses) and request.question.vectors is None
+    if last or named or error.reason != "CONTENT_UNKNOWN":
         raise error
     caller.stored.clear()
 
@@ -52,13 +53,17 @@ def graph_input(caller: Caller, request: JobRequest, limit: int | None) -> Flow[
     if not isinstance(request.graph, Graph | Addresses):
         given = type(request.graph).__name__
         raise BadInput(f"a {given} is no graph", "build one: nearchord.Graph.from_edges, read, ...")
-    graph = request.subject
-    if isinstance(graph, Addresses):
+    requests.check_asked(request.question, request.graph)
+    graph, vectors = request.subject, request.question.vectors
+    if isinstance(graph, Graph):
+        content, known = content_of(graph, vectors), Addresses("")
+    elif vectors is None:
         return requests.stored_input(graph)
-    content = content_of(graph)
+    else:
+        content, known = InputContent(None, weight_content(vectors), None), graph
     if (yield from travels_inline(caller, content, limit)):
-        return requests.inline_input(content)
-    return requests.stored_input((yield from store_all(caller, content)))
+        return requests.inline_input(content, known)
+    return requests.stored_input((yield from store_all(caller, content)), known)
 
 
 def travels_inline(caller: Caller, content: InputContent, limit: int | None) -> Flow[bool]:
@@ -76,7 +81,7 @@ def submit_batch(caller: Caller, items: list[JobRequest], label: str, request_id
         try:
             return (yield from send_batch(caller, batch_stream(request_id, label, specs)))
         except NotFound as error:
-            forget(caller, items[0].graph, error, last)
+            forget(caller, items[0], error, last)
     raise AssertionError("unreachable")
 
 

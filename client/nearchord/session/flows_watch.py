@@ -6,8 +6,9 @@ from typing import Any
 
 from nearchord.answer import Answer
 from nearchord.errors import NearchordError, ServerFault, TimeoutExceeded
+from nearchord.graph import Graph
 from nearchord.session.caller import Caller
-from nearchord.session.content import names_from
+from nearchord.session.content import graph_from, names_from
 from nearchord.session.cursors import AnswerCursor, AnswersCursor, ContentCursor, Cursor, EventCursor, LoadCursor
 from nearchord.session.retry import Retry
 from nearchord.session.steps import Emit, Flow, Next, Now, Pause, Walk
@@ -101,6 +102,12 @@ def batch_answers(caller: Caller, batch_id: str, wait: bool) -> Flow[None]:
 def load(caller: Caller, interval: float) -> Flow[None]:
     """Emits live figures without end."""
     yield from follow(caller, LoadCursor(interval))
+
+
+def graph(caller: Caller, address: str) -> Flow[Graph]:
+    """The graph stored at an address."""
+    data = yield from collect(follow(caller, ContentCursor(address)))
+    return graph_from(data[0])
 
 
 def names(caller: Caller, address: str) -> Flow[tuple[str, ...]]:

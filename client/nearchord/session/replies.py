@@ -8,12 +8,15 @@ from fractions import Fraction
 from google.protobuf.message import Message
 from google.protobuf.timestamp_pb2 import Timestamp
 
+from nearchord.budget import Budget
 from nearchord.errors import ServerFault
 from nearchord.jobs import BatchInfo, Event, JobInfo, Progress
 from nearchord.load import Load, QuestionLoad, ServerInfo, Slots
-from nearchord.question import QUESTIONS, Budget, Choice, ColourableSubgraph, Question
+from nearchord.question import QUESTIONS, Choice, Question
 from nearchord.stages import Phase, ProofKind, Stage, Verdict, WhenOver
 from nearchord.v1 import answer_pb2, job_pb2, load_service_pb2, question_pb2
+
+DEFAULT_COLOURS = 2
 
 PROOF_KINDS = {
     answer_pb2.PROOF_KIND_UNSPECIFIED: ProofKind.NONE,
@@ -143,9 +146,16 @@ def question(asked: question_pb2.Question) -> Question:
     if not issubclass(kind, Choice):
         return kind()
     wire = getattr(asked, field)
-    if kind is ColourableSubgraph:
-        return ColourableSubgraph(must=tuple(wire.must), never=tuple(wire.never), colours=int(wire.colours) or 2)
-    return kind(must=tuple(wire.must), never=tuple(wire.never))
+    values = {name: _add_on(wire, name) for name in kind.add_ons()}
+    return kind(must=tuple(wire.must), never=tuple(wire.never), **values)
+
+
+def _add_on(wire: Message, name: str) -> bool | int | None:
+    """A field of a question beside its pins; of scenarios it says how many there are."""
+    if name == "limit":
+        return _known(wire, name)
+    value: bool | int = getattr(wire, name)
+    return value or DEFAULT_COLOURS if name == "colours" else value
 
 
 def budget(spent: question_pb2.Budget) -> Budget:

@@ -8,10 +8,11 @@ from datetime import UTC, datetime
 
 from google.protobuf.timestamp_pb2 import Timestamp
 
+from nearchord.budget import Budget
 from nearchord.errors import BadInput
 from nearchord.graph import Graph
 from nearchord.jobs import Addresses, JobRequest
-from nearchord.question import QUESTIONS, Budget, Choice, ColourableSubgraph, Pin, Question
+from nearchord.question import QUESTIONS, Choice, Pin, Question
 from nearchord.session.content import InputContent
 from nearchord.stages import Stage, WhenOver
 from nearchord.v1 import content_pb2, job_pb2, question_pb2
@@ -48,18 +49,33 @@ def spec(request: JobRequest, graph_input: content_pb2.GraphInput) -> job_pb2.Jo
 
 
 def question(asked: Question, graph: Graph | Addresses) -> question_pb2.Question:
-    """A question, its pins as numbers; BadInput for what is none that this client knows."""
-    if not isinstance(asked, Question) or asked.name not in QUESTIONS:
-        raise BadInput(f"{asked!r} is no question", f"ask one of {', '.join(k.__name__ for k in QUESTIONS.values())}")
+    """A question, its pins as numbers; BadInput as by `check_asked`."""
+    check_asked(asked, graph)
     message = question_pb2.Question()
     wire = getattr(message, asked.name.replace("-", "_"))
     wire.SetInParent()
     if isinstance(asked, Choice):
         wire.must.extend(pins("must", asked.must, graph))
         wire.never.extend(pins("never", asked.never, graph))
-    if isinstance(asked, ColourableSubgraph):
-        wire.colours = asked.colours
+    for name in asked.add_ons():
+        value = asked.scenario_count if name == "scenarios" else getattr(asked, name)
+        if value is not None:
+            setattr(wire, name, value)
     return message
+
+
+def check_asked(asked: Question, graph: Graph | Addresses) -> None:
+    """BadInput for what is no question, or has scenarios or demands that do not fit the graph."""
+    if not isinstance(asked, Question) or asked.name not in QUESTIONS:
+        raise BadInput(f"{asked!r} is no question", f"ask one of {', '.join(k.__name__ for k in QUESTIONS.values())}")
+    if not isinstance(graph, Graph):
+        return
+    vectors = asked.vectors
+    if vectors is not None and vectors.shape[-1] != graph.n:
+        what = "demands" if vectors.ndim == 1 else "weights in each scenario"
+        raise BadInput(f"there are {vectors.shape[-1]} {what} for {graph.n} vertices", "give one a vertex")
+    if vectors is None and asked.scenario_count:
+        raise BadInput(f"scenarios is the number {asked.scenario_count}", "give the weight vectors, one a row")
 
 
 def pins(field: str, given: tuple[Pin, ...], graph: Graph | Addresses) -> list[int]:
@@ -119,22 +135,20 @@ def timestamp(moment: datetime) -> Timestamp:
     return result
 
 
-def inline_input(content: InputContent) -> content_pb2.GraphInput:
-    """A graph that travels with its job."""
-    return content_pb2.GraphInput(
-        graph_content=content.graph.inline(),
-        weights_content=None if content.weights is None else content.weights.inline(),
-        names_content=None if content.names is None else content.names.inline(),
-    )
+def inline_input(content: InputContent, known: Addresses) -> content_pb2.GraphInput:
+    """Content that travels with its job; what it lacks is named by the addresses that are known."""
+    message = stored_input(known)
+    for kind in ("graph", "weights", "names"):
+        part = getattr(content, kind)
+        if part is not None:
+            setattr(message, f"{kind}_content", part.inline())
+    return message
 
 
-def stored_input(addresses: Addresses) -> content_pb2.GraphInput:
-    """A graph that has been stored."""
-    return content_pb2.GraphInput(
-        graph_address=addresses.graph,
-        weights_address=addresses.weights or None,
-        names_address=addresses.names or None,
-    )
+def stored_input(addresses: Addresses, known: Addresses | None = None) -> content_pb2.GraphInput:
+    """Content that has been stored; where an address is empty, the one that is known."""
+    found = {kind: getattr(addresses, kind) or getattr(known, kind, "") for kind in ("graph", "weights", "names")}
+    return content_pb2.GraphInput(**{f"{kind}_address": address or None for kind, address in found.items()})
 
 
 def checked_id(kind: str, word: str) -> str:

@@ -12,10 +12,11 @@ from typing import Any, Self, TypeVar
 import grpc
 
 from nearchord.answer import Answer
+from nearchord.budget import Budget
 from nearchord.graph import Graph
 from nearchord.jobs import Addresses, BatchInfo, Event, JobInfo, JobRequest
 from nearchord.load import Load, ServerInfo
-from nearchord.question import Budget, Question
+from nearchord.question import Question
 from nearchord.session import channel as channels
 from nearchord.session import flows_content, flows_jobs, flows_watch, requests, status
 from nearchord.session.caller import PATIENCE, Caller
@@ -169,6 +170,10 @@ class Service:
     def upload(self, graph: Graph) -> Addresses:
         """Stores a graph with its weights and names, so that many jobs can name them by address."""
         return self._carrier.run(flows_content.upload(self._caller, graph))
+
+    def graph(self, address: str) -> Graph:
+        """The graph stored at an address, without weights and names."""
+        return self._carrier.run(flows_watch.graph(self._caller, address))
 
     def names(self, address: str) -> tuple[str, ...]:
         """The vertex names stored at an address; none for the empty address."""

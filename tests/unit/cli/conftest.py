@@ -130,6 +130,7 @@ class FakeService:
 
     answers: list[nearchord.Answer] = field(default_factory=lambda: [make_answer()])
     names_stored: tuple[str, ...] = ("a", "b", "c", "d")
+    graphs: dict[str, nearchord.Graph] = field(default_factory=dict)
     interrupt: bool = False
     ended: bool = True
     submitted: list[tuple[nearchord.Graph, nearchord.Question, dict[str, Any]]] = field(default_factory=list)
@@ -156,6 +157,9 @@ class FakeService:
 
     def batch(self, identity: str) -> FakeBatch:
         return FakeBatch(self, identity)
+
+    def graph(self, address: str) -> nearchord.Graph:
+        return self.graphs[address]
 
     def names(self, address: str) -> tuple[str, ...]:
         return self.names_stored

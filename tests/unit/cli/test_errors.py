@@ -18,7 +18,7 @@ ASK = ("--question", "independent-set")
     [
         (["solve", "{square}"], 2, ["--question"]),
         (["solve", "{square}", "--question", "clairvoyance"], 2, ["clairvoyance", "independent-set"]),
-        (["solve", "{square}", *ASK, "--prices"], 2, ["--prices"]),
+        (["solve", "{square}", *ASK, "--bribe"], 2, ["--bribe"]),
         (["solve", "{square}", *ASK, "--memory", "many"], 2, ["many", "512MiB"]),
         (["solve", "{square}", *ASK, "--not-after", "soon"], 2, ["soon", "+3600"]),
         (["solve", "{square}", *ASK, "--states", "few"], 2, ["--states", "few"]),

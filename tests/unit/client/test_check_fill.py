@@ -8,13 +8,14 @@ from dataclasses import replace
 from pathlib import Path
 
 import pytest
+from add_on_answers import choice_answer
 from fill_answers import (
     fill_answer,
     provenance,
     vertices,
 )
 from fill_columns import atlas, branches, edges_of, ints, ours, packing
-from nearchord import CheckFailed, Graph, ProofKind, Recognition, Verdict, check
+from nearchord import CheckFailed, ColourableSubgraph, Graph, IndependentSet, ProofKind, Recognition, Verdict, check
 from nearchord.checks import splitting
 from nearchord.checks.classes import splittance
 from nearchord.checks.packing import Packing
@@ -234,17 +235,23 @@ def test_the_contract_names_every_column_that_is_checked():
     """The names here are those of the wire contract."""
     names = set(fill_answer(SQUARE).columns) | set(fill_answer(Graph.from_edges(3, [(0, 1), (1, 2)])).columns)
     names |= {f"proof_{name}" for name in splitting.TYPES} | set(branches([]))
-    assert names == {name for name in nearchord_columns() if not re.match(_OF_OTHER_QUESTIONS, name)}
+    names |= set(choice_answer(SQUARE, IndependentSet(prices=True, conflict_prices=True, best=2)).columns)
+    names |= set(choice_answer(SQUARE, ColourableSubgraph(scenarios=[[1] * 4])).columns)
+    assert names | _OF_PLANS | {"chosen", "proof_order", "proof_fill"} == nearchord_columns()
 
 
-_OF_OTHER_QUESTIONS = (
-    r"chosen|colour|price_|conflict_price|best_|scenario_|share_|bottleneck_|proof_(order|fill|clique)$"
-)
+_OF_PLANS = {
+    "colour_start",
+    *(f"share_{part}" for part in ("start", "vertex", "numerator", "denominator")),
+    *(f"bottleneck_{part}" for part in ("numerator", "denominator")),
+    "proof_clique",
+}
 
 
 def nearchord_columns():
     text = (Path(__file__).parents[3] / "proto" / "nearchord" / "v1" / "answer.proto").read_text(encoding="utf-8")
-    return set(re.findall(r"`(\w+)` \((?:UINT32|INT64)[,)]", text.replace("\n// ", " ")))
+    named = re.findall(r"((?:`\w+` and )?`\w+`) \((?:UINT32|INT64)[,)]", text.replace("\n// ", " "))
+    return {name for names in named for name in re.findall(r"\w{4,}", names)}
 
 
 def test_the_checker_of_fills_uses_nothing_of_the_solver():

@@ -352,6 +352,12 @@ def test_answers_of_a_batch_resume_after_the_last_whole_one(user, fake):
     assert fake.seen["after_index"] == [-1, 0]
 
 
+def test_a_graph_is_read_back_by_its_address(user, fake):
+    """The very same graph, without what stands beside it."""
+    addresses = user.call(user.service.upload(small()))
+    assert user.call(user.service.graph(addresses.graph)) == small().with_weights(None).with_names(None)
+
+
 def test_names_are_read_back_across_a_break(user, fake):
     """Names come in pieces that cut characters in two."""
     names = ("älter", "b", "γ")

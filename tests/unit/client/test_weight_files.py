@@ -5,7 +5,7 @@ from __future__ import annotations
 import io
 
 import pytest
-from nearchord import Graph, files
+from nearchord import FileProblem, Graph, files
 from unit.client.reading import DIMACS, SQUARE, complaint, read
 
 
@@ -60,3 +60,38 @@ def test_weight_file_faults_are_named(text, message):
     file = io.BytesIO(text.encode())
     file.name = "w"
     assert complaint(DIMACS, weights=file) == message
+
+
+SCENARIOS = "request;Dry;wet\n3;4;40\n1;2;20\n2;3;30\n4;5;50\n"
+
+
+def test_scenarios_come_with_their_titles_from_a_table():
+    """Rows in any order, titles as written."""
+    titles, rows = files.read_scenarios(io.BytesIO(SCENARIOS.encode()), read(DIMACS))
+    assert titles == ("Dry", "wet")
+    assert rows.tolist() == [[2, 3, 4, 5], [20, 30, 40, 50]]
+    _, rows = files.read_scenarios(io.BytesIO(b"name,a\n0,1.5\n"), Graph.from_edges(1, []), scale=10)
+    assert rows.tolist() == [[15]]
+
+
+@pytest.mark.parametrize(
+    ("text", "message"),
+    [
+        ("", "w, line 1: the header has no scenario; give a column of names, then one column a scenario"),
+        ("name\n1\n", "w, line 1: the header has no scenario"),
+        ("name,a,a\n1,1,1\n", "w, line 1: the header does not give every scenario a title of its own"),
+        ("name,a,\n1,1,1\n", "w, line 1: the header does not give every scenario a title of its own"),
+        ("name,a,b\n1,1\n", "w, line 2: the row has 2 fields, the header 3"),
+        ("name,a,b\n1,1,x\n", "w, line 2: weight 'x' is not a number"),
+        ("name,a,b\n9,1,1\n", "w, line 2: '9' is no vertex of the graph"),
+        ("name,a,b\n1,1,1\n1,1,1\n", "w, line 3: '1' has a weight already; keep one row a vertex"),
+        ("name,a,b\n1,1,1\n", "w: vertex '2' has no weight; add a row for it: 2,1,1"),
+    ],
+)
+def test_faults_in_tables_of_scenarios_are_named(text, message):
+    """File, line, what is wrong and what to do."""
+    file = io.BytesIO(text.encode())
+    file.name = "w"
+    with pytest.raises(FileProblem) as caught:
+        files.read_scenarios(file, read(DIMACS))
+    assert message in str(caught.value)
