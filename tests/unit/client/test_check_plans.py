@@ -1,5 +1,6 @@
 """The checker on plans that serve everybody: what it refuses, and in which words."""
 
+import hashlib
 from dataclasses import replace
 
 import nearchord
@@ -118,3 +119,13 @@ def test_a_proof_of_too_many_states_is_left_open(monkeypatch: pytest.MonkeyPatch
     monkeypatch.setattr(splitting, "MOST_STATES", 3)
     (left,) = check_plan(GRAPH, answer(False), TWO).not_confirmed
     assert "too long" in left
+
+
+def test_a_check_takes_the_demands_from_the_question_as_it_was_asked() -> None:
+    """An answer names its demands by their address only."""
+    address = hashlib.sha256(TWO.astype("<i8").tobytes()).hexdigest()
+    right = answer(True)
+    right = replace(right, provenance=replace(right.provenance, weights_address=address))
+    assert nearchord.check(GRAPH, right, question=nearchord.Colouring([2] * 5)).not_confirmed == ()
+    with pytest.raises(nearchord.CheckFailed):
+        nearchord.check(GRAPH, right, question=nearchord.Colouring([2, 2, 2, 2, 1]))
