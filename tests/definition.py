@@ -47,6 +47,24 @@ def heaviest_independent(n: int, edges: Pairs, weights: Sequence[int]) -> int:
     return best
 
 
+def heaviest_with_pins(
+    n: int, edges: Pairs, weights: Sequence[int], must: Iterable[int] = (), never: Iterable[int] = ()
+) -> int | None:
+    """Weight of the heaviest independent set with all of ``must`` and nothing of ``never``; None without one."""
+    edges, inside, outside = list(edges), set(must), set(never)
+    if inside & outside or not is_independent(edges, inside):
+        return None
+    gone = inside | outside
+    for u, v in edges:
+        if u in inside or v in inside:
+            gone |= {u, v}
+    left = [v for v in range(n) if v not in gone]
+    name = {v: i for i, v in enumerate(left)}
+    rest = [(name[u], name[v]) for u, v in edges if u in name and v in name]
+    best = heaviest_independent(len(left), rest, [weights[v] for v in left])
+    return best + sum(weights[v] for v in inside)
+
+
 def least_fill(n: int, edges: Pairs) -> int:
     """Least number of edges whose addition makes the graph chordal: dynamic program over eliminated sets.
 

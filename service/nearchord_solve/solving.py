@@ -27,11 +27,10 @@ def solve(
 ) -> Outcome:
     """Answer ``question`` about ``graph`` within ``budget``.
 
-    ``weights`` int64[n], non-negative, sum below 2**62; None for all ones; int64[R, n], and not None, where the question
-    has R >= 1 scenarios.  ``when_over``: "bound" to go on
-    with bounds when the fill or state budget does not suffice, "stop" to end there.  A STOP written to the
-    monitor's cells ends the solve soon: SECONDS with the best feasible choice and a valid bound, CANCEL with
-    nothing.  ``kept``: what an earlier outcome on the same graph left; it saves time and changes nothing else.
+    ``weights`` int64[n], non-negative, sum below 2**62; None for all ones; int64[R, n], and not None, where the
+    question has R >= 1 scenarios.  ``when_over``: "bound" to go on with bounds when the fill or state budget does not
+    suffice, "stop" to end there.  A STOP written to the monitor's cells ends the solve soon: SECONDS with the best
+    feasible choice and a valid bound, CANCEL with nothing.  ``kept``: what an earlier outcome on the same graph left; it saves time and changes nothing else.
     Same arguments, same answer, unless stopped.  Raises SolverError for bad arguments.
     O(n + m) outside fill cores; inside, as their states.
     """

@@ -1,14 +1,17 @@
 """Compiling everything before the first job."""
 
 from collections.abc import Callable, Iterator
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
-from nearchord_solve.budget import Budget
+from nearchord_solve.budget import DEFAULT_MEMORY, DEFAULT_STATES, Budget
 from nearchord_solve.fill import find_cores, triangulate
 from nearchord_solve.fill.exact.rehearse import rehearse
 from nearchord_solve.fill.kernels.triangulate import best_triangulation
 from nearchord_solve.graph import Graph
+from nearchord_solve.kept import Kept
 from nearchord_solve.monitor import Monitor, Phase, Stop
 from nearchord_solve.order import Unfinished, eliminate, rank, rank_by_degree
 from nearchord_solve.questions import (
@@ -79,6 +82,19 @@ def _choosing() -> Iterator[None]:
     yield
 
 
+def _adding() -> Iterator[None]:
+    """What independent sets can be asked besides, on a graph of known structure: another part compiles how that is
+    found."""
+    square = Graph.from_edges(5, [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4)])
+    known = _known_square()
+    solve(IndependentSet(prices=True), square, None, Budget(), "bound", Monitor(), known)
+    yield
+    solve(IndependentSet(conflict_prices=True), square, None, Budget(), "bound", Monitor(), known)
+    yield
+    solve(IndependentSet(scenarios=2), square, np.ones((2, 5), np.int64), Budget(), "bound", Monitor(), known)
+    yield
+
+
 def _labelling() -> Iterator[None]:
     """Cliques, colours and forests, and plans, which take little to compile."""
     square = Graph.from_edges(5, [(0, 1), (1, 2), (2, 3), (0, 3), (3, 4)])
@@ -117,6 +133,40 @@ def _stop_in_fill(monitor: Monitor, phase: Phase) -> None:
         monitor.cells[Monitor.STOP] = Stop.SECONDS
 
 
+def _known_square() -> Kept:
+    """The structure of a square with a tail, 0-1-2-3 and 4 at 3, with the fill edge 0-2."""
+    header = np.array([5, 5, -1, DEFAULT_STATES, DEFAULT_MEMORY, 1, 1, 2], np.int64)
+    long = {
+        "low_ptr": [0, 0, 1, 2, 3, 5],
+        "fill_end": [1, 1, 1, 1, 0, 0],
+        "core_ptr": [0, 2],
+        "core_slot": [0, 4],
+        "core_bag": [0, 2],
+        "figures": [1, 1, 10, 3, 1, 0],
+        "slot_fill_ptr": [0, 0, 0, 1, 1],
+        "bag_ptr": [0, 3, 6],
+    }
+    short = {
+        "order": [0, 3, 4, 2, 1],
+        "low": [0, 1, 1, 0, 3],
+        "parent": [-1, 0, 1, 1, 3],
+        "fill": [0],
+        "core": [-1, -1, -1, 0, 0],
+        "core_place": [3, 4],
+        "core_top": [3],
+        "core_anchors": [2],
+        "slot_place": [0, 1, 3, 4],
+        "slot_fill": [0],
+        "bag_slot": [0, 1, 2, 0, 2, 3],
+        "bag_adhesion": [2, 2],
+        "bag_above": [-1, 0],
+    }
+    arrays: dict[str, NDArray[Any]] = {"header": header, "bag_kind": np.array([1, 3], np.uint8)}
+    arrays.update({name: np.array(values, np.int64) for name, values in long.items()})
+    arrays.update({name: np.array(values, np.int32) for name, values in short.items()})
+    return Kept.from_arrays(5, 5, arrays)
+
+
 def _braced_ring(n: int) -> Graph:
     """A cycle in which also every second vertex is linked, and a tail."""
     pairs = {(min(v, u), max(v, u)) for v in range(n) for u in ((v + 1) % n, (v + 2) % n)}
@@ -129,6 +179,7 @@ def _square_over_roof() -> Graph:
 
 
 PARTS: dict[str, tuple[Callable[[], Iterator[None]], int]] = {
+    "adding": (_adding, 3),
     "choosing": (_choosing, 12),
     "filling": (_filling, 8),
     "labelling": (_labelling, 6),

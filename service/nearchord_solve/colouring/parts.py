@@ -24,11 +24,13 @@ GRID = 256  # steps that a frame is divided into where a plan would have too man
 class Part:
     """One part that holds fill.
 
-    ``vertices`` int64[p], ascending; ``home`` bool[p]: those that no part above has.  ``graph``: G on them.
+    ``vertices`` int64[p], ascending; ``home`` uint8[p]: those that no part above has.  ``sequence`` int64[p]: their
+    positions along the tree of bags.  ``graph``: G on them.
     """
 
     vertices: I64
     home: U8
+    sequence: I64
     whole: Graph
 
     @cached_property
@@ -63,6 +65,8 @@ class Parts:
         """O(n log n) and the size of the bags of the cores."""
         self._graph = graph
         self.sequence: I32 = np.ascontiguousarray(structure.elimination_order()[::-1])
+        self._place = np.empty(graph.n, np.int64)
+        self._place[self.sequence] = np.arange(graph.n)
         self._structure = structure
         forest, order = structure.forest, structure.numbering.order
         _, part = fill_parts(forest.bag_above, forest.bag_kind)
@@ -79,7 +83,8 @@ class Parts:
 
     def __getitem__(self, number: int) -> Part:
         vertices = self._vertex[self._ptr[number] : self._ptr[number + 1]].astype(np.int64)
-        return Part(vertices, (self.part[vertices] == number).astype(np.uint8), self._graph)
+        home = (self.part[vertices] == number).astype(np.uint8)
+        return Part(vertices, home, np.argsort(self._place[vertices]), self._graph)
 
     def raised(self, demand: I64, frame: int) -> I64:
         """Demands int64[n] rounded up to a grid wherever ``frame`` has time to spare, so that plans have fewer pieces.

@@ -18,9 +18,11 @@ from nearchord_solve.colouring.plan import Plan
 from nearchord_solve.colouring.shortest import Shortest, shortest_frame
 from nearchord_solve.monitor import Monitor
 
-MOST_COPIES = 2048
+MOST_COPIES = 10_000
+MOST_LINKS = 10**7  # neighbours that all copies may have together
 FIRST_TURNS = 4000
 LONG_TURNS = 400_000
+LARGE = 500  # vertices of a part above which long tries come before its linear program
 FINEST = 10_000  # a unit is not divided into more steps to make a plan writable
 
 
@@ -33,10 +35,10 @@ class Settled:
 
 
 def by_first_fit(part: Part, demand: I64) -> Plan:
-    """The best of first fit along a few sequences: as numbered, by demand and degree, and the other way round."""
+    """The best of first fit along a few sequences: along the tree of bags, by demand and degree, and as numbered."""
     graph = part.graph
     weight = demand * (np.diff(graph.ptr) + 1.0)
-    sequences = (np.argsort(-weight, kind="stable"), np.arange(graph.n), np.arange(graph.n)[::-1])
+    sequences = (part.sequence, np.argsort(-weight, kind="stable"), np.arange(graph.n))
     plans = [_plan_along(part, sequence, demand) for sequence in sequences]
     return min(plans, key=lambda plan: plan.frame)
 
@@ -73,15 +75,16 @@ class Settler:
         return self._in_fractions(part, demand, frame, plan)
 
     def _in_fractions(self, part: Part, demand: I64, frame: Fraction, plan: Plan) -> Settled:
-        painter = self.painter(part, demand) if int(demand.sum()) <= MOST_COPIES else None
+        painter = self.painter(part, demand)
+        large = demand.size > LARGE
         if painter is not None:
-            painter.improve(int(frame), FIRST_TURNS)
+            painter.improve(int(frame), LONG_TURNS if large else FIRST_TURNS)
             plan = shorter(plan, painter.plan)
             if plan.frame <= frame:
                 return Settled(plan, None)
         found = self.shortest(part, demand, frame, [plan])
         if found is None:
-            if painter is not None:
+            if painter is not None and not large:
                 painter.improve(int(frame), LONG_TURNS)
                 plan = shorter(plan, painter.plan)
             return Settled(plan, None)
@@ -105,9 +108,9 @@ class Settler:
         whole = [length // plan.denominator for length in plan.lengths]
         served = plan.member.T.astype(np.int64) @ np.array(whole, np.int64) if whole else 0 * demand
         short = np.maximum(0, demand - served)
-        if int(short.sum()) > MOST_COPIES:
-            return None
         painter = self.painter(part, short)
+        if painter is None:
+            return None
         painter.improve(target - sum(whole), FIRST_TURNS)
         rest = painter.plan
         return Plan(np.concatenate((plan.member, rest.member)), [*whole, *rest.lengths])
@@ -127,8 +130,14 @@ class Settler:
         bound = rounded(found.bottleneck.bound(demand), self._whole)
         return Evidence(bound, vertices=part.vertices, bottleneck=found.bottleneck)
 
-    def painter(self, part: Part, demand: I64) -> Painter:
-        """Colours for copies, begun greedily."""
+    def painter(self, part: Part, demand: I64) -> Painter | None:
+        """Colours for copies, begun greedily; None if there were too many."""
+        graph, total = part.graph, int(demand.sum())
+        if total > MOST_COPIES:
+            return None
+        around = np.repeat(demand, np.diff(graph.ptr)) * demand[graph.adj]
+        if int(around.sum()) + total * int(demand.max(initial=0)) > MOST_LINKS:
+            return None
         painter = Painter(copies(part.graph, demand), self._monitor)
         painter.begin()
         return painter
@@ -151,11 +160,13 @@ class _Whole:
     def __init__(self, by: Settler, part: Part, demand: I64, frame: Fraction, plan: Plan) -> None:
         self._by, self._part, self._demand, self._frame, self._plan = by, part, demand, frame, plan
         self._evidence: Evidence | None = None
-        self._painter = by.painter(part, demand) if int(demand.sum()) <= MOST_COPIES else None
+        self._painter = by.painter(part, demand)
 
     def settle(self) -> Settled:
         """Go on until the plan is no longer than the frame or the bound."""
-        for step in (self._paint, self._relax, self._paint_long, self._branch):
+        small = self._demand.size <= LARGE
+        middle = (self._relax, self._paint_long) if small else (self._paint_long, self._relax)
+        for step in (self._paint, *middle, self._branch):
             step()
             if self._plan.frame <= self._target or self._by.stopped:
                 break

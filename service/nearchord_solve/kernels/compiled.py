@@ -14,6 +14,7 @@ from numba.np.arrayobj import make_array
 from numpy.typing import NDArray
 
 F = TypeVar("F", bound=Callable[..., Any])
+_KERNEL: dict[str, Any] = {"nogil": True, "cache": True, "no_cfunc_wrapper": True}
 
 # Inside kernels an element of any integer array is a plain integer; the names say the dtype to people.
 I32 = NDArray[Any]
@@ -25,7 +26,7 @@ U64 = NDArray[Any]
 
 def kernel(function: F) -> F:
     """Compile ``function`` without the interpreter lock, cached on disk; without an entry for C, which nobody uses."""
-    return cast(F, numba.njit(nogil=True, cache=True, no_cfunc_wrapper=True)(function))
+    return cast(F, numba.njit(**_KERNEL)(function))
 
 
 def inlined(function: F) -> F:

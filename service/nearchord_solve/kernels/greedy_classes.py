@@ -7,12 +7,13 @@ from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
 
 @kernel
 def colour_in_order(ptr: I64, adj: I32, sequence: I64, colours: int, colour: U8) -> None:
-    """Each vertex of ``sequence`` takes the lowest colour free among its neighbours, if any.  O(n + m).
+    """Each vertex of ``sequence`` without a colour takes the lowest free among its neighbours, if any.  O(n + m).
 
-    ``colour`` uint8[n] is overwritten: 1..colours, 0 for vertices left out.
+    ``colour`` uint8[n]: 1..colours, 0 for vertices without; those that get one are overwritten.
     """
-    colour[:] = 0
     for v in sequence:
+        if colour[v]:
+            continue
         taken = 1
         for e in range(ptr[v], ptr[v + 1]):
             taken |= 1 << colour[adj[e]]

@@ -12,7 +12,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from nearchord_solve.arrays import I64
+from nearchord_solve.arrays import I64, U32
 from nearchord_solve.budget import Budget
 from nearchord_solve.errors import SolverError
 from nearchord_solve.graph import Graph
@@ -20,7 +20,7 @@ from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
 from nearchord_solve.questions.independent_set import IndependentSet
-from nearchord_solve.questions.labelled import answer_labelled
+from nearchord_solve.questions.labelled import Asked, answer_labelled
 from nearchord_solve.questions.pins import pin_array
 
 MOST_COLOURS = 4
@@ -30,12 +30,15 @@ MOST_COLOURS = 4
 class ColourableSubgraph:
     """``colours``: 1 to 4; ``must``: vertices that have to be chosen; ``never``: vertices that may not be; 0-based.
 
-    The outcome has the column ``colour``, uint32: 1 to ``colours`` for each vertex of ``chosen``.
+    Add-ons: ``prices`` of the vertices, or ``scenarios``: so many vectors of weights.  The outcome has the column
+    ``colour``, uint32: 1 to ``colours`` for each vertex of ``chosen``.
     """
 
     colours: int = 2
     must: Sequence[int] | I64 = ()
     never: Sequence[int] | I64 = ()
+    prices: bool = False
+    scenarios: int = 0
 
     def answer(
         self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor, reuse: Reuse
@@ -45,8 +48,18 @@ class ColourableSubgraph:
             raise SolverError("question.colours", f"must be 1 to {MOST_COLOURS}, not {self.colours}")
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)
+        asked = Asked(self.colours, must, never, self.prices, self.scenarios)
         if self.colours == 1:
-            outcome = IndependentSet(must, never).answer(graph, weights, budget, when_over, monitor, reuse)
-            chosen = 0 if outcome.chosen is None else outcome.chosen.size
-            return replace(outcome, columns={"colour": np.ones(chosen, np.uint32), **outcome.columns})
-        return answer_labelled(self.colours, must, never, graph, weights, budget, when_over, monitor, reuse)
+            single = IndependentSet(must, never, prices=self.prices, scenarios=self.scenarios)
+            outcome = single.answer(graph, weights, budget, when_over, monitor, reuse)
+            return replace(outcome, columns={**outcome.columns, **_one_class(outcome)})
+        return answer_labelled(asked, graph, weights, budget, when_over, monitor, reuse)
+
+
+def _one_class(outcome: Outcome) -> dict[str, U32 | I64]:
+    """The colours of an independent set, and of those of the scenarios."""
+    chosen = 0 if outcome.chosen is None else outcome.chosen.size
+    columns: dict[str, U32 | I64] = {"colour": np.ones(chosen, np.uint32)}
+    if "scenario_chosen" in outcome.columns:
+        columns["scenario_colour"] = np.ones(outcome.columns["scenario_chosen"].size, np.uint32)
+    return columns

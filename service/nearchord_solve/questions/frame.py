@@ -3,6 +3,7 @@
 A program knows what a choice is; the flow knows budgets, stops and verdicts.
 """
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Protocol
 
@@ -22,9 +23,12 @@ from nearchord_solve.tree import Partial, build_structure
 class Settled:
     """What a program found on a graph of known structure.
 
-    ``chosen`` uint8[n], feasible; ``bound`` is valid, and is the optimum if ``exact``.  ``states``: states that it
-    went through or would have to; ``reason``: how it was settled, or what was too small.  ``colour`` uint32[n]: classes
-    of the chosen vertices, for questions that have some.  ``proof``: of ``bound``, where there is one.
+    ``chosen`` uint8[n] is feasible unless ``feasible`` says that no such choice was found.  If ``exact``, ``bound`` is
+    the optimum, or there is no feasible choice at all; otherwise it is valid.  ``states``: states that it went through
+    or would have to; ``reason``: how it was settled, or what was too small.  ``colour`` uint32[n]: classes of the
+    chosen vertices, for questions that have some.  ``prices`` int64[n] twice: what the value loses if a vertex is
+    chosen, and if it is not, -1 where that is impossible.  ``again`` settles other weights on the same structure, None
+    if stopped.  ``proof``: of ``bound``, where there is one.
     """
 
     chosen: U8
@@ -33,16 +37,19 @@ class Settled:
     states: int
     reason: str
     colour: U32 | None = None
+    prices: tuple[I64, I64] | None = None
+    again: Callable[[I64], "Settled | None"] | None = None
+    feasible: bool = True
     proof: Proof | None = None
 
 
 @dataclass(frozen=True, eq=False)
 class Concluded:
-    """A finding with what only some questions have."""
+    """A finding, and what it was found from."""
 
     found: Found
     states: int | None = None
-    colour: U32 | None = None
+    settled: Settled | None = None
 
 
 class Program(Protocol):
@@ -96,6 +103,8 @@ def _close(task: Task, settled: Settled, structure: Structure | None, reason: st
     """End with a feasible choice and a bound: PROVEN if they meet."""
     if task.stop is Stop.CANCEL:
         return _cancelled(structure)
+    if not settled.feasible:
+        return _without_choice(task, settled, structure, reason)
     value = task.weight(settled.chosen)
     task.gauge.incumbent(value)
     task.gauge.bound(settled.bound)
@@ -104,7 +113,17 @@ def _close(task: Task, settled: Settled, structure: Structure | None, reason: st
     if value == settled.bound and not settled.exact:
         reason += "; the choice found meets the bound all the same"
     found = Found(verdict, value, settled.bound, settled.chosen, structure, reason, settled.proof)
-    return Concluded(found, states, settled.colour)
+    return Concluded(found, states, settled)
+
+
+def _without_choice(task: Task, settled: Settled, structure: Structure | None, reason: str) -> Concluded:
+    """End without a feasible choice: there is none, or none was found."""
+    states = settled.states if structure is not None else None
+    if settled.exact:
+        return Concluded(Found(Verdict.INFEASIBLE, None, None, None, structure, reason), states)
+    task.gauge.bound(settled.bound)
+    reason += "; no choice with all pins was found"
+    return Concluded(Found(Verdict.BOUNDED, None, settled.bound, None, structure, reason), states)
 
 
 def total_of(weights: I64, chosen: U8) -> int:

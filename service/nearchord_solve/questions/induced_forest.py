@@ -14,16 +14,21 @@ from nearchord_solve.graph import Graph
 from nearchord_solve.kept import Reuse
 from nearchord_solve.monitor import Monitor
 from nearchord_solve.outcome import Outcome
-from nearchord_solve.questions.labelled import answer_labelled
+from nearchord_solve.questions.labelled import Asked, answer_labelled
 from nearchord_solve.questions.pins import pin_array
 
 
 @dataclass(frozen=True)
 class InducedForest:
-    """``must``: vertices that have to be chosen; ``never``: vertices that may not be; both 0-based."""
+    """``must``: vertices that have to be chosen; ``never``: vertices that may not be; both 0-based.
+
+    Add-ons: ``prices`` of the vertices, or ``scenarios``: so many vectors of weights.
+    """
 
     must: Sequence[int] | I64 = ()
     never: Sequence[int] | I64 = ()
+    prices: bool = False
+    scenarios: int = 0
 
     def answer(
         self, graph: Graph, weights: I64, budget: Budget, when_over: str, monitor: Monitor, reuse: Reuse
@@ -31,4 +36,5 @@ class InducedForest:
         """Answer for checked arguments; see :func:`nearchord_solve.solve`."""
         must = pin_array("question.must", self.must, graph.n)
         never = pin_array("question.never", self.never, graph.n)
-        return answer_labelled(0, must, never, graph, weights, budget, when_over, monitor, reuse)
+        asked = Asked(0, must, never, self.prices, self.scenarios)
+        return answer_labelled(asked, graph, weights, budget, when_over, monitor, reuse)

@@ -12,9 +12,14 @@ from nearchord_solve.kernels.layout import Forest, Numbering
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.order import eliminate, rank_along
 from nearchord_solve.structure import Structure
-from nearchord_solve.sweep.kernels import label_passes, state_counts
+from nearchord_solve.sweep.kernels import label_passes, label_table, state_counts
+from nearchord_solve.sweep.kernels.label_goals import BELIEVE, CHOOSE, COLLECT, NOTHING, Belief
+from nearchord_solve.sweep.kernels.label_passes import Plan
+from nearchord_solve.sweep.kernels.label_table import Table, empty_table
 
 CLOSED = (0, 2)  # colours (0: forests) for which bags without fill are settled by a formula
+NO_LIMIT = 2**62
+LIMIT = 2**62  # sums of weights with what pinned vertices weigh more stay below
 
 
 @dataclass(frozen=True, eq=False)
@@ -49,45 +54,142 @@ def line_up(graph: Graph, structure: Structure, monitor: Monitor) -> Line | None
     return Line(order, later_ptr, later, forest)
 
 
-def count_states(line: Line, colours: int, most: int, monitor: Monitor) -> int:
-    """States of all bags that need a table, cheaply; about ``most`` or more if above it.  0 for forests: see below.
+@dataclass(frozen=True, eq=False)
+class Pinned:
+    """Weights by vertex, and which vertices must be chosen: uint8[n] ``must``.
 
-    Forests have no count that is much cheaper than the sweep, which gives up in time.
+    ``closed``: with two colours and for forests plain states are kept as worths.  Then every choice has a value, so
+    each vertex that must be chosen weighs ``extra`` more, 1 more than all vertices together: choices that leave one of
+    them out stay below the sum of these extras, and some choice does not.  Where sums might overflow by that, and with
+    more colours, choices that leave one out are not entered in the tables.
     """
-    if colours == 0:
+
+    weights: I64
+    colours: int
+    must: U8
+    closed: bool
+    extra: int
+
+    @classmethod
+    def of(cls, weights: I64, must: I64, colours: int) -> "Pinned":
+        """For the vertices ``must``, which can be chosen together if ``colours`` is 0 (forests) or 2."""
+        pinned = np.zeros(weights.size, np.uint8)
+        pinned[must] = 1
+        extra = int(weights.sum()) + 1 if must.size else 0
+        closed = colours in CLOSED and int(weights.sum()) + extra * must.size < LIMIT
+        return cls(weights, colours, pinned, closed, extra if closed else 0)
+
+    @property
+    def by_vertex(self) -> I64:
+        """Weights with what pinned vertices weigh more."""
+        return self.weights + self.extra * self.must.astype(np.int64) if self.extra else self.weights
+
+    @property
+    def offset(self) -> int:
+        """What that adds to the value."""
+        return self.extra * int(self.must.sum())
+
+
+def count_states(line: Line, pinned: Pinned, most: int, monitor: Monitor) -> int:
+    """States of all bags that need a table, cheaply; about ``most`` or more if above it.
+
+    0 where there is no count that is much cheaper than the sweep, which gives up in time: for forests, and where plain
+    states of two colours are in the table.
+    """
+    if pinned.colours == 0 or (pinned.colours in CLOSED and not pinned.closed):
         return 0
-    return int(state_counts.colour_states(line.forest, colours, most, monitor.cells))
+    return int(state_counts.colour_states(line.forest, pinned.colours, most, monitor.cells))
 
 
 @dataclass(frozen=True, eq=False)
 class Labelled:
-    """``code`` as in :mod:`.kernels.label_passes`; ``colour`` uint8[n] by vertex, None unless DONE."""
+    """``code`` as in :mod:`.kernels.label_passes`; ``colour`` uint8[n] by vertex, None unless DONE.
+
+    ``prices``: int64[n] twice by vertex, what the value loses if a vertex is chosen, and if it is not; -1 if that is
+    impossible.  None unless asked for and found.
+    """
 
     code: int
     value: int
     states: int
     colour: U8 | None
+    prices: tuple[I64, I64] | None = None
 
 
-def sweep_labelled(line: Line, weights: I64, colours: int, most: int, most_bytes: int, monitor: Monitor) -> Labelled:
-    """Collect values inwards, then choose outwards; ``colours`` 0 means forests.
-
-    Gives up above ``most`` states or ``most_bytes`` of table.
-    """
-    monitor.enter(Phase.SWEEP, weights.size)
-    closed = colours in CLOSED
-    single = weights[line.order]
-    pair = np.zeros(line.later.size if closed else 0, np.int64)
-    code, value, states, ptr, table = label_passes.inward(
-        line.forest, line.later_ptr, line.later, single, pair, colours, closed, most, most_bytes, monitor.cells
+def sweep_labelled(
+    line: Line, pinned: Pinned, most: int, most_bytes: int, prices: bool, monitor: Monitor
+) -> Labelled:  # fmt: skip
+    """Collect values inwards, then choose outwards.  Gives up above ``most`` states or ``most_bytes`` of table."""
+    n = pinned.weights.size
+    monitor.enter(Phase.SWEEP, n)
+    plan = _plan(line, pinned)
+    closed = pinned.closed
+    belief = _belief(line, 0, np.zeros(1, np.int64), plan.colour)
+    code, value, states, table = label_passes.pass_bags(
+        COLLECT, plan, pinned.colours, closed, empty_table(), belief, most, most_bytes, monitor.cells
     )
     if code != label_passes.DONE:
-        return Labelled(int(code), int(value), int(states), None)
-    by_rank = np.zeros(weights.size, np.uint8)
-    if not label_passes.outward(
-        line.forest, line.later_ptr, single, pair, colours, closed, ptr, table, by_rank, monitor.cells
-    ):
-        return Labelled(label_passes.STOPPED, int(value), int(states), None)
-    colour = np.empty(weights.size, np.uint8)
-    colour[line.order] = by_rank
-    return Labelled(label_passes.DONE, int(value), int(states), colour)
+        return Labelled(int(code), int(value) - pinned.offset, int(states), None)
+    code, _, _, _ = label_passes.pass_bags(
+        CHOOSE, plan, pinned.colours, closed, table, belief, NO_LIMIT, NO_LIMIT, monitor.cells
+    )
+    if code != label_passes.DONE:
+        return Labelled(int(code), int(value) - pinned.offset, int(states), None)
+    colour = np.empty(n, np.uint8)
+    colour[line.order] = plan.colour
+    found = _believe(line, pinned, plan, table, int(value), most_bytes, monitor) if prices else None
+    return Labelled(label_passes.DONE, int(value) - pinned.offset, int(states), colour, found)
+
+
+def _plan(line: Line, pinned: Pinned) -> Plan:
+    forest = line.forest
+    bags = forest.bag_kind.size
+    return Plan(
+        forest, line.later_ptr, line.later, pinned.by_vertex[line.order],
+        np.zeros(line.later.size if pinned.closed else 0, np.int64), pinned.must[line.order],
+        *label_passes.link_tables(forest, pinned.closed), np.zeros((bags, 2), np.int64),
+        np.zeros(line.order.size, np.uint8), np.full(bags, -1, np.int32),
+    )  # fmt: skip
+
+
+def _belief(line: Line, entries: int, few_ptr: I64, kept: U8) -> Belief:
+    """Nothing told yet."""
+    n = line.order.size if entries or few_ptr.size > 1 else 0
+    return Belief(
+        np.full(entries, NOTHING), few_ptr, np.full(int(few_ptr[-1]), NOTHING), np.full(n, NOTHING),
+        np.full(n, NOTHING), kept,
+    )  # fmt: skip
+
+
+def _believe(
+    line: Line, pinned: Pinned, plan: Plan, table: Table, total: int, most_bytes: int, monitor: Monitor
+) -> tuple[I64, I64] | None:
+    """Prices of all vertices, by one more pass outwards; None if stopped or without room.
+
+    ``total``: the value with what pinned vertices weigh more.  A total below that extra leaves out one of them.
+    """
+    lead = line.forest.bag_adhesion.astype(np.int64)
+    sizes = 1 + lead * (lead + 1) // 2 if pinned.closed else np.zeros(lead.size, np.int64)
+    few_ptr = np.concatenate((np.zeros(1, np.int64), np.cumsum(sizes)))
+    if label_table.table_bytes(table) + 8 * (int(few_ptr[-1]) + table.value.size) > most_bytes:
+        return None
+    belief = _belief(line, int(table.used[0]), few_ptr, plan.colour)
+    roots = line.forest.bag_above < 0
+    if pinned.closed:
+        belief.few[few_ptr[:-1][roots]] = total
+    else:
+        belief.entry[plan.entries[roots, 0]] = total
+    ptr, child = label_passes.link_tables(line.forest, False)
+    code, _, _, _ = label_passes.pass_bags(
+        BELIEVE, plan._replace(child_ptr=ptr, child=child), pinned.colours, pinned.closed, table, belief, NO_LIMIT,
+        NO_LIMIT, monitor.cells,
+    )  # fmt: skip
+    if code != label_passes.DONE:
+        return None
+    left = np.where(plan.colour != 0, belief.left, total)
+    priced = []
+    for totals in (belief.chosen, left):
+        price = np.empty(totals.size, np.int64)
+        price[line.order] = np.where(totals >= pinned.offset, total - totals, -1)
+        priced.append(price)
+    return priced[0], priced[1]

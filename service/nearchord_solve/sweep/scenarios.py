@@ -43,8 +43,8 @@ def wide_bytes(structure: Structure, vectors: int) -> int:
 def sweep_wide(structure: Structure, weights: I64, monitor: Monitor) -> Iterator[Swath]:
     """Settle all cores by tables for all vectors, :func:`width` at a time, ending early when stopped.
 
-    ``weights`` int64[R, n].  O((n + m + states) * R) additions, but the numbers that belong to one vertex or state stand
-    side by side, so the graph is gone through once for a block of vectors.
+    ``weights`` int64[R, n].  O((n + m + states) * R) additions, but the numbers that belong to one vertex or state
+    stand side by side, so the graph is gone through once for a block of vectors.
     """
     numbering, forest = structure.numbering, structure.forest
     vectors, n = weights.shape

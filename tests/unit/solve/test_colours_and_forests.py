@@ -210,23 +210,6 @@ def test_colours_out_of_range_are_named(colours: int) -> None:
         run(ColourableSubgraph(colours), 3, [(0, 1)])
 
 
-def test_pins_that_no_choice_meets_are_infeasible() -> None:
-    triangle = [(0, 1), (1, 2), (0, 2)]
-    assert run(InducedForest(must=(0, 1, 2)), 3, triangle).verdict is Verdict.INFEASIBLE
-    outcome = run(ColourableSubgraph(2, must=(0, 1, 2)), 3, triangle)
-    assert outcome.reason == (
-        "the pins contradict each other: the vertices that must be chosen need more than 2 colours"
-    )
-    outcome = run(ColourableSubgraph(2, must=(0,), never=(0,)), 3, triangle)
-    assert "vertex 0 must be chosen and must not be chosen" in outcome.reason
-
-
-def test_weights_without_room_for_pins_are_said_so() -> None:
-    outcome = run(InducedForest(must=(0, 1)), 3, [(0, 1)], [2**60, 2**60, 5])
-    assert (outcome.verdict, outcome.value) == (Verdict.BOUNDED, None)
-    assert "scale them down" in outcome.reason
-
-
 @pytest.mark.parametrize("ask", QUESTIONS)
 @pytest.mark.parametrize("stop", [Stop.SECONDS, Stop.CANCEL])
 def test_a_stop_is_heeded(ask, stop: Stop) -> None:  # type: ignore[no-untyped-def]

@@ -10,6 +10,8 @@ from nearchord_solve.fill.kernels.dense import set_pair
 from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, lowest
 from nearchord_solve.kernels.grow import grown32
 
+SHORT = 40  # entries of a row that are sorted one by one
+
 
 @kernel
 def core_vertices(homes: I32, low_ptr: I64, low: I32, fill_end: I64, fill: I32, local: I32) -> tuple[I32, int]:
@@ -51,6 +53,21 @@ def dense_rows(
 
 
 @kernel
+def sort_row(array: I32, begin: int, end: int) -> None:
+    """Sort ``array[begin:end]``.  Rows are short: putting each where it belongs costs less than a call that divides."""
+    if end - begin > SHORT:
+        array[begin:end].sort()
+        return
+    for e in range(begin + 1, end):
+        value = array[e]
+        at = e
+        while at > begin and array[at - 1] > value:
+            array[at] = array[at - 1]
+            at -= 1
+        array[at] = value
+
+
+@kernel
 def sparse_lists(
     places: I32, anchors: int, low_ptr: I64, low: I32, fill_end: I64, fill: I32, local: I32
 ) -> tuple[I64, I32, I64, I32]:
@@ -80,7 +97,7 @@ def sparse_lists(
                 fill_rank[put] = later[write]
                 write += 1
                 put += 1
-            later[begin:write].sort()
+            sort_row(later, begin, write)
         later_ptr[i + 1] = write
         fill_ptr[i + 1] = put
     return later_ptr, later, fill_ptr, fill_rank

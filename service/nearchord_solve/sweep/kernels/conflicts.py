@@ -9,8 +9,8 @@ only these bags have to be gone through for it, from below to the top.
 
 *Outside fill cores* the bags are the cliques K(i), where nothing can stand beside u and v.  Let y(i) = max(0, r(i)), r
 as the inward pass left it.  What the subtree of i adds to a set is the sum of y over it, less y(j) for each vertex of
-the set in L(j), j in the subtree (the weight that the inward pass moved): for u and v together the y(j) of a j with both
-in L(j) is taken twice, but the set loses it once.  Let C(u, v) be the sum of y(j) over all j with u and v in L(j).
+the set in L(j), j in the subtree (the weight that the inward pass moved): for u and v together the y(j) of a j with
+both in L(j) is taken twice, but the set loses it once.  Let C(u, v) be the sum of y(j) over all j with u and v in L(j).
 Choosing v brings r(v) and, as u is there as well, C(u, v) back.  With the gap g(u) of choosing u, when nothing of K(v)
 but u is chosen and v's subtree adds what L(v) leaves it (0 for u, in these terms),
 
@@ -22,7 +22,8 @@ both, M(u, v) is 0 in these terms; otherwise the states are gone through (:mod:`
 price is read from the least of (gap of t + M(t) - value) over the states with u and v, t their adhesion part.
 
 Pairs of a clique L(i) with y(i) > 0 are looked up in the rows of its members: O(sum over these i of the lists of L(i)),
-at most the edges times the largest clique, mostly much less.  With fill: the states with u and v, for each edge in a bag.
+at most the edges times the largest clique, mostly much less.  With fill: the states with u and v, for each edge in
+each bag.
 """
 
 import numpy as np
@@ -97,22 +98,22 @@ def singles(bag: Bag, forest: Forest, tries: Tries, prices: Prices) -> tuple[I64
 @inlined
 def share_fill(full: U64, a: int, c: int) -> bool:
     """Whether fill joins some vertex to both."""
+    shared = np.uint64(0)
     for w in range(full.shape[1]):
-        if full[a, w] & full[c, w]:
-            return True
-    return False
+        shared |= full[a, w] & full[c, w]
+    return bool(shared != 0)
 
 
 @inlined
 def keep_pair(a: int, c: int, nodes: int, alone: int, bag: Bag, single: I64, empty: int, kept: PairTries) -> None:
     """Keep the message about two touched adhesion vertices, whose nodes begin at ``nodes``."""
-    record = kept.count[1]
-    settle_pair(nodes, kept.count[0], alone, bag, single - empty, kept)
+    record = kept.filled[1]
+    settle_pair(nodes, kept.filled[0], alone, bag, single - empty, kept)
     kept.low[record] = bag.slots[a]
     kept.high[record] = bag.slots[c]
     kept.begin[record] = nodes
-    kept.end[record] = kept.count[0]
-    kept.count[1] += 1
+    kept.end[record] = kept.filled[0]
+    kept.filled[1] += 1
 
 
 @inlined
@@ -168,7 +169,7 @@ def pair_filled(
         if j < bag.slots.shape[0] and bag.slots[j] == forest.bag_slot[begin + k]:
             touch[k] = j
             j += 1
-    kept.first[bag.number] = kept.count[1]
+    kept.first[bag.number] = kept.filled[1]
     keep = forest.bag_kind[bag.number] & ADHESION_FILL != 0
     ones, others, edges = edges_inside(bag, numbering, forest, local)
     code = DONE
@@ -179,8 +180,8 @@ def pair_filled(
         k, m, e = ones[q], others[q], edges[q]
         a, c = touch[k], touch[m]
         down = m < lead
-        nodes = kept.count[0]
-        found = np.int64(0)
+        nodes = kept.filled[0]
+        found = int(np.int64(0))  # a literal 0 would compile what it is passed to twice
         together = a >= 0 and c >= 0 and share_fill(full, a, c)
         if together:
             found = pair_states(bag, tries, full, a, c, 0 if down else pair[e], down, kept)
@@ -188,10 +189,10 @@ def pair_filled(
                 code = MEMORY
                 break
         if down:
-            if keep and kept.count[0] > nodes:
+            if keep and kept.filled[0] > nodes:
                 keep_pair(a, c, nodes, found, bag, single, empty, kept)
             else:
-                kept.count[0] = nodes
+                kept.filled[0] = nodes
             pair[e] += found + empty - (single[a] if a >= 0 else 0) - (single[c] if c >= 0 else 0)
             continue
         if not together:
@@ -204,7 +205,7 @@ def pair_filled(
                 found = prices.chosen[u]
             found -= pair[e] + residual[forest.slot_place[forest.bag_slot[begin + m]]]
         pair[e] = max(0, -found)
-    kept.behind[bag.number] = kept.count[1]
+    kept.behind[bag.number] = kept.filled[1]
     return code
 
 

@@ -58,7 +58,7 @@ class Searches(NamedTuple):
     Search k leaves out the vertices ``without`` on the way from the root to k.
     """
 
-    count: I64  # [1]
+    filled: I64  # [1] rows in use
     gap: I64
     above: I32
     first: I32
@@ -290,13 +290,13 @@ def avoid(
                 hit = searches.place[k, d]
                 break
         if hit < 0:
-            return searches.gap[k]
+            return int(searches.gap[k])
         following = searches.first[k]
         while following >= 0 and searches.without[following] != hit:
             following = searches.following[following]
         if following < 0:
-            full = searches.count[0] == KEPT_SEARCHES
-            following = searches.count[0]
+            full = searches.filled[0] == KEPT_SEARCHES
+            following = searches.filled[0]
             serial[0] += 1
             if full:  # the last row is not kept: leave out all marked places at once
                 for e in range(forest.bag_ptr[bag.number], forest.bag_ptr[bag.number + 1]):
@@ -304,7 +304,7 @@ def avoid(
                     if mark[p] == stamp:
                         shut[p] = serial[0]
             else:
-                searches.count[0] += 1
+                searches.filled[0] += 1
                 searches.above[following] = k
                 searches.without[following] = hit
                 searches.following[following] = searches.first[k]

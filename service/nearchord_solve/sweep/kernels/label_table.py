@@ -2,7 +2,7 @@
 
 A key is a bag and the vertices of a state in that bag's adhesion, ascending; entries with the same key stand in one
 chain and differ in the labels of these vertices, which are named in the order of their first use.  An entry keeps the
-best value for its key and labels, and the state that reaches it.
+best value for its key and labels; the state that reaches it is found again when it is wanted.
 """
 
 from typing import Any, NamedTuple
@@ -21,7 +21,7 @@ class Table(NamedTuple):
     value: I64  # [E]
     bag: I32  # [E]
     length: I32  # [E] vertices of the key
-    begin: I64  # [E] where the entry stands in ``pool``, see record()
+    begin: I64  # [E] where the entry stands in ``pool``: its vertices, then their labels
     following: I32  # [E] next entry of the chain, -1 ends
     hashed: U64  # [E]
     pool: I32
@@ -37,6 +37,12 @@ def empty_table() -> Table:
         np.empty(64, np.int32), np.empty(64, np.uint64), np.empty(1024, np.int32), np.full(128, -1, np.int32),
         np.zeros(3, np.int64),
     )  # fmt: skip
+
+
+@kernel
+def table_bytes(table: Table) -> int:
+    """Memory of a table."""
+    return int(4 * table.pool.shape[0] + 36 * table.value.shape[0] + 4 * table.slots.shape[0])
 
 
 @kernel
@@ -108,7 +114,7 @@ def find(table: Table, bag: int, key: I32, length: int) -> Any:
 
 
 @kernel
-def _labelled(table: Table, entry: int, label: I32, length: int) -> int:
+def labelled(table: Table, entry: int, label: I32, length: int) -> int:
     """The entry of a chain, from ``entry`` on, with these labels; -1 without one."""
     while entry >= 0:
         same = True
@@ -123,47 +129,33 @@ def _labelled(table: Table, entry: int, label: I32, length: int) -> int:
 
 
 @kernel
-def record(
-    table: Table, bag: int, key: I32, label: I32, length: int, value: int,
-    state: I32, named: I32, size: int, room: int, picks: I32,
-) -> Table:  # fmt: skip
-    """Offer a value, and the state that has it, for a key and its labels.
-
-    ``state``, ``named`` int32[size]: vertices and labels of the state, of at most ``room`` vertices in this bag;
-    ``picks``: the entry taken of each bag below.  In the pool stand key, labels, size, state, its labels, picks.
-    """
+def record(table: Table, bag: int, key: I32, label: I32, length: int, value: int) -> Table:
+    """Offer a value for a key and its labels: ``key``, ``label`` int32[length or more]; the best is kept."""
     mixed = _hash(bag, key, length)
     place = _slot(table, mixed, bag, key, length)
     first = table.slots[place]
-    entry = _labelled(table, first, label, length)
-    if entry >= 0 and table.value[entry] >= value:
+    entry = labelled(table, first, label, length)
+    if entry >= 0:
+        table.value[entry] = max(table.value[entry], value)
         return table
-    if entry < 0:
-        table = _grown(table, 2 * length + 1 + 2 * room + picks.shape[0])
-        entry = table.used[0]
-        begin = table.used[1]
-        table.bag[entry] = bag
-        table.length[entry] = length
-        table.hashed[entry] = mixed
-        table.begin[entry] = begin
-        table.following[entry] = -1
-        table.used[0] += 1
-        table.used[1] += 2 * length + 1 + 2 * room + picks.shape[0]
-        for i in range(length):
-            table.pool[begin + i] = key[i]
-            table.pool[begin + length + i] = label[i]
-        if first >= 0:
-            table.following[entry] = table.following[first]
-            table.following[first] = entry
-        else:
-            table.used[2] += 1
-            table.slots[_slot(table, mixed, bag, key, length)] = entry
+    table = _grown(table, 2 * length)
+    entry = table.used[0]
+    begin = table.used[1]
     table.value[entry] = value
-    at = table.begin[entry] + 2 * length
-    table.pool[at] = size
-    for i in range(size):
-        table.pool[at + 1 + i] = state[i]
-        table.pool[at + 1 + room + i] = named[i]
-    for i in range(picks.shape[0]):
-        table.pool[at + 1 + 2 * room + i] = picks[i]
+    table.bag[entry] = bag
+    table.length[entry] = length
+    table.hashed[entry] = mixed
+    table.begin[entry] = begin
+    table.following[entry] = -1
+    table.used[0] += 1
+    table.used[1] += 2 * length
+    for i in range(length):
+        table.pool[begin + i] = key[i]
+        table.pool[begin + length + i] = label[i]
+    if first >= 0:
+        table.following[entry] = table.following[first]
+        table.following[first] = entry
+    else:
+        table.used[2] += 1
+        table.slots[_slot(table, mixed, bag, key, length)] = entry
     return table

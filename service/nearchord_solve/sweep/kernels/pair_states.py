@@ -40,7 +40,7 @@ class PairTries(NamedTuple):
     high: I32
     begin: I64
     end: I64
-    count: I64  # [2] nodes, records
+    filled: I64  # [2] nodes, records
 
 
 @inlined
@@ -129,7 +129,7 @@ def pair_states(bag: Bag, tries: Tries, full: U64, a: int, c: int, start: int, d
     chosen[0] = -1
     need[0] = a
     best = MOST_GAP
-    used = kept.count[0]
+    used = kept.filled[0]
     depth = 0
     while depth >= 0:
         w = 0
@@ -197,13 +197,13 @@ def pair_states(bag: Bag, tries: Tries, full: U64, a: int, c: int, start: int, d
                 kept.delta[at] = total
         elif j < bag.lead or total - best > 0:
             best = total
-    kept.count[0] = used
+    kept.filled[0] = used
     return best
 
 
 @inlined
 def settle_pair(begin: int, end: int, alone: int, bag: Bag, single: I64, kept: PairTries) -> None:
-    """Turn M(u, v, r) on nodes begin..end-1 into deltas; ``alone`` is M(u, v), ``single`` int64[t] M({x}) - M(empty)."""
+    """Turn M(u, v, r) on nodes begin..end-1 into deltas; ``alone``: M(u, v), ``single`` int64[t]: M({x}) - M(empty)."""
     path_end = np.empty(end - begin + 1, np.int64)
     path_sum = np.empty(end - begin + 1, np.int64)
     path_sum[0] = 0

@@ -156,13 +156,13 @@ def avoid_at(top: int, size: int, name: int, numbering: Numbering, hanging: Hang
             p = numbering.low[e]
             if hanging.mark[p] != name:
                 least = min(least, prices.chosen[p])
-        return least
+        return int(least)
     if hanging.head[top] == 0:
         hanging.row[begin:end] = numbering.low[begin:end]
     other, hanging.head[top] = first_unmarked(
         hanging.row[begin:end], hanging.head[top], prices.chosen, hanging.mark, name
     )
-    return min(least, other)
+    return int(min(least, other))
 
 
 @inlined

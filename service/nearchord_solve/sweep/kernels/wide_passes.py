@@ -41,7 +41,7 @@ def gather(weights: I64, first: int, count: int, place: I32, residual: I64) -> N
 
 @inlined
 def take_home(p: int, residual: I64, chosen: U64, base: I64, gain: I64) -> None:
-    """Add what a place is worth to ``base``, and note it in ``gain`` and, as bits of what is positive, in ``chosen``."""
+    """Add what a place is worth to ``base``; note it in ``gain``, and as bits of what is positive in ``chosen``."""
     positive = np.uint64(0)
     wide = gain.shape[0]
     for r in range(wide):

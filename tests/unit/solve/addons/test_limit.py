@@ -5,6 +5,7 @@ import numpy as np
 import pytest
 from definition import all_independent, is_independent
 from nearchord_solve import Budget, Graph, IndependentSet, Monitor, Outcome, Stop, Verdict, solve
+from nearchord_solve.questions.addons.penalty import reachable
 from networkx.generators.atlas import graph_atlas_g
 from scipy.optimize import Bounds, LinearConstraint, milp
 from scipy.sparse import lil_matrix
@@ -146,6 +147,20 @@ def test_states_alone_agree_with_penalties(monkeypatch: pytest.MonkeyPatch) -> N
     monkeypatch.setattr(penalty, "MOST_SWEEPS", 0)
     for limit in range(1, 20):
         check(run(limit, 60, edges, weights), usual[limit], limit, edges, weights)
+
+
+@pytest.mark.parametrize("seed", range(30))
+def test_exchanges_reach_the_largest_size_within_the_room(seed: int) -> None:
+    """Against all choices of gains; no gain is taken twice."""
+    rng = np.random.default_rng(seed)
+    gains = rng.integers(0, 5, int(rng.integers(0, 11))).tolist()
+    sums = {0}
+    for gain in gains:
+        sums |= {known + gain for known in sums}
+    for room in range(sum(gains) + 2):
+        taken = reachable(gains, room)
+        assert len(set(taken)) == len(taken)
+        assert sum(gains[i] for i in taken) == max(known for known in sums if known <= room)
 
 
 def test_limit_zero_is_the_empty_set() -> None:

@@ -2,14 +2,17 @@
 
 from typing import Any
 
+import numpy as np
 import pytest
 from nearchord_solve import Budget, Graph, IndependentSet, Monitor, SolverError, solve
 
 
 def refused(**asked: Any) -> tuple[str, str]:
     """The field and the message of the error that a question meets."""
+    scenarios = asked.get("scenarios", 0)
+    weights = np.ones((scenarios, 3), np.int64) if scenarios > 0 else None
     with pytest.raises(SolverError) as caught:
-        solve(IndependentSet(**asked), Graph.from_edges(3, [(0, 1)]), None, Budget(), "bound", Monitor())
+        solve(IndependentSet(**asked), Graph.from_edges(3, [(0, 1)]), weights, Budget(), "bound", Monitor())
     return caught.value.field, caught.value.message
 
 
