@@ -57,7 +57,8 @@ def _check_numbers(graph: Graph, answer: Answer, start: Ints, colour: Ints) -> N
     if used.size and int(used[0]) == 0:
         raise CheckFailed(f"vertex {graph.label(int(vertex[colour.argmin()]))} has the colour 0; they count from 1")
     if used.size != answer.value or (used.size and int(used[-1]) != answer.value):
-        raise CheckFailed(f"the value is given as {answer.value}, but {used.size} colours are used")
+        highest = int(used[-1]) if used.size else 0
+        raise CheckFailed(f"the value is given as {answer.value}, but {used.size} colours up to {highest} are used")
 
 
 def check_shares(graph: Graph, answer: Answer, demand: Ints) -> str:
