@@ -4,7 +4,7 @@ from collections.abc import Callable
 
 from bench.options import Options
 from bench.report import Report
-from bench.scenarios import data, fill, known, proofs, scale, service, upload, windows
+from bench.scenarios import data, fill, known, proofs, questions, scale, service, upload, windows
 
 Scenario = Callable[[Options], Report]
 
@@ -17,4 +17,5 @@ SCENARIOS: dict[str, Scenario] = {
     "fill": fill.measure,
     "proofs": proofs.measure,
     "known-graph": known.measure,
+    "questions": questions.measure,
 }

@@ -7,7 +7,9 @@ from nearchord_solve import (
     Budget,
     Clique,
     ColourableSubgraph,
+    Colouring,
     Fill,
+    FractionalColouring,
     Graph,
     IndependentSet,
     InducedForest,
@@ -35,6 +37,8 @@ def test_questions_are_found_by_their_wire_names() -> None:
         "clique": Clique,
         "colourable-subgraph": ColourableSubgraph,
         "induced-forest": InducedForest,
+        "colouring": Colouring,
+        "fractional-colouring": FractionalColouring,
         "fill": Fill,
         "structure": Structure,
     } == QUESTIONS
