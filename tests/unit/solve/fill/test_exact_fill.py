@@ -166,8 +166,8 @@ def test_a_part_is_proven_as_its_weakest_piece_is() -> None:
     confirm(graph, result)
 
 
-def test_the_monitor_learns_the_lower_bound() -> None:
+def test_the_monitor_learns_the_fill_and_the_lower_bound() -> None:
     """After the last part."""
     monitor = Monitor()
     fill_of(plain(nx.grid_2d_graph(4, 4)), None, monitor)
-    assert monitor.cells[Monitor.FILL_LOWER] == 18
+    assert monitor.cells[Monitor.FILL_LOWER] == monitor.cells[Monitor.FILL] == 18
