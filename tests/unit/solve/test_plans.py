@@ -128,6 +128,20 @@ def test_neighbours_keep_two_colours_whatever_is_asked() -> None:
         assert (painter.colours, painter.plan.member.tolist()) == (2, [[True, False], [False, True]])
 
 
+@pytest.mark.parametrize("seed", range(12))
+def test_branching_finds_the_fewest_colours_of_copies_and_refutes_fewer(seed: int) -> None:
+    rng = np.random.default_rng(seed)
+    edges = [(u, v) for u, v in combinations(range(6), 2) if rng.random() < 0.6]
+    demand = rng.integers(1, 4, 6)
+    least = fewest_units(6, edges, demand.tolist())
+    painter = Painter(copies(Graph.from_edges(6, edges), demand), Monitor())
+    assert painter.settle(least, 10**6) is True
+    member = painter.plan.member
+    assert (painter.colours, member.sum(axis=0).tolist()) == (least, demand.tolist())
+    assert not any((member[:, u] & member[:, v]).any() for u, v in edges)
+    assert painter.settle(least - 1, 10**6) is False
+
+
 def test_a_search_that_gives_up_proves_nothing() -> None:
     """One step is not enough to refute two or three colours, so the clique stays the bound."""
     outcome = planned(11, sorted(nx.mycielski_graph(4).edges), budget=Budget(states=1))
