@@ -126,7 +126,7 @@ def test_prices_take_tables(ask) -> None:  # type: ignore[no-untyped-def]
     outcome = run(ask(prices=True), 5, [(0, 1), (1, 2), (2, 3), (3, 0), (3, 4)], [1] * 5, Budget(memory=1))
     assert "price_in" not in outcome.columns
     if outcome.value is not None and outcome.verdict is not Verdict.INFEASIBLE:
-        assert "without prices, which take an optimum proven by tables" in outcome.reason
+        assert "without prices: that takes an optimum proven by tables" in outcome.reason
 
 
 @pytest.mark.parametrize("ask", QUESTIONS)
