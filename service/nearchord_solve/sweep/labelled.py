@@ -156,9 +156,10 @@ def _sets(line: Line, pinned: Pinned) -> tuple[Sets, int]:
     for k in range(1, pinned.colours + 1):
         np.cumsum(choose[:-1, k - 1], out=choose[1:, k])
     plain = forest.bag_kind & ADHESION_FILL == 0
-    end = np.cumsum(np.where(plain, choose.sum(axis=1)[forest.bag_adhesion], 0))
-    first[plain] = np.concatenate((np.zeros(1, np.int64), end[:-1]))[plain]
-    return Sets(first, choose), int(end[-1])
+    begin = np.zeros(plain.size + 1, np.int64)
+    np.cumsum(np.where(plain, choose.sum(axis=1)[forest.bag_adhesion], 0), out=begin[1:])
+    first[plain] = begin[:-1][plain]
+    return Sets(first, choose), int(begin[-1])
 
 
 def _plan(line: Line, pinned: Pinned, sets: Sets) -> Plan:

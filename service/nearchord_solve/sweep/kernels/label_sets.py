@@ -19,7 +19,7 @@ from typing import NamedTuple
 import numpy as np
 
 from nearchord_solve.kernels.cells import STOP
-from nearchord_solve.kernels.compiled import I32, I64, U8, kernel
+from nearchord_solve.kernels.compiled import I32, I64, U8, inlined, kernel
 from nearchord_solve.kernels.layout import Forest
 from nearchord_solve.sweep.kernels.label_choice import free_colour
 from nearchord_solve.sweep.kernels.label_goals import BELIEVE, CHOOSE, COLLECT, Belief
@@ -46,7 +46,7 @@ class Walk(NamedTuple):
     part: I64  # [q+1] entry of the part in the bag's own adhesion
 
 
-@kernel
+@inlined
 def _open_below(number: int, forest: Forest, child: I64, first: I64, where: I32) -> Below:
     """What is below a bag, with no vertex chosen.  ``where`` int32[n] must be -1 everywhere and is so again on return."""
     begin, end = forest.bag_ptr[number], forest.bag_ptr[number + 1]
@@ -78,7 +78,7 @@ def _open_below(number: int, forest: Forest, child: I64, first: I64, where: I32)
     return Below(ptr, which, place, lead, np.zeros(child.shape[0], np.int64), entry)
 
 
-@kernel
+@inlined
 def _join(walk: Walk, below: Below, depth: int, j: int, lead: int, value: I64, choose: I64) -> None:
     """Write row ``depth + 1``: the set of row ``depth`` with the vertex at place ``j``, above all others.
 
@@ -102,7 +102,7 @@ def _join(walk: Walk, below: Below, depth: int, j: int, lead: int, value: I64, c
         walk.part[depth + 1] += choose[lead, depth] + choose[j, depth + 1]
 
 
-@kernel
+@inlined
 def _leave(below: Below, j: int, choose: I64) -> None:
     """Take the vertex at place ``j``, the highest of the set, from the parts below."""
     for e in range(below.ptr[j], below.ptr[j + 1]):
@@ -112,7 +112,7 @@ def _leave(below: Below, j: int, choose: I64) -> None:
         below.count[c] = k
 
 
-@kernel
+@inlined
 def _tell(member: I32, lead: int, walk: Walk, below: Below, depth: int, belief: Belief) -> None:
     """Tell the total of a set to its vertices, to homes that it leaves out, and to the bags below."""
     total = belief.sets[walk.part[depth]] + walk.worth[depth]
@@ -130,7 +130,7 @@ def _tell(member: I32, lead: int, walk: Walk, below: Below, depth: int, belief: 
         belief.sets[below.entry[c]] = max(belief.sets[below.entry[c]], total)
 
 
-@kernel
+@inlined
 def _colour_homes(member: I32, homes: I64, colour: U8) -> None:
     """Choose homes, each in a class of its own."""
     taken = 0
