@@ -177,8 +177,8 @@ def _belief(line: Line, table: Table, few_ptr: I64, kept: U8) -> Belief:
     """Nothing told yet about the entries of a table."""
     n = line.order.size if few_ptr.size > 1 else 0
     return Belief(
-        np.full(int(table.used[0]), NOTHING), np.full(table.sets.size, NOTHING), few_ptr, np.full(int(few_ptr[-1]), NOTHING), np.full(n, NOTHING),
-        np.full(n, NOTHING), kept,
+        np.full(int(table.used[0]), NOTHING), np.full(table.sets.size, NOTHING), few_ptr,
+        np.full(int(few_ptr[-1]), NOTHING), np.full(n, NOTHING), np.full(n, NOTHING), kept,
     )  # fmt: skip
 
 

@@ -33,7 +33,7 @@ class Below(NamedTuple):
     child: I64
     place: I64  # the place that it has in the adhesion
     lead: I64  # [C] sizes of the adhesions
-    count: I64  # [C] vertices of the part
+    held: I64  # [C] how many vertices that are
     entry: I64  # [C] its value
 
 
@@ -48,7 +48,7 @@ class Walk(NamedTuple):
 
 @inlined
 def _open_below(number: int, forest: Forest, child: I64, first: I64, where: I32) -> Below:
-    """What is below a bag, with no vertex chosen.  ``where`` int32[n] must be -1 everywhere and is so again on return."""
+    """What is below a bag, no vertex chosen.  ``where`` int32[n] must be -1 everywhere and is so again on return."""
     begin, end = forest.bag_ptr[number], forest.bag_ptr[number + 1]
     ptr = np.zeros(end - begin + 1, np.int64)
     lead = np.empty(child.shape[0], np.int64)
@@ -79,19 +79,22 @@ def _open_below(number: int, forest: Forest, child: I64, first: I64, where: I32)
 
 
 @inlined
-def _join(walk: Walk, below: Below, depth: int, j: int, lead: int, value: I64, choose: I64) -> None:
+def _join(walk: Walk, below: Below, depth: int, j: int, lead: int, value: I64, choose: I64, keep: bool) -> None:
     """Write row ``depth + 1``: the set of row ``depth`` with the vertex at place ``j``, above all others.
 
-    ``value`` int64[D]: of parts.  What the vertex itself is worth, and whether it must be chosen, is left out.
+    ``value`` int64[D]: of parts; those below move on only if ``keep``.  What the vertex itself is worth, and whether it
+    must be chosen, is left out.
     """
     worth, lacking = walk.worth[depth], walk.lacking[depth]
     for e in range(below.ptr[j], below.ptr[j + 1]):
         c = below.child[e]
-        k = below.count[c]
+        k = below.held[c]
         old = value[below.entry[c]]
-        below.entry[c] += choose[below.lead[c], k] + choose[below.place[e], k + 1]
-        below.count[c] = k + 1
-        new = value[below.entry[c]]
+        entry = below.entry[c] + choose[below.lead[c], k] + choose[below.place[e], k + 1]
+        new = value[entry]
+        if keep:
+            below.entry[c] = entry
+            below.held[c] = k + 1
         worth += max(new, 0) - max(old, 0)
         lacking += int(new < 0) - int(old < 0)
     walk.chosen[depth] = j
@@ -107,9 +110,9 @@ def _leave(below: Below, j: int, choose: I64) -> None:
     """Take the vertex at place ``j``, the highest of the set, from the parts below."""
     for e in range(below.ptr[j], below.ptr[j + 1]):
         c = below.child[e]
-        k = below.count[c] - 1
+        k = below.held[c] - 1
         below.entry[c] -= choose[below.lead[c], k] + choose[below.place[e], k + 1]
-        below.count[c] = k
+        below.held[c] = k
 
 
 @inlined
@@ -160,27 +163,28 @@ def visit_sets(
     lead = forest.bag_adhesion[number]
     below = _open_below(number, forest, child, sets.first, where)
     walk = Walk(
-        np.empty(most + 1, np.int64), np.zeros(most + 1, np.int64), np.zeros(most + 1, np.int64),
+        np.full(most + 1, -1, np.int64), np.zeros(most + 1, np.int64), np.zeros(most + 1, np.int64),
         np.full(most + 1, sets.first[number], np.int64),
     )  # fmt: skip
+    kept = most + 1 if mode == BELIEVE else most  # otherwise nobody asks for the parts below of sets of q vertices
     for c in range(child.shape[0]):
         walk.worth[0] += max(value[below.entry[c]], 0)
         walk.lacking[0] += int(value[below.entry[c]] < 0)
     for j in range(lead, member.shape[0]):
         walk.lacking[0] += must[member[j]]
-    start = int(np.int64(0))  # a literal 0 would compile what it is passed to twice
-    if mode == CHOOSE:
-        for j in range(lead):
-            if colour[member[j]]:
-                _join(walk, below, start, j, lead, value, choose)
-                start += 1
-    walk.chosen[start] = lead - 1 if mode == CHOOSE else -1
-    best = int(np.int64(-1))
-    homes = np.empty(0, np.int64)
-    depth = start
+    low = lead if mode == CHOOSE else 0
+    fixed = np.empty(low, np.int64)
+    start = 0
+    for j in range(low):
+        if colour[member[j]]:
+            fixed[start] = j
+            start += 1
+    best = -1
+    homes = fixed[:0]
+    depth = 0
     fresh = True
-    while depth >= start and cells[STOP] == 0:
-        if fresh and walk.lacking[depth] == 0:
+    while (depth >= start or fresh) and depth >= 0 and cells[STOP] == 0:
+        if fresh and depth >= start and walk.lacking[depth] == 0:
             if mode == COLLECT:
                 value[walk.part[depth]] = max(value[walk.part[depth]], walk.worth[depth])
             elif mode == BELIEVE:
@@ -188,14 +192,14 @@ def visit_sets(
             elif walk.worth[depth] > best:
                 best = walk.worth[depth]
                 homes = walk.chosen[start:depth].copy()
-        j = walk.chosen[depth] + 1
+        j = fixed[depth] if depth < start else max(walk.chosen[depth] + 1, low)
         fresh = depth < most and j < member.shape[0]
         if not fresh:
             depth -= 1
-            if depth >= start:
+            if depth >= start and depth + 1 < kept:
                 _leave(below, walk.chosen[depth], choose)
             continue
-        _join(walk, below, depth, j, lead, value, choose)
+        _join(walk, below, depth, j, lead, value, choose, depth + 1 < kept)
         depth += 1
         if j >= lead:
             walk.worth[depth] += single[member[j]]
