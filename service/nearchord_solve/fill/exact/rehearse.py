@@ -23,17 +23,15 @@ MANY = 1000
 
 
 def rehearse() -> Iterator[None]:
-    """One step at a time; each yields when it is done.  About a minute when nothing is compiled yet."""
-    side = range(3)
-    right = [(3 * i + j, 3 * i + j + 1) for i, j in product(side, range(2))]
-    down = [(3 * i + j, 3 * i + j + 3) for i, j in product(range(2), side)]
-    grid = Graph.from_edges(9, right + down)
+    """The kernels that do not need the structure of a graph, one step at a time; each yields when it is done."""
+    grid = _grid()
     core = Core.from_rows(grid.ptr, grid.adj)
     cells = Monitor().cells
     recognise_chordal(grid, Monitor())
     yield
     recognise_interval(Graph.from_edges(3, [(0, 1), (1, 2)]), Monitor())
     yield
+    core.induced(np.arange(core.n - 1, dtype=np.int32))
     solve_subsets(core, MANY, cells)
     add_safe_edges(core.rows.copy(), core.sizes, cells)
     yield
@@ -43,7 +41,19 @@ def rehearse() -> Iterator[None]:
     yield
     solve_blocks(core, MANY, np.zeros((core.n, core.n), np.int64), 0, MANY, cells)
     yield
+
+
+def rehearse_whole() -> None:
+    """A search from the graph to its fill: compiles the way to the structure too, unless that is done."""
+    grid = _grid()
     structure = build_structure(grid, Budget(), Monitor())
     assert isinstance(structure, Structure)
     fill_of_graph(grid, structure, None, Monitor())
-    yield
+
+
+def _grid() -> Graph:
+    """Three by three vertices."""
+    side = range(3)
+    right = [(3 * i + j, 3 * i + j + 1) for i, j in product(side, range(2))]
+    down = [(3 * i + j, 3 * i + j + 3) for i, j in product(range(2), side)]
+    return Graph.from_edges(9, right + down)
