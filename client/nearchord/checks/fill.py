@@ -14,6 +14,7 @@ from nearchord.checks.packing import Packing, TooLarge
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph
 from nearchord.stages import ProofKind, Verdict
+from nearchord.wording import counted, named
 
 WITNESSED = (Verdict.PROVEN, Verdict.BOUNDED, Verdict.OVER_FILL)
 """Verdicts under which an answer says something about the graph."""
@@ -67,7 +68,7 @@ class _FillCheck:
     def _check_fill_edges(self) -> None:
         u, v = self._answer.fill_edges.astype(np.int64).T
         if len(u) != self._answer.value:
-            raise CheckFailed(f"the value is given as {self._answer.value}, but {len(u)} fill edges are named")
+            raise CheckFailed(f"the value is given as {self._answer.value}, but {named(len(u), 'fill edge')}")
         self._check_pairs(u, v)
         order = self._column("elimination_order")
         if order is None:
@@ -75,7 +76,9 @@ class _FillCheck:
             return
         check_elimination_order(self._graph, self._edges.with_pairs(u, v), order)
         self._found.confirm(
-            f"adding the {len(u):,} fill edges makes the graph chordal" if len(u) else "the graph needs no fill edge"
+            f"adding the {counted(len(u), 'fill edge')} makes the graph chordal"
+            if len(u)
+            else "the graph needs no fill edge"
         )
 
     def _check_pairs(self, u: Ints, v: Ints) -> None:
@@ -155,7 +158,9 @@ class _FillCheck:
             self._found.leave_open(f"the bound {bound:,}: {by} is too large to be checked here")
             return
         if proven >= bound:
-            self._found.confirm(f"the bound {bound:,}: rings of {by} need as many fill edges")
+            self._found.confirm(
+                f"the bound {bound:,}: rings of {by} need {'as many fill edges' if bound > 1 else 'a fill edge'}"
+            )
             return
         witnessed = {ProofKind.PACKING, ProofKind.NONE, *([ProofKind.BRANCH] if len(trees) else [])}
         others = sorted(set(self._answer.proof_kinds) - witnessed)
@@ -167,4 +172,4 @@ def _means(trees: int) -> str:
     """What a bound is worked out from, in words."""
     if not trees:
         return "the packing"
-    return f"the packing with {trees:,} tree{'' if trees == 1 else 's'} of cases"
+    return f"the packing with {counted(trees, 'tree')} of cases"

@@ -11,6 +11,7 @@ from nearchord.checks.confirmed import Confirmed, Findings, check_sides, check_u
 from nearchord.checks.edges import Ints
 from nearchord.errors import CheckFailed
 from nearchord.graph import Graph
+from nearchord.wording import counted, named
 
 
 def check_structure(graph: Graph, answer: Answer) -> Confirmed:
@@ -24,10 +25,11 @@ def check_structure(graph: Graph, answer: Answer) -> Confirmed:
         count = components(graph)
         if answer.structure.components != count:
             raise CheckFailed(f"the components are given as {answer.structure.components}, but there are {count}")
-        found.confirm(f"the graph has {count:,} connected component{'' if count == 1 else 's'}")
+        found.confirm(f"the graph has {counted(count, 'connected component')}")
         _check_cores(graph, answer, answer.structure.largest_core, found)
         found.leave_open("the predictions: confirming them means computing them again")
-    found.leave_open(f"the fill range {answer.bound:,} to {answer.value:,}: ask the question fill for witnesses")
+    fill = f"{answer.value:,}" if answer.bound == answer.value else f"range {answer.bound:,} to {answer.value:,}"
+    found.leave_open(f"the fill {fill}: ask the question fill for witnesses")
     return found.settle()
 
 
@@ -40,11 +42,12 @@ def _check_cores(graph: Graph, answer: Answer, largest: int, found: Findings) ->
     check_starts(start, vertex.size, "fill cores")
     sizes = np.diff(start)
     if answer.fill_cores is not None and answer.fill_cores != sizes.size:
-        raise CheckFailed(f"there are said to be {answer.fill_cores} fill cores, but {sizes.size} are named")
+        raise CheckFailed(f"the fill cores are given as {answer.fill_cores}, but {named(sizes.size, 'fill core')}")
     most = int(sizes.max(initial=0))
     if largest != most:
         raise CheckFailed(f"the largest fill core is given as {largest}, but has {most} vertices")
-    found.confirm(f"{sizes.size:,} fill cores are named, the largest with {largest:,} vertices")
+    if sizes.size:
+        found.confirm(f"{named(sizes.size, 'fill core')}, the largest with {largest:,} vertices")
 
 
 def components(graph: Graph) -> int:

@@ -34,6 +34,13 @@ def write(file: str, answer: nearchord.Answer) -> bool:
     return True
 
 
+def why_none(answer: nearchord.Answer) -> str:
+    """Why `write` had nothing to write."""
+    if isinstance(answer.question, nearchord.Fill):
+        return "what proves a fill is in the object that --json prints"
+    return f"the answer carries none ({answer.proof})"
+
+
 def size_of(answer: nearchord.Answer) -> str:
     """What the proof of `answer` takes, in all and for each vertex."""
     return f"{size(answer.proof_bytes)} ({answer.proof_bytes / max(answer.vertices, 1):.1f} bytes a vertex)"

@@ -36,7 +36,7 @@ def solve(file: str, ask: Ask, source: Source, server: str | None, as_json: bool
         with detaching("job", job.id, server):
             answer = follow(service, job, display)
     if proof is not None and not proof_file.write(proof, answer):
-        click.echo(f"note: no proof was written to {proof}, as the answer carries none ({answer.proof})", err=True)
+        click.echo(f"note: no proof was written to {proof}: {proof_file.why_none(answer)}", err=True)
     about = Subject.of(graph, asked.titles)
     if as_json:
         print_json(record(answer, about))

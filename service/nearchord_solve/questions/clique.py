@@ -26,6 +26,7 @@ from nearchord_solve.questions.heaviest import Task
 from nearchord_solve.questions.pins import Contradiction, Rest, keep_vertices, lift, pin_array
 from nearchord_solve.structure import Structure
 from nearchord_solve.sweep.kernels import bag_cliques
+from nearchord_solve.wording import counted
 
 MOST_NODES = 100_000  # of a search that a checker in plain Python is asked to do again
 
@@ -121,10 +122,13 @@ class CliqueProgram:
         if task.stop:
             return "seconds ran out in the search of the bags with fill"
         if nodes >= task.budget.states:
-            return f"state budget: the search of the bags with fill takes more than {task.budget.states} nodes"
+            return (
+                f"state budget: the search of the bags with fill takes more than {counted(task.budget.states, 'node')}"
+            )
         if structure.fill == 0:
             return "the graph is chordal: its heaviest bag is the heaviest clique"
-        return f"all {structure.bags} bags were compared, with {nodes} search nodes in those that hold fill"
+        bags, searched = counted(structure.bags, "bag"), counted(nodes, "search node")
+        return f"all {bags} were compared, with {searched} in those that hold fill"
 
 
 def _around_each(graph: Graph, weights: I64) -> I64:

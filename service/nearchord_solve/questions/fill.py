@@ -21,6 +21,7 @@ from nearchord_solve.questions.classes import Columns, recognise
 from nearchord_solve.questions.conclude import without_structure
 from nearchord_solve.structure import Structure
 from nearchord_solve.tree import Partial, build_structure, with_fill
+from nearchord_solve.wording import counted, fill_needed, verb
 
 
 @dataclass(frozen=True)
@@ -140,10 +141,11 @@ def _proof(cores: list[_Core], complete: bool) -> str:
 def _reason(found: GraphFill, budget: Budget, monitor: Monitor) -> str:
     lower, upper = found.lower_bound, found.upper_bound
     if found.over:
-        return f"fill budget: at least {lower} fill edges are needed, {budget.fill} are allowed; {upper} suffice"
+        return f"{fill_needed(lower, budget.fill or 0)}; {upper:,} {verb(upper, 'suffices', 'suffice')}"
     if lower == upper == 0:
         return "the graph is chordal"
+    enough = f"{counted(upper, 'fill edge')} {verb(upper, 'suffices', 'suffice')}"
     if lower == upper:
-        return f"{upper} fill edges suffice and no fewer do"
+        return f"{enough} and no fewer do"
     ended = "seconds ran out" if monitor.stop else "some fill cores are too large to be searched"
-    return f"{ended}: {upper} fill edges suffice and at least {lower} are needed"
+    return f"{ended}: {enough} and at least {lower:,} {verb(lower, 'is', 'are')} needed"

@@ -17,6 +17,7 @@ from nearchord_solve.questions.heaviest import Found, Task
 from nearchord_solve.refine import over_fill, search_less_fill
 from nearchord_solve.structure import Structure
 from nearchord_solve.tree import Partial, build_structure
+from nearchord_solve.wording import fill_found, fill_needed
 
 
 @dataclass(frozen=True, eq=False)
@@ -80,16 +81,17 @@ def run_program(task: Task, program: Program) -> Concluded:
     reason = settled.reason
     most = task.budget.fill
     if settled.exact and most is not None and structure.fill > most:
-        reason += f" (more fill than the {most} budgeted, as the states allowed it)"
+        reason += f" (more fill than the {most:,} budgeted, as the states allowed it)"
     return _close(task, settled, structure, reason)
 
 
 def _over_fill(task: Task, program: Program, structure: Structure) -> Concluded:
     most, lower = task.budget.fill, structure.fill_lower_bound
-    if most is not None and lower > most and task.stop is not Stop.CANCEL:
-        reason = f"fill budget: at least {lower} fill edges are needed, {most} are allowed"
+    assert most is not None
+    if lower > most and task.stop is not Stop.CANCEL:
+        reason = fill_needed(lower, most)
         return Concluded(Found(Verdict.OVER_FILL, None, None, None, structure, reason))
-    reason = f"fill budget: {structure.fill} fill edges were found, {most} are allowed, at least {lower} are needed"
+    reason = fill_found(structure.fill, most, lower)
     if task.stop is Stop.SECONDS:
         reason += "; seconds ran out in the search for fewer"
     return _close(task, program.quick(task, structure.ranking), structure, reason)

@@ -21,6 +21,7 @@ from nearchord_solve.refine import over_fill, search_less_fill
 from nearchord_solve.structure import Structure
 from nearchord_solve.sweep import Swept, sweep
 from nearchord_solve.tree import Partial, build_structure
+from nearchord_solve.wording import counted, fill_found, fill_needed, verb
 
 
 @dataclass(frozen=True, eq=False)
@@ -122,10 +123,11 @@ def _over_fill(task: Task, structure: Structure) -> Found:
         return _cancelled(structure)
     most = task.budget.fill
     lower = structure.fill_lower_bound
-    if most is not None and lower > most:
-        reason = f"fill budget: at least {lower} fill edges are needed, {most} are allowed"
+    assert most is not None
+    if lower > most:
+        reason = fill_needed(lower, most)
         return Found(Verdict.OVER_FILL, None, None, None, structure, reason)
-    reason = f"fill budget: {structure.fill} fill edges were found, {most} are allowed, at least {lower} are needed"
+    reason = fill_found(structure.fill, most, lower)
     if task.stop is Stop.SECONDS:
         reason += "; seconds ran out in the search for fewer"
     chosen, proof = bounds.cover_pair(structure.ranking, task.weights)
@@ -173,11 +175,18 @@ def _proven(task: Task, structure: Structure, swept: Swept) -> Found:
     if structure.fill == 0:
         reason = "the graph is chordal: one sweep over its cliques settles it"
     else:
-        reason = f"all {structure.states} states of the bags that hold the {structure.fill} fill edges were tried"
+        reason = _all_tried(structure)
     most = task.budget.fill
     if most is not None and structure.fill > most:
-        reason += f" (more fill than the {most} budgeted, as the states allowed it)"
+        reason += f" (more fill than the {most:,} budgeted, as the states allowed it)"
     return Found(Verdict.PROVEN, value, value, chosen, structure, reason, swept.certify(), swept)
+
+
+def _all_tried(structure: Structure) -> str:
+    states, edges = counted(structure.states, "state"), counted(structure.fill, "fill edge")
+    if structure.fill == 1:
+        return f"all {states} of the bags that hold the only fill edge were tried"
+    return f"all {states} of the bags that hold the {edges} were tried"
 
 
 def _too_many_states(task: Task, structure: Structure, fits: U8) -> str:
@@ -185,12 +194,13 @@ def _too_many_states(task: Task, structure: Structure, fits: U8) -> str:
     most = int(states[fits == 0].max())
     budget = task.budget
     count = int((fits == 0).sum())
+    cores = "the only fill core" if fits.size == 1 else f"{count:,} of {fits.size:,} fill cores"
     if most > budget.states or int(states.sum()) > budget.states:
         return (
-            f"state budget: {count} of {fits.size} fill cores do not fit into {budget.states} states"
-            f" (bags of up to {structure.largest_bag} vertices)"
+            f"state budget: {cores} {verb(count, 'does', 'do')} not fit"
+            f" into {counted(budget.states, 'state')} (bags of up to {structure.largest_bag:,} vertices)"
         )
-    return f"memory budget: the tables of {count} of {fits.size} fill cores do not fit"
+    return f"memory budget: the tables of {cores} do not fit"
 
 
 def _homes(structure: Structure, fits: U8) -> I32:
@@ -222,4 +232,4 @@ def _branch(task: Task, chosen: U8, bound: int) -> tuple[U8, int, str]:
     if search.value >= bound or not search.worthwhile or task.stop:
         return chosen, bound, ""
     bound = search.run(bound)
-    return search.chosen, bound, f"; {search.nodes} branches were looked at"
+    return search.chosen, bound, f"; {search.nodes:,} {verb(search.nodes, 'branch was', 'branches were')} looked at"

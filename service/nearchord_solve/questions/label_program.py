@@ -14,6 +14,7 @@ from nearchord_solve.questions.heaviest import Task
 from nearchord_solve.structure import Structure
 from nearchord_solve.sweep.kernels import label_passes
 from nearchord_solve.sweep.labelled import Labelled, Pinned, count_states, line_up, sweep_labelled
+from nearchord_solve.wording import counted
 
 
 def _nothing() -> I64:
@@ -93,8 +94,8 @@ class LabelledProgram:
         return replace(settled, prices=swept.prices)
 
     def _over(self, task: Task, structure: Structure, states: int) -> Settled:
-        reason = f"state budget: the bags (of up to {structure.largest_bag} vertices) have more than"
-        reason += f" {task.budget.states} states"
+        reason = f"state budget: the bags (of up to {structure.largest_bag:,} vertices) have more than"
+        reason += f" {counted(task.budget.states, 'state')}"
         return replace(self.quick(task, structure.ranking), reason=reason, states=states)
 
     def _settled(self, colour: U8, bound: int, exact: bool, states: int, reason: str) -> Settled:
@@ -106,4 +107,4 @@ class LabelledProgram:
 def _reason(structure: Structure, swept: Labelled) -> str:
     if structure.fill == 0:
         return "the graph is chordal: one sweep over its cliques settles it"
-    return f"all {swept.states} states of the bags were tried ({structure.fill} fill edges)"
+    return f"all {counted(swept.states, 'state')} of the bags were tried ({counted(structure.fill, 'fill edge')})"

@@ -95,7 +95,7 @@ def _conclude(ended: Concluded, rest: Rest, colours: int) -> Outcome:
 def _add_prices(outcome: Outcome, settled: Settled, rest: Rest, n: int) -> Outcome:
     """Prices of all ``n`` vertices; those that must not be chosen cost nothing where they are, and cannot be chosen."""
     if settled.prices is None:
-        return replace(outcome, reason=f"{outcome.reason}; without prices, which take an optimum proven by tables")
+        return replace(outcome, reason=f"{outcome.reason}; without prices: that takes an optimum proven by tables")
     price_in, price_out = np.full(n, -1), np.zeros(n, np.int64)
     price_in[rest.vertices], price_out[rest.vertices] = settled.prices
     return replace(outcome, columns={**outcome.columns, "price_in": price_in, "price_out": price_out})

@@ -25,6 +25,7 @@ from nearchord_solve.questions.heaviest import Task
 from nearchord_solve.refine import over_fill, search_less_fill
 from nearchord_solve.structure import Structure
 from nearchord_solve.tree import Partial, build_structure
+from nearchord_solve.wording import counted, fill_found, fill_needed, verb
 
 Columns = dict[str, U32 | I64]
 MOST_ENTRIES = 20_000_000  # vertices that the sets of a plan in fractions may list together
@@ -33,12 +34,14 @@ MANY_ENTRIES = 2_000_000  # above so many a plan with fewer pieces is looked for
 
 @dataclass(frozen=True, eq=False)
 class Served:
-    """A plan that serves everybody, why none is shorter, and how it was found."""
+    """A plan that serves everybody, why none is shorter, and how it was found; ``gap`` is why one might be shorter,
+    where the reason does not say it."""
 
     allotment: Allotment
     evidence: Evidence
     structure: Structure | None
     reason: str
+    gap: str = ""
 
 
 @dataclass(frozen=True, eq=False)
@@ -112,11 +115,23 @@ def _along(request: Request, structure: Structure) -> Served | Outcome:
     elif not planned.settled:
         reason = "first fit along the tree of bags needs no more than the heaviest clique by demand"
     else:
-        reason = f"{planned.settled} of {structure.fill_cores} fill cores were planned on their own"
+        reason = _planned(planned.settled, structure.fill_cores)
     most = request.budget.fill
     if most is not None and structure.fill > most:
-        reason += f" (more fill than the {most} budgeted, as it allowed that)"
-    return Served(planned.allotment, planned.evidence, structure, reason)
+        reason += f" (more fill than the {most:,} budgeted, as it allowed that)"
+    return Served(planned.allotment, planned.evidence, structure, reason, "" if monitor.stop else _gap(request.budget))
+
+
+def _planned(settled: int, cores: int) -> str:
+    was = verb(settled, "was", "were")
+    if cores == 1:
+        return f"the only fill core {was} planned on its own"
+    return f"{settled:,} of {counted(cores, 'fill core')} {was} planned on {verb(settled, 'its', 'their')} own"
+
+
+def _gap(budget: Budget) -> str:
+    allowed = counted(budget.states, "state")
+    return f"; {allowed} allowed neither a shorter plan nor a proof that there is none"
 
 
 def _quickly(request: Request, sequence: I32, structure: Structure | None, reason: str) -> Served:
@@ -131,14 +146,15 @@ def _quickly(request: Request, sequence: I32, structure: Structure | None, reaso
 
 def _over_fill(request: Request, structure: Structure) -> Served | Outcome:
     most, lower = request.budget.fill, structure.fill_lower_bound
-    if most is not None and lower > most:
-        reason = f"fill budget: at least {lower} fill edges are needed, {most} are allowed"
+    assert most is not None
+    if lower > most:
+        reason = fill_needed(lower, most)
         return Outcome(
             Verdict.OVER_FILL, None, None, None, structure.fill, lower, structure.states, structure.bags,
             structure.largest_bag, structure.parts, structure.fill_cores, "none",
             ("none",) * structure.fill_cores, reason,
         )  # fmt: skip
-    reason = f"fill budget: {structure.fill} fill edges were found, {most} are allowed, at least {lower} are needed"
+    reason = fill_found(structure.fill, most, lower)
     if request.monitor.stop is Stop.SECONDS:
         reason += "; seconds ran out in the search for fewer"
     return _quickly(request, structure.ranking.order, structure, reason)
@@ -168,7 +184,7 @@ def outcome_of_plan(request: Request, served: Served, plan: Callable[[Allotment]
         fill_cores=cores,
         proof=kind,
         proof_kinds=(kind,) * cores,
-        reason=served.reason,
+        reason=served.reason if proven else served.reason + served.gap,
         columns={**plan(served.allotment), **evidence.columns(request.graph.n, request.whole)},
     )
 

@@ -18,6 +18,7 @@ from nearchord_solve.predict import predict
 from nearchord_solve.questions.conclude import without_structure
 from nearchord_solve.structure import Structure as Built
 from nearchord_solve.tree import Partial, build_structure
+from nearchord_solve.wording import counted, verb
 
 
 @dataclass(frozen=True)
@@ -49,8 +50,11 @@ def _conclude(structure: Built, predictions: tuple[Prediction, ...], monitor: Mo
     if upper == 0:
         reason = "the graph is chordal"
     else:
-        least = "no fewer do" if proven else f"at least {lower} are needed"
-        reason = f"{upper} fill edges in {structure.fill_cores} fill cores suffice and {least}"
+        least = "no fewer do" if proven else f"at least {lower:,} {verb(lower, 'is', 'are')} needed"
+        reason = (
+            f"{counted(upper, 'fill edge')} in {counted(structure.fill_cores, 'fill core')}"
+            f" {verb(upper, 'suffices', 'suffice')} and {least}"
+        )
     return Outcome(
         verdict=Verdict.PROVEN if proven else Verdict.BOUNDED,
         value=upper,

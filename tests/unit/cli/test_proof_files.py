@@ -9,6 +9,7 @@ from pathlib import Path
 import nearchord
 import pytest
 from certified import answered
+from fill_answers import fill_answer
 from nearchord.cli import proof_file
 
 ORDERED = (
@@ -62,6 +63,13 @@ def test_no_file_is_written_without_a_proof(tmp_path: Path) -> None:
     """So that none is mistaken for one."""
     assert not proof_file.write(str(tmp_path / "p"), replace(proven(), columns={}))
     assert not (tmp_path / "p").exists()
+
+
+def test_why_there_is_no_file_does_not_contradict_the_answer() -> None:
+    """A fill may say `certificate` and have no columns of a proof: its witnesses are in the object itself."""
+    searched = replace(proven(), columns={}, proof=nearchord.ProofKind.SEARCH)
+    assert proof_file.why_none(searched) == "the answer carries none (search)"
+    assert "--json" in proof_file.why_none(fill_answer(SQUARE))
 
 
 @pytest.mark.parametrize(

@@ -47,7 +47,7 @@ def test_a_leaf_counts_what_was_decided_and_what_its_rings_need():
     assert bound(SQUARE, branches([[RING]])) == 1
     confirmed = check(SQUARE, square([TREE]))
     assert confirmed.not_confirmed == ()
-    assert confirmed.what[-1] == "the bound 1: rings of the packing with 1 tree of cases need as many fill edges"
+    assert confirmed.what[-1] == "the bound 1: rings of the packing with 1 tree of cases need a fill edge"
 
 
 def test_a_pair_that_is_left_out_carries_any_load():

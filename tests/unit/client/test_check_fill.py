@@ -42,11 +42,11 @@ def test_what_is_confirmed_is_said_in_words():
     confirmed = check(SQUARE, fill_answer(SQUARE))
     assert confirmed.not_confirmed == ()
     assert confirmed.what == (
-        "adding the 1 fill edges makes the graph chordal",
+        "adding the 1 fill edge makes the graph chordal",
         "the graph is not chordal: a cycle on 4 vertices has no chord",
         "the graph is not interval, because it is not chordal",
         "the graph is not split: its splittance is 1",
-        "the bound 1: rings of the packing need as many fill edges",
+        "the bound 1: rings of the packing need a fill edge",
     )
 
 
@@ -83,7 +83,7 @@ def path(*arguments, **fields):
         (square(value=2, bound=2, fill=2), "fill_lower_bound is 1, but the bound is 2"),
         (
             square(value=2, bound=2, fill=2, fill_lower_bound=2),
-            "the value is given as 2, but 1 fill edges are named",
+            "the value is given as 2, but 1 fill edge is named",
         ),
         (square(bound=0, fill_lower_bound=0), "the verdict is PROVEN, but the bound 0 is not the value 1"),
         (square(bound=2, verdict=Verdict.BOUNDED), "the bound 2 contradicts the value 1"),
@@ -117,7 +117,7 @@ def path(*arguments, **fields):
         (path("split_clique", vertices([0, 2])), "the 2 vertices of the partition's clique are not pairwise adjacent"),
         (
             square(bound=2, value=2, fill=2, fill_lower_bound=2, verdict=Verdict.OVER_FILL),
-            "the value is given as 2, but 1 fill edges are named",
+            "the value is given as 2, but 1 fill edge is named",
         ),
         (
             square(verdict=Verdict.OVER_FILL, provenance=provenance(SQUARE, 1)),

@@ -35,9 +35,9 @@ def test_what_a_triangulation_would_be_needed_for_is_not_confirmed():
     confirmed = check(SQUARE_AND_POINT, report())
     assert confirmed.what == (
         "the graph has 2 connected components",
-        "1 fill cores are named, the largest with 4 vertices",
+        "1 fill core is named, the largest with 4 vertices",
     )
-    assert [word.split(":")[0] for word in confirmed.not_confirmed] == ["the predictions", "the fill range 1 to 1"]
+    assert [word.split(":")[0] for word in confirmed.not_confirmed] == ["the predictions", "the fill 1"]
 
 
 @pytest.mark.parametrize(
@@ -45,7 +45,7 @@ def test_what_a_triangulation_would_be_needed_for_is_not_confirmed():
     [
         ({"structure": StructureReport(1, 4, ())}, "the components are given as 1, but there are 2"),
         ({"structure": StructureReport(2, 5, ())}, "the largest fill core is given as 5, but has 4 vertices"),
-        ({"fill_cores": 2}, "there are said to be 2 fill cores, but 1 are named"),
+        ({"fill_cores": 2}, "the fill cores are given as 2, but 1 fill core is named"),
         ({"bound": 2}, "the bound 2 contradicts the value 1"),
         ({"bound": 0}, "the verdict is PROVEN, but the bound 0 is not the value 1"),
         ({"value": None}, "the verdict is PROVEN, but there is no value"),
@@ -56,6 +56,21 @@ def test_every_fault_of_a_report_is_found_and_named(changes, message):
     with pytest.raises(CheckFailed) as caught:
         check(SQUARE_AND_POINT, report(**changes))
     assert message in str(caught.value)
+
+
+def test_a_chordal_graph_has_no_fill_cores_to_name():
+    path = Graph.from_edges(3, [(0, 1), (1, 2)])
+    start, vertex = cut([])
+    chordal = replace(
+        fill_answer(path),
+        question=nearchord.Structure(),
+        columns={"core_start": start, "core_vertex": vertex},
+        recognition=None,
+        structure=StructureReport(1, 0, ()),
+    )
+    confirmed = check(path, chordal)
+    assert confirmed.what == ("the graph has 1 connected component",)
+    assert confirmed.not_confirmed[-1] == "the fill 0: ask the question fill for witnesses"
 
 
 def test_a_report_that_ran_out_of_time_confirms_nothing():

@@ -51,10 +51,13 @@ def test_time_that_serves_nobody_is_taken_out() -> None:
 
 
 def test_a_finer_unit_changes_no_length() -> None:
-    given = allotment([2, 3, 4, 1])
+    given = allotment([2, 3, 4, 1], 7)
     given.advance()
     given.refine(6)
-    assert (given.unit, given.length, given.frame) == (6, 42, 7)
+    assert (given.unit, given.limit, given.length, given.frame) == (6, 42, 42, 7)
+    given.undo(np.array([0]))
+    given.advance()
+    assert (given.length, given.frame) == (42, 7)
 
 
 def test_a_plan_moves_to_where_the_vertices_above_are_served() -> None:

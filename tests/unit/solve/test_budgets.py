@@ -112,7 +112,7 @@ def test_over_fill_only_when_the_lower_bound_says_so() -> None:
     square = Graph.from_edges(4, SQUARE)
     outcome = solve(IndependentSet(), square, None, Budget(fill=0), "stop", Monitor())
     assert outcome.verdict is Verdict.OVER_FILL
-    assert outcome.reason == "fill budget: at least 1 fill edges are needed, 0 are allowed"
+    assert outcome.reason == "fill budget: at least 1 fill edge is needed, 0 are allowed"
     assert (outcome.value, outcome.bound, outcome.fill, outcome.fill_lower_bound) == (None, None, 1, 1)
 
 

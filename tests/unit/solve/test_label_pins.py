@@ -58,6 +58,26 @@ def test_conflicts_are_named_and_none_of_their_vertices_is_idle(ask) -> None:  #
     assert met >= 5
 
 
+@pytest.mark.parametrize("ask", QUESTIONS[:2])
+def test_conflicts_are_found_among_many_harmless_cycles(ask) -> None:  # type: ignore[no-untyped-def]
+    """Bipartite graphs with one edge more: most cycles through its ends are even, and only odd ones count."""
+    long = 0
+    for seed in range(60):
+        rng = np.random.default_rng(seed)
+        edges = [(u, v) for u in range(8) for v in range(8, 16) if rng.random() < 0.3]
+        edges.append((0, int(rng.integers(1, 8))))
+        has = holds(ask())
+        outcome = run(ask(must=range(16)), 16, edges)
+        if has(edges, range(16)):
+            assert outcome.verdict is Verdict.PROVEN
+            continue
+        conflict = named(outcome.reason)
+        long += len(conflict) > 3
+        assert not has(edges, conflict)
+        assert all(has(edges, [v for v in conflict if v != left_out]) for left_out in conflict)
+    assert long >= 10
+
+
 def test_reasons_name_cycles_and_cliques() -> None:
     ring = [(i, (i + 1) % 7) for i in range(7)]
     chord = [*ring, (0, 3)]
@@ -95,22 +115,75 @@ def test_long_conflicts_are_cut_short() -> None:
 def test_pins_hold_whatever_the_weights(ask) -> None:  # type: ignore[no-untyped-def]
     """Weights so large that nothing can be added to them; trial adds them up as Python integers."""
     rng = np.random.default_rng(3)
-    for _ in range(25):
-        n = 9
+    for _ in range(15):
+        n = 11
         upper = np.triu(rng.random((n, n)) < rng.uniform(0.3, 0.7), 1)
         edges = [(int(u), int(v)) for u, v in zip(*np.nonzero(upper), strict=True)]
-        weights = rng.integers(2**57, 2**58, n).tolist()
-        must = [int(v) for v in rng.permutation(n)[:3]]
+        weights = rng.integers(2**58, 2**59, n).tolist()
+        must = [int(v) for v in rng.permutation(n)[:5]]
         for v in must:
             weights[v] = int(rng.integers(0, 9))
-        question = ask(must=must[:2], never=must[2:])
-        best = largest_by_trial(n, edges, weights, holds(question), must[:2], must[2:])
+        question = ask(must=must[:4], never=must[4:])
+        best = largest_by_trial(n, edges, weights, holds(question), must[:4], must[4:])
         outcome = run(question, n, edges, weights)
         if best is None:
             assert outcome.verdict is Verdict.INFEASIBLE
             continue
         assert (outcome.verdict, outcome.value, outcome.bound) == (Verdict.PROVEN, best, best)
-        assert set(must[:2]) <= set(outcome.chosen.tolist())
+        assert set(must[:4]) <= set(outcome.chosen.tolist())
+
+
+@pytest.mark.parametrize("ask", QUESTIONS)
+def test_pins_that_weigh_nothing_are_not_given_up_for_all_the_rest(ask) -> None:  # type: ignore[no-untyped-def]
+    """A clique with one vertex too many: leaving out a pin would make room for the only one that weighs anything."""
+    question = ask()
+    n = (2 if isinstance(question, InducedForest) else question.colours) + 1
+    must = tuple(range(n - 1))
+    outcome = run(ask(must=must), n, list(combinations(range(n), 2)), [0] * (n - 1) + [5])
+    assert (outcome.verdict, outcome.value, outcome.chosen.tolist()) == (Verdict.PROVEN, 0, list(must))
+
+
+def test_pins_that_a_small_budget_cannot_settle_are_no_contradiction() -> None:
+    """All vertices of three-colourable graphs; where greed leaves one out and a few states do not help, nothing is
+    claimed: neither a choice that lacks pins nor a conflict."""
+    open_cases = 0
+    for seed in range(60):
+        rng = np.random.default_rng(seed)
+        n, colour = 12, rng.integers(0, 3, 12)
+        edges = [(u, v) for u, v in combinations(range(n), 2) if colour[u] != colour[v] and rng.random() < 0.6]
+        outcome = run(ColourableSubgraph(3, must=range(n)), n, edges, budget=Budget(states=3))
+        assert outcome.bound == n
+        if outcome.value is None:
+            assert outcome.verdict is Verdict.BOUNDED
+            assert "no choice with all pins was found" in outcome.reason
+            open_cases += 1
+        else:
+            assert outcome.chosen.tolist() == list(range(n))
+    assert 3 <= open_cases < 60
+
+
+def test_colours_found_for_pins_are_kept_where_the_rest_does_not_fit() -> None:
+    """Pins that greed along their numbers does not colour with three colours, behind vertices that must not be chosen,
+    beside a graph with too many states."""
+    hard = 0
+    for seed in range(20):
+        rng = np.random.default_rng(seed)
+        colour = rng.integers(0, 3, 12)
+        pinned = [(u, v) for u, v in combinations(range(12), 2) if colour[u] != colour[v] and rng.random() < 0.5]
+        greedy = nx.greedy_color(nx.Graph([*pinned, *((v, v) for v in range(12))]), lambda graph, _: sorted(graph))
+        hard += max(greedy.values()) >= 3
+        beside = nx.power(nx.path_graph(40), 9)
+        edges = [(u + 2, v + 2) for u, v in pinned] + [(u + 14, v + 14) for u, v in beside.edges] + [(0, 2), (1, 3)]
+        question = ColourableSubgraph(3, must=range(2, 14), never=(0, 1))
+        if not is_colourable(edges, range(2, 14), 3):
+            continue
+        outcome = run(question, 54, edges, budget=Budget(states=3000))
+        assert outcome.verdict is Verdict.BOUNDED
+        assert set(range(2, 14)) <= set(outcome.chosen.tolist())
+        given = dict(zip(outcome.chosen.tolist(), outcome.columns["colour"].tolist(), strict=True))
+        assert set(given.values()) <= {1, 2, 3}
+        assert all(given[u] != given[v] for u, v in edges if u in given and v in given)
+    assert hard >= 3
 
 
 @pytest.mark.parametrize("ask", QUESTIONS)

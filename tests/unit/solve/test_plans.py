@@ -1,13 +1,22 @@
 """Questions colouring and fractional-colouring: against trial and linear programs, and within budgets."""
 
+from collections.abc import Iterable
 from fractions import Fraction
+from itertools import combinations
 
 import networkx as nx
 import numpy as np
 import pytest
-from nearchord_solve import Budget, Monitor, SolverError, Stop, Verdict
+from nearchord_solve import Budget, Graph, Monitor, SolverError, Stop, Verdict
 from nearchord_solve.colouring import settle
+from nearchord_solve.colouring.allotment import Allotment
+from nearchord_solve.colouring.copies import Painter, copies
+from nearchord_solve.colouring.evidence import Evidence
+from nearchord_solve.colouring.parts import Parts
+from nearchord_solve.colouring.planner import Planner
 from nearchord_solve.questions import colouring, served
+from nearchord_solve.structure import Structure
+from nearchord_solve.tree import build_structure
 from plans import fewest_units, judged, near, planned, shortest_length
 
 RING = [(0, 1), (1, 2), (2, 3), (3, 4), (0, 4)]
@@ -84,6 +93,48 @@ def test_a_part_may_need_one_more_than_its_bound_in_fractions() -> None:
     assert "search" in left
 
 
+@pytest.mark.parametrize("order", [range(9), [5, 6, 7, 8, 0, 1, 2, 3, 4]])
+def test_a_frame_in_halves_is_widened_for_a_clique_that_was_overlooked(order: Iterable[int]) -> None:
+    """A ring of five takes five halves, and the clique of four beside it eight, whichever comes first."""
+    name = list(order)
+    edges = [(name[u], name[v]) for u, v in [*RING, *combinations(range(5, 9), 2)]]
+    graph = Graph.from_edges(9, edges)
+    structure = build_structure(graph, Budget(), Monitor())
+    assert isinstance(structure, Structure)
+    demand, overlooked = np.ones(9, np.int64), np.array([name[0]])
+    planner = Planner(graph, demand, Parts(graph, structure), overlooked, False, Budget(), Monitor())
+    found = planner.run()
+    assert (found.complete, found.allotment.frame, found.evidence.bound) == (True, 4, 4)
+    assert found.evidence.clique is not None
+    assert sorted(found.evidence.clique.tolist()) == sorted(name[5:])
+
+
+def test_idle_time_in_a_frame_is_no_part_of_the_answer() -> None:
+    graph = Graph.from_edges(2, [(0, 1)])
+    allotment = Allotment(graph, np.arange(2, dtype=np.int32), np.ones(2, np.int64), np.zeros(16, np.int64))
+    allotment.give(0, [(3, 4)])
+    allotment.give(1, [(6, 7)])
+    request = served.Request(graph, np.ones(2, np.int64), True, Budget(), "bound", Monitor(), None)
+    found = served.Served(allotment, Evidence(Fraction(2), np.arange(2)), None, "")
+    outcome = served.outcome_of_plan(request, found, lambda _: {})
+    assert (outcome.verdict, outcome.value) == (Verdict.PROVEN, 2)
+
+
+def test_neighbours_keep_two_colours_whatever_is_asked() -> None:
+    painter = Painter(copies(Graph.from_edges(2, [(0, 1)]), np.ones(2, np.int64)), Monitor())
+    painter.begin()
+    for target in (1, 0, -3):
+        painter.improve(target, 10)
+        assert (painter.colours, painter.plan.member.tolist()) == (2, [[True, False], [False, True]])
+
+
+def test_a_search_that_gives_up_proves_nothing() -> None:
+    """One step is not enough to refute two or three colours, so the clique stays the bound."""
+    outcome = planned(11, sorted(nx.mycielski_graph(4).edges), budget=Budget(states=1))
+    assert (outcome.verdict, outcome.bound) == (Verdict.BOUNDED, 2)
+    assert outcome.value >= 4
+
+
 @BOTH
 @pytest.mark.parametrize(("n", "demand"), [(0, None), (1, None), (1, [0]), (3, [0, 0, 0]), (3, [4, 0, 2])])
 def test_graphs_without_edges(whole: bool, n: int, demand: list[int] | None) -> None:
@@ -143,6 +194,28 @@ def test_plans_of_many_pieces_are_rounded_where_there_is_room(monkeypatch: pytes
     assert "coarser unit" in refused.reason
 
 
+@pytest.mark.parametrize("seed", range(4))
+def test_rounded_demands_fit_into_the_frame_of_the_exact_ones(seed: int) -> None:
+    """Parts with fill included: what does not fit when raised keeps its demand."""
+    rng = np.random.default_rng(seed)
+    edges = [(u, v) for v in range(60) for u in range(max(0, v - 5), v) if rng.random() < 0.9]
+    graph, demand = Graph.from_edges(60, edges), rng.integers(1, 10**6, 60)
+    structure = build_structure(graph, Budget(), Monitor())
+    assert isinstance(structure, Structure)
+    assert structure.fill_cores
+    parts = Parts(graph, structure)
+    clique = max(nx.find_cliques(nx.Graph(edges)), key=lambda vertices: demand[vertices].sum())
+
+    def length(needed: np.ndarray) -> Fraction:
+        return Planner(graph, needed, parts, np.sort(clique), False, Budget(), Monitor()).run().allotment.frame
+
+    frame = length(demand)
+    raised = parts.raised(demand, int(frame))
+    assert (raised >= demand).all()
+    assert (raised > demand).any()
+    assert length(raised) <= frame
+
+
 @BOTH
 def test_bad_demands_are_named(whole: bool) -> None:
     with pytest.raises(SolverError, match="vertex 2: weight -1 is negative"):
@@ -159,6 +232,16 @@ def test_fractions_too_long_to_be_written_fall_back_on_a_grid(whole: bool, monke
     outcome = planned(n, edges, whole=whole)
     assert (outcome.verdict, outcome.value) == (Verdict.PROVEN, 4 if whole else Fraction(7, 2))
     judged(n, edges, None, outcome, whole)
+
+
+def test_a_plan_that_serves_too_little_is_refused(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Whatever solves the equations, its plan is compared with the demands."""
+    monkeypatch.setattr(
+        "nearchord_solve.colouring.shortest.solve_exactly", lambda matrix, right: ([1] * right.size, 10**6)
+    )
+    outcome = planned(5, RING, whole=False)
+    assert outcome.bound <= Fraction(5, 2) <= outcome.value
+    judged(5, RING, None, outcome, whole=False)
 
 
 @BOTH

@@ -10,6 +10,7 @@ from typing import Any
 import nearchord
 from nearchord.cli.layout import print_table
 from nearchord.cli.numbers import size
+from nearchord.wording import counted
 
 TWO_COLOURS = ("colourable-subgraph", 2)
 
@@ -43,7 +44,7 @@ def lines(answer: nearchord.Answer) -> Iterator[tuple[str, str]]:
     if answer.structure is not None:
         parts = "unknown" if answer.parts is None else f"{answer.parts:,}"
         components = answer.structure.components
-        yield "parts", f"{parts}, in {components:,} connected component{'' if components == 1 else 's'}"
+        yield "parts", f"{parts}, in {counted(components, 'connected component')}"
         if answer.fill_cores:
             yield "cores", f"{answer.fill_cores:,}, the largest with {answer.structure.largest_core:,} vertices"
     if answer.bags:

@@ -30,6 +30,8 @@ class Added:
 
 
 AddOn = Callable[[Settled], Added]
+WORDS = {"prices": "prices", "conflict_prices": "conflict prices", "best": "the best sets", "count": "the count"}
+"""What reasons call the add-ons."""
 
 
 def extend(outcome: Outcome, task: Task, rest: Rest, swept: Swept | None, wanted: Mapping[str, AddOn]) -> Outcome:
@@ -37,8 +39,8 @@ def extend(outcome: Outcome, task: Task, rest: Rest, swept: Swept | None, wanted
     if not wanted or outcome.verdict not in (Verdict.PROVEN, Verdict.BOUNDED):
         return outcome
     if swept is None:
-        names = " and ".join(wanted)
-        return replace(outcome, reason=f"{outcome.reason}; without {names}, which take an optimum proven by tables")
+        names = " and ".join(WORDS[name] for name in wanted)
+        return replace(outcome, reason=f"{outcome.reason}; without {names}: that takes an optimum proven by tables")
     for name, add in wanted.items():
         added = add(Settled(task, rest, swept))
         if task.stop is Stop.CANCEL:
@@ -47,7 +49,7 @@ def extend(outcome: Outcome, task: Task, rest: Rest, swept: Swept | None, wanted
             outcome,
             columns={**outcome.columns, **added.columns},
             count=outcome.count if added.count is None else added.count,
-            reason=outcome.reason + (f"; {name}: {added.note}" if added.note else ""),
+            reason=outcome.reason + (f"; {WORDS[name]}: {added.note}" if added.note else ""),
         )
     return outcome
 

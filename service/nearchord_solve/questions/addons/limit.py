@@ -17,6 +17,7 @@ from nearchord_solve.questions.heaviest import Found, Task, find_heaviest
 from nearchord_solve.structure import Structure
 from nearchord_solve.sweep.labelled import line_up
 from nearchord_solve.sweep.limited import LimitedSweep, OverBudget
+from nearchord_solve.wording import counted
 
 
 class BoundOnly(Gauge):
@@ -61,11 +62,11 @@ def _within(task: Task, limit: int, found: Found, heaviest: Corner) -> Found:
     if search.below.weight > below.weight:
         below = search.below
     below = _filled_up(task, below, limit)
-    reason += f"; {search.sweeps} sweep{'' if search.sweeps == 1 else 's'} with a penalty for each vertex"
+    reason += f"; {counted(search.sweeps, 'sweep')} with a penalty for each vertex"
     if below.weight == search.bound:
         return _close(task, found, below, search.bound, f"{reason} settled it")
     if not fits.all():
-        return _close(task, found, below, search.bound, f"{found.reason}; {reason} leave a gap")
+        return _close(task, found, below, search.bound, f"{found.reason}; {reason}: a gap is left")
     return _by_states(task, limit, found, structure, below, search.bound, reason)
 
 
@@ -81,10 +82,10 @@ def _by_states(
     except OverBudget:
         return _close(
             task, found, below, bound,
-            f"{reason} leave a gap, and more than {most} states with their numbers of vertices would close it",
+            f"{reason}: a gap is left that takes more than {counted(most, 'state')} by numbers of vertices to close",
         )  # fmt: skip
     if swept is None:
-        return _close(task, found, below, bound, f"{reason} leave a gap; seconds ran out while it was closed")
+        return _close(task, found, below, bound, f"{reason}: a gap is left; seconds ran out while it was closed")
     value, chosen = swept
     return _close(
         task,

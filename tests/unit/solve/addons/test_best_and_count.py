@@ -148,7 +148,7 @@ def test_without_tables_there_is_neither_and_the_reason_says_so() -> None:
     outcome = run(IndependentSet(best=3, count=True), *braced(12), states=1)
     assert outcome.count is None
     assert "best_value" not in outcome.columns
-    assert outcome.reason.endswith("without best and count, which take an optimum proven by tables")
+    assert outcome.reason.endswith("without the best sets and the count: that takes an optimum proven by tables")
 
 
 def test_the_answer_itself_is_that_without_add_ons() -> None:
@@ -180,7 +180,7 @@ def test_a_kept_structure_changes_nothing() -> None:
 @pytest.mark.parametrize(
     ("asked", "note"),
     [
-        ({"best": 900}, "best: memory budget: 900 sets do not fit"),
+        ({"best": 900}, "the best sets: memory budget: 900 sets do not fit"),
         ({"count": True}, "count: memory budget: the sums and products of the best states do not fit"),
     ],
 )

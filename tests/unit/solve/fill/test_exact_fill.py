@@ -1,5 +1,8 @@
 """Exact fill of parts: answers, limits, stops, proofs."""
 
+from collections.abc import Iterable
+from itertools import product
+
 import networkx as nx
 import numpy as np
 import pytest
@@ -139,8 +142,32 @@ def test_a_few_cases_are_given_as_a_tree() -> None:
     confirm(graph, result)
 
 
-def test_the_monitor_learns_the_lower_bound() -> None:
+@pytest.mark.parametrize(("doubled", "fill"), [([0], 18), (range(16), 4 * 18)])
+def test_cases_about_classes_are_no_proof(doubled: Iterable[int], fill: int) -> None:
+    """The grid with true twins in place of some vertices: a case is then about several pairs at once, which no tree can
+    say, and the packing alone does not reach the bound."""
+    grid = plain(nx.grid_2d_graph(4, 4))
+    copies = {v: [(v, i) for i in range(1 + (v in doubled))] for v in grid}
+    graph = nx.Graph(pair for u, v in grid.edges for pair in product(copies[u], copies[v]))
+    graph.add_edges_from(copies[v] for v in doubled)
+    graph = nx.convert_node_labels_to_integers(graph, ordering="sorted")
+    result = fill_of(graph)
+    assert result.lower_bound == result.upper_bound == fill
+    assert result.proof is ProofKind.SEARCH
+    confirm(graph, result)
+
+
+def test_a_part_is_proven_as_its_weakest_piece_is() -> None:
+    """A packing for the square beside the grid does not make up for the grid's tree."""
+    graph = nx.disjoint_union(nx.cycle_graph(4), plain(nx.grid_2d_graph(4, 4)))
+    result = fill_of(graph)
+    assert {piece.kind for piece in result.pieces} == {ProofKind.PACKING, ProofKind.BRANCH}
+    assert result.proof is ProofKind.BRANCH
+    confirm(graph, result)
+
+
+def test_the_monitor_learns_the_fill_and_the_lower_bound() -> None:
     """After the last part."""
     monitor = Monitor()
     fill_of(plain(nx.grid_2d_graph(4, 4)), None, monitor)
-    assert monitor.cells[Monitor.FILL_LOWER] == 18
+    assert monitor.cells[Monitor.FILL_LOWER] == monitor.cells[Monitor.FILL] == 18

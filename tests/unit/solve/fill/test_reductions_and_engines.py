@@ -6,14 +6,16 @@ import networkx as nx
 import numpy as np
 import pytest
 from definition import least_fill
+from fill_answers import elimination_fill
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from nearchord_solve import Graph, Monitor
 from nearchord_solve.fill.exact.blocks import solve_blocks
 from nearchord_solve.fill.exact.branch import CaseSearch
 from nearchord_solve.fill.exact.core import Core
-from nearchord_solve.fill.exact.cuts import Cuts, price_matrix
-from nearchord_solve.fill.exact.engines import first_bounds
+from nearchord_solve.fill.exact.cuts import Cuts, Multipliers, price_matrix
+from nearchord_solve.fill.exact.cycles import violated
+from nearchord_solve.fill.exact.engines import by_blocks, first_bounds
 from nearchord_solve.fill.exact.kernels.separators import connected_order
 from nearchord_solve.fill.exact.kernels.words import permuted
 from nearchord_solve.fill.exact.reduce import contract_twins, decompose, reduce_core, with_safe_edges
@@ -205,6 +207,88 @@ def test_separators_and_potential_cliques_are_all_there(edges: Edges) -> None:
     found = potential_cliques(rows, separators, free(core), 0, PLENTY, Monitor().cells)
     assert found is not None
     assert sorted(found[:, 0].tolist()) == [s for s in range(1, 1 << core.n) if is_potential(graph, s)]
+
+
+@settings(deadline=None)
+@given(arbitrary_graphs(most=8))
+def test_reductions_work_across_words(edges: Edges) -> None:
+    """A graph among isolated vertices, some of its own beyond the first 64, is reduced as it is by itself."""
+    alone, among = core_of(edges), core_of((70, [(u + 61, v + 61) for u, v in edges[1]]))
+    added = with_safe_edges(alone, Monitor())[1]
+    assert np.array_equal(with_safe_edges(among, Monitor())[1], added + 61)
+    pieces, moved = decompose(alone, Monitor()), decompose(among, Monitor())
+    assert [piece.member.tolist() for piece in moved] == [(piece.member + 61).tolist() for piece in pieces]
+    found, shifted = (violated(core, np.empty((0, 0)), (0.5,), PLENTY, Monitor().cells) for core in (alone, among))
+    assert np.array_equal(shifted.ptr, found.ptr)
+    assert np.array_equal(shifted.vertex, found.vertex + 61)
+
+
+@settings(deadline=None)
+@given(arbitrary_graphs(most=7), st.booleans())
+def test_blocks_work_across_words(edges: Edges, star: bool) -> None:
+    """At the end of a path of 61 vertices, or below the hub of a star: neither adds fill."""
+    n, pairs = edges
+    beside = [(0, v) for v in range(1, 61 + n)] if star else [*pairwise(range(61)), *([(60, 61)] if n else [])]
+    core = core_of((61 + n, [*beside, *((u + 61, v + 61) for u, v in pairs)]))
+    if not nx.is_connected(drawn(core)):
+        return
+    least = least_fill(n, pairs)
+    for limit in (least, least - 1):
+        status, found = solve_blocks(core, limit, free(core), 0, PLENTY, Monitor().cells)
+        assert status is (Status.FOUND if limit == least else Status.NONE)
+        assert core.cost(found) == (least if limit == least else 0)
+
+
+def count_potential(core: Core) -> int:
+    """How many potential maximal cliques are found."""
+    rows = permuted(core.rows, connected_order(core.rows))
+    separators = minimal_separators(rows, PLENTY, Monitor().cells)
+    assert separators is not None
+    found = potential_cliques(rows, separators, free(core), 0, PLENTY, Monitor().cells)
+    assert found is not None
+    return found.shape[0]
+
+
+@settings(deadline=None, max_examples=200)
+@given(arbitrary_graphs(most=8))
+def test_potential_cliques_are_all_there_across_words(edges: Edges) -> None:
+    """A hub above a graph joins all of its potential maximal cliques; each leaf beside makes one with the hub."""
+    n, pairs = edges
+    alone = core_of(edges)
+    if n == 0 or not nx.is_connected(drawn(alone)):
+        return
+    star = core_of((61 + n, [*((0, v) for v in range(1, 61 + n)), *((u + 61, v + 61) for u, v in pairs)]))
+    assert count_potential(star) == 60 + count_potential(alone)
+
+
+@settings(deadline=None)
+@given(sized_cores())
+def test_blocks_close_the_gap_that_cutting_planes_left(core: Core) -> None:
+    """With the best fill known, and with one edge more: the prices of the packing leave out nothing needed."""
+    if core.n == 0 or not nx.is_connected(drawn(core)):
+        return
+    least = least_fill(*spread(core))
+    for known in (least, least + 1):
+        bounds = bounds_of(core)
+        cut(core, bounds, PLENTY, Monitor())
+        bounds.lower, bounds.upper = 0, known
+        assert by_blocks(core, bounds, PLENTY, PLENTY, Monitor())
+        assert bounds.lower == bounds.upper == least
+
+
+@settings(deadline=None, max_examples=300)
+@given(arbitrary_graphs(most=7), st.data())
+def test_prices_never_overstate_what_a_fill_costs(edges: Edges, data: st.DataObject) -> None:
+    """Whatever the multipliers, any fill costs at least the base and the prices of its pairs."""
+    core = core_of(edges)
+    cuts = Cuts.of(core, violated(core, np.empty((0, 0)), (0.5,), PLENTY, Monitor().cells))
+    drawn_ones = data.draw(st.lists(st.integers(0, 4), min_size=cuts.count, max_size=cuts.count))
+    base, prices = price_matrix(core, cuts, Multipliers(np.array(drawn_ones, np.int64), 2))
+    assert (prices >= 0).all()
+    assert np.array_equal(prices, prices.T)
+    for order in [range(core.n), range(core.n)[::-1], data.draw(st.permutations(range(core.n)))]:
+        fill = elimination_fill(drawn(core), order)
+        assert 2 * len(fill) >= base + sum(int(prices[pair]) for pair in fill)
 
 
 def seen_by_sides(graph: nx.Graph, chosen: int) -> tuple[set[int], list[set[int]]]:

@@ -2,12 +2,13 @@
 
 import networkx as nx
 import numpy as np
+import pytest
 from bench.generators import time_windows
 from definition import least_fill
 from fill_proof import confirm, is_chordal, spare
 from hypothesis import given, settings
 from nearchord_solve import Budget, Graph, Monitor
-from nearchord_solve.fill.exact import GraphFill, ProofKind, fill_of_graph
+from nearchord_solve.fill.exact import FillResult, GraphFill, ProofKind, fill_of_graph, whole
 from nearchord_solve.structure import Structure
 from nearchord_solve.tree import build_structure
 from strategies import Edges, graphs, near_chordal_graphs
@@ -89,6 +90,16 @@ def test_a_stop_before_the_search_leaves_the_fill_of_the_structure() -> None:
     found = fill_of_graph(square, structure, None, monitor)
     assert [part.result for part in found.parts] == [None]
     assert found.upper_bound == found.lower_bound == 1
+
+
+def test_the_fill_of_the_structure_stands_where_the_search_finds_none_as_small(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A search that was stopped early may have nothing better than joining all pairs."""
+    every = np.array([(0, 2), (0, 3), (1, 3), (1, 4), (2, 4)], np.int32)
+    poor = FillResult(every, 1, 5, ProofKind.NONE, (), False)
+    monkeypatch.setattr(whole, "fill_of_parts", lambda *_: [poor])
+    found = solved(nx.cycle_graph(5))
+    assert found.upper_bound == found.parts[0].edges.shape[0] == 2
+    assert is_chordal(nx.cycle_graph(5), [tuple(pair) for pair in found.edges.tolist()])
 
 
 def test_edges_are_sorted_pairs_of_the_graph() -> None:
