@@ -8,14 +8,14 @@ from nearchord_solve.arrays import I32, I64, U8
 from nearchord_solve.fill.kernels import core_lists
 from nearchord_solve.graph import Graph
 from nearchord_solve.kernels import bags
-from nearchord_solve.kernels.layout import Forest, Numbering
+from nearchord_solve.kernels.layout import ADHESION_FILL, Forest, Numbering
 from nearchord_solve.monitor import Monitor, Phase
 from nearchord_solve.order import eliminate, rank_along
 from nearchord_solve.structure import Structure
 from nearchord_solve.sweep.kernels import label_passes, label_table, state_counts
 from nearchord_solve.sweep.kernels.label_goals import BELIEVE, CHOOSE, COLLECT, NOTHING, Belief
 from nearchord_solve.sweep.kernels.label_passes import Plan
-from nearchord_solve.sweep.kernels.label_table import Table, empty_table
+from nearchord_solve.sweep.kernels.label_table import Sets, Table, empty_table
 
 CLOSED = (0, 2)  # colours (0: forests) for which bags without fill are settled by a formula
 NO_LIMIT = 2**62
@@ -122,11 +122,14 @@ def sweep_labelled(
     """Collect values inwards, then choose outwards.  Gives up above ``most`` states or ``most_bytes`` of table."""
     n = pinned.weights.size
     monitor.enter(Phase.SWEEP, n)
-    plan = _plan(line, pinned)
+    sets, room = _sets(line, pinned)
+    if 8 * room > most_bytes:
+        return Labelled(label_passes.MEMORY, 0, 0, None)
+    plan = _plan(line, pinned, sets)
     closed = pinned.closed
-    belief = _belief(line, 0, np.zeros(1, np.int64), plan.colour)
+    belief = _belief(line, empty_table(0), np.zeros(1, np.int64), plan.colour)
     code, value, states, table = label_passes.pass_bags(
-        COLLECT, plan, pinned.colours, closed, empty_table(), belief, most, most_bytes, monitor.cells
+        COLLECT, plan, pinned.colours, closed, empty_table(room), belief, most, most_bytes, monitor.cells
     )
     if code != label_passes.DONE:
         return Labelled(int(code), int(value) - pinned.offset, int(states), None)
@@ -141,23 +144,41 @@ def sweep_labelled(
     return Labelled(label_passes.DONE, int(value) - pinned.offset, int(states), colour, found)
 
 
-def _plan(line: Line, pinned: Pinned) -> Plan:
+def _sets(line: Line, pinned: Pinned) -> tuple[Sets, int]:
+    """Where values of sets stand (see :mod:`.kernels.label_sets`), and how many they are: none where closed."""
+    forest = line.forest
+    first = np.full(forest.bag_kind.size, -1, np.int64)
+    if pinned.closed or pinned.colours == 0:
+        return Sets(first, np.ones((1, 1), np.int64)), 0
+    rows = int(np.diff(forest.bag_ptr).max(initial=0)) + 1
+    choose = np.zeros((rows, pinned.colours + 1), np.int64)
+    choose[:, 0] = 1
+    for k in range(1, pinned.colours + 1):
+        np.cumsum(choose[:-1, k - 1], out=choose[1:, k])
+    plain = forest.bag_kind & ADHESION_FILL == 0
+    begin = np.zeros(plain.size + 1, np.int64)
+    np.cumsum(np.where(plain, choose.sum(axis=1)[forest.bag_adhesion], 0), out=begin[1:])
+    first[plain] = begin[:-1][plain]
+    return Sets(first, choose), int(begin[-1])
+
+
+def _plan(line: Line, pinned: Pinned, sets: Sets) -> Plan:
     forest = line.forest
     bags = forest.bag_kind.size
     return Plan(
         forest, line.later_ptr, line.later, pinned.by_vertex[line.order],
         np.zeros(line.later.size if pinned.closed else 0, np.int64), pinned.must[line.order],
-        *label_passes.link_tables(forest, pinned.closed), np.zeros((bags, 2), np.int64),
+        *label_passes.link_tables(forest, pinned.closed), sets, np.zeros((bags, 2), np.int64),
         np.zeros(line.order.size, np.uint8), np.full(bags, -1, np.int32),
     )  # fmt: skip
 
 
-def _belief(line: Line, entries: int, few_ptr: I64, kept: U8) -> Belief:
-    """Nothing told yet."""
-    n = line.order.size if entries or few_ptr.size > 1 else 0
+def _belief(line: Line, table: Table, few_ptr: I64, kept: U8) -> Belief:
+    """Nothing told yet about the entries of a table."""
+    n = line.order.size if few_ptr.size > 1 else 0
     return Belief(
-        np.full(entries, NOTHING), few_ptr, np.full(int(few_ptr[-1]), NOTHING), np.full(n, NOTHING),
-        np.full(n, NOTHING), kept,
+        np.full(int(table.used[0]), NOTHING), np.full(table.sets.size, NOTHING), few_ptr,
+        np.full(int(few_ptr[-1]), NOTHING), np.full(n, NOTHING), np.full(n, NOTHING), kept,
     )  # fmt: skip
 
 
@@ -171,12 +192,14 @@ def _believe(
     lead = line.forest.bag_adhesion.astype(np.int64)
     sizes = 1 + lead * (lead + 1) // 2 if pinned.closed else np.zeros(lead.size, np.int64)
     few_ptr = np.concatenate((np.zeros(1, np.int64), np.cumsum(sizes)))
-    if label_table.table_bytes(table) + 8 * (int(few_ptr[-1]) + table.value.size) > most_bytes:
+    if label_table.table_bytes(table) + 8 * (int(few_ptr[-1]) + table.value.size + table.sets.size) > most_bytes:
         return None
-    belief = _belief(line, int(table.used[0]), few_ptr, plan.colour)
+    belief = _belief(line, table, few_ptr, plan.colour)
     roots = line.forest.bag_above < 0
     if pinned.closed:
         belief.few[few_ptr[:-1][roots]] = total
+    elif pinned.colours > 0:
+        belief.sets[plan.sets.first[roots]] = total
     else:
         belief.entry[plan.entries[roots, 0]] = total
     ptr, child = label_passes.link_tables(line.forest, False)

@@ -1,6 +1,7 @@
 """Prices and scenarios of colourable-subgraph and induced-forest, against separate solves and trial."""
 
 from functools import partial
+from math import comb
 
 import networkx as nx
 import numpy as np
@@ -105,6 +106,37 @@ def test_prices_of_windows_agree_with_separate_solves(ask, reach: int, removed: 
         outside = run(ask(never=(v,)), n, graph.edges, weights)
         assert outcome.columns["price_in"][v] == outcome.value - inside.value
         assert outcome.columns["price_out"][v] == outcome.value - outside.value
+
+
+@pytest.mark.parametrize(("reach", "removed"), [(6, 0), (6, 25), (3, 40)])
+def test_values_by_sets_agree_with_worths(reach: int, removed: int) -> None:
+    """Two colours under weights that leave no room for what pins weigh more, against the same weights scaled down."""
+    n, scale = 70, 2**50
+    graph = windows(n, reach, removed, removed)
+    weights = np.random.default_rng(reach).integers(1, 90, n)
+    question = ColourableSubgraph(2, must=(3, 50), never=(7,), prices=True)
+    small = run(question, n, graph.edges, weights)
+    large = run(question, n, graph.edges, weights * scale)
+    assert large.states > small.states
+    assert large.value == small.value * scale
+    assert weights[large.chosen].sum() == small.value
+    for name in ("price_in", "price_out"):
+        expected = small.columns[name]
+        assert np.array_equal(large.columns[name], np.where(expected < 0, -1, expected * scale))
+
+
+@pytest.mark.parametrize("colours", [3, 4])
+def test_as_many_states_are_tried_as_predicted(colours: int) -> None:
+    """A budget of exactly the states of all bags is enough, one less is not; pins change neither."""
+    n = 50
+    graph = windows(n, 6, 0, 1)
+    sizes = [7] * (n - 6)  # maximal cliques
+    states = sum(comb(size, k) for size in sizes for k in range(colours + 1))
+    for must in ((), (3, 40)):
+        question = ColourableSubgraph(colours, must=must)
+        outcome = run(question, n, graph.edges, None, Budget(states=states))
+        assert (outcome.verdict, outcome.states) == (Verdict.PROVEN, states)
+        assert "state budget" in run(question, n, graph.edges, None, Budget(states=states - 1)).reason
 
 
 @pytest.mark.parametrize("ask", QUESTIONS)

@@ -15,7 +15,7 @@ import numpy as np
 from nearchord_solve.kernels.cliques import depth_limit
 from nearchord_solve.kernels.compiled import I32, I64, U8, U64, kernel
 from nearchord_solve.kernels.layout import Forest
-from nearchord_solve.sweep.kernels.label_table import Table, find
+from nearchord_solve.sweep.kernels.label_table import Sets, Table, find
 
 ONE = np.uint64(1)
 
@@ -34,7 +34,10 @@ class Bag(NamedTuple):
     need: U64  # [W] homes that must be chosen
     child: I64  # [C] bags below that send entries
     inside: U64  # [C, W] the adhesion of each
-    plain: I32  # [C] its entry for the empty set, -1 without
+    plain: I64  # [C] its entry for the empty set, -1 without
+    first: int  # where the values of its own adhesion's sets begin, -1 if they are in the table (see label_sets.py)
+    below: I64  # [C] the same for the bags below
+    choose: I64  # [.., q+1] C(n, k)
     base: int  # sum of the values of these entries
     missing: int  # how many there are not
 
@@ -57,7 +60,7 @@ def _link(bag_member: I32, forest: Forest, where: I32, near: U64) -> int:
 @kernel
 def open_bag(
     number: int, forest: Forest, later_ptr: I64, single: I64, pair: I64, must: U8, closed: bool,
-    child: I64, table: Table, where: I32,
+    child: I64, table: Table, sets: Sets, where: I32,
 ) -> Bag:  # fmt: skip
     """A bag as its states need it.  ``must`` uint8[n]: vertices that have to be chosen (not looked at if closed).
 
@@ -73,7 +76,8 @@ def open_bag(
     worth = np.zeros((b, b), np.int64)
     need = np.zeros(words, np.uint64)
     inside = np.zeros((child.shape[0], words), np.uint64)
-    plain = np.full(child.shape[0], -1, np.int32)
+    plain = np.full(child.shape[0], -1, np.int64)
+    below = np.empty(child.shape[0], np.int64)
     for j in range(b):
         where[member[j]] = j
     edges = _link(member, forest, where, near)
@@ -92,15 +96,30 @@ def open_bag(
         for e in range(at, at + forest.bag_adhesion[child[c]]):
             i = where[forest.bag_slot[e]]
             inside[c, i >> 6] |= ONE << np.uint64(i & 63)
-        if not closed:
+        below[c] = sets.first[child[c]]
+        if below[c] >= 0:
+            plain[c] = below[c] if table.sets[below[c]] >= 0 else -1
+        elif not closed:
             plain[c] = find(table, child[c], member, int(np.int64(0)))
-            if plain[c] < 0:
-                missing += 1
-            else:
-                base += table.value[plain[c]]
+        if plain[c] >= 0:
+            base += table.sets[plain[c]] if below[c] >= 0 else table.value[plain[c]]
+        elif not closed:
+            missing += 1
     for j in range(b):
         where[member[j]] = -1
-    return Bag(number, member, lead, closed, edges, near, gain, worth, need, child, inside, plain, base, missing)
+    return Bag(
+        number, member, lead, closed, edges, near, gain, worth, need, child, inside, plain, sets.first[number], below,
+        sets.choose, base, missing,
+    )  # fmt: skip
+
+
+@kernel
+def own_entry(bag: Bag, chosen: I64, count: int) -> int:
+    """Where the value of a set of ``count`` vertices in an adhesion without fill stands: ``chosen`` their places."""
+    entry = bag.first
+    for k in range(count):
+        entry += bag.choose[bag.lead, k] + bag.choose[chosen[k], k + 1]
+    return int(entry)
 
 
 @kernel

@@ -12,7 +12,8 @@ ONE = np.uint64(1)
 
 
 @kernel
-def _free_colour(taken: int) -> int:
+def free_colour(taken: int) -> int:
+    """The lowest colour, from 1 on, whose bit is not in ``taken``."""
     colour = 1
     while (taken >> colour) & 1:
         colour += 1
@@ -79,7 +80,7 @@ def start_choice(bag: Bag, table: Table, colours: int, colour: U8, entry: int) -
             name[i] = table.pool[table.begin[entry] + count + i] if entry >= 0 else i
     room = most_chosen(bag, colours) + 1
     value = np.full(1, NOTHING, np.int64)
-    picks = np.full(bag.child.shape[0], -1, np.int32)
+    picks = np.full(bag.child.shape[0], -1, np.int64)
     best = Best(name, value, np.zeros(1, np.int64), np.empty(room, np.int64), np.empty(room, np.int32), picks)
     if bag.closed and (count < 2 or (count == 2 and name[1] == 1)):
         choose_few(bag, fixed, best)
@@ -102,7 +103,7 @@ def apply_best(bag: Bag, best: Best, named: bool, colour: U8, pick: I32) -> None
             colour[v] = 1
         elif colour[v] == 0:
             if given[best.label[i]] == 0:
-                given[best.label[i]] = _free_colour(taken)
+                given[best.label[i]] = free_colour(taken)
                 taken |= 1 << given[best.label[i]]
             colour[v] = given[best.label[i]]
     for c in range(bag.child.shape[0]):

@@ -10,7 +10,7 @@ import numpy as np
 
 from nearchord_solve.kernels.compiled import I32, I64, U8, kernel, ones
 from nearchord_solve.kernels.words import holds
-from nearchord_solve.sweep.kernels.label_bags import Bag
+from nearchord_solve.sweep.kernels.label_bags import Bag, own_entry
 from nearchord_solve.sweep.kernels.label_search import Search
 from nearchord_solve.sweep.kernels.label_table import Table, find, labelled, record
 
@@ -27,13 +27,14 @@ class Best(NamedTuple):
     size: I64  # [1] vertices of the state
     state: I64  # places in the bag
     label: I32
-    picks: I32  # [C] the entry taken of each bag below, -1 for what needs none
+    picks: I64  # [C] the entry taken of each bag below, -1 for what needs none
 
 
 class Belief(NamedTuple):
     """What is worth how much in all; totals are those of the whole graph."""
 
     entry: I64  # [E] best total with an entry; what lies outside its bag adds to it once the bag is visited
+    sets: I64  # [D] the same for sets of adhesions without fill
     few_ptr: I64  # [B+1] the plain parts of the adhesion of each bag, see few_place()
     few: I64  # best total with each
     chosen: I64  # [n] best total with a vertex
@@ -61,7 +62,7 @@ def no_best() -> Best:
     """Nothing to compare with."""
     nothing = np.empty(0, np.int32)
     one = np.empty(1, np.int64)
-    return Best(nothing, one, one, one, nothing, nothing)
+    return Best(nothing, one, one, one, nothing, one)
 
 
 @kernel
@@ -91,11 +92,11 @@ def name_labels(label: I32, count: int, name: I32, names: I32) -> None:
 
 @kernel
 def reach(
-    bag: Bag, table: Table, search: Search, goal: Goal, size: int, value: int, name: I32, picks: I32, key: I32
+    bag: Bag, table: Table, search: Search, goal: Goal, size: int, value: int, name: I32, picks: I64, key: I32
 ) -> Table:
     """A state was completed: do what the goal says.
 
-    ``name`` int32[>= lead]: labels that its adhesion part is sent under; ``picks`` int32[C]; ``key`` is scratch.
+    ``name`` int32[>= lead]: labels that its adhesion part is sent under; ``picks`` int64[C]; ``key`` is scratch.
     """
     lead = lead_of(bag, search, size)
     if goal.mode == CHOOSE:
@@ -112,6 +113,13 @@ def reach(
         return table
     if goal.mode == MEASURE:
         return table
+    if bag.first >= 0:
+        at = own_entry(bag, search.chosen, lead)
+        if goal.mode == COLLECT:
+            table.sets[at] = max(table.sets[at], value)
+        else:
+            _tell(bag, search, goal.belief, size, goal.belief.sets[at] + value, picks)
+        return table
     for i in range(lead):
         key[i] = bag.member[search.chosen[i]]
     if goal.mode == COLLECT:
@@ -122,7 +130,7 @@ def reach(
 
 
 @kernel
-def _compare(search: Search, best: Best, size: int, lead: int, value: int, name: I32, picks: I32) -> None:
+def _compare(search: Search, best: Best, size: int, lead: int, value: int, name: I32, picks: I64) -> None:
     """Keep a state if it has the wanted adhesion part and is better than what is kept."""
     if lead != best.wanted.shape[0] or value <= best.value[0]:
         return
@@ -154,7 +162,7 @@ def _plain_part(bag: Bag, search: Search, size: int, c: int) -> tuple[int, int]:
 
 
 @kernel
-def _tell(bag: Bag, search: Search, belief: Belief, size: int, total: int, picks: I32) -> None:
+def _tell(bag: Bag, search: Search, belief: Belief, size: int, total: int, picks: I64) -> None:
     """Tell a total to the vertices of a state, to those that it leaves out, and to the bags below."""
     for i in range(size):
         v = bag.member[search.chosen[i]]
@@ -163,6 +171,9 @@ def _tell(bag: Bag, search: Search, belief: Belief, size: int, total: int, picks
         if belief.kept[bag.member[j]] and not holds(search.set_[size], j):
             belief.left[bag.member[j]] = max(belief.left[bag.member[j]], total)
     for c in range(picks.shape[0]):
+        if bag.below[c] >= 0:
+            belief.sets[picks[c]] = max(belief.sets[picks[c]], total)
+            continue
         if picks[c] >= 0:
             belief.entry[picks[c]] = max(belief.entry[picks[c]], total)
             continue

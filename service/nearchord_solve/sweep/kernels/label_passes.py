@@ -2,9 +2,10 @@
 
 Vertices are numbered by rank in a perfect elimination order of G + fill, highest first to go; ``later`` row r is L(r),
 ascending.  With two colours, and for forests, bags without fill are settled by a formula (:mod:`.label_closed`), and
-bags with fill keep a table only for what worths of vertices and pairs do not say (:mod:`.label_bags`).  Otherwise the
-table holds the best value for each state of each adhesion; there states that leave out a vertex that must be chosen
-are not entered, so whatever has no entry is impossible.
+bags with fill keep a table only for what worths of vertices and pairs do not say (:mod:`.label_bags`).  Otherwise
+there is a best value for each state of each adhesion, in the table or, for colours on adhesions without fill, in the
+order of the sets (:mod:`.label_sets`); states that leave out a vertex that must be chosen are not entered, so whatever
+has no value is impossible.
 """
 
 from typing import NamedTuple
@@ -20,8 +21,9 @@ from nearchord_solve.sweep.kernels.label_belief import look_outside, restore_wor
 from nearchord_solve.sweep.kernels.label_choice import apply_best, start_choice
 from nearchord_solve.sweep.kernels.label_closed import choose_closed, settle_closed
 from nearchord_solve.sweep.kernels.label_goals import BELIEVE, CHOOSE, COLLECT, MEASURE, Belief, Goal, no_best
+from nearchord_solve.sweep.kernels.label_sets import visit_sets
 from nearchord_solve.sweep.kernels.label_states import visit_states
-from nearchord_solve.sweep.kernels.label_table import Table, find, table_bytes
+from nearchord_solve.sweep.kernels.label_table import Sets, Table, count_sets, find, table_bytes
 
 DONE, STOPPED, STATES, MEMORY, IMPOSSIBLE = 0, 1, 2, 3, 4
 
@@ -37,6 +39,7 @@ class Plan(NamedTuple):
     must: U8  # [n] what has to be chosen; not looked at where plain states are kept as worths
     child_ptr: I64  # [B+1] bags below each bag: those that send entries, or all when believing
     child: I64
+    sets: Sets
     entries: I64  # [B, 2] where the entries of each bag begin and end
     colour: U8  # [n] zeros at first; then colours of what is chosen (for forests anything but 0)
     pick: I32  # [B] the entry chosen of each bag, -1 for plain ones
@@ -86,6 +89,8 @@ def _send(bag: Bag, table: Table, few: I64, plan: Plan, where: I32) -> int:
         return send_few(bag, few, plan.later_ptr, plan.later, plan.single, plan.pair)
     if plan.forest.bag_above[bag.number] >= 0:
         return 0
+    if bag.first >= 0:
+        return int(table.sets[bag.first])
     root = find(table, bag.number, bag.member, int(np.int64(0)))
     return int(table.value[root]) if root >= 0 else -1
 
@@ -97,6 +102,14 @@ def _believe_closed(bag: Bag, table: Table, belief: Belief) -> None:
     few = collect_few(bag)
     look_outside(bag, table, belief.few_ptr[0], belief.few_ptr[0], few, belief)
     tell_few(bag, few, belief)
+
+
+@kernel
+def _sets_outside(b: int, plan: Plan, table: Table, belief: Belief) -> None:
+    """Turn the totals told to the sets of an adhesion without fill into what lies outside."""
+    first = plan.sets.first[b]
+    for e in range(first, first + count_sets(plan.forest.bag_adhesion[b], plan.sets.choose)):
+        belief.sets[e] -= table.sets[e]
 
 
 @kernel
@@ -130,7 +143,25 @@ def pass_bags(
             choose_closed(b, forest, plan.later_ptr, plan.single, plan.pair, plan.colour)
             continue
         child = plan.child[plan.child_ptr[b] : plan.child_ptr[b + 1]]
-        bag = open_bag(b, forest, plan.later_ptr, plan.single, plan.pair, plan.must, closed, child, table, where)
+        if mode == BELIEVE and plan.sets.first[b] >= 0:
+            _sets_outside(b, plan, table, belief)
+        if plan.sets.first[b] >= 0 and not forest.bag_kind[b] & BAG_FILL:
+            states += count_sets(forest.bag_ptr[b + 1] - forest.bag_ptr[b], plan.sets.choose)
+            if states > most:
+                return STATES, base, states, table
+            visit_sets(
+                mode, b, forest, child, plan.sets, plan.single, plan.must, table.sets, belief, plan.colour, where, cells
+            )
+            if cells[STOP] != 0:
+                return STOPPED, base, states, table
+            if mode == COLLECT and forest.bag_above[b] < 0:
+                if table.sets[plan.sets.first[b]] < 0:
+                    return IMPOSSIBLE, base, states, table
+                base += table.sets[plan.sets.first[b]]
+            continue
+        bag = open_bag(
+            b, forest, plan.later_ptr, plan.single, plan.pair, plan.must, closed, child, table, plan.sets, where
+        )
         if plain:
             _believe_closed(bag, table, belief)
             continue

@@ -16,13 +16,14 @@ from typing import NamedTuple
 import numpy as np
 
 from nearchord_solve.kernels.cells import STOP
-from nearchord_solve.kernels.compiled import I32, I64, U64, kernel
+from nearchord_solve.kernels.compiled import I32, I64, U64, kernel, ones
 from nearchord_solve.kernels.words import holds
 from nearchord_solve.sweep.kernels.label_bags import Bag, most_chosen
 from nearchord_solve.sweep.kernels.label_goals import Goal, lead_of, name_labels, reach
 from nearchord_solve.sweep.kernels.label_search import Search, add_vertex, is_plain, join, new_search, next_vertex
 from nearchord_solve.sweep.kernels.label_table import Table, find, labelled
 
+ONE = np.uint64(1)
 END, UNTRIED, PLAIN = -1, -2, -3  # in place of an entry: there is none; none was tried; the plain one
 
 
@@ -38,7 +39,7 @@ class Ways(NamedTuple):
     value: I64
     whole: I32  # [C+1, D] trees with the edges of the adhesion
     tied: I32  # [C+1, D] trees without
-    picks: I32  # [C] the entry taken of each bag below
+    picks: I64  # [C] the entry taken of each bag below
     key: I32  # [D]
     label: I32
     name: I32
@@ -52,7 +53,7 @@ def _new_ways(children: int, room: int) -> Ways:
         np.empty(rows, np.int64), np.empty((rows, room), np.int32), np.empty((rows, room), np.int32),
         np.zeros(rows, np.int64),
         np.empty(rows, np.int32), np.empty(rows, np.int32), np.empty(rows, np.int64), np.empty((rows, room), np.int32),
-        np.empty((rows, room), np.int32), np.empty(children, np.int32), np.empty(room, np.int32),
+        np.empty((rows, room), np.int32), np.empty(children, np.int64), np.empty(room, np.int32),
         np.empty(room, np.int32), np.empty(room, np.int32), np.empty(room, np.int32),
     )  # fmt: skip
 
@@ -80,6 +81,25 @@ def _key(bag: Bag, search: Search, size: int, c: int, where: I32, key: I32, labe
 
 
 @kernel
+def _entry_below(bag: Bag, search: Search, size: int, c: int) -> int:
+    """Where bag ``c`` below, whose adhesion has no fill, keeps the value of the part of a state in it."""
+    lead = int(np.int64(0))
+    for w in range(bag.inside.shape[1]):
+        lead += ones(bag.inside[c, w])
+    entry = bag.below[c]
+    count = int(np.int64(0))
+    for i in range(size):
+        j = search.chosen[i]
+        if holds(bag.inside[c], j):
+            place = ones(bag.inside[c, j >> 6] & ((ONE << np.uint64(j & 63)) - ONE))
+            for w in range(j >> 6):
+                place += ones(bag.inside[c, w])
+            entry += bag.choose[lead, count] + bag.choose[place, count + 1]
+            count += 1
+    return int(entry)
+
+
+@kernel
 def _meet(bag: Bag, table: Table, search: Search, ways: Ways, size: int, forest: bool) -> tuple[int, int, bool]:
     """The bags below that have entries for a state, into ``ways``.
 
@@ -91,6 +111,12 @@ def _meet(bag: Bag, table: Table, search: Search, ways: Ways, size: int, forest:
     for c in range(bag.child.shape[0]):
         ways.picks[c] = bag.plain[c]
         if not _meets(bag, search, size, c):
+            continue
+        if bag.below[c] >= 0:
+            entry = _entry_below(bag, search, size, c)
+            rest += table.sets[entry] - (table.sets[bag.plain[c]] if bag.plain[c] >= 0 else 0)
+            missing += int(table.sets[entry] < 0) - int(bag.plain[c] < 0)
+            ways.picks[c] = entry
             continue
         length = _key(bag, search, size, c, ways.where[depth], ways.key, ways.label)
         if bag.closed and length < 2:

@@ -2,7 +2,8 @@
 
 A key is a bag and the vertices of a state in that bag's adhesion, ascending; entries with the same key stand in one
 chain and differ in the labels of these vertices, which are named in the order of their first use.  An entry keeps the
-best value for its key and labels; the state that reaches it is found again when it is wanted.
+best value for its key and labels; the state that reaches it is found again when it is wanted.  Where no label
+matters, values stand in the order of the sets of vertices instead.
 """
 
 from typing import Any, NamedTuple
@@ -27,22 +28,39 @@ class Table(NamedTuple):
     pool: I32
     slots: I32  # open addressing: first entry of each chain, -1 where free; a power of two long
     used: I64  # [3] entries, pool, chains
+    sets: I64  # [D] values over adhesions without fill, see :mod:`.label_sets`; -1 where impossible
+
+
+class Sets(NamedTuple):
+    """Where the values of sets stand, see :mod:`.label_sets`."""
+
+    first: I64  # [B] entry of the empty set of each adhesion without fill; -1 for the others, or where there are none
+    choose: I64  # [s+1, q+1] C(n, k), s the size of the largest bag
 
 
 @kernel
-def empty_table() -> Table:
-    """A table without entries."""
+def count_sets(size: int, choose: I64) -> int:
+    """Sets of at most q out of ``size`` vertices."""
+    total = int(np.int64(0))
+    for k in range(choose.shape[1]):
+        total += choose[size, k]
+    return total
+
+
+@kernel
+def empty_table(sets: int) -> Table:
+    """A table without entries; so many ``sets``, all impossible."""
     return Table(
         np.empty(64, np.int64), np.empty(64, np.int32), np.empty(64, np.int32), np.empty(64, np.int64),
         np.empty(64, np.int32), np.empty(64, np.uint64), np.empty(1024, np.int32), np.full(128, -1, np.int32),
-        np.zeros(3, np.int64),
+        np.zeros(3, np.int64), np.full(sets, -1, np.int64),
     )  # fmt: skip
 
 
 @kernel
 def table_bytes(table: Table) -> int:
     """Memory of a table."""
-    return int(4 * table.pool.shape[0] + 36 * table.value.shape[0] + 4 * table.slots.shape[0])
+    return int(4 * table.pool.shape[0] + 36 * table.value.shape[0] + 4 * table.slots.shape[0] + 8 * table.sets.shape[0])
 
 
 @kernel
@@ -76,7 +94,7 @@ def _grown(table: Table, room: int) -> Table:
                 while slots[place] >= 0:
                     place = (place + 1) & (slots.shape[0] - 1)
                 slots[place] = old
-    return Table(value, bag, length, begin, following, hashed, pool, slots, table.used)
+    return Table(value, bag, length, begin, following, hashed, pool, slots, table.used, table.sets)
 
 
 @kernel
