@@ -20,6 +20,7 @@ from bench.report import Report, Row, Target
 
 MEMORY = 2**30
 SECONDS = 60.0
+QUICK_SECONDS = 10.0
 REPEATS = 5
 SCENARIOS = 100
 MOST_SMALL_SECONDS = 0.2
@@ -47,7 +48,7 @@ LARGE = ("independent-set", "clique", "colourable-subgraph 2", "induced-forest",
 
 def measure(options: Options) -> Report:
     """Run the scenario, small sizes only if quick."""
-    limit = options.seconds or SECONDS
+    limit = options.seconds or (QUICK_SECONDS if options.quick else SECONDS)
     report = Report("questions", {"limit_seconds": limit, "seed": options.seed})
     small = windows(300 if options.quick else 1_000, 20, 20, options.seed)
     ours = fresh.run(solve_each, small, list(SMALL), limit).result
