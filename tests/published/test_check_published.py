@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import os
 from collections import Counter
-from pathlib import Path
 
 import nearchord
 import nearchord_solve
@@ -17,7 +16,7 @@ from nearchord.checks.branches import Branches
 from nearchord.checks.classes import splittance
 from nearchord.checks.edges import Edges
 from nearchord.checks.packing import Packing
-from published.reference_graphs import read_dimacs, reference_rows, weightings
+from published.reference_graphs import SHARED, read_dimacs, reference_rows, weightings
 
 
 def test_split_graphs_are_as_many_as_published() -> None:
@@ -29,7 +28,6 @@ def test_split_graphs_are_as_many_as_published() -> None:
     assert [counts[n] for n in range(1, 8)] == [1, 2, 4, 9, 21, 56, 164]
 
 
-SHARED = Path(os.environ.get("NEARCHORD_SHARED_DATA", Path(__file__).resolve().parents[2] / ".." / "shared" / "data"))
 COLOURING = ("huck", "jean", "anna", "miles250", "david", "mulsol.i.1", "zeroin.i.1", "fpsol2.i.1")
 
 

@@ -2,7 +2,6 @@
 
 import os
 from math import comb
-from pathlib import Path
 
 import networkx as nx
 import pytest
@@ -11,8 +10,7 @@ from fill_proof import confirm
 from nearchord_solve import Graph, Monitor
 from nearchord_solve.fill.exact import FillResult, ProofKind, minimum_fill
 from networkx.generators.atlas import graph_atlas_g
-
-SHARED = Path(os.environ.get("NEARCHORD_SHARED_DATA", Path(__file__).resolve().parents[2] / ".." / "shared" / "data"))
+from published.reference_graphs import SHARED
 
 # Recomputed by two independent general-purpose methods before this project.
 NAMED = {

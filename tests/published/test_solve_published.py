@@ -1,8 +1,6 @@
 """The solver against values from outside the project."""
 
-import csv
 import os
-from pathlib import Path
 
 import networkx as nx
 import numpy as np
@@ -10,8 +8,7 @@ import pytest
 from definition import heaviest_independent, is_independent
 from nearchord_solve import Budget, Graph, IndependentSet, Monitor, Verdict, VertexCover, solve
 from networkx.generators.atlas import graph_atlas_g
-
-SHARED = Path(os.environ.get("NEARCHORD_SHARED_DATA", Path(__file__).resolve().parents[2] / ".." / "shared" / "data"))
+from published.reference_graphs import SHARED, read_dimacs, reference_rows, weightings
 
 
 def canonical_graph(graph: nx.Graph) -> Graph:
@@ -128,31 +125,6 @@ def test_least_fill_formulas_lie_in_the_interval(n: int) -> None:
         assert outcome.fill_lower_bound <= least <= outcome.fill
 
 
-def read_dimacs(path: Path) -> tuple[int, list[tuple[int, int]], dict[int, int]]:
-    """n, edges (loops and repetitions dropped) and vertex weights of a file in DIMACS edge format."""
-    n, edges, weights = 0, set(), {}
-    for line in path.read_text().splitlines():
-        fields = line.split()
-        if fields[:1] == ["p"]:
-            n = int(fields[2])
-        elif fields[:1] == ["n"]:
-            weights[int(fields[1]) - 1] = int(fields[2])
-        elif fields[:1] == ["e"]:
-            u, v = sorted((int(fields[1]) - 1, int(fields[2]) - 1))
-            if u != v:
-                edges.add((u, v))
-    return n, sorted(edges), weights
-
-
-def reference_rows() -> list[dict[str, str]]:
-    """Rows of VALUES.csv; its values come from CP-SAT, HiGHS and clique enumeration."""
-    path = SHARED / "VALUES.csv"
-    if not path.exists():
-        return []
-    with path.open() as file:
-        return list(csv.DictReader(file))
-
-
 def test_reference_data_is_there() -> None:
     """Skipped with a message where the folder is absent; in CI its absence is a failure."""
     if not reference_rows():
@@ -169,12 +141,9 @@ FAR_FROM_CHORDAL = {"hb_can_838": Budget(states=10**6)}
 @pytest.mark.parametrize("row", reference_rows(), ids=lambda row: row["name"])
 def test_reference_graphs(row: dict[str, str]) -> None:
     """PROVEN with the reference value; for the one far from chordal an interval around it will do."""
-    n, edges, own = read_dimacs(SHARED / "graphs" / f"{row['name']}.col")
+    n, edges, own = read_dimacs(row["name"])
     graph = Graph.from_edges(n, edges)
-    weightings = {"unit": np.ones(n, np.int64), "seed": 1 + np.arange(n) * 7919 % 1000}
-    if own:
-        weightings["file"] = np.array([own.get(v, 1) for v in range(n)], np.int64)
-    for kind, weights in weightings.items():
+    for kind, weights in weightings(n, own).items():
         budget = FAR_FROM_CHORDAL.get(row["name"], Budget())
         outcome = solve(IndependentSet(), graph, weights, budget, "bound", Monitor())
         assert is_independent(edges, outcome.chosen.tolist())
