@@ -9,9 +9,12 @@ from nearchord_service.model.stage import Stage
 
 
 def test_second_stop_is_harmless(home: Home) -> None:
+    """The data can be opened again, and holds what was accepted."""
     store = home.open()
+    job = submit(store)
     store.stop()
     store.stop()
+    assert home.open().job(ANN, job.id) == job
 
 
 def test_second_start_is_harmless(home: Home) -> None:
